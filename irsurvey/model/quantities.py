@@ -1,0 +1,71 @@
+"""Numbers with an uncertainty and an origin: the inputs of a measurement and its results."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from math import inf
+
+
+@dataclass(frozen=True, slots=True)
+class Estimate:
+    """A measured number and its standard uncertainty (k = 1), in the unit its field's name ends in."""
+
+    value: float
+    u: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class Quantity:
+    """One named scalar input of a measurement, in SI units, with its standard uncertainty and origin.
+
+    `source` is one of "survey", "group", "frame", "surface", "default", "material table",
+    "measured in frame", "log".  `low` and `high` bound the domain (an emissivity ends at 1), so that
+    a step out of it is taken one-sided.
+    """
+
+    name: str
+    value: float
+    u: float = 0.0
+    source: str = "default"
+    low: float = -inf
+    high: float = inf
+
+
+@dataclass(frozen=True, slots=True)
+class Scene:
+    """Everything a measurement depends on, one name per source: what two results share moves together.
+
+    Surfaces, components and partner frames refer to these names.  Used ones (SI, fractions not percent):
+    `emissivity`, `emissivity:<surface>`, `reflected`, `reflected:<surface>`, `air`, `relative_humidity`,
+    `distance`, `pressure`, `atmosphere` (relative error of the absorptance of the air path, 0 ± u),
+    `window_transmittance`, `window_reflectance`, `window_temperature`, `window_ambient`,
+    `indoor_air`, `outdoor_air`, `ambient`, `mean_radiant`, `wind`, `convection` (factor on the film
+    coefficient, 1 ± u), `camera_offset` [K], `camera_gain` (relative, about the frame's median),
+    `ifov` [rad], `view_angle` [rad], `known_length` [m], `known_width` [m], `known_height` [m],
+    `temperature:<surface>` (known-temperature surfaces), `noise:<sample>` [K].
+    """
+
+    quantities: tuple[Quantity, ...]
+
+    def __getitem__(self, name: str) -> Quantity:
+        for quantity in self.quantities:
+            if quantity.name == name:
+                return quantity
+        raise KeyError(name)
+
+    def __contains__(self, name: object) -> bool:
+        return any(quantity.name == name for quantity in self.quantities)
+
+    def value(self, name: str) -> float | None:
+        """The value of a quantity, or None where nobody stated it."""
+        return self[name].value if name in self else None
+
+    def values(self) -> dict[str, float]:
+        """All values by name."""
+        return {quantity.name: quantity.value for quantity in self.quantities}
+
+    def with_(self, *quantities: Quantity) -> Scene:
+        """The same scene with these quantities added, or put in place of those of the same name."""
+        new = {quantity.name: quantity for quantity in quantities}
+        kept = tuple(new.pop(quantity.name, quantity) for quantity in self.quantities)
+        return replace(self, quantities=(*kept, *new.values()))
