@@ -42,7 +42,8 @@ class Scene:
     `indoor_air`, `outdoor_air`, `ambient`, `mean_radiant`, `wind`, `convection` (factor on the film
     coefficient, 1 ± u), `camera_offset` [K], `camera_gain` (relative, about the frame's median),
     `ifov` [rad], `view_angle` [rad], `known_length` [m], `known_width` [m], `known_height` [m],
-    `temperature:<surface>` (known-temperature surfaces), `noise:<sample>` [K].
+    `load_exponent` (rise ∝ load^n), `temperature:<surface>` (known-temperature surfaces), and the noise of
+    each area, `noise:<area>` [K], `noise:slope x`, `noise:slope y` [K px⁻¹].
     """
 
     quantities: tuple[Quantity, ...]

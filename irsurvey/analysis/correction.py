@@ -1,0 +1,305 @@
+"""Stored numbers of one frame to object temperatures, surface by surface, by look-up."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from irsurvey.constants import ZERO_CELSIUS
+from irsurvey.errors import Fault, FrameError
+from irsurvey.geometry.polygons import mask
+from irsurvey.heat.convection import CONVECTION
+from irsurvey.heat.humid_air import vapour_density
+from irsurvey.model import Camera, Component, Frame, FrameTask, Quantity, Scene, Surface
+from irsurvey.radiometry.atmosphere import absorptance_u
+from irsurvey.radiometry.lookup import Codes, encode, look_up, stored_values, temperature_table
+from irsurvey.radiometry.measurement import Path, object_temperature
+from irsurvey.radiometry.signal import apparent_temperature
+
+_RESOLUTION = 1e-3
+"""Step [K] to which float frames are quantised: a fiftieth of a good camera's noise."""
+
+Optics = tuple[str, str]
+"""Names of the emissivity and the reflected temperature in the Scene."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Corrected:
+    """One frame in object temperature, and what it was made from.
+
+    `t` (rows, columns) [K], NaN where saturated, without data or without solution; `apparent` [K] by stored
+    code, lowest…highest; `optics` (rows, columns) indices into `optics_names`.
+    """
+
+    codes: Codes
+    apparent: NDArray[np.float64]
+    optics: NDArray[np.uint8]
+    optics_names: tuple[Optics, ...]
+    scene: Scene
+    pivot: float
+    t: NDArray[np.float32]
+    saturated_hot: NDArray[np.bool_]
+    saturated_pixels: int
+    unsolved_pixels: int
+    without_data_pixels: int
+
+
+def air_path(values: Mapping[str, Any]) -> Path:
+    """The path between surface and camera for scene values (scalars, or columns of many scenes)."""
+    window = {}
+    if "window_transmittance" in values:
+        window = {
+            "window_transmittance": values["window_transmittance"],
+            "window_reflectance": values["window_reflectance"],
+            "t_window": values["window_temperature"],
+            "t_window_ambient": values["window_ambient"],
+        }
+    return Path(
+        t_air=values["air"],
+        distance=values["distance"],
+        vapour_density=vapour_density(values["air"], values["relative_humidity"]),
+        pressure=values["pressure"],
+        excess=values["atmosphere"],
+        **window,
+    )
+
+
+def correct(frame: Frame, task: FrameTask) -> Corrected:
+    """Object temperatures of a frame.  Raises FrameError where nothing in it can be measured.
+
+    Reflector surfaces measure the reflected temperature first, then surfaces of known temperature fix the
+    camera's offset; both replace what the survey stated.
+    """
+    signal, band = task.camera.signal, task.camera.band
+    codes = encode(frame.stored, frame.missing, resolution=_resolution(frame, task.camera))
+    apparent = apparent_temperature(stored_values(codes), signal, band)
+    optics, optics_names = _optics(task, frame.stored.shape)
+    t_apparent = look_up(codes, apparent)
+    pivot = float(np.nanmedian(t_apparent[::4, ::4])) if np.isfinite(t_apparent[::4, ::4]).any() else float("nan")
+    if np.isnan(pivot):
+        fault = Fault(
+            task.file,
+            "stored numbers that mean temperatures",
+            f"numbers from {frame.stored.min()} to {frame.stored.max()}, none of which does",
+            "check quantity, unit, scale and offset under camera.signal",
+        )
+        raise FrameError(fault)
+    scene = _with_camera(task, pivot)
+    scene = _with_reflected(task, scene, t_apparent)
+    scene = _with_offset(task, scene, t_apparent)
+
+    low, high = task.camera.range or (-np.inf, np.inf)
+    has_data = _has_data(codes)
+    hot, cold = _beyond(codes, apparent >= high), _beyond(codes, apparent <= low)
+    values = scene.values()
+    path = air_path(values)
+    t = np.empty(frame.stored.shape, np.float32)
+    for index, (emissivity, reflected) in enumerate(optics_names):
+        table = temperature_table(
+            codes.key,
+            signal,
+            band,
+            values["camera_offset"],
+            values["camera_gain"],
+            pivot,
+            values[emissivity],
+            values[reflected],
+            path,
+        )
+        measurable = np.where((apparent > low) & (apparent < high), table, np.nan)
+        if index == 0:
+            t = look_up(codes, measurable)
+            continue
+        rows, columns = _box(optics == index)
+        part = optics[rows, columns] == index
+        t[rows, columns][part] = measurable[codes.codes[rows, columns][part].astype(np.intp) - codes.lowest]
+    unmeasurable = np.isnan(t)
+    saturated = hot | cold
+    unsolved = int(np.count_nonzero(unmeasurable & ~saturated & has_data))
+    return Corrected(
+        codes,
+        apparent,
+        optics,
+        optics_names,
+        scene,
+        pivot,
+        t,
+        hot,
+        int(np.count_nonzero(saturated)),
+        unsolved,
+        int(np.count_nonzero(~has_data)),
+    )
+
+
+def reflected_by_reflector(frame: Frame, task: FrameTask) -> Quantity:
+    """Reflected apparent temperature [K] that the reflector in this frame measures, for it and the frames it serves.
+
+    Raises FrameError where it has no readable reflector."""
+    signal = task.camera.signal
+    codes = encode(frame.stored, frame.missing, resolution=_resolution(frame, task.camera))
+    t_apparent = look_up(codes, apparent_temperature(stored_values(codes), signal, task.camera.band))
+    scene = _with_reflected(task, _with_camera(task, float(np.nanmedian(t_apparent))), t_apparent)
+    return scene["reflected"]
+
+
+def reflected_by(surface: Surface, task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Quantity:
+    """Reflected apparent temperature measured on a crumpled reflector (ASTM E1862, reflector method).
+
+    The reflector is read as a black body through the air path.  Its spread stays in the uncertainty: what it
+    shows is not the same in all directions; and the camera's error is in it whole.
+    """
+    values = scene.values()
+    seen = t_apparent[_inner(surface, t_apparent.shape)].astype(np.float64)
+    t = object_temperature(seen + values["camera_offset"], 1.0, values["air"], air_path(values), task.camera.band)
+    centre = float(np.nanmedian(t)) if np.isfinite(t).any() else float("nan")
+    if np.isnan(centre):
+        fault = Fault(
+            f"{task.id}: surface {surface.name}",
+            "a readable reflector",
+            "no measurable pixel in it",
+            "draw it on the foil, clear of its edge",
+        )
+        raise FrameError(fault)
+    spread = 1.4826 * float(np.nanmedian(np.abs(t - centre)))
+    return Quantity("reflected", centre, float(np.hypot(scene["camera_offset"].u, spread)), "measured in frame", low=0)
+
+
+def _with_camera(task: FrameTask, pivot: float) -> Scene:
+    """The scene with the camera's own errors: an offset common to the frame, a gain about its median."""
+    accuracy = max(task.camera.accuracy, task.camera.accuracy_fraction * abs(pivot - ZERO_CELSIUS))
+    scene = task.scene.with_(
+        Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey"),  # accuracies are half-widths, rectangular
+        Quantity("camera_gain", 0.0, task.camera.accuracy_fraction / 3**0.5, "survey"),
+        Quantity("atmosphere", 0.0, absorptance_u(task.camera.band), "default"),
+    )
+    if task.kind == "building" and task.viewed_from == "outside" and "wind" not in scene:
+        # Not recorded is not calm.  A light breeze, wide enough to cover still air; only heat flux uses it.
+        scene = scene.with_(Quantity("wind", 2.0, 1.0, "default", low=0.0))
+    if scene["convection"].source == "default":
+        scene = scene.with_(Quantity("convection", 1.0, CONVECTION[task.convection].u, "default", low=0.0))
+    return scene
+
+
+def _with_reflected(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Scene:
+    for surface in task.surfaces:
+        if surface.role == "reflector":
+            scene = scene.with_(reflected_by(surface, task, scene, t_apparent))
+    if "reflected" not in scene:
+        served_by = f"frame {task.reflected_from}" if task.reflected_from else "this frame"
+        fault = Fault(
+            f"{task.id}: reflected_c",
+            "a reflected apparent temperature",
+            f"none stated and no reflector read in {served_by}",
+            "state conditions.reflected_c or draw a surface with role = \"reflector\"",
+        )
+        raise FrameError(fault)
+    return scene
+
+
+def _with_offset(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Scene:
+    """Fix the camera's offset on surfaces of known temperature: the shift of apparent temperature that meets them."""
+    known = [surface for surface in task.surfaces if surface.role == "known-temperature" and surface.temperature]
+    if not known:
+        return scene
+    offsets, variances = [], []
+    for surface in known:
+        seen = t_apparent[_inner(surface, t_apparent.shape)].astype(np.float64)
+        seen = seen[np.isfinite(seen)]
+        offsets.append(_offset(seen, surface, scene, task))
+        variances.append(scene[str(surface.temperature)].u ** 2 + _emissivity_share(seen, surface, scene, task) ** 2)
+    weights = 1 / np.maximum(variances, 1e-6)
+    offset = float(np.average(offsets, weights=weights))
+    u = float(1 / np.sqrt(weights.sum()))
+    return scene.with_(Quantity("camera_offset", offset, u, "measured in frame"))
+
+
+def _offset(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: FrameTask) -> float:
+    """Offset [K] at which the mean of a known surface reads its temperature: secant steps on a nearly linear law."""
+    values = scene.values()
+    path, target = air_path(values), values[str(surface.temperature)]
+    centre = float(np.mean(seen)) if seen.size else float("nan")
+
+    def reading(offset: float) -> float:
+        seen_as = np.float64(centre + offset)
+        emissivity, t_reflected = values[surface.emissivity], values[surface.reflected]
+        return float(object_temperature(seen_as, emissivity, t_reflected, path, task.camera.band))
+
+    offset, slope = 0.0, max(reading(0.5) - reading(-0.5), 1e-3)
+    for _ in range(6):
+        offset += (target - reading(offset)) / slope
+    if not abs(reading(offset) - target) < 1e-3:
+        fault = Fault(
+            f"{task.id}: surface {surface.name}",
+            f"a surface that can read {target - ZERO_CELSIUS:.1f} °C",
+            f"an apparent {centre - ZERO_CELSIUS:.1f} °C that no offset explains",
+            "check its temperature, emissivity and outline",
+        )
+        raise FrameError(fault)
+    return offset
+
+
+def _emissivity_share(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: FrameTask) -> float:
+    """What the emissivity of a known surface adds to the uncertainty of the offset [K]."""
+    quantity = scene[surface.emissivity]
+    lower = scene.with_(
+        Quantity(quantity.name, max(quantity.value - quantity.u, 0.01), quantity.u, quantity.source)
+    )
+    return abs(_offset(seen, surface, lower, task) - _offset(seen, surface, scene, task)) if quantity.u else 0.0
+
+
+def _optics(task: FrameTask, shape: tuple[int, ...]) -> tuple[NDArray[np.uint8], tuple[Optics, ...]]:
+    """Index of the optics of every pixel; drawn surfaces, then components, the later over the earlier."""
+    index = np.zeros(shape, np.uint8)
+    names: list[Optics] = [("emissivity", "reflected")]
+    areas: tuple[Surface | Component, ...] = (*task.surfaces, *task.components)
+    for area in areas:
+        pair = (area.emissivity, area.reflected)
+        if isinstance(area, Surface) and area.role == "reflector":
+            continue
+        if pair == names[0] and not isinstance(area, Surface):
+            continue  # a component without optics of its own keeps those of the surface it lies on
+        if pair not in names:
+            names.append(pair)
+        index[mask(area.polygon, (shape[0], shape[1]))] = names.index(pair)
+    return index, tuple(names)
+
+
+def _resolution(frame: Frame, camera: Camera) -> float:
+    """`_RESOLUTION` in stored units; counts are given 65 534 steps over their range instead."""
+    if camera.signal.quantity == "counts":
+        finite = frame.stored[np.isfinite(frame.stored)]
+        return max(float(np.ptp(finite)) / 65_534, 1e-12) if finite.size else 1.0
+    return _RESOLUTION / abs(camera.signal.scale)
+
+
+def _beyond(codes: Codes, by_code: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """Pixels whose code is marked; no pass over the frame where no code is."""
+    if not by_code.any():
+        return np.zeros(codes.codes.shape, np.bool_)
+    return np.asarray(look_up(codes, by_code.astype(np.float64)) > 0, np.bool_)
+
+
+def _has_data(codes: Codes) -> NDArray[np.bool_]:
+    if codes.no_data is None:
+        return np.ones(codes.codes.shape, np.bool_)
+    return np.asarray(codes.codes != codes.no_data, np.bool_)
+
+
+def _box(part: NDArray[np.bool_]) -> tuple[slice, slice]:
+    rows, columns = np.flatnonzero(part.any(axis=1)), np.flatnonzero(part.any(axis=0))
+    if rows.size == 0:
+        return slice(0, 0), slice(0, 0)
+    return slice(int(rows[0]), int(rows[-1]) + 1), slice(int(columns[0]), int(columns[-1]) + 1)
+
+
+def _inner(surface: Surface, shape: tuple[int, ...]) -> NDArray[np.bool_]:
+    """The surface without its outermost two pixels, which blur mixes with its surroundings; all of it where tiny."""
+    import cv2
+
+    whole = mask(surface.polygon, (shape[0], shape[1]))
+    inner = cv2.erode(whole.view(np.uint8), np.ones((5, 5), np.uint8), borderValue=1).view(np.bool_)
+    return inner if inner.any() else whole

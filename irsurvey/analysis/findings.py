@@ -1,0 +1,215 @@
+"""From measured numbers to the records of a report: findings and components of one frame."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterator, Mapping
+
+import numpy as np
+
+from irsurvey.analysis.correction import Corrected
+from irsurvey.analysis.planning import Measured, Planned
+from irsurvey.analysis.regions import Screened
+from irsurvey.anomalies.patch import Patch, cropped
+from irsurvey.anomalies.shape import edge_sharpness, elongation
+from irsurvey.assess.building import assess_finding
+from irsurvey.assess.criteria import Criterion
+from irsurvey.assess.electrical import Member, TwinPlan, assess_component, load_ratio, rated_band, twins
+from irsurvey.assess.severity import (
+    AUTOMATIC_REFERENCE,
+    CONDITIONS,
+    LEAST_EMISSIVITY,
+    NO_SOLUTION,
+    SATURATED,
+    SIZE_LIMITED,
+)
+from irsurvey.constants import ZERO_CELSIUS
+from irsurvey.geometry.polygons import mask, outline
+from irsurvey.model import Band, Component, ComponentReport, Estimate, Finding, FrameTask, RatedLoad, Shape
+
+Results = Mapping[tuple[str, str], Estimate | None]
+"""(region, number) → estimate in SI units."""
+
+_KEY_GRID = 8
+"""Positions in keys are rounded to this many pixels, so that a re-run with slightly other inputs keeps them."""
+TOUCHES_EDGE = "touches frame edge"
+REFLECTIVE = "reflective"
+
+
+def component_twins(
+    task: FrameTask, corrected: Corrected, planned: Planned, criteria: tuple[Criterion, ...]
+) -> dict[str, TwinPlan]:
+    """Which twin each component is compared with, from the nominal spot temperatures."""
+    members = [_member(component, corrected, planned) for component in task.components]
+    ambient = planned.scene[planned.plan.ambient].value
+    return dict(zip((member.name for member in members), twins(members, ambient, criteria), strict=True))
+
+
+def findings(
+    task: FrameTask,
+    screened: Screened,
+    planned: Planned,
+    results: Results,
+    criteria: tuple[Criterion, ...],
+    *,
+    is_valid: bool,
+) -> Iterator[Finding]:
+    """The findings of a frame in the order of their labels."""
+    keys: Counter[str] = Counter()
+    for label, (found, measured) in enumerate(zip(screened.regions, planned.anomalies, strict=True), start=1):
+        name = measured.region.name
+        emissivity = _lowest_emissivity(measured, planned)
+        flags = (
+            (SATURATED, found.is_saturated),
+            (SIZE_LIMITED, not measured.spot.is_full),
+            (REFLECTIVE, emissivity < LEAST_EMISSIVITY),
+            (TOUCHES_EDGE, measured.patch.touches_edge(screened.t.shape)),
+            (AUTOMATIC_REFERENCE, task.reference is None),
+            (CONDITIONS, not is_valid),
+        )
+        numbers = {
+            "extreme_c": _celsius(results.get((name, "extreme"))),
+            "mean_c": _celsius(results.get((name, "mean"))),
+            "delta_k": results.get((name, "delta")),
+            "mean_delta_k": results.get((name, "mean_delta")),
+            "temperature_factor": results.get((name, "temperature_factor")),
+        }
+        verdict = assess_finding(
+            numbers,
+            criteria,
+            sense=measured.sense,
+            emissivity=emissivity,
+            flags=tuple(flag for flag, applies in flags if applies),
+            viewed_from=task.viewed_from,
+        )
+        key = _key(task.id, measured)
+        keys[key] += 1
+        yield Finding(
+            id=name,
+            key=key if keys[key] == 1 else f"{key}:{keys[key]}",
+            label=label,
+            sense=measured.sense,
+            polygon=_outline(measured.patch),
+            pixels=measured.patch.pixels,
+            area_m2=results.get((name, "area")),
+            extreme_c=numbers["extreme_c"],
+            mean_c=numbers["mean_c"],
+            delta_k=numbers["delta_k"],
+            mean_delta_k=numbers["mean_delta_k"],
+            heat_flux_w_m2=results.get((name, "flux")),
+            reference_heat_flux_w_m2=results.get((name, "reference_flux")),
+            excess_heat_w_m2=results.get((name, "excess_flux")),
+            excess_heat_w=results.get((name, "excess_heat")),
+            temperature_factor=numbers["temperature_factor"],
+            shape=_shape(measured, screened),
+            assessments=verdict.assessments,
+            urgency=verdict.urgency,
+            indication=None,
+            flags=verdict.flags,
+        )
+
+
+def components(
+    task: FrameTask,
+    corrected: Corrected,
+    planned: Planned,
+    plans: Mapping[str, TwinPlan],
+    results: Results,
+    criteria: tuple[Criterion, ...],
+) -> Iterator[ComponentReport]:
+    """The components of a frame in the order of the survey."""
+    for component in task.components:
+        drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
+        member = _member(component, corrected, planned)
+        plan = plans[component.name]
+        numbers = {
+            "max_c": _celsius(results.get((component.name, "max"))),
+            "delta_similar_k": results.get((component.name, "delta_similar")),
+            "delta_ambient_k": results.get((component.name, "delta_ambient")),
+        }
+        verdict = assess_component(member, plan, numbers, criteria)
+        yield ComponentReport(
+            name=component.name,
+            key=f"{task.id}:component:{component.name}",
+            group=component.group,
+            phase=component.phase,
+            load_a=component.load,
+            rated_a=component.rated,
+            polygon=component.polygon,
+            pixels=int(np.count_nonzero(drawn)),
+            max_c=numbers["max_c"],
+            mean_c=_celsius(results.get((component.name, "mean"))),
+            delta_similar_k=numbers["delta_similar_k"],
+            similar_to=plan.name,
+            delta_ambient_k=numbers["delta_ambient_k"],
+            heat_flux_w_m2=results.get((component.name, "flux")),
+            at_rated_load=_at_rated(member, numbers),
+            assessments=verdict.assessments,
+            urgency=verdict.urgency,
+            cleared=verdict.cleared,
+            flags=verdict.flags,
+        )
+
+
+def _member(component: Component, corrected: Corrected, planned: Planned) -> Member:
+    """A component as its group sees it."""
+    measured = planned.components.get(component.name)
+    drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
+    patch = cropped(drawn)
+    saturated = drawn & corrected.saturated_hot
+    flags = (
+        (SATURATED, bool(saturated.any())),
+        (SIZE_LIMITED, measured is not None and not measured.spot.is_full),
+        (NO_SOLUTION, measured is None or bool((drawn & np.isnan(corrected.t) & ~saturated).any())),
+        (TOUCHES_EDGE, patch is not None and patch.touches_edge(drawn.shape)),
+    )
+    return Member(
+        name=component.name,
+        t_spot=float("nan") if measured is None else measured.t_spot,
+        emissivity=planned.scene[component.emissivity].value,
+        group=component.group,
+        load=component.load,
+        rated=component.rated,
+        flags=tuple(flag for flag, applies in flags if applies),
+    )
+
+
+def _lowest_emissivity(measured: Measured, planned: Planned) -> float:
+    return min(planned.scene[part.optics[0]].value for part in measured.region.whole.parts)
+
+
+def _shape(measured: Measured, screened: Screened) -> Shape:
+    assert screened.delta is not None  # a region was found against it
+    centre = (round(measured.region.centre[0], 1), round(measured.region.centre[1], 1))
+    return Shape(
+        elongation(measured.patch), edge_sharpness(screened.delta, measured.patch), centre, measured.region.spot_at
+    )
+
+
+def _key(frame: str, measured: Measured) -> str:
+    """Where the finding is, coarsely: `F01:cold:120-88`."""
+    x, y = (int(round(value / _KEY_GRID) * _KEY_GRID) for value in measured.region.centre)
+    return f"{frame}:{measured.sense}:{x}-{y}"
+
+
+def _outline(patch: Patch) -> tuple[tuple[int, int], ...]:
+    return tuple((x + patch.left, y + patch.top) for x, y in outline(patch.mask))
+
+
+def _celsius(estimate: Estimate | None) -> Estimate | None:
+    return None if estimate is None else Estimate(estimate.value - ZERO_CELSIUS, estimate.u)
+
+
+def _at_rated(member: Member, numbers: Mapping[str, Estimate | None]) -> RatedLoad | None:
+    """Both rises at rated load; None where load or rating is not known."""
+    ratio = load_ratio(member)
+    if not ratio > 0:
+        return None
+
+    def band(estimate: Estimate | None) -> Band | None:
+        if estimate is None:
+            return None
+        low, high = rated_band(estimate.value, ratio)
+        return Band(float(low), float(high))
+
+    return RatedLoad(band(numbers["delta_similar_k"]), band(numbers["delta_ambient_k"]))

@@ -1,0 +1,163 @@
+"""From a screened frame to the plan of what is measured in it, and the scene with the noise of each area."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from irsurvey.analysis.correction import Corrected
+from irsurvey.analysis.measurand import Plan, Region, Surroundings, Twin, area
+from irsurvey.analysis.regions import Screened, stretch_of
+from irsurvey.anomalies.patch import Patch, cropped
+from irsurvey.anomalies.shape import Spot, extreme_spot
+from irsurvey.assess.electrical import LOAD_EXPONENT, LOAD_EXPONENT_U, TwinPlan
+from irsurvey.geometry.polygons import mask
+from irsurvey.geometry.rectify import pixel_areas
+from irsurvey.heat.surface import outward_sign
+from irsurvey.model import FrameTask, KnownLength, KnownRectangle, Quantity, Scene
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Measured:
+    """One region of interest: its pixels, its measurement spot, and what the plan holds of it."""
+
+    patch: Patch
+    sense: str
+    spot: Spot
+    t_spot: float  # nominal mean over the spot [K]
+    region: Region
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Planned:
+    """What is measured; a component without a measurable pixel is not among `components`."""
+
+    plan: Plan
+    scene: Scene
+    anomalies: tuple[Measured, ...]
+    components: dict[str, Measured]
+
+
+def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planned:
+    """Fix masks, spots and weights of everything that is reported, and add the noise of each area to the scene."""
+    anomalies = [
+        measured
+        for number, found in enumerate(screened.regions, start=1)
+        if (measured := _measured(f"{task.id}-{number}", found.patch, found.sense, corrected, screened, task))
+    ]
+    shape = (screened.t.shape[0], screened.t.shape[1])
+    components = {
+        component.name: measured
+        for component in task.components
+        if (patch := cropped(mask(component.polygon, shape)))
+        and (measured := _measured(component.name, patch, "hot", corrected, screened, task))
+    }
+    apparent_noise = screened.noise / stretch_of(corrected, task, 0)
+    noises = [
+        Quantity(part.noise, 0.0, apparent_noise / pixels**0.5)
+        for measured in (*anomalies, *components.values())
+        for part, pixels in (
+            (measured.region.spot, measured.spot.rows.size),
+            (measured.region.whole, measured.patch.pixels),
+        )
+    ]
+    reference = screened.reference
+    if reference is not None:
+        noises += [
+            Quantity("noise:reference", 0.0, reference.u_level / stretch_of(corrected, task, 0)),
+            Quantity("noise:slope x", 0.0, reference.u_slope[0]),
+            Quantity("noise:slope y", 0.0, reference.u_slope[1]),
+        ]
+    scene = corrected.scene.with_(*noises)
+    plan = Plan(
+        band=task.camera.band,
+        pivot=corrected.pivot,
+        surroundings=_surroundings(task, scene),
+        scale=_scale(task, scene),
+        length_pixels=_length_pixels(task),
+        reference=area("noise:reference", corrected, reference.rows, reference.columns, reference.weights)
+        if reference
+        else None,
+        reference_at=reference.centre if reference else (0.0, 0.0),
+        regions=tuple(measured.region for measured in anomalies),
+        components=tuple(measured.region for measured in components.values()),
+        ambient="ambient" if "ambient" in scene else "air",
+        factor_between=_factor_between(task, scene),
+    )
+    return Planned(plan, scene, tuple(anomalies), components)
+
+
+def with_twins(planned: Planned, plans: Mapping[str, TwinPlan]) -> Planned:
+    """The same with each component's twin, and the load exponent among the inputs where loads differ."""
+    twins = {name: Twin(plan.name, plan.load_ratio) for name, plan in plans.items() if plan.name is not None}
+    scene = planned.scene
+    if any(twin.load_ratio != 1 for twin in twins.values()):
+        scene = scene.with_(Quantity("load_exponent", LOAD_EXPONENT, LOAD_EXPONENT_U, "default"))
+    return replace(planned, plan=replace(planned.plan, twins=twins), scene=scene)
+
+
+def _measured(
+    name: str,
+    patch: Patch,
+    sense: str,
+    corrected: Corrected,
+    screened: Screened,
+    task: FrameTask,
+) -> Measured | None:
+    """One region ready to be measured, or None where no pixel of it is measurable."""
+    spot = extreme_spot(screened.t, patch, sense, task.camera.spot_pixels)
+    if spot is None:
+        return None
+    rows, columns = patch.positions()
+    measurable = ~np.isnan(screened.t[rows, columns])
+    rows, columns = rows[measurable], columns[measurable]
+    region = Region(
+        name,
+        area(f"noise:{name} spot", corrected, spot.rows, spot.columns),
+        area(f"noise:{name} whole", corrected, rows, columns),
+        spot.centre,
+        (float(columns.mean()), float(rows.mean())),
+        _extent(patch, task, screened.t.shape),
+    )
+    return Measured(patch, sense, spot, float(screened.t[spot.rows, spot.columns].mean()), region)
+
+
+def _extent(patch: Patch, task: FrameTask, shape: tuple[int, ...]) -> float:
+    """Number of pixels or, with a known rectangle, the share of the rectangle's area that they cover."""
+    if isinstance(task.known_scale, KnownRectangle):
+        shares = pixel_areas((shape[0], shape[1]), task.known_scale.corners, 1.0, 1.0)
+        return float(patch.of(shares).sum())
+    return float(patch.pixels)
+
+
+def _surroundings(task: FrameTask, scene: Scene) -> Surroundings:
+    """What the surfaces of this frame exchange heat with: the side it was seen from decides."""
+    side = {"inside": "indoor_air", "outside": "outdoor_air"}.get(task.viewed_from or "", "ambient")
+    indoor, outdoor = (scene[name].value if name in scene else np.nan for name in ("indoor_air", "outdoor_air"))
+    viewed_from = task.viewed_from if task.kind == "building" else None
+    sign = outward_sign(viewed_from, indoor, outdoor)
+    air = side if side in scene else "air"
+    radiant = "mean_radiant" if "mean_radiant" in scene else air
+    return Surroundings(air, radiant, float(sign), task.convection, task.surface_height, viewed_from)
+
+
+def _scale(task: FrameTask, scene: Scene) -> str:
+    if isinstance(task.known_scale, KnownRectangle):
+        return "known_rectangle"
+    if isinstance(task.known_scale, KnownLength):
+        return "known_length"
+    return "ifov" if "ifov" in scene else "none"
+
+
+def _length_pixels(task: FrameTask) -> float:
+    if not isinstance(task.known_scale, KnownLength):
+        return 1.0
+    return float(np.hypot(*np.subtract(task.known_scale.end, task.known_scale.start)))
+
+
+def _factor_between(task: FrameTask, scene: Scene) -> tuple[str, str] | None:
+    """Air temperatures of a temperature factor: seen from inside, both recorded."""
+    recorded = "indoor_air" in scene and "outdoor_air" in scene
+    return ("indoor_air", "outdoor_air") if task.viewed_from == "inside" and recorded else None

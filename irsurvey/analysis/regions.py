@@ -1,0 +1,206 @@
+"""Screening of one frame: its reference area, and the regions that deviate from it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from irsurvey.analysis.correction import Corrected, air_path
+from irsurvey.anomalies import reference as references
+from irsurvey.anomalies import segment as segments
+from irsurvey.anomalies.noise import pixel_noise
+from irsurvey.anomalies.patch import Patch
+from irsurvey.anomalies.reference import Reference
+from irsurvey.constants import ZERO_CELSIUS
+from irsurvey.geometry.footprint import pixel_area
+from irsurvey.geometry.polygons import mask
+from irsurvey.geometry.rectify import pixel_areas
+from irsurvey.model import FrameTask, KnownLength, KnownRectangle
+from irsurvey.radiometry.band import band_table
+from irsurvey.radiometry.measurement import amplification, object_temperature
+
+_LEAST_DELTA = {"building": 1.0, "electrical": 2.0}
+"""Smallest ΔT [K] that counts when the survey states none, or five times the noise where that is more."""
+_NETD_AT = 30.0 + ZERO_CELSIUS
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Anomalous:
+    """One region: its pixels, sense, and whether saturated ones are among them."""
+
+    patch: Patch
+    sense: str
+    is_saturated: bool
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Screened:
+    """A screened frame.  `t` is the temperature map with saturated-hot pixels at their bound [K]."""
+
+    t: NDArray[np.float32]
+    delta: NDArray[np.float32] | None
+    noise: float
+    reference: Reference | None
+    reference_area: NDArray[np.bool_]
+    min_delta: float
+    detectable_delta: float
+    shading: float
+    pixel_area: NDArray[np.float64] | None  # [m²], (rows, columns) or (1, 1)
+    regions: tuple[Anomalous, ...]
+
+
+def screen(corrected: Corrected, task: FrameTask) -> Screened:
+    """Find the reference area and everything that deviates from it by more than counts."""
+    shape = (corrected.t.shape[0], corrected.t.shape[1])
+    t = _bounded(corrected, task)
+    open_, blocked = _inspectable(corrected, task)
+    noise = _noise(corrected, task, open_)
+    amplified = _noise_by_optics(corrected, task, noise)
+    area = _reference_area(corrected, task, open_ & ~blocked, noise)
+    reference = references.fit(corrected.t, area, noise)
+    min_delta = task.detection.min_delta or max(_LEAST_DELTA[task.kind], 5 * noise)
+    areas = _pixel_area(task, corrected, shape)
+    if reference is None:
+        limits = segments.thresholds(min_delta, noise)
+        return Screened(t, None, noise, None, area, min_delta, float(limits.seed), 0.0, areas, ())
+    delta = t - reference.plane(shape)
+    shading, allowance = segments.shading_allowance(delta, open_)
+    candidates = open_ & ~blocked
+    min_pixels: int | NDArray[np.float32] = task.detection.min_pixels
+    if task.detection.min_area and areas is not None:
+        min_pixels = np.broadcast_to((areas / task.detection.min_area).astype(np.float32), shape)
+    regions = []
+    for sense, sign in (("hot", 1), ("cold", -1)):
+        toward = np.maximum(sign * allowance, 0)  # shading that darkens corners excuses cold ones, never hot ones
+        limits = segments.thresholds(min_delta, amplified, toward)
+        certain = corrected.saturated_hot & ~blocked if sense == "hot" and corrected.saturated_hot.any() else None
+        for region in segments.segment(delta, candidates, sense, limits, min_pixels=min_pixels, certain=certain):
+            regions.append(Anomalous(region, sense, certain is not None and bool(region.of(certain).any())))
+    if task.components:
+        near = _near_components(task, shape)
+        regions = [region for region in regions if not region.patch.of(near).any()]
+    regions.sort(key=_rank(delta))
+    detectable = float(segments.thresholds(min_delta, noise).seed)
+    return Screened(t, delta, noise, reference, area, min_delta, detectable, shading, areas, tuple(regions))
+
+
+def nominal_noise(task: FrameTask, t: float) -> float:
+    """The camera's stated noise [K] at temperature t [K], scaled from 30 °C by the band radiance's slope; or NaN."""
+    if task.camera.noise is None:
+        return float("nan")
+    table = band_table(task.camera.band)
+    return float(task.camera.noise * table.slope(_NETD_AT) / table.slope(t))
+
+
+def stretch_of(corrected: Corrected, task: FrameTask, index: int) -> float:
+    """∂T/∂T_app of one optics at the frame's median: what noise is multiplied by.  NaN without solution there."""
+    values = corrected.scene.values()
+    emissivity, reflected = corrected.optics_names[index]
+    t = np.float64(corrected.pivot)
+    return float(amplification(t, values[emissivity], values[reflected], air_path(values), task.camera.band))
+
+
+def _rank(delta: NDArray[np.float32]) -> Callable[[Anomalous], tuple[bool, float, int]]:
+    """Sort key: saturated first, then |mean ΔT| × pixels, largest first; position decides between equals."""
+
+    def key(region: Anomalous) -> tuple[bool, float, int]:
+        weight = abs(float(np.sum(region.patch.of(delta))))
+        return (not region.is_saturated, -weight, region.patch.top * delta.shape[1] + region.patch.left)
+
+    return key
+
+
+def _bounded(corrected: Corrected, task: FrameTask) -> NDArray[np.float32]:
+    """The temperature map, saturated-hot pixels at the temperature of the range's upper end."""
+    if not corrected.saturated_hot.any() or task.camera.range is None:
+        return corrected.t
+    values = corrected.scene.values()
+    t = corrected.t.copy()
+    for index, (emissivity, reflected) in enumerate(corrected.optics_names):
+        bound = object_temperature(
+            np.float64(task.camera.range[1] + values["camera_offset"]),
+            values[emissivity],
+            values[reflected],
+            air_path(values),
+            task.camera.band,
+        )
+        t[corrected.saturated_hot & (corrected.optics == index)] = bound
+    return t
+
+
+def _inspectable(corrected: Corrected, task: FrameTask) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
+    """Pixels that are measured and inside what is inspected; and those no region may use.
+
+    Blocked are ignored surfaces, reflectors and surfaces of known temperature, and a band of two pixels around
+    them and around every border between different optics.
+    """
+    shape = (corrected.t.shape[0], corrected.t.shape[1])
+    open_ = ~np.isnan(corrected.t)
+    blocked = segments.edge_band(corrected.optics)
+    for surface in task.surfaces:
+        if surface.role != "inspect":
+            drawn = mask(surface.polygon, shape).view(np.uint8)
+            blocked |= cv2.dilate(drawn, np.ones((5, 5), np.uint8)).view(np.bool_)
+    if task.inspect:
+        blocked |= ~mask(task.inspect, shape)
+    return open_, blocked
+
+
+def _noise(corrected: Corrected, task: FrameTask, open_: NDArray[np.bool_]) -> float:
+    """Noise [K] in object temperature: the frame's own or the camera's stated one, whichever is more."""
+    values = corrected.scene.values()
+    stretch = stretch_of(corrected, task, 0)
+    steps = np.abs(np.diff(corrected.apparent))
+    resolution = float(np.nanmedian(steps)) * stretch if steps.size else 0.0
+    main = open_ & (corrected.optics == 0) if (corrected.optics == 0).any() else open_
+    seen = pixel_noise(corrected.t, main, resolution)
+    stated = nominal_noise(task, corrected.pivot + values["camera_offset"]) * stretch
+    return float(np.nanmax([seen, stated, 1e-4]))
+
+
+def _noise_by_optics(corrected: Corrected, task: FrameTask, noise: float) -> NDArray[np.float32] | float:
+    """Noise map [K]: amplified where the emissivity is low."""
+    if len(corrected.optics_names) == 1:
+        return noise
+    stretches = np.array([stretch_of(corrected, task, index) for index in range(len(corrected.optics_names))])
+    return np.asarray(noise * np.nan_to_num(stretches / stretches[0], nan=1e3), np.float32)[corrected.optics]
+
+
+def _reference_area(
+    corrected: Corrected, task: FrameTask, usable: NDArray[np.bool_], noise: float
+) -> NDArray[np.bool_]:
+    shape = (corrected.t.shape[0], corrected.t.shape[1])
+    if task.reference is not None:
+        drawn = mask(task.reference, shape) & ~np.isnan(corrected.t)
+        for surface in task.surfaces:
+            if surface.role == "ignore":
+                drawn &= ~mask(surface.polygon, shape)
+        return drawn
+    for component in task.components:
+        usable = usable & ~mask(component.polygon, shape)
+    return references.automatic(corrected.t, usable, noise)
+
+
+def _pixel_area(task: FrameTask, corrected: Corrected, shape: tuple[int, int]) -> NDArray[np.float64] | None:
+    """Area of each pixel [m²], or one for all (1, 1); None without a scale."""
+    values = corrected.scene.values()
+    if isinstance(task.known_scale, KnownRectangle):
+        return pixel_areas(shape, task.known_scale.corners, values["known_width"], values["known_height"])
+    if isinstance(task.known_scale, KnownLength):
+        pixels = np.hypot(*np.subtract(task.known_scale.end, task.known_scale.start))
+        return np.full((1, 1), (values["known_length"] / pixels) ** 2)
+    if "ifov" in values:
+        return np.full((1, 1), pixel_area(values["distance"], values["ifov"], values.get("view_angle", 0.0)))
+    return None
+
+
+def _near_components(task: FrameTask, shape: tuple[int, int]) -> NDArray[np.bool_]:
+    """Pixels of components and next to them: a region that reaches one is that component's warmth or its rim."""
+    near = np.zeros(shape, np.uint8)
+    for component in task.components:
+        near |= mask(component.polygon, shape).view(np.uint8)
+    return cv2.dilate(near, np.ones((3, 3), np.uint8)).view(np.bool_)

@@ -1,0 +1,181 @@
+"""Survey file in, output folder out: what `irsurvey run` and `irsurvey check` wrap."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+from irsurvey import __version__, pipeline
+from irsurvey.analysis.conditions import reviewed
+from irsurvey.assess.criteria import criteria
+from irsurvey.batch import execute
+from irsurvey.errors import Fault, FrameError, OutputError, SurveyError
+from irsurvey.files import write_text
+from irsurvey.heat.convection import CONVECTION
+from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
+from irsurvey.radiometry.emissivity import materials
+from irsurvey.readers import read
+from irsurvey.report import WRITERS, frame_files
+from irsurvey.survey.load import Known, load, polygon_faults
+
+MARKER = "made-by-irsurvey.txt"
+"""File that says a folder is an output of this program, so that the next run may write over it."""
+_MARKER_TEXT = "irsurvey wrote this folder; its next run writes over it. Keep nothing of your own in it.\n"
+_ALWAYS = ("json", "csv")
+
+
+@dataclass(frozen=True, slots=True)
+class Job:
+    """One frame to read, analyse and write; picklable."""
+
+    task: FrameTask
+    out: str
+    maps: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Checked:
+    """What `check` found beside faults: what is assumed, and frames that cannot be read."""
+
+    survey: Survey
+    notices: tuple[str, ...]
+    unreadable: tuple[tuple[str, str], ...]  # frame id, reason
+
+
+def run(
+    survey_path: Path,
+    out: Path | None = None,
+    *,
+    documents: tuple[str, ...] = ("html",),
+    jobs: int = 1,
+    maps: tuple[str, ...] = (),
+    on_frame: Callable[[FrameReport, int], None] | None = None,
+) -> Report:
+    """Process a whole survey and write its report.
+
+    `out` defaults to `report` beside the survey; `documents` names the documents to make beside report.json and
+    findings.csv; `maps` may hold "heat-flux"; `on_frame` is told each finished frame and the number of all.
+    Raises SurveyError, nothing run, where the survey is wrong; OutputError where `out` belongs to something else.
+    """
+    survey = load_survey(survey_path)
+    faults, _ = _judge_pixels(survey)
+    if faults:
+        raise SurveyError(*faults)
+    out = out or Path(survey.folder) / "report"
+    _claim_folder(out, {task.id for task in survey.tasks})
+    frames = []
+    for report in execute(analyse_file, [Job(task, str(out), maps) for task in _resolved(survey)], jobs):
+        frames.append(report)
+        if on_frame:
+            on_frame(report, len(survey.tasks))
+    report = _concluded(survey, tuple(frames))
+    for document in (*_ALWAYS, *documents):
+        WRITERS[document](report, survey.tasks, out)
+    return report
+
+
+def check(survey_path: Path) -> Checked:
+    """Read everything, run nothing.  Raises SurveyError with all faults of the survey file."""
+    survey = load_survey(survey_path)
+    faults, unreadable = _judge_pixels(survey)
+    if faults:
+        raise SurveyError(*faults)
+    return Checked(survey, survey.notices, unreadable)
+
+
+def load_survey(survey_path: Path) -> Survey:
+    """The survey file, held against the materials, criteria and convection correlations there are."""
+    known = Known(
+        criteria=tuple(criteria()),
+        convections=tuple(CONVECTION),
+        materials={name: (material.emissivity, material.u) for name, material in materials().items()},
+    )
+    return load(survey_path, known=known)
+
+
+def analyse_file(job: Job) -> FrameReport:
+    """Read one frame, analyse it and write its files; whatever is wrong with it becomes its reason to fail."""
+    try:
+        frame = read(Path(job.task.path), job.task.read)
+        report, maps = pipeline.analyse(frame, job.task, maps=job.maps)
+        frame_files.write(report, maps, job.task, Path(job.out))
+    except FrameError as error:
+        return pipeline.failed(job.task, str(error))
+    except OutputError:
+        raise
+    except Exception as error:  # one frame that trips over a fault of ours must not cost the others their report
+        return pipeline.failed(job.task, f"unexpected {type(error).__name__}: {error}; please report this as a bug")
+    return report
+
+
+def _resolved(survey: Survey) -> list[FrameTask]:
+    """Tasks with the reflected temperatures that other frames measure for them put into their scenes."""
+    by_id = {task.id: task for task in survey.tasks}
+    measured: dict[str, Quantity] = {}
+    for source in {task.reflected_from for task in survey.tasks if task.reflected_from}:
+        task = by_id[source]
+        try:
+            measured[source] = pipeline.reflected_by_reflector(read(Path(task.path), task.read), task)
+        except FrameError:
+            continue  # the frames it serves say that no reflector was read
+
+    def served(task: FrameTask) -> FrameTask:
+        quantity = measured.get(task.reflected_from or "")
+        return replace(task, scene=task.scene.with_(quantity)) if quantity else task
+
+    return [served(task) for task in survey.tasks]
+
+
+def _judge_pixels(survey: Survey) -> tuple[list[Fault], tuple[tuple[str, str], ...]]:
+    """Faults that only the pixels show (a polygon outside its frame), and frames that cannot be read."""
+    faults: list[Fault] = []
+    unreadable = []
+    for task in survey.tasks:
+        try:
+            shape = read(Path(task.path), task.read).stored.shape
+        except FrameError as error:
+            unreadable.append((task.id, str(error)))
+            continue
+        faults += polygon_faults(task, (shape[0], shape[1]))
+    return faults, tuple(unreadable)
+
+
+def _claim_folder(out: Path, ids: set[str]) -> None:
+    """Take an empty or own folder as output; frames of an earlier run that are no longer in the survey go."""
+    if out.exists() and not out.is_dir():
+        raise OutputError(Fault(out.name, "a folder to write to", "a file", "choose another -o"))
+    if out.is_dir() and any(out.iterdir()) and not (out / MARKER).exists():
+        fault = Fault(out.name, "an empty folder, or one this program wrote", "a folder with other files in it")
+        raise OutputError(replace(fault, remedy="choose another -o"))
+    write_text(out / MARKER, _MARKER_TEXT)
+    for folder in (out / "frames").glob("*"):
+        if folder.name not in ids:
+            for name in frame_files.NAMES:
+                (folder / name).unlink(missing_ok=True)
+            if not any(folder.iterdir()):
+                folder.rmdir()
+
+
+def _concluded(survey: Survey, frames: tuple[FrameReport, ...]) -> Report:
+    """The statements about the survey as a whole."""
+    return Report(
+        format=1,
+        tool={"name": "irsurvey", "version": __version__},
+        survey=json.loads(survey.as_read),
+        conditions_review=tuple(reviewed(survey.tasks)),
+        assets=tuple(_assets(survey, frames)),
+        frames=frames,
+        cautions=(),
+    )
+
+
+def _assets(survey: Survey, frames: tuple[FrameReport, ...]) -> Iterator[AssetReport]:
+    """Every asset of the round, inspected where an analysed frame shows it."""
+    for asset in survey.assets:
+        shown = tuple(frame.id for frame in frames if frame.asset == asset.id and frame.status == "analysed")
+        reason = asset.not_inspected or (None if shown else "no analysed frame shows it")
+        yield AssetReport(
+            asset.id, asset.description, asset.location, asset.criticality, reason is None, reason, shown
+        )

@@ -1,0 +1,87 @@
+"""First-order propagation against the GUM's own example, analytic laws and its promises."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from irsurvey.model import Quantity, Scene
+from irsurvey.uncertainty import propagate
+
+
+def test_end_gauge_calibration_gives_the_published_first_order_uncertainty():
+    # JCGM 100:2008, H.1.6: l = ls + d − ls (δα·θ + αs·δθ); contributions 25, 9.7, 2.9, 16.6 nm; u_c(l) = 32 nm
+    # (first order, printed to 1 nm; table H.1 prints the contributions to 0.1 nm).
+    length = 50.000623e6  # nm
+    scene = Scene(
+        (
+            Quantity("standard", length, 25),
+            Quantity("difference", 215, 9.7),
+            Quantity("expansion", 11.5e-6, 1.2e-6),
+            Quantity("temperature", -0.1, 0.41),
+            Quantity("expansion difference", 0.0, 0.58e-6),
+            Quantity("temperature difference", 0.0, 0.029),
+        )
+    )
+
+    def model(v):
+        thermal = v["expansion difference"] * v["temperature"] + v["expansion"] * v["temperature difference"]
+        return v["standard"] + v["difference"] - v["standard"] * thermal
+
+    budget = propagate(model, scene)
+    shares = dict(zip(budget.terms, np.abs(budget.half_swings[:, 0]), strict=True))
+    assert shares["standard"] == pytest.approx(25, abs=0.05)
+    assert shares["difference"] == pytest.approx(9.7, abs=0.05)
+    assert shares["expansion difference"] == pytest.approx(2.9, abs=0.05)
+    assert shares["temperature difference"] == pytest.approx(16.6, abs=0.1)  # H.1 rounds its u(δθ) to 0.029 first
+    assert shares["expansion"] == 0
+    assert shares["temperature"] == 0
+    assert budget.u[0] == pytest.approx(32, abs=0.5)
+    assert budget.values[0] == pytest.approx(50.000838e6, abs=0.5)
+
+
+def test_what_two_results_share_cancels_in_their_difference():
+    scene = Scene((Quantity("offset", 0.0, 2.0), Quantity("a", 17.0, 0.03), Quantity("b", 14.0, 0.04)))
+    budget = propagate(lambda v: np.hstack([v["a"] + v["offset"], v["b"] + v["offset"], v["a"] - v["b"]]), scene)
+    assert budget.u == pytest.approx([np.hypot(2, 0.03), np.hypot(2, 0.04), 0.05], rel=1e-12)
+
+
+def test_a_step_out_of_the_domain_is_taken_one_sided():
+    scene = Scene((Quantity("emissivity", 0.98, 0.05, low=0.0, high=1.0),))
+    budget = propagate(lambda v: 3 * v["emissivity"], scene)
+    assert budget.u[0] == pytest.approx(0.15, rel=1e-12)  # a linear law: cutting the step may not change its slope
+
+
+def test_a_side_without_solution_leaves_the_other_to_count():
+    scene = Scene((Quantity("x", 1.0, 0.5),))
+    budget = propagate(lambda v: np.where(v["x"] < 1, np.nan, 2 * v["x"]), scene)
+    assert budget.u[0] == pytest.approx(1.0, rel=1e-12)
+
+
+def test_no_solution_at_all_is_no_number():
+    scene = Scene((Quantity("x", 1.0, 0.5),))
+    budget = propagate(lambda v: v["x"] * np.nan, scene)
+    assert budget.estimates()[0] is None
+
+
+def test_a_result_whose_uncertainty_does_not_exist_says_so():
+    scene = Scene((Quantity("x", 1.0, 0.5),))
+    budget = propagate(lambda v: np.where(v["x"] == 1, 2.0, np.nan), scene)
+    estimate = budget.estimates()[0]
+    assert estimate is not None
+    assert estimate.value == 2.0
+    assert estimate.u is None
+
+
+@given(
+    st.lists(st.tuples(st.floats(-5, 5), st.floats(0.01, 3)), min_size=1, max_size=6),
+    st.lists(st.floats(-4, 4), min_size=6, max_size=6),
+)
+def test_linear_laws_follow_the_law_of_propagation_exactly(inputs, slopes):
+    # JCGM 100:2008, eq. 10: u² = Σ (c_i u_i)²; rounding of doubles only.
+    scene = Scene(tuple(Quantity(str(i), value, u) for i, (value, u) in enumerate(inputs)))
+    budget = propagate(lambda v: sum(slopes[i] * v[str(i)] for i in range(len(inputs))), scene)
+    expected = np.sqrt(sum((slopes[i] * u) ** 2 for i, (_, u) in enumerate(inputs)))
+    assert budget.u[0] == pytest.approx(expected, abs=1e-9)
