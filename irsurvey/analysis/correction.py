@@ -32,7 +32,7 @@ class Corrected:
     """One frame in object temperature, and what it was made from.
 
     `t` (rows, columns) [K], NaN where saturated, without data or without solution; `apparent` [K] by stored
-    code, lowest…highest; `optics` (rows, columns) indices into `optics_names`.
+    code, lowest…highest, cut at the camera's range; `optics` (rows, columns) indices into `optics_names`.
     """
 
     codes: Codes
@@ -81,13 +81,7 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
     t_apparent = look_up(codes, apparent)
     pivot = float(np.nanmedian(t_apparent[::4, ::4])) if np.isfinite(t_apparent[::4, ::4]).any() else float("nan")
     if np.isnan(pivot):
-        fault = Fault(
-            task.file,
-            "stored numbers that mean temperatures",
-            f"numbers from {frame.stored.min()} to {frame.stored.max()}, none of which does",
-            "check quantity, unit, scale and offset under camera.signal",
-        )
-        raise FrameError(fault)
+        raise _meaningless(frame, task)
     scene = _with_camera(task, pivot)
     scene = _with_reflected(task, scene, t_apparent)
     scene = _with_offset(task, scene, t_apparent)
@@ -117,12 +111,13 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
         rows, columns = _box(optics == index)
         part = optics[rows, columns] == index
         t[rows, columns][part] = measurable[codes.codes[rows, columns][part].astype(np.intp) - codes.lowest]
-    unmeasurable = np.isnan(t)
-    saturated = hot | cold
+    unmeasurable, saturated = np.isnan(t), hot | cold
+    if (unmeasurable & ~saturated).all():
+        raise _meaningless(frame, task)
     unsolved = int(np.count_nonzero(unmeasurable & ~saturated & has_data))
     return Corrected(
         codes,
-        apparent,
+        np.clip(apparent, low, high),  # beyond the range a number says no more than that it is beyond
         optics,
         optics_names,
         scene,
@@ -166,6 +161,12 @@ def reflected_by(surface: Surface, task: FrameTask, scene: Scene, t_apparent: ND
         raise FrameError(fault)
     spread = 1.4826 * float(np.nanmedian(np.abs(t - centre)))
     return Quantity("reflected", centre, float(np.hypot(scene["camera_offset"].u, spread)), "measured in frame", low=0)
+
+
+def _meaningless(frame: Frame, task: FrameTask) -> FrameError:
+    numbers = f"numbers from {np.nanmin(frame.stored)} to {np.nanmax(frame.stored)}, none of which does"
+    remedy = "check quantity, unit, scale and offset under camera.signal, and emissivity and reflected temperature"
+    return FrameError(Fault(task.file, "stored numbers that give object temperatures", numbers, remedy))
 
 
 def _with_camera(task: FrameTask, pivot: float) -> Scene:

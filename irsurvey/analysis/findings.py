@@ -180,15 +180,15 @@ def _lowest_emissivity(measured: Measured, planned: Planned) -> float:
 
 def _shape(measured: Measured, screened: Screened) -> Shape:
     assert screened.delta is not None  # a region was found against it
-    centre = (round(measured.region.centre[0], 1), round(measured.region.centre[1], 1))
+    centre = (round(measured.centre[0], 1), round(measured.centre[1], 1))
     return Shape(
-        elongation(measured.patch), edge_sharpness(screened.delta, measured.patch), centre, measured.region.spot_at
+        elongation(measured.patch), edge_sharpness(screened.delta, measured.patch), centre, measured.spot.centre
     )
 
 
 def _key(frame: str, measured: Measured) -> str:
     """Where the finding is, coarsely: `F01:cold:120-88`."""
-    x, y = (int(round(value / _KEY_GRID) * _KEY_GRID) for value in measured.region.centre)
+    x, y = (int(round(value / _KEY_GRID) * _KEY_GRID) for value in measured.centre)
     return f"{frame}:{measured.sense}:{x}-{y}"
 
 

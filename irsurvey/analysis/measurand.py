@@ -50,16 +50,17 @@ class Area:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Region:
-    """An anomaly or component: a spot, the whole, their places [px], and its extent.
+    """An anomaly or component: its measurement spot, the whole of it, and its extent.
 
-    `extent` is its number of pixels or, with a known rectangle, the share of that rectangle it covers.
+    The levers [px] are what the slopes of the reference plane are multiplied by at their places; `extent` is the
+    number of pixels or, with a known rectangle, the share of that rectangle it covers.
     """
 
     name: str
     spot: Area
     whole: Area
-    spot_at: tuple[float, float]
-    centre: tuple[float, float]
+    spot_lever: tuple[float, float]
+    whole_lever: tuple[float, float]
     extent: float
 
 
@@ -96,7 +97,6 @@ class Plan:
     scale: str  # how pixels become m²: "ifov" | "known_length" | "known_rectangle" | "none"
     length_pixels: float = 1.0  # of the known length
     reference: Area | None = None
-    reference_at: tuple[float, float] = (0.0, 0.0)
     regions: tuple[Region, ...] = ()
     components: tuple[Region, ...] = ()
     twins: Mapping[str, Twin] = field(default_factory=dict)
@@ -147,7 +147,8 @@ def measure(plan: Plan, values: Columns) -> Numbers:
 def stacked(plan: Plan, values: Columns) -> NDArray[np.float64]:
     """The results of `measure` as (n, m), in its order: the model that uncertainty is propagated through."""
     rows = next(iter(values.values())).shape[0]
-    return np.stack([np.broadcast_to(number, (rows,)) for number in measure(plan, values).values()], axis=1)
+    numbers = [np.broadcast_to(number, (rows,)) for number in measure(plan, values).values()]
+    return np.stack(numbers, axis=1) if numbers else np.empty((rows, 0))
 
 
 def flux_of(t: NDArray[np.float64], optics: Optics, around: Surroundings, values: Columns) -> NDArray[np.float64]:
@@ -216,7 +217,7 @@ def _anomaly(
 ) -> Numbers:
     extreme = temperatures.functionals(region.spot)[:, 0]
     mean = temperatures.functionals(region.whole)[:, 0]
-    at_spot, at_centre = (_reference_at(plan, values, reference, place) for place in (region.spot_at, region.centre))
+    at_spot, at_centre = (_reference_at(values, reference, lever) for lever in (region.spot_lever, region.whole_lever))
     flux = _mean_flux(region.whole, plan, values, temperatures)
     optics = region.whole.parts[0].optics
     reference_flux = flux_of(at_centre[:, None], optics, plan.surroundings, values)[:, 0]
@@ -260,12 +261,11 @@ def _component(
 
 
 def _reference_at(
-    plan: Plan, values: Columns, reference: NDArray[np.float64], place: tuple[float, float]
+    values: Columns, reference: NDArray[np.float64], lever: tuple[float, float]
 ) -> NDArray[np.float64]:
     """Reference temperature (n,) at a place: level and slopes, the slopes with the noise of their own."""
-    dx, dy = place[0] - plan.reference_at[0], place[1] - plan.reference_at[1]
     slope_x, slope_y = reference[:, 1] + values["noise:slope x"][:, 0], reference[:, 2] + values["noise:slope y"][:, 0]
-    return np.asarray(reference[:, 0] + slope_x * dx + slope_y * dy)
+    return np.asarray(reference[:, 0] + slope_x * lever[0] + slope_y * lever[1])
 
 
 def _mean_flux(member: Area, plan: Plan, values: Columns, temperatures: _Temperatures) -> NDArray[np.float64]:

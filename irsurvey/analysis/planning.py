@@ -26,6 +26,7 @@ class Measured:
     patch: Patch
     sense: str
     spot: Spot
+    centre: tuple[float, float]
     t_spot: float  # nominal mean over the spot [K]
     region: Region
 
@@ -80,7 +81,6 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
         reference=area("noise:reference", corrected, reference.rows, reference.columns, reference.weights)
         if reference
         else None,
-        reference_at=reference.centre if reference else (0.0, 0.0),
         regions=tuple(measured.region for measured in anomalies),
         components=tuple(measured.region for measured in components.values()),
         ambient="ambient" if "ambient" in scene else "air",
@@ -113,15 +113,23 @@ def _measured(
     rows, columns = patch.positions()
     measurable = ~np.isnan(screened.t[rows, columns])
     rows, columns = rows[measurable], columns[measurable]
+    centre = (float(columns.mean()), float(rows.mean()))
     region = Region(
         name,
         area(f"noise:{name} spot", corrected, spot.rows, spot.columns),
         area(f"noise:{name} whole", corrected, rows, columns),
-        spot.centre,
-        (float(columns.mean()), float(rows.mean())),
+        _lever(spot.centre, screened),
+        _lever(centre, screened),
         _extent(patch, task, screened.t.shape),
     )
-    return Measured(patch, sense, spot, float(screened.t[spot.rows, spot.columns].mean()), region)
+    return Measured(patch, sense, spot, centre, float(screened.t[spot.rows, spot.columns].mean()), region)
+
+
+def _lever(place: tuple[float, float], screened: Screened) -> tuple[float, float]:
+    if screened.reference is None:
+        return 0.0, 0.0
+    dx, dy = screened.reference.lever(*place)
+    return float(dx), float(dy)
 
 
 def _extent(patch: Patch, task: FrameTask, shape: tuple[int, ...]) -> float:

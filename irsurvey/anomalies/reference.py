@@ -23,6 +23,9 @@ _TUKEY = 4.685
 class Reference:
     """A fitted reference area: level + slope_x·(x − x0) + slope_y·(y − y0) [K], slopes [K px⁻¹].
 
+    The plane is continued over the frame, but no further than the area is wide and high beyond its `box`
+    (left, top, right, bottom); from there on it stays level: a strip of wall says nothing of the far end of a house.
+
     `rows`, `columns` are the pixels it was computed from and `weights` (3, n) the linear functionals that
     give level and slopes from their temperatures, fixed by this fit: uncertainty moves the temperatures.
     `u_level`, `u_slope` are standard errors from block means [K, K px⁻¹].
@@ -31,6 +34,7 @@ class Reference:
     level: float
     slope: tuple[float, float]
     centre: tuple[float, float]
+    box: tuple[float, float, float, float]
     spread: float
     pixels: int
     gradient: float
@@ -40,9 +44,19 @@ class Reference:
     columns: NDArray[np.intp]
     weights: NDArray[np.float64]
 
+    def lever(self, x: Any, y: Any) -> tuple[Any, Any]:
+        """What the slopes are multiplied by at pixel position(s) x, y [px]."""
+        left, top, right, bottom = self.box
+        width, height = right - left, bottom - top
+        return (
+            np.clip(x, left - width, right + width) - self.centre[0],
+            np.clip(y, top - height, bottom + height) - self.centre[1],
+        )
+
     def at(self, x: Any, y: Any) -> Any:
         """Reference temperature [K] at pixel position(s) x, y."""
-        return self.level + self.slope[0] * (x - self.centre[0]) + self.slope[1] * (y - self.centre[1])
+        dx, dy = self.lever(x, y)
+        return self.level + self.slope[0] * dx + self.slope[1] * dy
 
     def plane(self, shape: tuple[int, int]) -> NDArray[np.float32]:
         """Reference temperature [K] at every pixel, broadcastable to `shape`."""
@@ -66,6 +80,7 @@ def fit(t: NDArray[np.float32], area: NDArray[np.bool_], noise: float) -> Refere
     rows, columns = rows[::stride], columns[::stride]
     values = t[rows, columns].astype(np.float64)
     centre = (float(np.median(columns)), float(np.median(rows)))
+    box = (float(columns.min()), float(rows.min()), float(columns.max()), float(rows.max()))
     design = np.stack([np.ones(values.size), columns - centre[0], rows - centre[1]], axis=1)
     coefficients, functional, residual = _robust_plane(design, values)
     blocks, u_coefficients = _block_errors(rows, columns, residual, design)
@@ -78,6 +93,7 @@ def fit(t: NDArray[np.float32], area: NDArray[np.bool_], noise: float) -> Refere
             float(coefficients[0]),
             (float(coefficients[1]), float(coefficients[2])),
             centre,
+            box,
             robust_spread(residual),
             pixels,
             gradient,
@@ -99,6 +115,7 @@ def fit(t: NDArray[np.float32], area: NDArray[np.bool_], noise: float) -> Refere
         median,
         (0.0, 0.0),
         centre,
+        box,
         spread,
         pixels,
         0.0,
