@@ -100,7 +100,7 @@ def analyse_file(job: Job) -> FrameReport:
     try:
         frame = read(Path(job.task.path), job.task.read)
         report, maps = pipeline.analyse(frame, job.task, maps=job.maps)
-        frame_files.write(report, maps, job.task, Path(job.out))
+        frame_files.write(report, maps, Path(job.out))
     except FrameError as error:
         return pipeline.failed(job.task, str(error))
     except OutputError:

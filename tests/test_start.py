@@ -215,8 +215,10 @@ def test_what_nobody_can_tell_is_a_fault_until_it_is_filled_in(tmp_path: Path) -
     path = write_start(tmp_path).path
     with pytest.raises(SurveyError) as caught:
         load_survey(path)
-    assert {name for name in SITE if name in str(caught.value)} == set(SITE)
-    completed(path, **SITE)
+    assert {name for name in SITE if name in str(caught.value)} == {"air_c", "reflected_c", "distance_m"}
+    completed(path, **{key: value for key, value in SITE.items() if key != "viewed_from"})
+    assert any("viewed_from" in notice for notice in check(path).notices)  # has a default, said so
+    completed(path, viewed_from=SITE["viewed_from"])
     assert check(path).unreadable == ()
 
 

@@ -199,8 +199,12 @@ def _pixel_area(task: FrameTask, corrected: Corrected, shape: tuple[int, int]) -
 
 
 def _near_components(task: FrameTask, shape: tuple[int, int]) -> NDArray[np.bool_]:
-    """Pixels of components and next to them: a region that reaches one is that component's warmth or its rim."""
+    """Pixels of components and next to them: a region that reaches one is that component's warmth or its rim.
+
+    Next to means across the band around borders of optics, where no region can be.
+    """
     near = np.zeros(shape, np.uint8)
     for component in task.components:
         near |= mask(component.polygon, shape).view(np.uint8)
-    return cv2.dilate(near, np.ones((3, 3), np.uint8)).view(np.bool_)
+    reach = 2 * (segments.EDGE_BAND + 1) + 1
+    return cv2.dilate(near, np.ones((reach, reach), np.uint8)).view(np.bool_)

@@ -1,1 +1,11 @@
+"""From pixels to metres, and polygons on the pixel grid."""
 
+from __future__ import annotations
+
+from typing import Any, TypeAlias
+
+import numpy as np
+from numpy.typing import NDArray
+
+Numbers: TypeAlias = "float | NDArray[np.floating[Any]]"
+"""A number or an array of numbers; functions of several broadcast."""

@@ -1,1 +1,15 @@
+"""Reports for people and machines: each document has a writer; json and csv are always written."""
 
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from irsurvey.model import FrameTask, Report
+from irsurvey.report import findings_csv, html, json
+
+Writer = Callable[[Report, tuple[FrameTask, ...], Path], Path]
+"""Writes one document into the output folder, whole or not at all, and returns its path."""
+
+WRITERS: dict[str, Writer] = {"json": json.write, "csv": findings_csv.write, "html": html.write}
+"""Document → its writer."""

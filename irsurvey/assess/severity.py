@@ -1,0 +1,136 @@
+"""One number, one criterion, one assessment: class, urgency, wording, and what keeps it from clearing anything."""
+
+from __future__ import annotations
+
+from collections.abc import Collection, Iterable, Mapping, Sequence
+from dataclasses import replace
+from math import isnan
+from typing import Final, NamedTuple
+
+from irsurvey.assess.conformity import GUARD, accepted, class_probabilities
+from irsurvey.assess.criteria import Criterion, class_of
+from irsurvey.model.quantities import Estimate
+from irsurvey.model.report import Assessment
+
+SATURATED: Final = "saturated"
+SIZE_LIMITED: Final = "size-limited"
+REFLECTIVE: Final = "too reflective for a claim"
+NO_SOLUTION: Final = "no physical solution"
+LOW_LOAD: Final = "low load"
+LOAD_UNKNOWN: Final = "load unknown"
+CONDITIONS: Final = "conditions not valid"
+AUTOMATIC_REFERENCE: Final = "automatic reference"
+
+NOT_CLEARED: Final = "cannot be cleared"
+NO_CRITERION: Final = "no criterion for this method"
+
+BLOCKERS: Final[Mapping[str, str]] = {
+    SATURATED: "look again with a temperature range that holds it",
+    SIZE_LIMITED: "look again from closer or with a longer lens, so that a whole measurement spot lies on it",
+    REFLECTIVE: "look again with matt tape or paint on it (on electrical parts by qualified persons, part dead)",
+    NO_SOLUTION: "look again after checking emissivity and reflected temperature, best with matt tape on it",
+    LOW_LOAD: "look again at load, 40 % of its rating or more",
+    LOAD_UNKNOWN: "look again with its load measured and its rating noted; a mild reading proves nothing",
+    CONDITIONS: "look again under conditions that allow the claim",
+    AUTOMATIC_REFERENCE: "confirm the reference area and run again",
+}
+"""Flags that never clear anything and may always raise it, and how to look again."""
+
+LEAST_EMISSIVITY: Final = 0.6
+"""Below it a surface shows its surroundings rather than itself: no class."""
+
+
+class Verdict(NamedTuple):
+    """All assessments of one component or finding, the urgency that governs, and whether it is cleared."""
+
+    assessments: tuple[Assessment, ...]
+    urgency: int | None
+    cleared: bool
+    flags: tuple[str, ...]
+
+
+def blockers(flags: Iterable[str], emissivity: float) -> tuple[str, ...]:
+    """What keeps a surface with these flags and this emissivity from being cleared, without repeats."""
+    reflective = () if emissivity >= LEAST_EMISSIVITY else (REFLECTIVE,)  # NaN is reflective too
+    return tuple(dict.fromkeys([*(flag for flag in flags if flag in BLOCKERS), *reflective]))
+
+
+def assess(criterion: Criterion, estimate: Estimate | None, words: str, blocked: Collection[str]) -> Assessment:
+    """One criterion applied to one number, in the unit the criterion's quantity ends in.
+
+    `words` say what the number is ("above ambient air").  No blocker changes the urgency: a bound
+    (saturated, size-limited) is classed by its value and may be worse; a reflective surface keeps the
+    urgency of its number but gets no class.
+    """
+    source = f"{criterion.source}, {criterion.edition} [{criterion.mark}]"
+    blank = Assessment(criterion.name, None, None, "", {}, source)
+    kind = None if estimate is None else class_of(estimate.value, criterion)
+    if estimate is None or kind is None:
+        return replace(blank, statement=f"No value {words}: it could not be measured here.")
+    bound = bool({SATURATED, SIZE_LIMITED} & set(blocked))
+    sign = ("≥ " if criterion.worse >= 0 else "≤ ") if bound else ""
+    measured = f"{sign}{_shown(estimate, criterion)} {words}"
+    if REFLECTIVE in blocked:
+        statement = f"{measured}: the surface is {REFLECTIVE}, no class is given."
+        return replace(blank, urgency=kind.urgency, statement=statement)
+    probabilities = {} if bound else _probabilities(estimate, criterion)
+    return Assessment(
+        criterion=criterion.name,
+        class_=kind.name,
+        urgency=kind.urgency,
+        statement=f"{measured}: {kind.statement}.{_doubt(estimate, criterion, probabilities)}",
+        probabilities=probabilities,
+        source=source,
+    )
+
+
+def clears(criterion: Criterion, estimate: Estimate | None) -> bool:
+    """Whether this number by itself would clear: guarded acceptance where action begins."""
+    if estimate is None or estimate.u is None:
+        return False
+    return bool(accepted(estimate.value, estimate.u, criterion))
+
+
+def governed(
+    assessments: Sequence[Assessment], candidates: Collection[str], remark: str = ""
+) -> tuple[tuple[Assessment, ...], int | None]:
+    """Mark the most urgent assessment among the criteria named `candidates` as the governing one.
+
+    Returns the assessments, the governing one (or, without any urgency, the first) with `remark` added,
+    and its urgency.
+    """
+    among = [one for one in assessments if one.criterion in candidates and one.urgency is not None]
+    governing = max(among, key=lambda one: one.urgency or 0, default=None)
+    told = governing or next(iter(assessments), None)
+    marked = tuple(
+        replace(one, governs=one is governing, statement=f"{one.statement} {remark}".strip()) if one is told else one
+        for one in assessments
+    )
+    return marked, None if governing is None else governing.urgency
+
+
+def remedy(blocked: Iterable[str]) -> str:
+    """One sentence that says what is not cleared and how to look again; empty where nothing blocks."""
+    told = "; ".join(f"{flag}, {BLOCKERS[flag]}" for flag in blocked)
+    return f"It {NOT_CLEARED}: {told}." if told else ""
+
+
+def _probabilities(estimate: Estimate, criterion: Criterion) -> dict[str, float]:
+    u = float("nan") if estimate.u is None else estimate.u
+    by_class = class_probabilities(estimate.value, u, criterion)
+    return {name: float(p) for name, p in by_class.items() if not isnan(p)}
+
+
+def _doubt(estimate: Estimate, criterion: Criterion, probabilities: Mapping[str, float]) -> str:
+    """The class probabilities, where a class edge lies within ±U of the value."""
+    reach = GUARD * (estimate.u or 0.0)
+    if not probabilities or all(abs(edge - estimate.value) > reach for edge in criterion.edges):
+        return ""
+    told = ", ".join(f"{name} {p:.0%}" for name, p in probabilities.items() if p >= 0.005)
+    return f" An edge between classes lies within its uncertainty: {told}."
+
+
+def _shown(estimate: Estimate, criterion: Criterion) -> str:
+    unit = " K" if criterion.quantity.endswith("_k") else " °C" if criterion.quantity.endswith("_c") else ""
+    spread = "" if estimate.u is None else f" ± {GUARD * estimate.u:.2f}{unit} (k = 2)"
+    return f"{estimate.value:.2f}{unit}{spread}"

@@ -1,0 +1,251 @@
+"""The command line: each command parses, calls once, prints; errors end in one place.
+
+Before a command runs only click and the standard library are imported, so that help is instant.
+"""
+
+from __future__ import annotations
+
+import os
+import sys
+from collections.abc import Callable, Iterable, Iterator, Sequence
+from contextlib import contextmanager
+from math import isfinite
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from irsurvey import __version__
+from irsurvey.errors import Fault, IrsurveyError, UsageError
+
+if TYPE_CHECKING:
+    from irsurvey.assess.criteria import SeverityClass
+    from irsurvey.model import ComponentReport, Finding, FrameReport, Report
+
+ALL_DONE, SOME_FAILED, NOTHING_RUN, INTERRUPTED = 0, 1, 2, 130
+
+
+class Commands(click.Group):
+    """The commands, ended in one place: one line per error on standard error, never a traceback."""
+
+    def main(self, *args: Any, **extra: Any) -> Any:  # click's own signature is as loose
+        """Run a command and leave with its exit code."""
+        try:
+            code = super().main(*args, **extra | {"standalone_mode": False})
+        except IrsurveyError as error:
+            code = _complain(error.exit_code, *map(str, error.faults))
+        except click.exceptions.NoArgsIsHelpError as error:
+            click.echo(error.ctx.get_help(), err=True)
+            code = NOTHING_RUN
+        except click.ClickException as error:
+            context = getattr(error, "ctx", None)
+            help_at = f"; see {context.command_path} --help" if context else ""
+            code = _complain(NOTHING_RUN, error.format_message().rstrip(".") + help_at)
+        except click.Abort:
+            code = _complain(INTERRUPTED, "stopped: every file written so far is whole, and the next run goes on")
+        except Exception as error:  # the last resort: whatever it is, a user sees one line
+            if os.environ.get("IRSURVEY_DEBUG"):
+                raise
+            where = getattr(error, "filename", None) or "irsurvey"
+            what = getattr(error, "strerror", None) or f"{type(error).__name__}: {error}"
+            code = _complain(NOTHING_RUN, f"{where}: {what}; IRSURVEY_DEBUG=1 shows where it happened")
+        sys.exit(code or ALL_DONE)
+
+
+@click.group("irsurvey", cls=Commands, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(__version__, prog_name="irsurvey")
+def main() -> None:
+    """From radiometric infrared frames to a defect report.
+
+    Begin with `irsurvey start FOLDER`, fill in what it marks, then `irsurvey check` and `irsurvey run`.
+    Exit codes: 0 all done; 1 done, but frames or rows failed; 2 the command or a file is wrong, nothing was run.
+    """
+
+
+@main.command()
+@click.argument("folder", type=Path)
+@click.option("--known", multiple=True, metavar="X,Y=T", help="A pixel and the temperature seen there, °C; give two.")
+def start(folder: Path, known: tuple[str, ...]) -> int:
+    """Look at the frames in FOLDER and write a commented survey.toml beside them.
+
+    Every guess is marked as a guess.  Two points such as --known "240,320=21.3" tell scale, unit and byte
+    order of the stored numbers: x from the left, y from the top, in the first frame or, as in
+    --known "f2.tif:240,320=21.3", in a named one.
+    """
+    from irsurvey.start import write_start
+
+    started = write_start(folder, known)
+    for notice in started.notices:
+        click.echo(notice)
+    click.echo(f"{started.path}: {started.frames} frames; fill in the lines marked so, then irsurvey check {folder}")
+    return ALL_DONE
+
+
+@main.command()
+@click.argument("survey", type=Path)
+def check(survey: Path) -> int:
+    """Read everything, run nothing: all faults at once, and what is assumed rather than measured.
+
+    SURVEY is the survey file or its folder.
+    """
+    from irsurvey.run import check as check_survey
+
+    checked = check_survey(_survey_file(survey))
+    for notice in checked.notices:
+        click.echo(notice)
+    _complain(SOME_FAILED, *(f"frame {frame} cannot be read: {reason}" for frame, reason in checked.unreadable))
+    readable = len(checked.survey.tasks) - len(checked.unreadable)
+    click.echo(f"{survey}: no faults; {readable} of {len(checked.survey.tasks)} frames can be read")
+    return SOME_FAILED if checked.unreadable else ALL_DONE
+
+
+@main.command()
+@click.argument("survey", type=Path)
+@click.option("-o", "--out", type=Path, help="Folder to write to; default: report, beside the survey file.")
+@click.option("--jobs", type=click.IntRange(min=1), default=1, show_default=True, help="Frames worked on at once.")
+@click.option("--documents", default="html", show_default=True, help="Documents to make, joined by commas.")
+@click.option("--maps", default="", help="Further maps for each frame, joined by commas: heat-flux.")
+def run(survey: Path, out: Path | None, jobs: int, documents: str, maps: str) -> int:
+    """Analyse every frame of SURVEY (the survey file or its folder) and write the report."""
+    from irsurvey.report import WRITERS
+    from irsurvey.run import run as run_survey
+
+    chosen = {"documents": _names("--documents", documents, WRITERS), "maps": _names("--maps", maps, ("heat-flux",))}
+    path = _survey_file(survey)
+    out = out or path.parent / "report"
+    with _progress() as on_frame:
+        report = run_survey(path, out, jobs=jobs, on_frame=on_frame, **chosen)
+    failed = [frame for frame in report.frames if frame.status == "failed"]
+    _complain(SOME_FAILED, *(f"frame {frame.id} failed: {frame.reason}" for frame in failed))
+    _print_table(("frame", "label", "findings", "components", "class", "urgency", "claim"), _summary(report))
+    click.echo(f"report: {out / ('report.html' if 'html' in chosen['documents'] else 'report.json')}")
+    return SOME_FAILED if failed else ALL_DONE
+
+
+@main.command()
+@click.argument("source", type=Path, metavar="IN.csv")
+@click.option("-o", "--out", type=Path, required=True, metavar="OUT.csv", help="Table to write.")
+def readings(source: Path, out: Path) -> int:
+    """Correct single spot readings, with uncertainty.
+
+    Column apparent_c is required; emissivity, reflected_c, distance_m, air_c, relative_humidity_percent,
+    pressure_hpa, band_low_um, band_high_um, window_transmittance, window_reflectance, window_c and
+    window_ambient_c count where they stand, and u_… before a name is its standard uncertainty.  Other
+    columns pass through.
+    """
+    from irsurvey.readings import correct_table
+
+    done = correct_table(source, out)
+    _complain(SOME_FAILED, *done.notices, *done.failed)
+    click.echo(f"{out}: {done.rows - len(done.failed)} of {done.rows} readings corrected")
+    return SOME_FAILED if done.failed else ALL_DONE
+
+
+@main.command()
+def materials() -> int:
+    """List the built-in emissivities with their sources."""
+    from irsurvey.radiometry.emissivity import materials as built_in
+
+    rows = (
+        (entry.name, f"{entry.emissivity:g} ± {entry.u:.1g}", entry.note, f"{entry.source} ({entry.mark})")
+        for entry in built_in().values()
+    )
+    _print_table(("material", "emissivity ± u", "note", "source"), rows)
+    return ALL_DONE
+
+
+@main.command()
+def criteria() -> int:
+    """List the built-in criteria with their classes, urgencies and sources."""
+    from irsurvey.assess.criteria import criteria as built_in
+
+    rows = (
+        (name, entry.quantity, "\n".join(map(_interval, entry.classes)), f"{entry.source} ({entry.mark})")
+        for name, entry in built_in().items()
+    )
+    _print_table(("criterion", "judges", "class: interval, urgency", "source"), rows)
+    return ALL_DONE
+
+
+@main.command()
+@click.argument("which", type=click.Choice(["survey", "report"]))
+def schema(which: str) -> int:
+    """Print the JSON Schema of the survey file or of report.json."""
+    import json
+
+    from irsurvey.report.json import report_schema
+    from irsurvey.survey.load import schema as survey_schema
+
+    click.echo(json.dumps(survey_schema() if which == "survey" else report_schema(), indent=2, ensure_ascii=False))
+    return ALL_DONE
+
+
+def _complain(code: int, *lines: str) -> int:
+    for line in lines:
+        click.echo(" ".join(line.split()), err=True)
+    return code
+
+
+def _survey_file(path: Path) -> Path:
+    return path / "survey.toml" if path.is_dir() else path
+
+
+def _names(option: str, text: str, allowed: Iterable[str]) -> tuple[str, ...]:
+    names = tuple(name.strip() for name in text.split(",") if name.strip())
+    for name in names:
+        if name not in allowed:
+            raise UsageError(Fault(option, f"some of {', '.join(allowed)}", name))
+    return names
+
+
+@contextmanager
+def _progress() -> Iterator[Callable[[FrameReport, int], None]]:
+    """A progress bar on standard error, where that is a terminal."""
+    from rich.console import Console
+    from rich.progress import Progress
+
+    console = Console(stderr=True)
+    with Progress(console=console, transient=True, disable=not console.is_terminal) as bar:
+        frames = bar.add_task("frames", total=None)
+        yield lambda _, total: bar.update(frames, advance=1, total=total)
+
+
+def _summary(report: Report) -> Iterator[tuple[str, ...]]:
+    """One row for each frame, the most urgent first, those that failed before those without findings."""
+    from irsurvey.report.ranking import governing, in_order
+
+    first: dict[str, Finding | ComponentReport] = {}
+    for ranked in in_order(report):
+        first.setdefault(ranked.frame.id, ranked.item)
+    place = {frame: index for index, frame in enumerate(first)}
+    for frame in sorted(report.frames, key=lambda frame: (place.get(frame.id, len(place)), frame.status == "analysed")):
+        if frame.status == "failed":
+            yield frame.id, frame.label, "", "", "not inspected: failed", "", ""
+            continue
+        name, urgency = "", ""
+        if frame.id in first:
+            governs = governing(first[frame.id].assessments)
+            name = governs.class_ if governs and governs.class_ else "no class: look again"
+            urgency = "" if first[frame.id].urgency is None else str(first[frame.id].urgency)
+        yield frame.id, frame.label, str(len(frame.findings)), str(len(frame.components)), name, urgency, frame.claim
+
+
+def _interval(kind: SeverityClass) -> str:
+    """A class in words: its name, its interval and its urgency."""
+    low = f"{'≥' if kind.holds_low else '>'} {kind.low:g}" if isfinite(kind.low) else ""
+    high = f"{'≤' if kind.holds_high else '<'} {kind.high:g}" if isfinite(kind.high) else ""
+    return f"{kind.name}: {' and '.join(filter(None, (low, high)))}, {kind.urgency}"
+
+
+def _print_table(columns: Sequence[str], rows: Iterable[Sequence[str]]) -> None:
+    """A table as wide as the terminal; in a file or pipe wide enough not to be cut."""
+    from rich.box import SIMPLE
+    from rich.console import Console
+    from rich.table import Table
+
+    width = None if sys.stdout.isatty() else 200
+    console = Console(width=width, markup=False, highlight=False, emoji=False)
+    table = Table(*columns, box=SIMPLE)
+    for row in rows:
+        table.add_row(*row)
+    console.print(table)

@@ -1,0 +1,50 @@
+"""The files of one frame: object temperatures and finding labels as TIFF, the annotated picture as PNG."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from irsurvey import files
+from irsurvey.model import FrameReport, Maps
+from irsurvey.report import picture
+from irsurvey.report.inks import COLORMAP
+
+NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "annotated.png")
+"""Every file this module may write into a frame's folder."""
+
+
+def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP) -> Path:
+    """Write OUT/frames/<id>/temperature.tif, findings.tif, annotated.png (and heat_flux.tif where it is given).
+
+    temperature.tif: float32 °C, NaN where not measurable; findings.tif: uint16, 0 none, k = finding k;
+    heat_flux.tif: float32 W m⁻².  Each file is written whole or not at all; returns the frame's folder."""
+    folder = out / "frames" / frame.id
+    _write_tiff(folder / "temperature.tif", maps.temperature_c.astype(np.float32, copy=False))
+    _write_tiff(folder / "findings.tif", maps.labels.astype(np.uint16, copy=False))
+    if maps.heat_flux is None:
+        (folder / "heat_flux.tif").unlink(missing_ok=True)  # one of an earlier run would not belong to this one
+    else:
+        _write_tiff(folder / "heat_flux.tif", maps.heat_flux.astype(np.float32, copy=False))
+    with files.whole(folder / "annotated.png") as part:
+        picture.save(picture.annotated(frame, maps, colormap=colormap), part)
+    return folder
+
+
+def _write_tiff(path: Path, array: NDArray[np.generic]) -> None:
+    """One page, deflate without a predictor: every TIFF reader opens it, and a map from a look-up table, whose
+    values repeat, shrinks to a fifth."""
+    import tifffile
+
+    with files.whole(path) as part:
+        tifffile.imwrite(
+            part,
+            array,
+            photometric="minisblack",
+            compression="zlib",
+            compressionargs={"level": 1},
+            metadata=None,
+            software="irsurvey",
+        )

@@ -1,0 +1,40 @@
+"""Outlines on a picture: one light ink between two dark lines, legible on any colour."""
+
+from __future__ import annotations
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from irsurvey.report.inks import DARK, LIGHT, Pixels
+
+WIDTH = 3
+"""Pixels an outline takes outside what it encloses: dark, light, dark."""
+
+_NEIGHBOURS = np.ones((3, 3), dtype=np.uint8)
+_DASH, _GAP = 8, 6
+
+
+def around_regions(canvas: Pixels, regions: NDArray[np.uint16]) -> None:
+    """Draw a solid line just outside every region of a label image; where two touch, on the lower-numbered one."""
+    first = cv2.dilate(regions, _NEIGHBOURS)
+    second = cv2.dilate(first, _NEIGHBOURS)
+    third = cv2.dilate(second, _NEIGHBOURS)
+    canvas[third != regions] = DARK
+    canvas[second != first] = LIGHT
+
+
+def along_polygon(canvas: Pixels, corners: NDArray[np.int32]) -> None:
+    """Draw a solid line along a closed polygon; corners (n, 2) in pixels of the canvas."""
+    cv2.polylines(canvas, [corners], isClosed=True, color=DARK, thickness=WIDTH)
+    cv2.polylines(canvas, [corners], isClosed=True, color=LIGHT, thickness=1)
+
+
+def dashed(canvas: Pixels, area: NDArray[np.uint8]) -> None:
+    """Draw a dashed line along the rim of an area (not 0 inside)."""
+    dashes = np.zeros_like(area)
+    for contour in cv2.findContours(area, cv2.RETR_EXTERNAL, cv2.CHAIN_APPROX_NONE)[0]:
+        x, y = contour[np.arange(len(contour)) % (_DASH + _GAP) < _DASH, 0].T
+        dashes[y, x] = 1
+    canvas[cv2.dilate(dashes, _NEIGHBOURS) > 0] = DARK
+    canvas[dashes > 0] = LIGHT

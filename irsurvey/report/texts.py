@@ -1,0 +1,74 @@
+"""The words of the documents, from texts.toml; what has no entry there is shown as it is."""
+
+from __future__ import annotations
+
+import tomllib
+from collections.abc import Iterable
+from functools import cache
+from importlib.resources import files
+from typing import Any
+
+from irsurvey.report.numbers import UNITS
+
+
+def flag(code: str) -> str:
+    """What a flag means to the reader, or the flag itself."""
+    return _word("flags", code)
+
+
+def urgency(level: int | None) -> str:
+    """What an urgency asks for."""
+    return _word("urgency", "none" if level is None else str(level))
+
+
+def claim(kind: str) -> str:
+    """What a frame's claim allows."""
+    return _word("claim", kind)
+
+
+def origin(source: str) -> str:
+    """How well founded an input is: stated, measured or assumed."""
+    return _word("origin", source)
+
+
+def sense(kind: str) -> str:
+    """Warmer or colder."""
+    return _word("sense", kind)
+
+
+def about(key: str) -> str:
+    """The heading of a free text of the survey."""
+    return _word("about", key) if key in _texts()["about"] else _plain(key)
+
+
+def name(key: str) -> str:
+    """What people call a key of report.json, without unit: "emissivity:cover plate" → "Emissivity, cover plate"."""
+    stem, _, which = key.partition(":")
+    stem, which = _without_unit(stem), _without_unit(which) if which else ""
+    found = _texts()["names"].get(stem, _plain(stem))
+    return f"{found}, {which}" if which else found
+
+
+def cautions(kinds: Iterable[str]) -> tuple[str, ...]:
+    """The standing cautions for these kinds of survey."""
+    texts = _texts()["cautions"]
+    return tuple(caution for kind in ("all", *sorted(set(kinds))) for caution in texts.get(kind, ()))
+
+
+def _without_unit(key: str) -> str:
+    ending = next((f"_{ending}" for ending in UNITS if key.endswith(f"_{ending}") and ending != "per_pixel"), "")
+    return key.removesuffix(ending)
+
+
+def _plain(key: str) -> str:
+    return key.replace("_", " ").strip().capitalize() or key
+
+
+def _word(table: str, key: str) -> str:
+    word: str = _texts()[table].get(key, key)
+    return word
+
+
+@cache
+def _texts() -> dict[str, Any]:
+    return tomllib.loads((files("irsurvey.report") / "texts.toml").read_text(encoding="utf-8"))

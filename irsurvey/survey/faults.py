@@ -1,0 +1,247 @@
+"""What pydantic found wrong, as faults with key paths that a person can follow; all of them in one pass."""
+
+from __future__ import annotations
+
+import json
+import re
+from collections.abc import Iterable, Iterator, Mapping
+from copy import deepcopy
+from difflib import get_close_matches
+from pathlib import PurePosixPath
+from typing import Any, get_args
+
+from pydantic import ValidationError
+from pydantic.fields import FieldInfo
+from pydantic_core import ErrorDetails
+
+from irsurvey.errors import Fault
+from irsurvey.survey.fields import LARGEST, Table
+from irsurvey.survey.schema import Document
+
+Place = tuple[str | int, ...]
+"""Keys and list positions from the top of the file down to one value."""
+
+_EXPECTED = {
+    "float_type": "a number",
+    "finite_number": "a finite number",
+    "int_type": "a whole number",
+    "string_type": "text in quotes",
+    "string_too_short": "text that is not empty",
+    "date_type": "a date such as 2026-01-18, without quotes",
+    "datetime_type": "a date and time such as 2026-01-18T07:12:00, without quotes",
+    "list_type": "a list",
+    "tuple_type": "a list",
+    "dict_type": "a table",
+    "model_type": "a table",
+}
+_BOUNDS = ("gt", "ge", "le")
+_GONE = object()
+
+
+def validated(content: Mapping[str, Any]) -> tuple[Document, list[Fault]]:
+    """The survey file as a model, and all its faults.
+
+    Where there are faults, the model holds what is left when everything at fault is cut out, so that references
+    and levels can still be checked; faults that only the cutting caused are not reported.
+    """
+    content, faults = deepcopy(dict(content)), list[Fault]()
+    while True:
+        try:
+            return Document.model_validate(content), faults
+        except ValidationError as error:
+            details = error.errors(include_url=False)
+        new = [_fault(detail, content) for detail in details]
+        faults += [fault for fault in new if not follows_from(fault, faults)]
+        content = _cut(content, [_culprit(detail, content) for detail in details])
+
+
+def follows_from(fault: Fault, earlier: Iterable[Fault]) -> bool:
+    """Whether a fault concerns something that contains, or is the same key as, something found earlier."""
+    return any(
+        other.where == fault.where
+        or other.where.startswith((f"{fault.where}.", f"{fault.where}["))
+        or (fault.got.startswith("nothing") and other.where.split(".")[-1] == fault.where.split(".")[-1])
+        for other in earlier
+    )
+
+
+def nearest(word: str, known: Iterable[str]) -> str:
+    """Remedy that names the known word nearest to a wrong one; empty where none is known."""
+    words = list(known)
+    close = get_close_matches(word, words, n=1, cutoff=0.5) or get_close_matches(word.lower(), words, n=1, cutoff=0.0)
+    return f"did you mean {close[0]}?" if close else ""
+
+
+def key_path(place: Place, content: object) -> str:
+    """A place as people read it: `frame[F01].surface[cover plate].emissivity`; list items by id, name or number."""
+    text = ""
+    for step in place:
+        if isinstance(step, int):
+            content = content[step] if isinstance(content, list | tuple) and step < len(content) else None
+            text += f"[{_item_name(content) or f'#{step + 1}'}]"
+        else:
+            content = content.get(step) if isinstance(content, dict) else None
+            text += f".{step}" if text else step
+    return text
+
+
+def tables_at(place: Iterable[str | int]) -> list[type[Table]]:
+    """The kinds of table that may stand at a place."""
+    tables: list[type[Table]] = [Document]
+    for step in place:
+        fields = [field for table in tables if (field := _field(table, step))]
+        tables = [found for field in fields for found in _tables_in(field.annotation)] if fields else tables
+    return tables
+
+
+def field_at(place: Place) -> FieldInfo | None:
+    """The key at a place; list positions do not matter."""
+    names = [step for step in place if isinstance(step, str)]
+    found = (_field(table, names[-1]) for table in tables_at(names[:-1])) if names else iter(())
+    return next(filter(None, found), None)
+
+
+def keys_of(table: type[Table]) -> list[str]:
+    """The keys of a table as they are written in the file."""
+    return [field.alias or name for name, field in table.model_fields.items()]
+
+
+def shown(value: object) -> str:
+    """A value in a message: short, on one line."""
+    if isinstance(value, dict):
+        return "a table"
+    if isinstance(value, list | tuple) and len(value) > 4:
+        return f"a list of {len(value)}"
+    try:
+        text = json.dumps(value, ensure_ascii=False, default=str)
+    except ValueError:  # a whole number too long to be written out
+        return "a number far too large"
+    return text if len(text) <= 60 else f"{text[:57]}…"
+
+
+def _item_name(item: object) -> str | None:
+    if not isinstance(item, dict):
+        return None
+    for name in ("id", "name"):
+        if isinstance(item.get(name), str) and item[name]:
+            return str(item[name])
+    return PurePosixPath(item["file"]).stem if isinstance(item.get("file"), str) else None
+
+
+def _place(detail: ErrorDetails) -> Place:
+    """Where a detail points in the file: without the tags of unions, with the key that a table's own check names."""
+    place = tuple(step for step in detail["loc"] if isinstance(step, int) or not step.startswith("<"))
+    own = detail.get("ctx", {}).get("key") if detail["type"] == "survey" else None
+    if detail["type"].startswith("union_tag"):
+        return (*place, "quantity")
+    return (*place, own) if own else place
+
+
+def _culprit(detail: ErrorDetails, content: Mapping[str, Any]) -> Place:
+    """What to cut out: the value at fault, or the table that misses something."""
+    place = _place(detail)
+    while place:
+        inside: Any = content
+        try:
+            for step in place:
+                inside = inside[step]
+        except (KeyError, IndexError, TypeError):
+            place = place[:-1]
+        else:
+            return place
+    return place
+
+
+def _cut(content: Mapping[str, Any], places: list[Place]) -> dict[str, Any]:
+    for place in places:
+        inside: Any = content
+        if place == ("survey",) and isinstance(content["survey"], dict):
+            continue  # it misses its title, which is filled in below
+        try:
+            for step in place[:-1]:
+                inside = inside[step]
+            inside[place[-1]] = _GONE
+        except (IndexError, KeyError, TypeError):
+            continue  # already cut out with what held it
+    left: dict[str, Any] = _without_gone(content)
+    about = left.get("survey")
+    left["survey"] = {"title": "-", **about} if isinstance(about, dict) else {"title": "-"}
+    return left
+
+
+def _without_gone(value: Any) -> Any:
+    if isinstance(value, dict):
+        return {key: _without_gone(inner) for key, inner in value.items() if inner is not _GONE}
+    if isinstance(value, list):
+        return [_without_gone(inner) for inner in value if inner is not _GONE]
+    return value
+
+
+def _fault(detail: ErrorDetails, content: Mapping[str, Any]) -> Fault:
+    place, kind, ctx = _place(detail), detail["type"], detail.get("ctx", {})
+    where, got = key_path(place, content), shown(detail["input"])
+    if kind == "survey":
+        return Fault(where, ctx["expected"], ctx["got"], ctx["remedy"])
+    if kind == "extra_forbidden":
+        known = [name for table in tables_at(place[:-1]) for name in keys_of(table)]
+        return Fault(where, "a known key", f"the unknown key {place[-1]}", nearest(str(place[-1]), known))
+    if kind == "missing":
+        field = field_at(place)
+        return Fault(where, "a value, as it is required", "nothing", _meaning(field))
+    if kind in ("literal_error", "union_tag_invalid"):
+        # pydantic lists what it expected as 'a', 'b' or '<a>', '<b>', by the tags of a union
+        words = re.findall(r"'<?([^'>]*)>?'", ctx.get("expected") or ctx["expected_tags"])
+        given = detail["input"] if kind == "literal_error" else _quantity(detail["input"])
+        got = "nothing" if given is None else shown(given)
+        expected = " or ".join(map(shown, words)) or ctx["expected"]
+        return Fault(where, expected, got, nearest(str(given), words) if given else "")
+    field = field_at(place)
+    expected = _EXPECTED.get(kind) or (_limits(field, detail) if field else "") or detail["msg"]
+    return Fault(where, expected, _count(detail) or got, _meaning(field))
+
+
+def _quantity(signal: object) -> object:
+    return signal.get("quantity") if isinstance(signal, dict) else signal
+
+
+def _meaning(field: FieldInfo | None) -> str:
+    description = field.description if field else None
+    return (description or "").split(";")[0]
+
+
+def _count(detail: ErrorDetails) -> str:
+    ctx = detail.get("ctx", {})
+    return f"{ctx['actual_length']}" if isinstance(ctx.get("actual_length"), int) else ""
+
+
+def _limits(field: FieldInfo, detail: ErrorDetails) -> str:
+    """The limits a number or a list is held to, in words."""
+    ctx = detail.get("ctx", {})
+    if detail["type"] == "too_short":
+        return f"at least {ctx['min_length']} items"
+    if detail["type"] == "too_long":
+        return f"at most {ctx['max_length']} items"
+    bounds = {name: getattr(limit, name) for limit in _metadata(field) for name in _BOUNDS if hasattr(limit, name)}
+    low = f"above {bounds['gt']:g}" if "gt" in bounds else f"of at least {bounds['ge']:g}" if "ge" in bounds else ""
+    high = f"at most {bounds['le']:g}" if bounds.get("le", LARGEST) < LARGEST else ""
+    return f"a number {' and '.join(filter(None, (low, high)))}" if low or high else ""
+
+
+def _metadata(field: FieldInfo) -> Iterator[object]:
+    yield from field.metadata
+    pending = [field.annotation]
+    while pending:
+        annotation = pending.pop(0)
+        for item in getattr(annotation, "__metadata__", ()):
+            yield from item.metadata if isinstance(item, FieldInfo) else (item,)
+        pending += get_args(annotation)
+
+
+def _field(table: type[Table], name: str | int) -> FieldInfo | None:
+    return next((field for key, field in table.model_fields.items() if name == (field.alias or key)), None)
+
+
+def _tables_in(annotation: Any) -> list[type[Table]]:
+    if isinstance(annotation, type) and issubclass(annotation, Table):
+        return [annotation]
+    return [found for part in get_args(annotation) for found in _tables_in(part)]

@@ -1,0 +1,82 @@
+"""What a survey assumes rather than measures, in short sentences with the frames they concern."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Mapping
+from pathlib import Path
+
+from irsurvey.model import FrameTask
+from irsurvey.survey.references import every_level
+from irsurvey.survey.schema import Document
+
+_ASSUMED = {
+    "emissivity": "emissivity not stated: {:.2f} assumed",
+    "relative_humidity": "relative humidity not recorded: {:.0%} assumed",
+    "pressure": "air pressure not recorded: {:.0f} Pa assumed",
+    "view_angle": "view angle not stated: square to the surface assumed",
+    "ambient": "ambient_c not stated: the air on the path assumed where the parts sit",
+    "mean_radiant": "mean radiant temperature not stated: that of the air assumed",
+    "window_temperature": "temperature of the window not stated: that of the air assumed",
+    "window_ambient": "what the window mirrors not stated: the air temperature assumed",
+}
+
+
+def notices(document: Document, tasks: list[FrameTask], noted: Iterable[tuple[str, str]]) -> tuple[str, ...]:
+    """Notices of a survey, each once, with the frames it holds for; `noted` are (frame, notice) from elsewhere."""
+    by_text: dict[str, list[str]] = {}
+    bands = {task.id: task.camera.band for task in tasks}
+    for frame, text in [*noted, *((task.id, text) for task in tasks for text in _of(task, bands))]:
+        by_text.setdefault(text, []).append(frame)
+    concerning = tuple(f"{text} ({_frames(ids, tasks)})" for text, ids in by_text.items())
+    stated = sorted({key for _, level in every_level(document) for key in level.uncertainty.model_fields_set})
+    besides = f" besides {', '.join(stated)}" if stated else ""
+    return (*concerning, f"uncertainties not stated: common practice or judgement assumed for all inputs{besides}")
+
+
+def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[str]:
+    for name, text in _ASSUMED.items():
+        if name in task.scene and task.scene[name].source == "default":
+            yield text.format(task.scene[name].value)
+    if task.kind == "building":
+        missing = [name for name in ("indoor_air", "outdoor_air") if name not in task.scene]
+        if task.method == "envelope" and missing:
+            yield f"{' and '.join(missing)}_c not recorded: no envelope claim"
+        if task.viewed_from == "outside" and "wind" not in task.scene:
+            yield "wind not recorded"
+        if task.reference is None:
+            yield "no reference area drawn: an automatic one is a suggestion, without severity until confirmed"
+    if task.reflected_from is not None and bands[task.reflected_from] != task.camera.band:
+        yield f"reflected_from {task.reflected_from}, which was taken in another band"
+    if task.camera.ifov is None:
+        yield f"ifov_mrad of {task.camera.name} not stated: no spot size" + ("" if task.known_scale else ", no area")
+    if task.camera.noise is None:
+        yield f"noise_k of {task.camera.name} not stated: estimated from the frame"
+    unknown = ", ".join(component.name for component in task.components if component.load is None)
+    if unknown:
+        yield f"load not recorded: nothing can be cleared for {unknown}"
+    if task.taken is None:
+        yield "time not stated"
+    if not _exists(task.path):
+        yield "raw file missing: the frame will fail"
+    if task.photo_path is not None and not _exists(task.photo_path):
+        yield "photograph missing"
+
+
+def _exists(path: str) -> bool:
+    try:
+        return Path(path).is_file()
+    except OSError:
+        return False
+
+
+def _frames(ids: list[str], tasks: list[FrameTask]) -> str:
+    """The frames in a few words: all, those of one group, or the first few."""
+    found = set(ids)
+    if len(found) == len(tasks):
+        return "all frames"
+    groups = {task.group for task in tasks if task.id in found}
+    group = next(iter(groups))
+    if len(groups) == 1 and group and found == {task.id for task in tasks if task.group == group}:
+        return f"group {group}"
+    first = list(dict.fromkeys(ids))
+    return ", ".join(first[:4]) + (f" and {len(first) - 4} more" if len(first) > 4 else "")

@@ -1,0 +1,87 @@
+"""References of the survey file, level by level: every name that is used must be the name of something."""
+
+from __future__ import annotations
+
+from collections.abc import Collection, Iterator, Mapping
+
+from irsurvey.errors import Fault
+from irsurvey.survey import schema
+from irsurvey.survey.entries import frame_name
+from irsurvey.survey.faults import nearest
+from irsurvey.survey.known import Known
+
+
+def every_level(document: schema.Document) -> Iterator[tuple[str, schema.Document | schema.Group | schema.Frame]]:
+    """(prefix of key paths, table) of the survey, its groups and its listed frames."""
+    yield "", document
+    for group in document.group:
+        yield f"group[{group.id}].", group
+    for number, frame in enumerate(document.frame, 1):
+        yield f"frame[{frame_name(frame, number)}].", frame
+
+
+def reference_faults(
+    document: schema.Document, named: Mapping[str, Collection[str]], without_reflector: Collection[str], known: Known
+) -> Iterator[Fault]:
+    """Names that are the name of nothing, or of two things.
+
+    `named`: names of groups, cameras, circuits, assets and frames; `without_reflector`: frames that draw none.
+    """
+    for kind, tables in (("group", document.group), ("circuit", document.circuit), ("asset", document.asset)):
+        ids = [table.id for table in tables]
+        for name in sorted({name for name in ids if ids.count(name) > 1}):
+            yield Fault(f"{kind}[{name}].id", "each id once", f"{ids.count(name)} of it", "rename one")
+    if document.camera is not None and "camera" in document.cameras:
+        yield Fault("cameras.camera", "another name", "camera", "that is the name of the one under [camera]")
+    for number, name in enumerate(document.survey.criteria, 1):
+        yield from _unknown(name, known.criteria, f"survey.criteria[#{number}]", "irsurvey criteria lists")
+    yield from _unknown(document.survey.camera, named["camera"], "survey.camera", "[cameras] holds")
+    circuits = {circuit.id: circuit for circuit in document.circuit}
+    for where, level in every_level(document):
+        conditions = level.conditions
+        if "convection" in conditions.model_fields_set:
+            place = f"{where}conditions.convection"
+            yield from _unknown(conditions.convection, known.convections, place, "irsurvey knows")
+        yield from _unknown(
+            level.target.material, known.materials, f"{where}target.material", "irsurvey materials lists"
+        )
+        place = f"{where}conditions.reflected_from"
+        yield from _unknown(conditions.reflected_from, named["frame"], place, "is the id of a frame")
+        if conditions.reflected_from in without_reflector:
+            remedy = 'draw a surface with role = "reflector" on it: the foil, or all of a picture of the sky'
+            yield Fault(place, "a frame with a reflector", f"{conditions.reflected_from}, which draws none", remedy)
+        if not isinstance(level, schema.Document):
+            yield from _unknown(level.camera, named["camera"], f"{where}camera", "[cameras] holds")
+            yield from _mark_faults(level, where, circuits, named["circuit"], known)
+        if isinstance(level, schema.Frame):
+            yield from _unknown(level.group, named["group"], f"{where}group", "is the id of a [[group]]")
+            if named["asset"]:  # without a list of assets, a frame's asset is a label of its own
+                yield from _unknown(level.asset, named["asset"], f"{where}asset", "is the id of an [[asset]]")
+
+
+def _mark_faults(
+    level: schema.Group | schema.Frame,
+    where: str,
+    circuits: Mapping[str, schema.Circuit],
+    named: Collection[str],
+    known: Known,
+) -> Iterator[Fault]:
+    for kind, areas in (("surface", level.surface), ("component", level.component)):
+        names = [area.name for area in areas if area.name]
+        for name in sorted({name for name in names if names.count(name) > 1}):
+            yield Fault(f"{where}{kind}[{name}].name", "each name once", f"{names.count(name)} of it", "rename one")
+        for number, area in enumerate(areas, 1):
+            place = f"{where}{kind}[{area.name or f'#{number}'}].material"
+            yield from _unknown(area.material, known.materials, place, "irsurvey materials lists")
+    for number, part in enumerate(level.component, 1):
+        place = f"{where}component[{part.name or f'#{number}'}]"
+        yield from _unknown(part.circuit, named, f"{place}.circuit", "is the id of a [[circuit]]")
+        circuit = circuits.get(part.circuit or "")
+        loads = circuit.load_a if circuit else None
+        if isinstance(loads, dict):
+            yield from _unknown(part.phase, loads, f"{place}.phase", f"circuit {part.circuit} has")
+
+
+def _unknown(name: str | None, names: Collection[str], where: str, such: str) -> Iterator[Fault]:
+    if name is not None and name not in names:
+        yield Fault(where, f"a name that {such}", repr(name), nearest(name, names))

@@ -1,0 +1,297 @@
+"""The validated survey file to frame tasks: levels applied, references followed, units converted."""
+
+from __future__ import annotations
+
+from collections.abc import Collection, Iterator, Mapping
+from dataclasses import dataclass
+from datetime import UTC, datetime, tzinfo
+from pathlib import Path
+from typing import Any
+
+from irsurvey.errors import Fault, SurveyError
+from irsurvey.model import (
+    Camera,
+    Detection,
+    FrameTask,
+    KnownLength,
+    KnownRectangle,
+    Polygon,
+    ReadOptions,
+    Scene,
+    Signal,
+)
+from irsurvey.survey import log, places, scene, schema
+from irsurvey.survey.cameras import cameras
+from irsurvey.survey.entries import Entry, entries
+from irsurvey.survey.faults import nearest
+from irsurvey.survey.known import Known
+from irsurvey.survey.levels import Levels, Stated
+from irsurvey.survey.marks import components, points, surface_tables, surfaces
+from irsurvey.survey.optics import target
+from irsurvey.survey.references import every_level, reference_faults
+from irsurvey.survey.schema_camera import Camera as CameraTable
+from irsurvey.survey.times import instant, zone_named
+from irsurvey.survey.uncertainties import Uncertainties
+
+METHODS = {"building": ("envelope", "air-leakage", "roof-moisture"), "electrical": ("contact", "voltage-driven", "pv")}
+"""Methods by kind, the default first."""
+_NO_CAMERA = Camera("", (7.5e-6, 13e-6), Signal("apparent-temperature"))
+"""Stands in for one that is at fault, so that other faults are still found; never leaves this folder."""
+
+
+@dataclass(frozen=True, slots=True)
+class Context:
+    """What all frames share, and where faults and notices (frame, text) go."""
+
+    folder: Path
+    known: Known
+    zone: tzinfo
+    cameras: Mapping[str, Camera]
+    logs: Mapping[str, log.Log | None]
+    faults: list[Fault]
+    notices: list[tuple[str, str]]
+
+
+def resolved(
+    document: schema.Document, folder: Path, known: Known, named: Mapping[str, Collection[str]]
+) -> tuple[list[FrameTask], list[Fault], list[tuple[str, str]]]:
+    """All frames of a survey, in order; what is wrong; and what only resolving shows to be assumed, as notices.
+
+    `named` are the names of groups, cameras, circuits, assets and frames as written, also of those whose table is
+    at fault: a reference to such a one is no second fault.
+    """
+    faults: list[Fault] = []
+    try:
+        zone = zone_named(document.survey.timezone)
+    except SurveyError as error:
+        faults += error.faults
+        zone = UTC
+    found = entries(document, folder, faults)
+    groups = {group.id: group for group in document.group}
+    levels = [Levels(document, groups.get(entry.group or ""), entry.frame, entry.id) for entry in found]
+    logs = _logs(document, folder, zone, faults)
+    context = Context(folder, known, zone, cameras(document), logs, faults, [])
+    tasks = [_task(entry, of, context) for entry, of in zip(found, levels, strict=True)]
+    every = {**named, "frame": {*named["frame"], *(entry.id for entry in found)}}
+    without_reflector = {task.id for task in tasks} - {task.id for task in tasks if _draws_reflector(task)}
+    faults += reference_faults(document, every, without_reflector, known)
+    if not every["camera"]:
+        faults.append(Fault("camera", "a camera", "nothing", "describe it under [camera], or several under [cameras]"))
+    if None not in logs.values():
+        faults += _missing(tasks)
+    return tasks, faults, context.notices
+
+
+def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
+    frame = entry.frame
+    kind, method, viewed_from = _kind(levels, context)
+    camera, fill_values = _camera(levels, context)
+    taken = _taken(levels, context)
+    conditions = _conditions(levels, taken, context)
+    uncertainties = Uncertainties(levels.stated("uncertainty"), viewed_from or "electrical")
+    window = levels.choice("window")
+
+    quantities: scene.Quantities = {"emissivity": target(levels.stated("target"), uncertainties, context.known)}
+    quantities |= {q.name: q for q in scene.conditions(conditions, uncertainties)}
+    quantities |= {q.name: q for q in scene.surroundings(quantities, uncertainties)}
+    if window is not None:
+        air = quantities.get("air")
+        quantities |= {q.name: q for q in scene.window(window.value, window.source, air, uncertainties)}
+    quantities |= {q.name: q for q in scene.scale(frame, camera, uncertainties)}
+    seen = surfaces(levels, quantities, uncertainties, context.known)  # these add what is their own
+    parts = components(levels, quantities, uncertainties, context.known)
+
+    return FrameTask(
+        id=entry.id,
+        file=entry.file,
+        path=str(context.folder / entry.file),
+        kind=kind,
+        method=method,
+        camera=camera,
+        scene=Scene(tuple(quantities.values())),
+        viewed_from=viewed_from,
+        read=_read(levels, fill_values),
+        surfaces=seen,
+        components=parts,
+        reference=_area(levels.choice("reference")),
+        inspect=_area(levels.choice("inspect")),
+        has_window=window is not None,
+        known_scale=_known_scale(frame),
+        detection=_detection(levels),
+        convection=_value(conditions, "convection", "iso-6946"),
+        surface_height=_value(conditions, "surface_height_m", 2.5),
+        criteria=tuple(levels.document.survey.criteria),
+        reflected_from=_value(conditions, "reflected_from", None),
+        group=entry.group,
+        label=frame.label,
+        asset=frame.asset,
+        notes=frame.notes,
+        photo=frame.photo,
+        photo_path=_photo_path(levels, context),
+        taken=taken,
+    )
+
+
+def _kind(levels: Levels, context: Context) -> tuple[str, str, str | None]:
+    """Kind, method and side.  A method of another kind, stated above the level that changes the kind, is dropped."""
+    kind: str | None = None
+    method: Stated | None = None
+    for source, table in levels.tables():
+        own = table.survey if isinstance(table, schema.Document) else table
+        if own.kind is not None and own.kind != kind:
+            kind = own.kind
+            method = method if method is not None and method.value in METHODS[kind] else None
+        if own.method is not None:
+            method = Stated(own.method, source, 0)
+    if kind is None:
+        where = f"group[{levels.group.id}].kind" if levels.group else "survey.kind"
+        context.faults.append(
+            Fault(where, '"building" or "electrical"', "nothing", "state it in [survey] or in every group")
+        )
+        kind = "building"
+    elif method is not None and method.value not in METHODS[kind]:
+        where = levels.where(method.source, "method" if method.source != "survey" else "survey.method")
+        methods = METHODS[kind]
+        fault = Fault(
+            where, f"a method of kind {kind}: {', '.join(methods)}", method.value, nearest(method.value, methods)
+        )
+        context.faults.append(fault)
+    if kind == "electrical":
+        return kind, method.value if method else METHODS[kind][0], None
+    side = levels.choice("viewed_from")
+    if side is None:
+        context.notices.append((levels.id, "viewed_from not stated: inside assumed"))
+    return kind, method.value if method else METHODS[kind][0], side.value if side else "inside"
+
+
+def _camera(levels: Levels, context: Context) -> tuple[Camera, list[float]]:
+    """The camera that took a frame, and the stored numbers that mean no data in it."""
+    chosen = levels.choice("camera")
+    name = None if chosen is None else "camera" if isinstance(chosen.value, CameraTable) else chosen.value
+    if name is None and len(context.cameras) == 1:
+        name = next(iter(context.cameras))
+    if name is None and context.cameras:
+        choices = ", ".join(context.cameras)
+        remedy = "name it in [survey], in the group or in the frame"
+        context.faults.append(Fault("survey.camera", f"one of the cameras {choices}", "nothing", remedy))
+    table = levels.document.camera if name == "camera" else levels.document.cameras.get(name or "")
+    return context.cameras.get(name or "", _NO_CAMERA), [] if table is None else table.fill_values
+
+
+def _taken(levels: Levels, context: Context) -> datetime | None:
+    taken = levels.frame.taken
+    if taken is None:
+        return None
+    if taken.tzinfo is None and levels.document.survey.timezone is None:
+        context.notices.append((levels.id, "survey.timezone not stated: local times read as UTC"))
+    try:
+        return instant(taken, context.zone, f"frame[{levels.id}].taken")
+    except SurveyError as error:
+        context.faults.extend(error.faults)
+        return None
+
+
+def _logs(document: schema.Document, folder: Path, zone: tzinfo, faults: list[Fault]) -> dict[str, log.Log | None]:
+    """All logs by their path as written; None for one that is at fault."""
+    logs: dict[str, log.Log | None] = {}
+    for where, table in every_level(document):
+        written = table.conditions.log
+        if written is None or written in logs:
+            continue
+        place, logs[written] = f"{where}conditions.log", None
+        try:
+            logs[written] = log.read(folder / places.inside(folder, written, place), zone, place)
+        except SurveyError as error:
+            faults += error.faults
+    return logs
+
+
+def _conditions(levels: Levels, taken: datetime | None, context: Context) -> dict[str, Stated]:
+    """Conditions of a frame: stated ones, and logged ones at the moment it was taken.
+
+    A reflector drawn on the frame is the lowest level that speaks about the reflected temperature.
+    """
+    logged = {}
+    for source, table in levels.tables():
+        series = context.logs.get(table.conditions.log or "")
+        if series is None:
+            continue
+        if taken is None:
+            context.notices.append((levels.id, f"time not stated: {series.name} not used"))
+            continue
+        logged[source] = series.at(taken)
+        absent = ", ".join(key for key in series.series if key not in logged[source])
+        if absent:
+            context.notices.append(
+                (levels.id, f"{series.name} does not reach to this time: {absent} not taken from it")
+            )
+    conditions = levels.stated("conditions", logged)
+    if any(area.role == "reflector" for area in surface_tables(levels)):
+        if "reflected_c" in levels.frame.conditions.model_fields_set:
+            context.notices.append((levels.id, "reflected_c not used: measured on the frame's reflector"))
+        conditions = {key: stated for key, stated in conditions.items() if key not in ("reflected_c", "reflected_from")}
+    return conditions
+
+
+def _value(conditions: Mapping[str, Stated], key: str, default: Any) -> Any:
+    return conditions[key].value if key in conditions else default
+
+
+def _read(levels: Levels, fill_values: list[float]) -> ReadOptions:
+    stated = {key: levels.choice(key) for key in ("page", "array", "shape", "dtype", "byte_order")}
+    own = levels.choice("fill_values")
+    fills = tuple(float(number) for number in (own.value if own else fill_values))
+    return ReadOptions(**{key: choice.value for key, choice in stated.items() if choice}, fill_values=fills)
+
+
+def _area(choice: Stated | None) -> Polygon | None:
+    return points(choice.value.polygon) if choice and isinstance(choice.value, schema.Area) else None
+
+
+def _known_scale(frame: schema.Frame) -> KnownLength | KnownRectangle | None:
+    if frame.known_length is not None:
+        start, end = points([frame.known_length.start, frame.known_length.to])
+        return KnownLength(start, end)
+    return None if frame.known_rectangle is None else KnownRectangle(points(frame.known_rectangle.corners))
+
+
+def _detection(levels: Levels) -> Detection:
+    stated = {key: choice.value for key, choice in levels.stated("detection").items()}
+    return Detection(stated.get("min_delta_k"), stated.get("min_pixels", 25), stated.get("min_area_m2"))
+
+
+def _photo_path(levels: Levels, context: Context) -> str | None:
+    if levels.frame.photo is None:
+        return None
+    try:
+        path = context.folder / places.inside(context.folder, levels.frame.photo, f"frame[{levels.id}].photo")
+    except SurveyError as error:
+        context.faults.extend(error.faults)
+        return None
+    return str(path)
+
+
+def _draws_reflector(task: FrameTask) -> bool:
+    return any(surface.role == "reflector" for surface in task.surfaces)
+
+
+def _missing(tasks: list[FrameTask]) -> Iterator[Fault]:
+    """Conditions without which nothing can be corrected, and the frames that lack them."""
+    lacking = {
+        "air_c": [task for task in tasks if "air" not in task.scene],
+        "distance_m": [task for task in tasks if "distance" not in task.scene],
+        "reflected_c": [
+            task
+            for task in tasks
+            if "reflected" not in task.scene and task.reflected_from is None and not _draws_reflector(task)
+        ],
+    }
+    for key, without in lacking.items():
+        if not without:
+            continue
+        is_all = len(without) == len(tasks)
+        where = f"conditions.{key}" if is_all else f"frame[{without[0].id}].conditions.{key}"
+        more = f" (nor for {len(without) - 1} more)" if not is_all and len(without) > 1 else ""
+        measured = ", or draw a reflector" if key == "reflected_c" else ""
+        remedy = f"state it under conditions of the survey, the group or the frame{measured}"
+        yield Fault(where, "a value, as it is required", f"nothing{more}", remedy)

@@ -1,0 +1,358 @@
+"""The survey file as pydantic models: its keys, their types, limits, units and defaults; nothing is converted here."""
+
+from __future__ import annotations
+
+from typing import Annotated, Any, Literal
+
+from pydantic import AfterValidator, BaseModel, Discriminator, Field, Strict, Tag, model_validator
+
+from irsurvey.survey.defaults import defaults
+from irsurvey.survey.fields import (
+    FINITE,
+    AirCelsius,
+    Celsius,
+    Coordinate,
+    Counted,
+    Day,
+    Emissivity,
+    Fraction,
+    Moment,
+    Name,
+    NotNegative,
+    Number,
+    Percent,
+    Positive,
+    Table,
+    Text,
+    Whole,
+    ascending,
+    key,
+    required,
+    wrong,
+)
+from irsurvey.survey.schema_camera import Camera
+
+Point = tuple[Coordinate, Coordinate]
+Polygon = Annotated[list[Point], Field(min_length=3, max_length=10_000)]
+Kind = Literal["building", "electrical"]
+Side = Literal["inside", "outside"]
+Method = Literal["envelope", "air-leakage", "roof-moisture", "contact", "voltage-driven", "pv"]
+
+
+def _table_or_word(value: object) -> str:
+    return "<table>" if isinstance(value, dict | BaseModel) else "<word>"
+
+
+class Area(Table):
+    polygon: Polygon = required("Corners [[x, y], …] in pixels, x right, y down, at least 3")
+
+
+Reference = Annotated[
+    Annotated[Literal["automatic"], Tag("<word>")] | Annotated[Area, Tag("<table>")], Discriminator(_table_or_word)
+]
+
+
+class HalfWidth(Table):
+    half_width: NotNegative = required("Half-width of a rectangular distribution; its standard uncertainty is a/√3")
+
+
+Uncertain = Annotated[
+    Annotated[NotNegative, Tag("<word>")] | Annotated[HalfWidth, Tag("<table>")], Discriminator(_table_or_word)
+]
+
+
+def _uncertainty(of: str, name: str = "") -> Any:
+    """A key of [uncertainty]; its default is that of a stated value, from defaults.toml."""
+    default = defaults("stated").get(name)
+    if default is None:
+        return key(f"Standard uncertainty of {of}")
+    value = default.u if default.half_width is None else HalfWidth(half_width=default.half_width)
+    return key(f"Standard uncertainty of {of}; default: {default.source}", value)
+
+
+class Uncertainty(Table):
+    emissivity: Uncertain | None = _uncertainty("emissivities that are stated as numbers", "emissivity")
+    reflected_k: Uncertain | None = _uncertainty("the reflected apparent temperature [K], ±5 outside", "reflected_k")
+    air_k: Uncertain | None = _uncertainty("the air on the path [K]", "air_k")
+    relative_humidity_percent: Uncertain | None = _uncertainty("humidity [points]", "relative_humidity_percent")
+    distance_m: Uncertain | None = _uncertainty("the distance [m]; or distance_fraction")
+    distance_fraction: Uncertain | None = _uncertainty("the distance, relative to it", "distance_fraction")
+    pressure_hpa: Uncertain | None = _uncertainty("the air pressure [hPa]", "pressure_hpa")
+    atmosphere_fraction: Uncertain | None = _uncertainty("the air path's absorptance, relative", "atmosphere_fraction")
+    window_transmittance: Uncertain | None = _uncertainty("the window's transmittance", "window_transmittance")
+    window_reflectance: Uncertain | None = _uncertainty("the window's reflectance", "window_reflectance")
+    window_k: Uncertain | None = _uncertainty("the window's temperature [K]", "window_k")
+    window_ambient_k: Uncertain | None = _uncertainty("what the window mirrors [K]", "window_ambient_k")
+    indoor_air_k: Uncertain | None = _uncertainty("the indoor air [K]", "indoor_air_k")
+    outdoor_air_k: Uncertain | None = _uncertainty("the outdoor air [K]", "outdoor_air_k")
+    outdoor_24h_k: Uncertain | None = _uncertainty("the day's extremes outdoors [K]", "outdoor_24h_k")
+    ambient_k: Uncertain | None = _uncertainty("the air where an electrical part sits [K]", "ambient_k")
+    mean_radiant_k: Uncertain | None = _uncertainty("the mean radiant temperature [K]", "mean_radiant_k")
+    ground_k: Uncertain | None = _uncertainty("the ground [K]", "ground_k")
+    sky_k: Uncertain | None = _uncertainty("the sky [K]", "sky_k")
+    wind_m_s: Uncertain | None = _uncertainty("the wind speed [m/s]; or wind_fraction")
+    wind_fraction: Uncertain | None = _uncertainty("the wind speed, relative to it", "wind_fraction")
+    irradiance_fraction: Uncertain | None = _uncertainty("the irradiance, relative to it", "irradiance_fraction")
+    pressure_pa: Uncertain | None = _uncertainty("the pressure difference [Pa]", "pressure_pa")
+    convection_fraction: Uncertain | None = _uncertainty("the film coefficient, relative", "convection_fraction")
+    ifov_fraction: Uncertain | None = _uncertainty("the camera's IFOV, relative to it", "ifov_fraction")
+    view_angle_deg: Uncertain | None = _uncertainty("the view angle [°]", "view_angle_deg")
+    known_length_m: Uncertain | None = _uncertainty("known lengths [m]; or known_length_fraction")
+    known_length_fraction: Uncertain | None = _uncertainty("known lengths, relative to them", "known_length_fraction")
+    known_temperature_k: Uncertain | None = _uncertainty("known surface temperatures [K]", "known_temperature_k")
+
+    @model_validator(mode="after")
+    def _one_of_each(self) -> Uncertainty:
+        for pair in (
+            ("distance_m", "distance_fraction"),
+            ("wind_m_s", "wind_fraction"),
+            ("known_length_m", "known_length_fraction"),
+        ):
+            if self.model_fields_set.issuperset(pair):
+                raise wrong("one of the two", " and ".join(pair), "drop one", pair[1])
+        return self
+
+
+class Conditions(Table):
+    air_c: AirCelsius | None = key("Air along the path [°C]; required at some level")
+    relative_humidity_percent: Percent | None = key(
+        "Relative humidity of that air [%]", defaults("assumed")["relative_humidity_percent"].value
+    )
+    pressure_hpa: Annotated[float, Strict(), FINITE, Field(ge=300, le=1100)] | None = key(
+        "Air pressure [hPa]", defaults("assumed")["pressure_hpa"].value
+    )
+    reflected_c: Celsius | None = key("Reflected apparent temperature [°C]; required, or measured in a frame")
+    reflected_from: Name | None = key("Id of the frame whose reflector surface measures it")
+    distance_m: Annotated[float, Strict(), FINITE, Field(ge=0, le=100_000)] | None = key(
+        "Distance from camera to surface [m]; required at some level"
+    )
+    view_angle_deg: Annotated[float, Strict(), FINITE, Field(ge=0, le=85)] | None = key(
+        "Angle between line of sight and the surface's normal [°]", defaults("assumed")["view_angle_deg"].value
+    )
+    indoor_air_c: AirCelsius | None = key("Indoor air [°C]; building, required for envelope claims")
+    outdoor_air_c: AirCelsius | None = key("Outdoor air [°C]; building, required for envelope claims")
+    outdoor_24h_c: Annotated[tuple[AirCelsius, AirCelsius], AfterValidator(ascending)] | None = key(
+        "Lowest and highest outdoor air of the last 24 h [°C]"
+    )
+    wind_m_s: Annotated[float, Strict(), FINITE, Field(ge=0, le=100)] | None = key(
+        "Wind speed [m/s]; absent means not recorded, never 0"
+    )
+    ambient_c: AirCelsius | None = key("Electrical: air where the part sits [°C]; default: air_c")
+    mean_radiant_c: Celsius | None = key("Mean radiant temperature of what the surface faces [°C]; default: the air")
+    ground_c: Celsius | None = key("Ground in front of the surface, broadband [°C]")
+    sky_c: Celsius | None = key("Sky, broadband [°C]")
+    hours_since_sun: NotNegative | None = key("Hours since the sun last shone on the surface")
+    hours_since_rain: NotNegative | None = key("Hours since rain last wetted the surface")
+    irradiance_w_m2: NotNegative | None = key("Irradiance on the surface [W/m²]")
+    pressure_pa: Annotated[float, Strict(), FINITE, Field(ge=-1e5, le=1e5)] | None = key(
+        "Pressure inside minus outside [Pa]"
+    )
+    convection: Name = key("Correlation of the film coefficient, by name", "iso-6946")
+    surface_height_m: Positive = key("Height of the surface, for correlations that need it [m]", 2.5)
+    log: Name | None = key("CSV time series: a column `time` and columns named as these keys")
+
+    @model_validator(mode="after")
+    def _one_source_of_reflected(self) -> Conditions:
+        if self.reflected_c is not None and self.reflected_from is not None:
+            raise wrong("either reflected_c or reflected_from", "both", "drop one", "reflected_from")
+        return self
+
+
+class Target(Table):
+    emissivity: Emissivity | None = key("Emissivity in the camera's band", defaults("assumed")["emissivity"].value)
+    material: Name | None = key("A name from the table of materials; beside emissivity it only describes")
+
+
+class Detection(Table):
+    min_delta_k: Positive | None = key(
+        "Smallest ΔT that counts [K]; default, building: max(1.0, 5 × noise in object temperature); "
+        "electrical: max(2.0, 5 × noise)"
+    )
+    min_pixels: Counted = key("Smallest region [pixels]; or min_area_m2", 25)
+    min_area_m2: Positive | None = key("Smallest region [m²]; counts instead of min_pixels")
+
+
+class Window(Table):
+    transmittance: Emissivity = required("Transmittance of the infrared window in the camera's band")
+    reflectance: Fraction = key("Its reflectance", 0.0)
+    temperature_c: Celsius | None = key("Its temperature [°C]; default: the air")
+    ambient_c: Celsius | None = key("What it mirrors towards the camera [°C]; default: the air")
+
+    @model_validator(mode="after")
+    def _is_possible(self) -> Window:
+        total = self.transmittance + self.reflectance
+        if total > 1 + 1e-9:  # decimal fractions that add up to 1 may exceed it by rounding
+            raise wrong("transmittance + reflectance of at most 1", f"{total:g}", "the rest of 1 is its emissivity")
+        return self
+
+
+class Drawn(Table):
+    """An area drawn on a frame, with optics of its own where it states some."""
+
+    name: Name | None = key("Name, unique in the frame; default: numbered")
+    polygon: Polygon = required("Corners [[x, y], …] in pixels, x right, y down, at least 3")
+    emissivity: Emissivity | None = key("Its own emissivity; default: the target's")
+    material: Name | None = key("A name from the table of materials; beside emissivity it only describes")
+    reflected_c: Celsius | None = key("What it mirrors [°C]; default: the frame's")
+
+
+class Surface(Drawn):
+    role: Literal["inspect", "ignore", "reflector", "known-temperature"] = key(
+        "inspect; ignore: no finding, no reference pixel; reflector: crumpled foil, measures reflected_c; "
+        "known-temperature: fixes the frame's offset",
+        "inspect",
+    )
+    temperature_c: Celsius | None = key("Its temperature [°C]; with role known-temperature, required")
+
+    @model_validator(mode="after")
+    def _temperature_goes_with_role(self) -> Surface:
+        is_known = self.role == "known-temperature"
+        if is_known and self.temperature_c is None:
+            raise wrong("temperature_c with role known-temperature", "nothing", "state it in °C", "temperature_c")
+        if not is_known and self.temperature_c is not None:
+            remedy = 'write role = "known-temperature" or drop it'
+            raise wrong("no temperature_c with this role", f"{self.temperature_c:g}", remedy, "temperature_c")
+        return self
+
+
+class Component(Drawn):
+    group: Name | None = key("Components alike, compared with each other")
+    phase: Name | None = key("Phase")
+    load_a: NotNegative | None = key("Current at the time [A]; default: the circuit's")
+    rated_a: Positive | None = key("Rated current [A]; default: the circuit's")
+    circuit: Name | None = key("Id of the circuit it belongs to")
+
+
+class KnownLength(Table):
+    start: Point = required("One end [x, y] in pixels", alias="from")
+    to: Point = required("Other end [x, y] in pixels")
+    metres: Positive = required("Length between them [m]")
+
+    @model_validator(mode="after")
+    def _has_length(self) -> KnownLength:
+        if self.start == self.to:
+            raise wrong("two points", "one point twice", key="to")
+        return self
+
+
+class KnownRectangle(Table):
+    corners: Annotated[list[Point], Field(min_length=4, max_length=4)] = required(
+        "Its corners [[x, y], …] in pixels, clockwise from top left"
+    )
+    width_m: Positive = required("Top side [m]")
+    height_m: Positive = required("Left side [m]")
+
+
+class Level(Table):
+    """What a group and a frame may both say; a frame overrides its group, a group the survey."""
+
+    kind: Kind | None = key("building or electrical; default: the level above")
+    viewed_from: Side | None = key("Building: inside or outside; default: the level above")
+    method: Method | None = key("Method; default: the level above")
+    camera: Name | None = key("Name of the camera; default: the only one")
+    reference: Reference | None = key("Reference area or automatic; default: the level above")
+    conditions: Conditions = key("Conditions that differ from the level above", Conditions())
+    target: Target = key("Emissivity or material, where it differs from the level above", Target())
+    detection: Detection = key("Detection limits that differ from the level above", Detection())
+    uncertainty: Uncertainty = key("Uncertainties that differ from the level above", Uncertainty())
+    inspect: Area | None = key("Inspect only inside this area; default: everywhere")
+    window: Window | None = key("Infrared window in the path; default: none")
+    surface: list[Surface] = key("Areas with optics or a role of their own", [])
+    component: list[Component] = key("Electrical components", [])
+    page: Whole | None = key("TIFF: page, from 0; needed where several could be the frame")
+    array: Name | None = key("NPZ: name of the array; needed where it holds several")
+    shape: tuple[Counted, Counted] | None = key("Raw binary: rows and columns")
+    dtype: (
+        Literal[
+            "uint8", "uint16", "uint32", "uint64", "int8", "int16", "int32", "int64", "float16", "float32", "float64"
+        ]
+        | None
+    ) = key("Raw binary: number type")
+    byte_order: Literal["little", "big"] | None = key("Raw binary: byte order")
+    fill_values: list[Number] | None = key("Stored numbers that mean: no data; default: the camera's")
+
+
+class Group(Level):
+    id: Name = required("Name of the group, unique")
+    frames: Name | None = key("Glob for its frames, such as north/*.tif; default: frames name their group")
+
+
+class Frame(Level):
+    id: Name | None = key("Unique, [A-Za-z0-9._-], at most 64 characters; default: the file's name without ending")
+    file: Name | None = key("Raw file, relative to the survey file; required unless a group's glob finds it by id")
+    photo: Name | None = key("Photograph, relative to the survey file")
+    group: Name | None = key("Id of its group; default: the group whose glob finds its file")
+    label: Text = key("What it shows, for people", "")
+    asset: Name | None = key("Id of its asset")
+    notes: Text = key("Notes", "")
+    taken: Moment | None = key("Date and time; without an offset it is local time in survey.timezone")
+    known_length: KnownLength | None = key("A length in the picture: scale instead of distance × IFOV")
+    known_rectangle: KnownRectangle | None = key("A rectangle in the picture: scale by rectification")
+
+    @model_validator(mode="after")
+    def _has_one_scale(self) -> Frame:
+        if self.known_length is not None and self.known_rectangle is not None:
+            raise wrong("either known_length or known_rectangle", "both", "drop one", "known_rectangle")
+        return self
+
+
+class Asset(Table):
+    id: Name = required("Name of the asset, unique")
+    description: Text = key("What it is", "")
+    location: Text = key("Where it is", "")
+    criticality: Whole | None = key("Importance, as the owner ranks it")
+    not_inspected: Name | None = key("Why it was not inspected; absent: it was")
+
+
+class Circuit(Table):
+    id: Name = required("Name of the circuit, unique")
+    load_a: (
+        Annotated[
+            Annotated[NotNegative, Tag("<word>")] | Annotated[dict[Name, NotNegative], Tag("<table>")],
+            Discriminator(_table_or_word),
+        ]
+        | None
+    ) = key('Current at the time [A], one number or by phase: { "1" = 200, "2" = 195 }')
+    rated_a: Positive | None = key("Rated current [A]")
+
+
+class About(Table):
+    title: Name = required("Title of the survey")
+    kind: Kind | None = key("building or electrical; required here or in every group")
+    viewed_from: Side = key("Building: inside or outside", "inside")
+    method: Method | None = key(
+        "Building: envelope, air-leakage or roof-moisture, default envelope; "
+        "electrical: contact, voltage-driven or pv, default contact"
+    )
+    camera: Name | None = key("Name of the camera; default: the only one")
+    reference: Reference | None = key("Reference area or automatic, as at the top of the file", "automatic")
+    date: Day | None = key("Date of the survey")
+    timezone: Name | None = key("Time zone of local times, such as Europe/Vienna; without one they are read as UTC")
+    criteria: list[Name] = key("Names of criteria; default: those of the kind and method", [])
+    frame_table: Name | None = key("CSV of frames, as at the top of the file")
+    surveyor: Text = key("Who surveyed", "")
+    qualification: Text = key("The surveyor's qualification", "")
+    client: Text = key("For whom", "")
+    site: Text = key("Where", "")
+    construction: Text = key("How it is built", "")
+    limitations: Text = key("What could not be seen or done", "")
+    notes: Text = key("Notes", "")
+
+
+class Document(Table):
+    """An irsurvey survey file.  A default of null means: absent."""
+
+    format: Literal[1] = key("Format of this file", 1)
+    survey: About = required("The survey as a whole")
+    camera: Camera | None = key("The camera; or several under cameras")
+    cameras: dict[Name, Camera] = key("Cameras by name", {})
+    conditions: Conditions = key("Conditions of the whole survey", Conditions())
+    target: Target = key("Emissivity or material of what is seen", Target())
+    uncertainty: Uncertainty = key("Standard uncertainties (k = 1), or { half_width = … }", Uncertainty())
+    detection: Detection = key("When a deviation counts", Detection())
+    reference: Reference | None = key("Reference area of every frame; default: automatic")
+    group: list[Group] = key("Groups of frames: a room, an elevation, a panel", [])
+    frame: list[Frame] = key("Frames", [])
+    frame_table: Name | None = key("CSV with one frame a row, columns named as its keys (conditions.distance_m)")
+    circuit: list[Circuit] = key("Circuits and their loads", [])
+    asset: list[Asset] = key("Assets of the round", [])

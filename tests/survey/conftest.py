@@ -1,0 +1,89 @@
+"""A survey folder in the making: the file's text in, the loaded survey or its faults out."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from irsurvey.errors import Fault, SurveyError
+from irsurvey.model import Survey
+from irsurvey.survey.load import Known, load
+
+KNOWN = Known(
+    criteria=("building-delta-t", "temperature-factor"),
+    convections=("iso-6946", "churchill-chu"),
+    materials={
+        "plaster": (0.91, 0.03),
+        "brick": (0.93, 0.02),
+        "glass": (0.87, 0.03),
+        "steel": (0.3, 0.1),
+        "copper": (0.1, 0.05),
+    },
+)
+HEAD = """
+[survey]
+title = "T"
+kind = "building"
+"""
+CAMERA = """
+[camera]
+band_um = [7.5, 13]
+signal = { quantity = "apparent-temperature", unit = "K" }
+"""
+CONDITIONS = """
+[conditions]
+air_c = 20
+reflected_c = 19
+distance_m = 2
+"""
+FRAME = """
+[[frame]]
+id = "F01"
+file = "f01.tif"
+"""
+MINIMAL = HEAD + CAMERA + CONDITIONS + FRAME
+
+Load = Callable[..., Survey]
+Faults = Callable[..., tuple[Fault, ...]]
+
+
+@pytest.fixture()
+def folder(tmp_path: Path) -> Path:
+    """The survey's folder, beside which other files may lie."""
+    folder = tmp_path / "site"
+    folder.mkdir()
+    return folder
+
+
+@pytest.fixture()
+def load_text(folder: Path) -> Load:
+    """Writes survey.toml and the files beside it, and loads it."""
+
+    def loaded(text: str, files: dict[str, str] | None = None) -> Survey:
+        for name, content in {**(files or {}), "survey.toml": text}.items():
+            (folder / name).parent.mkdir(parents=True, exist_ok=True)
+            (folder / name).write_bytes(content.encode("utf-8"))
+        return load(folder / "survey.toml", known=KNOWN)
+
+    return loaded
+
+
+@pytest.fixture()
+def faults_of(load_text: Load) -> Faults:
+    """The faults of a survey file that must have some."""
+
+    def faults(text: str, files: dict[str, str] | None = None) -> tuple[Fault, ...]:
+        with pytest.raises(SurveyError) as caught:
+            load_text(text, files)
+        assert caught.value.exit_code == 2
+        return caught.value.faults
+
+    return faults
+
+
+@pytest.fixture()
+def minimal() -> str:
+    """The shortest survey that runs: one frame F01, air 20, reflected 19 °C, 2 m."""
+    return MINIMAL
