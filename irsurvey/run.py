@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass, replace
 from pathlib import Path
 
@@ -18,7 +18,8 @@ from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
 from irsurvey.report import WRITERS, frame_files
-from irsurvey.survey.load import Known, load, polygon_faults
+from irsurvey.survey.load import Known, load
+from irsurvey.survey.outside import is_drawn_on, polygon_faults
 
 MARKER = "made-by-irsurvey.txt"
 """File that says a folder is an output of this program, so that the next run may write over it."""
@@ -60,16 +61,16 @@ def run(
     Raises SurveyError, nothing run, where the survey is wrong; OutputError where `out` belongs to something else.
     """
     survey = load_survey(survey_path)
-    faults, _ = _judge_pixels(survey)
+    faults, _ = _judge_pixels(task for task in survey.tasks if is_drawn_on(task))
     if faults:
         raise SurveyError(*faults)
     out = out or Path(survey.folder) / "report"
     _claim_folder(out, {task.id for task in survey.tasks})
     frames = []
-    for report in execute(analyse_file, [Job(task, str(out), maps) for task in _resolved(survey)], jobs):
-        frames.append(report)
+    for frame in execute(analyse_file, [Job(task, str(out), maps) for task in _resolved(survey)], jobs):
+        frames.append(frame)
         if on_frame:
-            on_frame(report, len(survey.tasks))
+            on_frame(frame, len(survey.tasks))
     report = _concluded(survey, tuple(frames))
     for document in (*_ALWAYS, *documents):
         WRITERS[document](report, survey.tasks, out)
@@ -79,7 +80,7 @@ def run(
 def check(survey_path: Path) -> Checked:
     """Read everything, run nothing.  Raises SurveyError with all faults of the survey file."""
     survey = load_survey(survey_path)
-    faults, unreadable = _judge_pixels(survey)
+    faults, unreadable = _judge_pixels(survey.tasks)
     if faults:
         raise SurveyError(*faults)
     return Checked(survey, survey.notices, unreadable)
@@ -128,11 +129,11 @@ def _resolved(survey: Survey) -> list[FrameTask]:
     return [served(task) for task in survey.tasks]
 
 
-def _judge_pixels(survey: Survey) -> tuple[list[Fault], tuple[tuple[str, str], ...]]:
+def _judge_pixels(tasks: Iterable[FrameTask]) -> tuple[list[Fault], tuple[tuple[str, str], ...]]:
     """Faults that only the pixels show (a polygon outside its frame), and frames that cannot be read."""
     faults: list[Fault] = []
     unreadable = []
-    for task in survey.tasks:
+    for task in tasks:
         try:
             shape = read(Path(task.path), task.read).stored.shape
         except FrameError as error:

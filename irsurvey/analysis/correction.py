@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -12,7 +12,6 @@ from numpy.typing import NDArray
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.errors import Fault, FrameError
 from irsurvey.geometry.polygons import mask
-from irsurvey.heat.convection import CONVECTION
 from irsurvey.heat.humid_air import vapour_density
 from irsurvey.model import Camera, Component, Frame, FrameTask, Quantity, Scene, Surface
 from irsurvey.radiometry.atmosphere import absorptance_u
@@ -175,13 +174,13 @@ def _with_camera(task: FrameTask, pivot: float) -> Scene:
     scene = task.scene.with_(
         Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey"),  # accuracies are half-widths, rectangular
         Quantity("camera_gain", 0.0, task.camera.accuracy_fraction / 3**0.5, "survey"),
-        Quantity("atmosphere", 0.0, absorptance_u(task.camera.band), "default"),
     )
+    atmosphere = scene["atmosphere"]
+    if atmosphere.u < absorptance_u(task.camera.band):  # a band without a fit of its own is less well known
+        scene = scene.with_(replace(atmosphere, u=absorptance_u(task.camera.band)))
     if task.kind == "building" and task.viewed_from == "outside" and "wind" not in scene:
         # Not recorded is not calm.  A light breeze, wide enough to cover still air; only heat flux uses it.
         scene = scene.with_(Quantity("wind", 2.0, 1.0, "default", low=0.0))
-    if scene["convection"].source == "default":
-        scene = scene.with_(Quantity("convection", 1.0, CONVECTION[task.convection].u, "default", low=0.0))
     return scene
 
 

@@ -22,6 +22,7 @@ if TYPE_CHECKING:
 SUMMARY_LENGTH = 8
 """Results named on the first page; the table behind it has all of them."""
 
+_HELD_BACK = "cannot be cleared"  # the flag of a result that asks for nothing, yet must not pass for sound
 _LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
 _NOT_FREE_TEXT = {"title", "kind", "method", "viewed_from", "timezone", "reference", "camera"}
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
@@ -89,7 +90,7 @@ def not_cleared(report: Report) -> Iterator[Open]:
         if frame.temperature and (lost := frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels):
             yield Open(frame, f"{lost} pixels", "no temperature could be measured there")
         for finding in frame.findings:
-            if finding.urgency is None:
+            if finding.urgency is None or (finding.urgency == 0 and _HELD_BACK in finding.flags):
                 yield Open(frame, f"finding {finding.id}", _why(finding))
         for component in frame.components:
             if not component.cleared and not component.urgency:
@@ -106,11 +107,12 @@ def reading(item: Finding | ComponentReport, key: str, *, unit: bool = True) -> 
 
 
 def _is_bound(item: Finding | ComponentReport, key: str) -> bool:
-    if key not in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k"):
-        return False
     if key == "delta_similar_k" and "twin size-limited" in item.flags:
         return False  # both are too small: which way the difference errs is not known
-    return is_saturated(item) or "size-limited" in item.flags
+    if key in ("mean_c", "mean_delta_k"):
+        return is_saturated(item)
+    at_the_spot = key in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k")
+    return at_the_spot and (is_saturated(item) or "size-limited" in item.flags)
 
 
 def _about(report: Report) -> dict[str, str]:
@@ -144,8 +146,8 @@ def _picture(frame: FrameReport, out: Path) -> Picture | None:
     return Picture(f"data:image/png;base64,{b64encode(path.read_bytes()).decode()}", width, height, words)
 
 
-def _short(text: str) -> str:
-    return text if len(text) <= _LONG else f"{text[: _LONG - 1].rstrip()}…"
+def _short(text: str, length: int = _LONG) -> str:
+    return text if len(text) <= length else f"{text[: length - 1].rstrip()}…"
 
 
 @cache

@@ -12,8 +12,9 @@ from irsurvey.report.numbers import UNITS
 
 
 def flag(code: str) -> str:
-    """What a flag means to the reader, or the flag itself."""
-    return _word("flags", code)
+    """What a flag means to the reader, or the flag itself; after a colon it may give detail ("saturated: 3 pixels")."""
+    meaning: str = _texts()["flags"].get(code.partition(":")[0], code)
+    return meaning
 
 
 def urgency(level: int | None) -> str:

@@ -25,6 +25,11 @@ def polygon_faults(task: FrameTask, shape: tuple[int, int]) -> tuple[Fault, ...]
     return tuple(faults)
 
 
+def is_drawn_on(task: FrameTask) -> bool:
+    """Whether anything is drawn on a frame at all."""
+    return next(_drawn(task), None) is not None
+
+
 def _drawn(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
     for where, polygon in (("reference", task.reference), ("inspect", task.inspect)):
         if polygon is not None:

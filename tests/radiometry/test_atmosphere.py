@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from irsurvey.radiometry.atmosphere import (
@@ -91,6 +91,7 @@ def test_a_longer_path_is_not_a_power_of_a_shorter_one(columns, name: str) -> No
         assert 1 - tau[50.0] < 0.6 * (1 - tau[5.0] ** 10)
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(
     st.sampled_from(sorted(FITTED)),
     st.floats(0, 500),

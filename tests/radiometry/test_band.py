@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from irsurvey.radiometry.band import band_table
@@ -39,6 +39,7 @@ def test_the_slope_meets_the_table(columns, band_name: str, band: tuple[float, f
         assert slope == pytest.approx(table[f"dLdT_{band_name}"], rel=1e-4)
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(st.floats(150, 1800))
 def test_there_and_back_is_where_it_began(temperature: float) -> None:
     for band in ((7.5e-6, 13e-6), (3e-6, 5e-6)):

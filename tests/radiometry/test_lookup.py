@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from hypothesis.extra import numpy as arrays
 
@@ -46,6 +46,7 @@ def test_integers_keep_their_values(dtype: str) -> None:
     assert codes.codes[3, 4] == codes.no_data
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(
     arrays.arrays(np.float32, (6, 7), elements=st.floats(-60, 400, width=32)),
     arrays.arrays(np.bool_, (6, 7)),

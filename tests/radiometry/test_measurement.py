@@ -7,7 +7,7 @@ from math import nan
 
 import numpy as np
 import pytest
-from hypothesis import assume, given
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 from scipy import constants as codata
 from scipy.integrate import simpson
@@ -225,6 +225,7 @@ temperatures = st.floats(220, 600)
 fractions = st.floats(0.02, 1)
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(temperatures, fractions, st.floats(0, 300), st.floats(0, 1), st.floats(0, 1), st.sampled_from(sorted(BANDS)))
 def test_where_everything_is_equally_warm_the_camera_sees_that_temperature(
     kelvin: float, emissivity: float, distance: float, window: float, mirror: float, name: str
@@ -240,6 +241,7 @@ def test_where_everything_is_equally_warm_the_camera_sees_that_temperature(
     )
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(st.floats(150, 1800), st.sampled_from(sorted(BANDS)))
 def test_a_black_body_without_air_and_window_is_seen_as_it_is(kelvin: float, name: str) -> None:
     """Exact; nothing else needs to be known."""
@@ -247,6 +249,7 @@ def test_a_black_body_without_air_and_window_is_seen_as_it_is(kelvin: float, nam
     assert float(object_temperature(kelvin, 1.0, nan, NO_AIR, BANDS[name])) == pytest.approx(kelvin, abs=1e-9)
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(temperatures, fractions, st.floats(220, 350))
 def test_a_higher_emissivity_brings_the_reading_closer_to_the_surroundings(
     t_apparent: float, emissivity: float, t_reflected: float
@@ -262,6 +265,7 @@ def test_a_higher_emissivity_brings_the_reading_closer_to_the_surroundings(
 # --- the inverse ----------------------------------------------------------------------------------------------
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(
     st.sampled_from(sorted(BANDS)),
     st.floats(220, 900),
@@ -316,7 +320,10 @@ def test_impossible_optics_are_nan_and_nothing_is_warned_of() -> None:
     window = replace(ROOM, window_transmittance=0.8, t_window=295.0, t_window_ambient=295.0)
     for wrong in ({"window_transmittance": 0.0}, {"window_reflectance": 0.21}, {"window_reflectance": -0.1}):
         assert np.isnan(object_temperature(300.0, 0.9, 290.0, replace(window, **wrong), LONG_WAVE))
-    assert np.isnan(object_temperature(300.0, 0.9, 290.0, replace(ROOM, distance=-1.0), LONG_WAVE))
+    for emissivity in (0.9, 1.0):
+        behind = replace(ROOM, distance=-1.0)
+        assert np.isnan(object_temperature(300.0, emissivity, 290.0, behind, LONG_WAVE))
+        assert np.isnan(object_temperatures(np.array([300.0]), emissivity, 290.0, behind, LONG_WAVE)).all()
     assert np.isnan(amplification(300.0, 0.0, 290.0, ROOM, LONG_WAVE))
 
 

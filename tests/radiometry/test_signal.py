@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.optimize import brentq
 
@@ -36,6 +36,7 @@ def test_an_apparent_temperature_is_scale_times_stored_plus_offset() -> None:
     np.testing.assert_allclose(kelvin, [[273.15, 298.15], [323.15, 173.15]], rtol=1e-15)
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(st.floats(255, 420), st.floats(0.4, 1), st.floats(240, 320), st.floats(0.5, 1), st.floats(250, 320) | st.none())
 def test_a_stated_transmittance_is_undone_exactly(
     t_object: float, emissivity: float, reflected: float, transmittance: float, air: float | None
@@ -52,6 +53,7 @@ def test_a_stated_transmittance_is_undone_exactly(
     assert float(apparent_temperature(stored, signal, BAND)) == pytest.approx(expected, abs=TABLE_ERROR)
 
 
+@settings(deadline=None)  # the first example builds tables
 @given(st.floats(255, 420), st.floats(0.4, 1), st.floats(240, 320))
 def test_a_correction_at_distance_0_is_undone_exactly(t_object: float, emissivity: float, reflected: float) -> None:
     expected = black_body(emissivity * radiance(t_object) + (1 - emissivity) * radiance(reflected))
