@@ -33,6 +33,8 @@ from irsurvey.uncertainty import propagate
 
 _STRONG_AMPLIFICATION = 3.0
 """∂T/∂T_app from which a reader is warned."""
+_COARSE = 0.005
+"""Step [K] of quantised float frames from which it is told: a tenth of a good camera's noise."""
 
 __all__ = ["analyse", "failed", "reflected_by_reflector"]
 
@@ -197,5 +199,7 @@ def _flags(corrected: Corrected, screened: Screened, task: FrameTask) -> tuple[s
         (stretch > _STRONG_AMPLIFICATION, f"errors of the reading are amplified {stretch:.1f} times"),
         (corrected.scene["wind"].source == "default" if "wind" in values else False, "wind not recorded, assumed"),
     ]
+    step = corrected.quantised_to
+    told.append((step > _COARSE, f"numbers read in steps of {step:.3f} K: a far-off one stretches their range"))
     notes = validity_notes(values["distance"], values["air"], values["pressure"])
     return (*(text for applies, text in told if applies), *notes)

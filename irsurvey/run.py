@@ -165,7 +165,7 @@ def _concluded(survey: Survey, frames: tuple[FrameReport, ...]) -> Report:
         format=1,
         tool={"name": "irsurvey", "version": __version__},
         survey=json.loads(survey.as_read),
-        conditions_review=tuple(reviewed(survey.tasks)),
+        conditions_review=reviewed(survey.tasks),
         assets=tuple(_assets(survey, frames)),
         frames=frames,
         cautions=(),

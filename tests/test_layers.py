@@ -26,7 +26,7 @@ HOMES = {
 }
 """Where a heavy dependency may be imported."""
 
-CALCULATING = {"radiometry", "heat", "anomalies", "geometry", "assess", "uncertainty", "pipeline"}
+CALCULATING = {"radiometry", "heat", "anomalies", "geometry", "assess", "uncertainty", "analysis", "pipeline"}
 """Folders without input and output; their own tables come through importlib.resources."""
 READS_OR_WRITES = {"io", "os", "pathlib", "shutil", "socket", "subprocess", "tempfile", "urllib"}
 

@@ -190,6 +190,17 @@ def test_a_float_frame_and_the_same_frame_in_integers_agree():
     assert one.findings[0].mean_delta_k.value == pytest.approx(other.findings[0].mean_delta_k.value, abs=1e-3)
 
 
+def test_one_far_off_number_that_makes_a_float_frame_coarse_is_told():
+    stored = np.rint(wall() * 100).astype(np.float32) / 100
+    camera = tasks.camera(signal=replace(tasks.CENTIKELVIN, scale=1.0))
+    fine, _ = pipeline.analyse(Frame(stored.copy(), "0" * 64), tasks.task(camera=camera))
+    assert not any("steps of" in flag for flag in fine.flags)
+    stored[0, 0] = -9999  # a fill value nobody declared
+    coarse, maps = pipeline.analyse(Frame(stored, "0" * 64), tasks.task(camera=camera))
+    assert any("steps of" in flag for flag in coarse.flags)
+    assert np.isnan(maps.temperature_c[0, 0])
+
+
 def test_a_clean_frame_is_a_bounded_statement():
     report, _ = pipeline.analyse(tasks.frame(wall(delta=0)), tasks.task())
     assert report.findings == ()

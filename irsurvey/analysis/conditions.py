@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable
 
 from irsurvey.assess.conditions import review
 from irsurvey.model import ConditionCheck, FrameTask
+
+_VERDICTS = ("met", "not recorded", "not met")
+"""From best to worst."""
 
 
 def recorded(task: FrameTask) -> dict[str, float | None]:
@@ -25,14 +28,15 @@ def recorded(task: FrameTask) -> dict[str, float | None]:
     }
 
 
-def reviewed(tasks: Iterable[FrameTask]) -> Iterator[ConditionCheck]:
-    """One row per group and requirement, repeated only where frames of a group recorded different values."""
-    seen = set()
+def reviewed(tasks: Iterable[FrameTask]) -> tuple[ConditionCheck, ...]:
+    """One row per group and requirement: what its frames recorded, of several values the one that fares worst."""
+    rows: dict[tuple[str, str], ConditionCheck] = {}
     for task in tasks:
         for row in review(task.kind, task.method, recorded(task), task.group or ""):
-            if row not in seen:
-                seen.add(row)
-                yield row
+            kept = rows.setdefault((row.group, row.check), row)
+            if _VERDICTS.index(row.verdict) > _VERDICTS.index(kept.verdict):
+                rows[row.group, row.check] = row
+    return tuple(rows.values())
 
 
 def _hours(seconds: float | None) -> float | None:

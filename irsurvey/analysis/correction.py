@@ -46,6 +46,13 @@ class Corrected:
     unsolved_pixels: int
     without_data_pixels: int
 
+    @property
+    def quantised_to(self) -> float:
+        """Step [K] to which a float frame was quantised; 0 for integers, which keep their values."""
+        if self.codes.step == 1 or self.apparent.size < 2:
+            return 0.0
+        return float(np.nanmedian(np.abs(np.diff(self.apparent))))
+
 
 def air_path(values: Mapping[str, Any]) -> Path:
     """The path between surface and camera for scene values (scalars, or columns of many scenes)."""

@@ -140,7 +140,7 @@ def components(
             max_c=numbers["max_c"],
             mean_c=_celsius(results.get((component.name, "mean"))),
             delta_similar_k=numbers["delta_similar_k"],
-            similar_to=plan.name,
+            similar_to=None if plan.is_coolest else plan.name,
             delta_ambient_k=numbers["delta_ambient_k"],
             heat_flux_w_m2=results.get((component.name, "flux")),
             at_rated_load=_at_rated(member, numbers),

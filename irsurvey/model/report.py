@@ -159,7 +159,7 @@ class ComponentReport:
     max_c: Estimate | None
     mean_c: Estimate | None
     delta_similar_k: Estimate | None
-    similar_to: str | None  # the twin it was compared with
+    similar_to: str | None  # the twin it was compared with; None for the coolest itself, whose difference is 0
     delta_ambient_k: Estimate | None
     heat_flux_w_m2: Estimate | None
     at_rated_load: RatedLoad | None

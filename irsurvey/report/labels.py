@@ -20,7 +20,7 @@ _PADDING = 4  # between the lettering and the edge of its tag
 _GAPS = (7, 18, 34)  # from what is labelled to its tag, the nearest that is free
 _LATTICE = 24  # step of the places tried in a crowded picture
 TAG_COST = 100
-"""What a pixel of a tag adds to `busy`; the outlined regions themselves add 1."""
+"""What a pixel of a tag adds to `busy`; outlines and what they enclose add 1."""
 
 
 @dataclass(frozen=True, slots=True)

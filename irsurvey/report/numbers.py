@@ -103,7 +103,8 @@ def percent(fraction: float | None) -> str:
 def with_unit(text: str, key: str) -> str:
     """The number, a space that does not break, and the unit its key ends in."""
     symbol = unit(key)
-    return f"{text}\u00a0{symbol}" if symbol and text != NOTHING else text
+    space = "" if symbol == "°" else "\u00a0"
+    return f"{text}{space}{symbol}" if symbol and text != NOTHING else text
 
 
 def _rounded(value: float, place: int) -> str:

@@ -108,7 +108,7 @@ def _draw(canvas: Pixels, frame: FrameReport, maps: Maps, *, factor: int, extrem
     for polygon in polygons:
         outlines.along_polygon(canvas, polygon)
 
-    busy = (regions > 0).astype(np.int32)
+    busy = ((regions > 0) | (canvas >= LEVELS)).astype(np.int32)
     for polygon in polygons:
         cv2.fillPoly(busy, [polygon], 1)
     for x, y in extremes:
