@@ -42,7 +42,7 @@ class Commands(click.Group):
             help_at = f"; see {context.command_path} --help" if context else ""
             code = _complain(NOTHING_RUN, error.format_message().rstrip(".") + help_at)
         except click.Abort:
-            code = _complain(INTERRUPTED, "stopped: every file written so far is whole, and the next run goes on")
+            code = _complain(INTERRUPTED, "stopped: every file written so far is whole; run it again to finish")
         except Exception as error:  # the last resort: whatever it is, a user sees one line
             if os.environ.get("IRSURVEY_DEBUG"):
                 raise

@@ -8,10 +8,14 @@ from math import inf
 
 @dataclass(frozen=True, slots=True)
 class Estimate:
-    """A measured number and its standard uncertainty (k = 1), in the unit its field's name ends in."""
+    """A measured number and its standard uncertainty (k = 1), in the unit its field's name ends in.
+
+    `interval_95`: ends of the 95 % interval where it was drawn (Monte Carlo); None: value ± 1.96 u.
+    """
 
     value: float
     u: float | None
+    interval_95: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,7 +24,8 @@ class Quantity:
 
     `source` is one of "survey", "group", "frame", "surface", "default", "material table",
     "measured in frame", "log".  `low` and `high` bound the domain (an emissivity ends at 1), so that
-    a step out of it is taken one-sided.
+    a step out of it is taken one-sided.  `distribution` is "normal" or "rectangular".  `follows` names a
+    quantity this one moves with, one to one, its own `u` on top: one value given for several.
     """
 
     name: str
@@ -29,6 +34,8 @@ class Quantity:
     source: str = "default"
     low: float = -inf
     high: float = inf
+    distribution: str = "normal"
+    follows: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +54,7 @@ class Scene:
     """
 
     quantities: tuple[Quantity, ...]
+    correlations: tuple[tuple[str, str, float], ...] = ()  # two names and their coefficient, −1…1
 
     def __getitem__(self, name: str) -> Quantity:
         for quantity in self.quantities:

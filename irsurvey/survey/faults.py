@@ -35,6 +35,7 @@ _EXPECTED = {
     "model_type": "a table",
 }
 _BOUNDS = ("gt", "ge", "le")
+_KNOWN_KEY = "a known key"
 _GONE = object()
 
 
@@ -50,17 +51,14 @@ def validated(content: Mapping[str, Any]) -> tuple[Document, list[Fault]]:
             return Document.model_validate(content), faults
         except ValidationError as error:
             details = error.errors(include_url=False)
-        new = [_fault(detail, content) for detail in details]
-        faults += [fault for fault in new if not follows_from(fault, faults)]
+        faults += [_fault(detail, content) for detail in details if not _is_consequence(detail, content, faults)]
         content = _cut(content, [_culprit(detail, content) for detail in details])
 
 
 def follows_from(fault: Fault, earlier: Iterable[Fault]) -> bool:
-    """Whether a fault concerns something that contains, or is the same key as, something found earlier."""
-    return any(
-        other.where == fault.where
-        or other.where.startswith((f"{fault.where}.", f"{fault.where}["))
-        or (fault.got.startswith("nothing") and other.where.split(".")[-1] == fault.where.split(".")[-1])
+    """Whether something is missing, or a name unknown, only because of a fault found earlier."""
+    return _lies_over(fault.where, earlier) or any(
+        fault.got.startswith("nothing") and other.where.split(".")[-1] == fault.where.split(".")[-1]
         for other in earlier
     )
 
@@ -81,7 +79,8 @@ def key_path(place: Place, content: object) -> str:
             text += f"[{_item_name(content) or f'#{step + 1}'}]"
         else:
             content = content.get(step) if isinstance(content, dict) else None
-            text += f".{step}" if text else step
+            name = step or '""'
+            text += f".{name}" if text else name
     return text
 
 
@@ -108,6 +107,8 @@ def keys_of(table: type[Table]) -> list[str]:
 
 def shown(value: object) -> str:
     """A value in a message: short, on one line."""
+    if value is None:
+        return "nothing"
     if isinstance(value, dict):
         return "a table"
     if isinstance(value, list | tuple) and len(value) > 4:
@@ -128,28 +129,60 @@ def _item_name(item: object) -> str | None:
     return PurePosixPath(item["file"]).stem if isinstance(item.get("file"), str) else None
 
 
+def _is_consequence(detail: ErrorDetails, content: Mapping[str, Any], earlier: list[Fault]) -> bool:
+    """Whether a detail is there only because what was at fault earlier was cut out."""
+    if detail["type"] != "survey":
+        return _lies_over(key_path(_place(detail), content), earlier)
+    ctx, table = detail["ctx"], _table(detail)
+    names = [name for name in (ctx["key"], *ctx["of"]) if name]
+    return any(_lies_over(key_path((*table, name), content), earlier) for name in names)
+
+
+def _lies_over(where: str, earlier: Iterable[Fault]) -> bool:
+    """Whether a fault, other than that of an unknown key, was found at a key path or below it."""
+    return any(
+        other.where == where or other.where.startswith((f"{where}.", f"{where}["))
+        for other in earlier
+        if other.expected != _KNOWN_KEY
+    )
+
+
+def _table(detail: ErrorDetails) -> Place:
+    """Where a detail points in the file, without the tags of unions."""
+    return tuple(step for step in detail["loc"] if isinstance(step, int) or not step.startswith("<"))
+
+
 def _place(detail: ErrorDetails) -> Place:
-    """Where a detail points in the file: without the tags of unions, with the key that a table's own check names."""
-    place = tuple(step for step in detail["loc"] if isinstance(step, int) or not step.startswith("<"))
-    own = detail.get("ctx", {}).get("key") if detail["type"] == "survey" else None
+    """The key at fault: that of a union by its quantity, that which a table's own check names, or where it points."""
+    place = _table(detail)
     if detail["type"].startswith("union_tag"):
         return (*place, "quantity")
+    own = detail["ctx"]["key"] if detail["type"] == "survey" else ""
     return (*place, own) if own else place
 
 
 def _culprit(detail: ErrorDetails, content: Mapping[str, Any]) -> Place:
     """What to cut out: the value at fault, or the table that misses something."""
     place = _place(detail)
-    while place:
-        inside: Any = content
-        try:
-            for step in place:
-                inside = inside[step]
-        except (KeyError, IndexError, TypeError):
-            place = place[:-1]
-        else:
-            return place
+    while place and not _holds(content, place):
+        place = place[:-1]
+    while place and isinstance(place[-1], int) and not _lists_tables(place):
+        place = place[:-1]  # a list of numbers makes no sense without one of them
     return place
+
+
+def _holds(content: Any, place: Place) -> bool:
+    try:
+        for step in place:
+            content = content[step]
+    except (KeyError, IndexError, TypeError):
+        return False
+    return True
+
+
+def _lists_tables(place: Place) -> bool:
+    field = field_at(place)
+    return field is not None and bool(_tables_in(field.annotation))
 
 
 def _cut(content: Mapping[str, Any], places: list[Place]) -> dict[str, Any]:
@@ -184,7 +217,7 @@ def _fault(detail: ErrorDetails, content: Mapping[str, Any]) -> Fault:
         return Fault(where, ctx["expected"], ctx["got"], ctx["remedy"])
     if kind == "extra_forbidden":
         known = [name for table in tables_at(place[:-1]) for name in keys_of(table)]
-        return Fault(where, "a known key", f"the unknown key {place[-1]}", nearest(str(place[-1]), known))
+        return Fault(where, _KNOWN_KEY, f"the unknown key {place[-1]}", nearest(str(place[-1]), known))
     if kind == "missing":
         field = field_at(place)
         return Fault(where, "a value, as it is required", "nothing", _meaning(field))
@@ -192,7 +225,7 @@ def _fault(detail: ErrorDetails, content: Mapping[str, Any]) -> Fault:
         # pydantic lists what it expected as 'a', 'b' or '<a>', '<b>', by the tags of a union
         words = re.findall(r"'<?([^'>]*)>?'", ctx.get("expected") or ctx["expected_tags"])
         given = detail["input"] if kind == "literal_error" else _quantity(detail["input"])
-        got = "nothing" if given is None else shown(given)
+        got = shown(given)
         expected = " or ".join(map(shown, words)) or ctx["expected"]
         return Fault(where, expected, got, nearest(str(given), words) if given else "")
     field = field_at(place)

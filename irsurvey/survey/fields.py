@@ -13,9 +13,9 @@ from pydantic import AfterValidator, BaseModel, ConfigDict, Field, Strict, WithJ
 from pydantic_core import PydanticCustomError
 
 
-def wrong(expected: str, got: str, remedy: str = "", key: str = "") -> PydanticCustomError:
-    """A fault found by a table's own check; `key` is the key at fault, where it is one of several."""
-    details = {"expected": expected, "got": got, "remedy": remedy, "key": key}
+def wrong(expected: str, got: str, remedy: str = "", *, key: str = "", of: tuple[str, ...] = ()) -> PydanticCustomError:
+    """A fault found by a table's own check, at its `key` or the table; `of` are other keys it would not be without."""
+    details = {"expected": expected, "got": got, "remedy": remedy, "key": key, "of": of}
     return PydanticCustomError("survey", "{expected}", details)
 
 

@@ -109,7 +109,7 @@ class Uncertainty(Table):
             ("known_length_m", "known_length_fraction"),
         ):
             if self.model_fields_set.issuperset(pair):
-                raise wrong("one of the two", " and ".join(pair), "drop one", pair[1])
+                raise wrong("one of the two", " and ".join(pair), "drop one", key=pair[1])
         return self
 
 
@@ -154,7 +154,7 @@ class Conditions(Table):
     @model_validator(mode="after")
     def _one_source_of_reflected(self) -> Conditions:
         if self.reflected_c is not None and self.reflected_from is not None:
-            raise wrong("either reflected_c or reflected_from", "both", "drop one", "reflected_from")
+            raise wrong("either reflected_c or reflected_from", "both", "drop one", key="reflected_from")
         return self
 
 
@@ -208,10 +208,17 @@ class Surface(Drawn):
     def _temperature_goes_with_role(self) -> Surface:
         is_known = self.role == "known-temperature"
         if is_known and self.temperature_c is None:
-            raise wrong("temperature_c with role known-temperature", "nothing", "state it in °C", "temperature_c")
+            raise wrong(
+                "temperature_c with role known-temperature",
+                "nothing",
+                "state it in °C",
+                key="temperature_c",
+                of=("role",),
+            )
         if not is_known and self.temperature_c is not None:
             remedy = 'write role = "known-temperature" or drop it'
-            raise wrong("no temperature_c with this role", f"{self.temperature_c:g}", remedy, "temperature_c")
+            got = f"{self.temperature_c:g}"
+            raise wrong("no temperature_c with this role", got, remedy, key="temperature_c", of=("role",))
         return self
 
 
@@ -292,7 +299,7 @@ class Frame(Level):
     @model_validator(mode="after")
     def _has_one_scale(self) -> Frame:
         if self.known_length is not None and self.known_rectangle is not None:
-            raise wrong("either known_length or known_rectangle", "both", "drop one", "known_rectangle")
+            raise wrong("either known_length or known_rectangle", "both", "drop one", key="known_rectangle")
         return self
 
 

@@ -26,6 +26,8 @@ from irsurvey.survey.fields import (
     wrong,
 )
 
+_AS_SET = "state what the camera was set to"
+
 
 class Assumed(Table):
     """What a camera that stores object temperatures has already corrected with."""
@@ -44,12 +46,13 @@ class Assumed(Table):
     def _is_complete(self) -> Assumed:
         if (self.transmittance is None) == (self.distance_m is None):
             got = "neither" if self.distance_m is None else "both"
-            raise wrong("either transmittance or distance_m", got, "distance_m = 0 where the camera left the air out")
+            remedy = "distance_m = 0 where the camera left the air out"
+            raise wrong("either transmittance or distance_m", got, remedy, of=("transmittance", "distance_m"))
         if self.reflected_c is None and self.emissivity < 1:
-            raise wrong("reflected_c, as emissivity is below 1", "nothing", "state what the camera used", "reflected_c")
+            raise wrong("reflected_c, as emissivity is below 1", "nothing", _AS_SET, key="reflected_c")
         for name in ("air_c", "relative_humidity_percent"):
             if self.distance_m and getattr(self, name) is None:
-                raise wrong(f"{name}, as distance_m is above 0", "nothing", "state what the camera used", name)
+                raise wrong(f"{name}, as distance_m is above 0", "nothing", _AS_SET, key=name)
         return self
 
 
@@ -69,7 +72,8 @@ class Calibration(Table):
     @model_validator(mode="after")
     def _is_one_and_monotonic(self) -> Calibration:
         if (self.points is None) == (self.sakuma_hattori is None):
-            raise wrong("either points or sakuma_hattori", "neither" if self.points is None else "both")
+            got = "neither" if self.points is None else "both"
+            raise wrong("either points or sakuma_hattori", got, of=("points", "sakuma_hattori"))
         by_temperature = sorted(self.points or [], key=lambda point: point[1])
         steps = [
             ((hotter[0] > colder[0]) - (hotter[0] < colder[0])) * (hotter[1] > colder[1])
@@ -105,11 +109,12 @@ class Counts(Table):
     @model_validator(mode="after")
     def _is_one(self) -> Counts:
         if (self.gain is None) == (self.calibration is None):
-            raise wrong("either gain or calibration", "neither" if self.gain is None else "both", key="gain")
+            got = "neither" if self.gain is None else "both"
+            raise wrong("either gain or calibration", got, key="gain", of=("calibration",))
         if self.gain == 0:
-            raise wrong("a gain other than 0", "0", "band radiance per count", "gain")
+            raise wrong("a gain other than 0", "0", "band radiance per count", key="gain")
         if self.calibration is not None and "bias" in self.model_fields_set:
-            raise wrong("no bias beside a calibration", str(self.bias), "a closed form has a bias of its own", "bias")
+            raise wrong("no bias beside a calibration", str(self.bias), "a closed form has its own", key="bias")
         return self
 
 

@@ -49,7 +49,7 @@ Load = Callable[..., Survey]
 Faults = Callable[..., tuple[Fault, ...]]
 
 
-@pytest.fixture()
+@pytest.fixture
 def folder(tmp_path: Path) -> Path:
     """The survey's folder, beside which other files may lie."""
     folder = tmp_path / "site"
@@ -57,7 +57,7 @@ def folder(tmp_path: Path) -> Path:
     return folder
 
 
-@pytest.fixture()
+@pytest.fixture
 def load_text(folder: Path) -> Load:
     """Writes survey.toml and the files beside it, and loads it."""
 
@@ -70,7 +70,7 @@ def load_text(folder: Path) -> Load:
     return loaded
 
 
-@pytest.fixture()
+@pytest.fixture
 def faults_of(load_text: Load) -> Faults:
     """The faults of a survey file that must have some."""
 
@@ -83,7 +83,7 @@ def faults_of(load_text: Load) -> Faults:
     return faults
 
 
-@pytest.fixture()
+@pytest.fixture
 def minimal() -> str:
     """The shortest survey that runs: one frame F01, air 20, reflected 19 °C, 2 m."""
     return MINIMAL

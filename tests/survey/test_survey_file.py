@@ -40,7 +40,7 @@ ULP = 1e-12
 """Relative: a unit conversion is a few roundings of a double (2e-16 each)."""
 
 
-@pytest.fixture()
+@pytest.fixture
 def survey(load_text: Callable[..., Survey]) -> Survey:
     return load_text(EVERYTHING, FILES)
 

@@ -129,7 +129,7 @@ def test_a_frame_without_a_time_cannot_use_a_log(minimal: str, load_text: Load) 
         ("time,air_c\n2026-01-18T07:00,warm\n", "conditions.log[log.csv].air_c, line 2", '"warm"'),
         ("time,air_c\n2026-01-18T07:00,1\n2026-01-18T08:00,999\n", "conditions.log[log.csv].air_c, line 3", "999.0"),
         ("time,air_c\n18.01.2026 07:00,1\n", "conditions.log[log.csv], line 2", '"18.01.2026 07:00"'),
-        ("time,air_c\n,1\n", "conditions.log[log.csv], line 2", "null"),
+        ("time,air_c\n,1\n", "conditions.log[log.csv], line 2", "nothing"),
         ("when,air_c\n2026-01-18T07:00,1\n", "conditions.log[log.csv]", "when, air_c"),
         ("time,air\n2026-01-18T07:00,1\n", "conditions.log[log.csv]", "time, air"),
         ("", "conditions.log[log.csv]", "nothing"),

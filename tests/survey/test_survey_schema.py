@@ -1,0 +1,105 @@
+"""The JSON Schema of the survey file agrees with what is loaded."""
+
+from __future__ import annotations
+
+import json
+import tomllib
+from collections.abc import Iterator
+from copy import deepcopy
+from pathlib import Path
+from typing import Any
+
+import jsonschema
+import pytest
+
+from irsurvey.survey.load import schema
+
+EVERYTHING = tomllib.loads(Path(__file__).with_name("everything.toml").read_text("utf-8"))
+VALIDATOR = jsonschema.Draft202012Validator(schema())
+
+
+def as_json(content: dict[str, Any]) -> Any:
+    return json.loads(json.dumps(content, default=lambda moment: moment.isoformat()))
+
+
+def tables() -> Iterator[tuple[str, dict[str, Any]]]:
+    yield "top", schema()
+    yield from schema()["$defs"].items()
+
+
+def test_the_schema_is_a_schema_and_can_be_written() -> None:
+    jsonschema.Draft202012Validator.check_schema(schema())
+    assert json.loads(json.dumps(schema())) == schema()
+
+
+def test_the_schema_accepts_a_file_that_states_every_key() -> None:
+    VALIDATOR.validate(as_json(EVERYTHING))
+
+
+def places(value: Any, place: tuple[Any, ...] = ()) -> Iterator[tuple[Any, ...]]:
+    if isinstance(value, dict):
+        yield place
+        for key, inner in value.items():
+            yield from places(inner, (*place, key))
+    elif isinstance(value, list):
+        for index, inner in enumerate(value):
+            yield from places(inner, (*place, index))
+
+
+FREE = {("cameras",), ("circuit", 0, "load_a")}
+"""Tables whose keys are names: of cameras, of phases."""
+
+
+@pytest.mark.parametrize("place", [place for place in places(EVERYTHING) if place not in FREE], ids=str)
+def test_the_schema_rejects_an_unknown_key_in_every_table(place: tuple[Any, ...]) -> None:
+    content = deepcopy(EVERYTHING)
+    inside: Any = content
+    for step in place:
+        inside = inside[step]
+    inside["unknown_key"] = 1
+    assert not VALIDATOR.is_valid(as_json(content))
+
+
+@pytest.mark.parametrize(
+    ("place", "value"),
+    [
+        (("target", "emissivity"), 1.2),
+        (("target", "emissivity"), 0),
+        (("conditions", "distance_m"), -1),
+        (("conditions", "relative_humidity_percent"), 101),
+        (("conditions", "air_c"), None),
+        (("survey", "kind"), "bridge"),
+        (("frame", 0, "reference", "polygon"), [[1, 1], [2, 2]]),
+        (("frame", 0, "reference"), "manual"),
+        (("cameras", "wide", "signal", "quantity"), "radiance"),
+        (("uncertainty", "air_k"), {"half_width": -1}),
+    ],
+)
+def test_the_schema_rejects_what_loading_rejects(place: tuple[Any, ...], value: Any) -> None:
+    content = deepcopy(EVERYTHING)
+    inside: Any = content
+    for step in place[:-1]:
+        inside = inside[step]
+    inside[place[-1]] = value
+    assert not VALIDATOR.is_valid(as_json(content))
+
+
+def test_every_key_is_described_and_has_a_default_or_is_required() -> None:
+    count = 0
+    for name, table in tables():
+        for key, described in table.get("properties", {}).items():
+            count += 1
+            assert described.get("description"), (name, key)
+            assert (key in table.get("required", ())) != ("default" in described), (name, key)
+    assert count > 150
+
+
+def test_known_defaults_are_listed() -> None:
+    definitions = schema()["$defs"]
+    assert definitions["Conditions"]["properties"]["relative_humidity_percent"]["default"] == 50
+    assert definitions["Conditions"]["properties"]["pressure_hpa"]["default"] == 1013.25
+    assert definitions["Camera"]["properties"]["accuracy_k"]["default"] == 2.0
+    assert definitions["Uncertainty"]["properties"]["emissivity"]["default"] == {"half_width": 0.05}
+    assert definitions["Detection"]["properties"]["min_pixels"]["default"] == 25
+    assert schema()["required"] == ["survey"]
+    assert definitions["About"]["required"] == ["title"]
