@@ -9,6 +9,7 @@ import os
 import sys
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
+from io import TextIOWrapper
 from math import isfinite
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -30,6 +31,9 @@ class Commands(click.Group):
 
     def main(self, *args: Any, **extra: Any) -> Any:  # click's own signature is as loose
         """Run a command and leave with its exit code."""
+        for stream in (sys.stdout, sys.stderr):
+            if isinstance(stream, TextIOWrapper):
+                stream.reconfigure(errors="replace")  # a letter the terminal lacks may not cost a run its summary
         try:
             code = super().main(*args, **extra | {"standalone_mode": False})
         except IrsurveyError as error:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 import subprocess
 import sys
 from pathlib import Path
@@ -256,6 +257,13 @@ def test_text_from_a_survey_is_printed_as_it_is(lodge: Path) -> None:
     text = SURVEY.replace('file = "sound.npy"', 'file = "sound.npy"\nlabel = "[red]north[/red] :skull:"')
     (lodge / "survey.toml").write_text(text, encoding="utf-8")
     assert "[red]north[/red] :skull:" in irsurvey_("run", lodge).stdout
+
+
+def test_letters_a_terminal_lacks_do_not_stop_a_command() -> None:
+    environment = os.environ | {"PYTHONIOENCODING": "ascii"}
+    command = [sys.executable, "-c", "from irsurvey.cli import main; main(['criteria'])"]
+    done = subprocess.run(command, env=environment, capture_output=True, text=True, check=True)
+    assert "visible: ? 1 and < 3" in done.stdout
 
 
 def test_no_command_at_all_shows_the_help() -> None:

@@ -69,7 +69,7 @@ def report_schema() -> dict[str, Any]:
         record["properties"] = {
             key.removesuffix("_"): _described(key, value) for key, value in record["properties"].items()
         }
-        record["required"] = list(record["properties"])
+        record["required"] = [key for key in record["properties"] if key != "interval_95"]
         record["additionalProperties"] = False
     return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
 
@@ -77,6 +77,8 @@ def report_schema() -> dict[str, Any]:
 def _plain(value: Any) -> Any:
     if isinstance(value, Estimate) and not isfinite(value.value):
         return None
+    if isinstance(value, Estimate) and value.interval_95 is None:
+        return {"value": _plain(value.value), "u": _plain(value.u)}
     if is_dataclass(value):
         return plain(value)
     if isinstance(value, dict):

@@ -36,6 +36,7 @@ _EXPECTED = {
 }
 _BOUNDS = ("gt", "ge", "le")
 _KNOWN_KEY = "a known key"
+_TAG = re.compile(r"<[a-z-]+>")
 _GONE = object()
 
 
@@ -149,7 +150,10 @@ def _lies_over(where: str, earlier: Iterable[Fault]) -> bool:
 
 def _table(detail: ErrorDetails) -> Place:
     """Where a detail points in the file, without the tags of unions."""
-    return tuple(step for step in detail["loc"] if isinstance(step, int) or not step.startswith("<"))
+    steps = detail["loc"]
+    own = steps[-1:] if detail["type"] == "extra_forbidden" else ()  # an unknown key may look like a tag
+    tagged = steps[: len(steps) - len(own)]
+    return (*(step for step in tagged if isinstance(step, int) or not _TAG.fullmatch(step)), *own)
 
 
 def _place(detail: ErrorDetails) -> Place:
