@@ -19,7 +19,7 @@ from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.errors import Fault, OutputError, SurveyError
 from irsurvey.files import write_text
 from irsurvey.model import Quantity, Scene
-from irsurvey.radiometry.atmosphere import absorptance_u, fitted_band, transmittance
+from irsurvey.radiometry.atmosphere import absorptance_u, fitted_band, transmittance, validity_notes
 from irsurvey.radiometry.measurement import amplification, object_temperature
 from irsurvey.uncertainty.propagate import propagate
 
@@ -233,6 +233,7 @@ def _notes(stated: Mapping[str, float], value: Mapping[str, float], band: tuple[
     fit, is_exact = fitted_band(band)
     if has_air and not is_exact:
         notes.append(f"air path as for {fit}, the nearest band with a model")
+    notes += validity_notes(value["distance_m"], *(COLUMNS[name].si(value[name]) for name in ("air_c", "pressure_hpa")))
     if value["emissivity"] < REFLECTIVE:
         notes.append("too reflective for a claim: tape or paint the spot and read again")
     if len(silent) == len(uses):

@@ -201,6 +201,12 @@ def test_shiny_and_delicate_readings_are_marked() -> None:
     assert "too reflective" not in correct({"apparent_c": 30.0, "emissivity": 0.6, "reflected_c": 20.0}).note
 
 
+def test_paths_beyond_the_air_model_are_marked() -> None:
+    note = correct({"apparent_c": 30.0, "distance_m": 800.0, "air_c": 20.0}).note
+    assert "path of 800 m" in note
+    assert "air model" not in correct({"apparent_c": 30.0}).note
+
+
 def test_what_was_not_stated_is_shown_as_assumed() -> None:
     note = correct({"apparent_c": 30.0, "distance_m": 5.0, "air_c": 20.0}).note
     for assumed in ("emissivity 1", "relative_humidity_percent 50", "pressure_hpa 1013.25", "band_low_um 7.5"):

@@ -18,11 +18,12 @@ from numpy.typing import NDArray
 from irsurvey.errors import OutputError, SurveyError, UsageError
 from irsurvey.model import ReadOptions
 from irsurvey.readers import read
-from irsurvey.run import check, load_survey
+from irsurvey.run import check, load_survey, run
 from irsurvey.start import write_start
 from irsurvey.start.scaling import SCALES, Scaling, known_point, ordinary, scalings
 
 REAL = Path(__file__).parent / "real"
+SAMPLES = Path(__file__).parents[1] / "sample_frames"
 RAW = read(REAL / "derived" / "22-20-28-391_raw.png", ReadOptions()).stored
 CELSIUS = RAW * 0.025 - 100
 """The real house front: °C = 0.025·stored − 100, as its author documents it (Sutherland 2025, MIT)."""
@@ -255,6 +256,32 @@ def test_a_mixed_folder_becomes_a_survey_with_a_camera_for_each_kind_of_file(tmp
     assert (first.id, first.photo, first.camera.signal.offset) == ("a", "a.jpg", 273.15)
     assert (second.id, second.group, second.camera.signal.scale) == ("a-1", "north-wall", 0.01)
     assert any("logger.csv" in notice for notice in started.notices)
+
+
+def test_cameras_that_share_a_format_are_told_apart_by_their_numbers(tmp_path: Path) -> None:
+    """The sample house: rooms in steps of 0.04 K, elevations in hundredths of a kelvin, both uint16 TIFF."""
+    shutil.copytree(SAMPLES / "house" / "frames", tmp_path / "site")
+    survey = written(tmp_path / "site")
+    scale_of = {name: camera["signal"].get("scale", 1.0) for name, camera in survey["cameras"].items()}
+    scales = {Path(frame["file"]).stem: scale_of[frame["camera"]] for frame in survey["frame"]}
+    assert (scales["living-north"], scales["north-wall"], scales["living-corner"]) == (0.04, 0.01, 1.0)
+
+
+def test_a_fitted_scale_holds_for_the_other_frames_of_its_camera(tmp_path: Path) -> None:
+    shutil.copytree(REAL / "dunr", tmp_path / "site")
+    first = read(tmp_path / "site" / "22-18-41-880-radiometric.tiff", ReadOptions()).stored * 0.025 - 100
+    survey = written(tmp_path / "site", known(first, (320, 20), (320, 400)))
+    assert scaling_of(survey) == Scaling("C", 0.025, -100.0)
+    assert len(survey["frame"]) == 8
+
+
+def test_a_completed_survey_runs(tmp_path: Path) -> None:
+    shutil.copy(REAL / "derived" / "22-20-28-391_raw.png", tmp_path)
+    path = write_start(tmp_path, known(CELSIUS, (200, 300), (300, 150))).path
+    completed(path, **SITE)
+    (frame,) = run(path, tmp_path / "out").frames
+    assert frame.status == "analysed"
+    assert frame.temperature is not None
 
 
 def test_start_is_deterministic(tmp_path: Path) -> None:

@@ -11,7 +11,7 @@ import numpy as np
 from irsurvey.errors import Fault, UsageError
 from irsurvey.readers import READERS, read
 from irsurvey.start.look import Seen, rounding
-from irsurvey.start.scaling import ORDINARY_C, Known, Scaling, ordinary, scalings
+from irsurvey.start.scaling import Known, Scaling, is_ordinary, ordinary, scalings
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,22 +26,29 @@ class Meaning:
 def meanings(folder: Path, seen: Sequence[Seen], points: Sequence[Known]) -> dict[str, Meaning]:
     """Camera name → meaning of its files' numbers, fitted where there are known points.  Raises UsageError."""
     told = [(_frame_of(point, seen), point) for point in points]
+    groups: dict[tuple[object, ...], list[Seen]] = {}
+    for frame in seen:
+        is_told = any(frame == other for other, _ in told)
+        groups.setdefault((*_encoding(frame), "told" if is_told else ordinary(frame.middle)), []).append(frame)
+    fits: dict[tuple[object, ...], tuple[Scaling, str]] = {}
+    for kind in [kind for kind in groups if kind[-1] == "told"]:
+        mine = [(frame, point) for frame, point in told if frame in groups[kind]]
+        stored = [(_stored_at(folder, frame, point), point.celsius, point.half) for frame, point in mine]
+        fits[kind] = _fitted(stored, groups[kind][0].dtype)
+        for other in [other for other in groups if other[:-1] == kind[:-1] and other != kind]:
+            if not other[-1] or all(is_ordinary(fits[kind][0].celsius(frame.middle)) for frame in groups[other]):
+                groups[kind] += groups.pop(other)
     found: dict[str, Meaning] = {}
-    for encoding in dict.fromkeys(_encoding(frame) for frame in seen):
-        frames = tuple(frame for frame in seen if _encoding(frame) == encoding)
+    for kind, frames in groups.items():
         name = f"{Path(frames[0].file).suffix.lower().removeprefix('.')}-{frames[0].dtype}"
         name = f"{name}-{len(found) + 1}" if name in found else name
-        mine = [
-            (_stored_at(folder, frame, point), point.celsius, point.half) for frame, point in told if frame in frames
-        ]
-        found[name] = Meaning(frames, *(_fitted(mine, frames[0].dtype) if mine else _guessed(frames)))
+        found[name] = Meaning(tuple(frames), *(fits.get(kind) or _guessed(frames[0])))
     return found
 
 
 def _encoding(frame: Seen) -> tuple[object, ...]:
-    """Files that agree in this are taken to mean the same by their numbers."""
-    is_kelvin = "float" in frame.dtype and frame.middle > ORDINARY_C[1] + 100
-    return READERS[Path(frame.file).suffix.lower()], frame.dtype, is_kelvin
+    """Files that differ in this cannot mean the same by their numbers."""
+    return READERS[Path(frame.file).suffix.lower()], frame.dtype
 
 
 def _fitted(points: Sequence[tuple[float, float, float]], dtype: str) -> tuple[Scaling, str]:
@@ -59,9 +66,9 @@ def _fitted(points: Sequence[tuple[float, float, float]], dtype: str) -> tuple[S
     return found[0], f"{found[0]} fits the known points{others}"
 
 
-def _guessed(frames: Sequence[Seen]) -> tuple[Scaling | None, str]:
-    """The scaling that makes ordinary temperatures of all frames, and that it is a guess."""
-    found = ordinary(float(np.median([frame.middle for frame in frames])))
+def _guessed(frame: Seen) -> tuple[Scaling | None, str]:
+    """The scaling that makes ordinary temperatures of a frame and its like, and that it is a guess."""
+    found = ordinary(frame.middle)
     if not found:
         return None, "no common scale makes ordinary temperatures of these numbers: two --known points would tell"
     others = f", or {', '.join(map(str, found[1:]))}" if found[1:] else ""

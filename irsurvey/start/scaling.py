@@ -24,7 +24,6 @@ WHOLE = (inf, 100.0, 50.0, 10.0, 5.0, 1.0)
 """An offset is a multiple of one of these: zero, then the rounder the plainer."""
 
 ORDINARY_C = (-40.0, 60.0)
-"""The middle of a frame of a building or of switchgear lies between these [°C] (judgement)."""
 
 _KNOWN = re.compile(r"(?:(?P<file>.+):)?(?P<x>\d+),(?P<y>\d+)=(?P<celsius>[-+]?\d+(?:[.,](?P<decimals>\d+))?)")
 
@@ -91,4 +90,9 @@ def scalings(points: Sequence[tuple[float, float, float]], step: float) -> tuple
 def ordinary(middle: float) -> tuple[Scaling, ...]:
     """Scalings in wide use (common practice) that make a frame with this median one of ordinary temperature."""
     wide = (Scaling("C", 1.0), *(Scaling("K", scale) for scale in (1.0, 0.01, 0.1, 0.04)))
-    return tuple(scaling for scaling in wide if ORDINARY_C[0] <= scaling.celsius(middle) <= ORDINARY_C[1])
+    return tuple(scaling for scaling in wide if is_ordinary(scaling.celsius(middle)))
+
+
+def is_ordinary(celsius: float) -> bool:
+    """Whether the middle of a frame of a building or of switchgear may have this temperature (judgement)."""
+    return ORDINARY_C[0] <= celsius <= ORDINARY_C[1]

@@ -361,6 +361,12 @@ def test_a_fault_causes_no_second_one(minimal: str, faults_of: Faults) -> None:
     assert {fault.where for fault in faults_of(text)} == {"camera.band_um", "group[north].frames"}
 
 
+def test_an_unknown_key_hides_no_other_fault(minimal: str, faults_of: Faults) -> None:
+    signal = 'quantity = "counts", gain = 1, calibration = { points = [[1, 0], [2, 10], [3, 20]], spline = 3 }'
+    faults = faults_of(minimal.replace('quantity = "apparent-temperature", unit = "K"', signal))
+    assert {fault.where for fault in faults} == {"camera.signal.calibration.spline", "camera.signal.gain"}
+
+
 @pytest.mark.parametrize(
     ("text", "line"),
     [

@@ -112,7 +112,7 @@ def test_the_fuzzed_file_is_sound_before_it_is_fuzzed() -> None:
     assert isinstance(outcome(written(content)), Survey)
 
 
-@settings(max_examples=6000, deadline=None)
+@settings(max_examples=300, deadline=None)
 @given(data=st.data())
 def test_a_sound_file_with_some_values_replaced(data: st.DataObject) -> None:
     content = deepcopy(tomllib.loads(EVERYTHING))
@@ -131,19 +131,19 @@ def test_a_sound_file_with_some_values_replaced(data: st.DataObject) -> None:
     outcome(written(content))
 
 
-@settings(max_examples=3000, deadline=None)
+@settings(max_examples=120, deadline=None)
 @given(st.dictionaries(st.one_of(st.sampled_from(list(schema()["properties"])), text), value, max_size=6))
 def test_any_tables_at_all(content: dict[str, Any]) -> None:
     assert isinstance(outcome(written(content)), SurveyError)  # there is no title and kind, or no frame
 
 
-@settings(max_examples=3000, deadline=None)
+@settings(max_examples=120, deadline=None)
 @given(st.one_of(st.binary(max_size=200), text.map(str.encode)))
 def test_any_bytes_at_all(data: bytes) -> None:
     assert isinstance(outcome(data), SurveyError)
 
 
-@settings(max_examples=3000, deadline=None)
+@settings(max_examples=120, deadline=None)
 @given(
     header=st.lists(st.one_of(st.sampled_from(["file", "time", "air_c", "surface", "taken"]), text), max_size=5),
     body=text,
