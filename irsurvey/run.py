@@ -20,9 +20,8 @@ from irsurvey.readers import read
 from irsurvey.report import WRITERS, frame_files
 from irsurvey.survey.load import Known, load
 from irsurvey.survey.outside import is_drawn_on, polygon_faults
+from irsurvey.survey.places import OUTPUT_MARKER
 
-MARKER = "made-by-irsurvey.txt"
-"""File that says a folder is an output of this program, so that the next run may write over it."""
 _MARKER_TEXT = "irsurvey wrote this folder; its next run writes over it. Keep nothing of your own in it.\n"
 _ALWAYS = ("json", "csv")
 
@@ -147,10 +146,10 @@ def _claim_folder(out: Path, ids: set[str]) -> None:
     """Take an empty or own folder as output; frames of an earlier run that are no longer in the survey go."""
     if out.exists() and not out.is_dir():
         raise OutputError(Fault(out.name, "a folder to write to", "a file", "choose another -o"))
-    if out.is_dir() and any(out.iterdir()) and not (out / MARKER).exists():
+    if out.is_dir() and any(out.iterdir()) and not (out / OUTPUT_MARKER).exists():
         fault = Fault(out.name, "an empty folder, or one this program wrote", "a folder with other files in it")
         raise OutputError(replace(fault, remedy="choose another -o"))
-    write_text(out / MARKER, _MARKER_TEXT)
+    write_text(out / OUTPUT_MARKER, _MARKER_TEXT)
     for folder in (out / "frames").glob("*"):
         if folder.name not in ids:
             for name in frame_files.NAMES:

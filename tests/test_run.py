@@ -15,7 +15,8 @@ from samples import HOUSE, PUMP_STATION
 from irsurvey import run as runs
 from irsurvey.errors import OutputError, SurveyError
 from irsurvey.report.json import report_schema
-from irsurvey.run import MARKER, check, run
+from irsurvey.run import check, run
+from irsurvey.survey.places import OUTPUT_MARKER
 
 SURVEY = """
 format = 1
@@ -64,7 +65,7 @@ def test_a_run_writes_what_it_promises_into_a_folder_beside_the_survey(site):
     run(site)
     out = site.parent / "report"
     names = set(contents(out))
-    assert {"report.json", "findings.csv", "report.html", MARKER} <= names
+    assert {"report.json", "findings.csv", "report.html", OUTPUT_MARKER} <= names
     for frame in ("one", "two"):
         assert {f"frames/{frame}/{name}" for name in ("temperature.tif", "findings.tif", "annotated.png")} <= names
     assert not [name for name in names if ".part-" in name]

@@ -126,6 +126,14 @@ def test_defects_on_components_show_in_their_differences(sample_runs):
         assert component.delta_similar_k.value == max(one.delta_similar_k.value for one in found.components)
 
 
+def test_every_finding_and_component_has_a_heat_flux_out_of_what_is_warm(sample_runs):
+    for report, _ in sample_runs.values():
+        for frame in report.frames:
+            for item in (*frame.findings, *frame.components):
+                assert item.heat_flux_w_m2.value > 0
+                assert item.heat_flux_w_m2.u > 0
+
+
 def test_the_bad_lug_is_first_and_its_twins_are_not_raised(sample_runs):
     report, _ = sample_runs["pump_station"]
     (frame,) = [frame for frame in report.frames if frame.id == "pump-one"]

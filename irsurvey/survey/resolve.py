@@ -38,6 +38,9 @@ METHODS = {"building": ("envelope", "air-leakage", "roof-moisture"), "electrical
 _NO_CAMERA = Camera("", (7.5e-6, 13e-6), Signal("apparent-temperature"))
 """Stands in for one that is at fault, so that other faults are still found; never leaves this folder."""
 
+_CONVECTION = {"building": ("iso-6946", 2.5), "electrical": ("churchill-chu", 0.1)}
+"""Default correlation of the film coefficient and the height it takes [m], by kind of survey."""
+
 
 @dataclass(frozen=True, slots=True)
 class Context:
@@ -118,8 +121,8 @@ def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
         has_window=window is not None,
         known_scale=_known_scale(frame),
         detection=_detection(levels),
-        convection=_value(conditions, "convection", "iso-6946"),
-        surface_height=_value(conditions, "surface_height_m", 2.5),
+        convection=_value(conditions, "convection", _CONVECTION[kind][0]),
+        surface_height=_value(conditions, "surface_height_m", _CONVECTION[kind][1]),
         criteria=tuple(levels.document.survey.criteria),
         reflected_from=_value(conditions, "reflected_from", None),
         group=entry.group,

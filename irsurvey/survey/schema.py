@@ -147,8 +147,12 @@ class Conditions(Table):
     pressure_pa: Annotated[float, Strict(), FINITE, Field(ge=-1e5, le=1e5)] | None = key(
         "Pressure inside minus outside [Pa]"
     )
-    convection: Name = key("Correlation of the film coefficient, by name", "iso-6946")
-    surface_height_m: Positive = key("Height of the surface, for correlations that need it [m]", 2.5)
+    convection: Name | None = key(
+        "Correlation of the film coefficient, by name; default: iso-6946 (buildings), churchill-chu (electrical)"
+    )
+    surface_height_m: Positive | None = key(
+        "Height of the surface, for correlations that need it [m]; default: 2.5 (buildings), 0.1 (electrical)"
+    )
     log: Name | None = key("CSV time series: a column `time` and columns named as these keys")
 
     @model_validator(mode="after")

@@ -21,7 +21,7 @@ CLAIMS = [
 ]
 
 
-@pytest.mark.parametrize(("function", "key", "claim", "claim_to_1000_k"), CLAIMS, ids=lambda value: getattr(value, "__name__", str(value)))
+@pytest.mark.parametrize(("function", "key", "claim", "claim_to_1000_k"), CLAIMS, ids=[claim[1] for claim in CLAIMS])
 def test_air_keeps_its_claims_against_coolprop(
     function: Callable[[float], float], key: str, claim: float, claim_to_1000_k: float
 ) -> None:
