@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
+from irsurvey.analysis.budgets import terms
 from irsurvey.analysis.conditions import recorded
 from irsurvey.analysis.correction import Corrected, correct, reflected_by_reflector
-from irsurvey.analysis.findings import component_twins, components, findings
+from irsurvey.analysis.findings import BUDGETED, Evidence, Results, component_twins, components, findings
 from irsurvey.analysis.inputs import inputs
-from irsurvey.analysis.maps import heat_flux_map, label_map
-from irsurvey.analysis.measurand import names, stacked
+from irsurvey.analysis.maps import heat_flux_map, label_map, uncertainty_map
+from irsurvey.analysis.measurand import Columns, names, stacked
 from irsurvey.analysis.planning import planned, with_twins
 from irsurvey.analysis.regions import Screened, screen, stretch_of
 from irsurvey.assess.conditions import claim
@@ -29,21 +31,30 @@ from irsurvey.model import (
 )
 from irsurvey.radiometry.atmosphere import transmittance, validity_notes
 from irsurvey.radiometry.band import band_table
-from irsurvey.uncertainty import propagate
+from irsurvey.uncertainty import Budget, Drawn, differ, monte_carlo, propagate
 
 _STRONG_AMPLIFICATION = 3.0
 """∂T/∂T_app from which a reader is warned."""
+_LARGE_RELATIVE_U, _CURVED_AMPLIFICATION = 0.1, 2.0
+"""u(ε)/ε and ∂T/∂T_app from which first order is low and the distribution skewed (computed, ε 0.30 ± 0.05)."""
+FIRST_ORDER, DRAWN = "first-order", "monte-carlo"
+UNCERTAINTIES = (FIRST_ORDER, DRAWN)
+"""How uncertainty may be propagated."""
+MAPS = ("heat-flux", "uncertainty")
+"""Maps that are made on request."""
 _COARSE = 0.005
 """Step [K] of quantised float frames from which it is told: a tenth of a good camera's noise."""
 
 __all__ = ["analyse", "failed", "reflected_by_reflector"]
 
 
-def analyse(frame: Frame, task: FrameTask, *, maps: tuple[str, ...] = ()) -> tuple[FrameReport, Maps]:
+def analyse(
+    frame: Frame, task: FrameTask, *, maps: tuple[str, ...] = (), uncertainty: str = FIRST_ORDER
+) -> tuple[FrameReport, Maps]:
     """Correct, screen, measure and assess one frame.
 
-    Returns the report and the maps that go with it; `maps` may ask for "heat-flux".  Raises FrameError where
-    nothing in the frame can be measured.
+    Returns the report and the maps that go with it; `maps` may ask for "heat-flux" and "uncertainty";
+    `uncertainty` is "first-order" or "monte-carlo".  Raises FrameError where nothing in the frame can be measured.
     """
     criteria = chosen(task.criteria, task.kind, task.method)
     corrected = correct(frame, task)
@@ -52,11 +63,19 @@ def analyse(frame: Frame, task: FrameTask, *, maps: tuple[str, ...] = ()) -> tup
     twins = component_twins(task, corrected, measured, criteria)
     measured = with_twins(measured, twins)
 
-    budget = propagate(lambda values: stacked(measured.plan, values), measured.scene)
-    results = dict(zip(names(measured.plan, measured.scene), budget.estimates(), strict=True))
+    def measurand(values: Columns) -> NDArray[np.float64]:
+        return stacked(measured.plan, values)
+
+    budget = propagate(measurand, measured.scene)
+    drawn = monte_carlo(measurand, measured.scene, seed=tuple(task.id.encode())) if uncertainty == DRAWN else None
+    estimates = budget.estimates() if drawn is None else drawn.estimates()
+    numbers = names(measured.plan, measured.scene)
+    results = dict(zip(numbers, estimates, strict=True))
+    budgets = {name: terms(budget, index) for index, name in enumerate(numbers) if name[1] in BUDGETED}
 
     level, reason = claim(task.kind, task.method, recorded(task))
-    reference = results.get(("", "reference"))
+    stated = inputs(measured.scene)
+    evidence = Evidence(task, corrected, screened, measured, results, budgets, stated, criteria)
     report = FrameReport(
         id=task.id,
         status="analysed",
@@ -72,20 +91,23 @@ def analyse(frame: Frame, task: FrameTask, *, maps: tuple[str, ...] = ()) -> tup
         source=Source(
             task.file, frame.sha256, (frame.stored.shape[0], frame.stored.shape[1]), str(frame.stored.dtype)
         ),
-        inputs=inputs(measured.scene),
+        inputs=stated,
         humid_air=_humid_air(corrected),
+        uncertainty=uncertainty,
+        draws=None if drawn is None else drawn.draws,
         atmosphere_transmittance=_transmittance(corrected, task),
         radiance_table_error_k=band_table(task.camera.band).worst_error,
         detectable=_detectable(screened, task),
         temperature=_summary(corrected),
-        reference=_reference(screened, task, reference.u if reference else None),
-        findings=tuple(findings(task, screened, measured, results, criteria, is_valid=level != "not valid")),
-        components=tuple(components(task, corrected, measured, twins, results, criteria)),
-        flags=_flags(corrected, screened, task),
+        reference=_reference(screened, task, results),
+        findings=tuple(findings(evidence, is_valid=level != "not valid")),
+        components=tuple(components(evidence, twins)),
+        flags=(*_flags(corrected, screened, task), *_curved(budget, drawn, corrected, task)),
     )
-    flux = heat_flux_map(corrected, measured.plan.surroundings) if "heat-flux" in maps else None
     celsius = corrected.t - np.float32(ZERO_CELSIUS)
-    return report, Maps(celsius, label_map(screened), screened.reference_area, flux)
+    flux = heat_flux_map(corrected, measured.plan.surroundings) if "heat-flux" in maps else None
+    u = uncertainty_map(corrected, measured.scene, task.camera.band, screened.noise) if "uncertainty" in maps else None
+    return report, Maps(celsius, label_map(screened), screened.reference_area, flux, u)
 
 
 def failed(task: FrameTask, reason: str) -> FrameReport:
@@ -105,6 +127,8 @@ def failed(task: FrameTask, reason: str) -> FrameReport:
         source=Source(task.file, None, None, None),
         inputs={},
         humid_air={},
+        uncertainty=None,
+        draws=None,
         atmosphere_transmittance=None,
         radiance_table_error_k=None,
         detectable=None,
@@ -171,19 +195,34 @@ def _summary(corrected: Corrected) -> TemperatureSummary:
     )
 
 
-def _reference(screened: Screened, task: FrameTask, u: float | None) -> ReferenceReport | None:
-    reference = screened.reference
+def _reference(screened: Screened, task: FrameTask, results: Results) -> ReferenceReport | None:
+    reference, level = screened.reference, results.get(("", "reference"))
     if reference is None:
         return None
     return ReferenceReport(
         how="polygon" if task.reference else "automatic",
         median_c=reference.level - ZERO_CELSIUS,
-        u_c=u,
+        u_c=None if level is None else level.u,
         spread_k=reference.spread,
         pixels=reference.pixels,
         gradient_k=reference.gradient,
+        heat_flux_w_m2=results.get(("", "reference_flux")),
+        u_value_w_m2k=results.get(("", "u_value")),
         polygon=task.reference or tuple((float(x), float(y)) for x, y in outline(screened.reference_area)),
     )
+
+
+def _curved(budget: Budget, drawn: Drawn | None, corrected: Corrected, task: FrameTask) -> tuple[str, ...]:
+    """Where first order may not do: told beforehand from the inputs, or found by drawing."""
+    if drawn is not None:
+        count = int(np.count_nonzero(differ(budget, drawn)))
+        return (f"first order differs by more than 20 % from Monte Carlo in {count} numbers",) if count else ()
+    emissivities = [corrected.scene[name] for name, _ in corrected.optics_names]
+    doubtful = any(one.u > _LARGE_RELATIVE_U * one.value for one in emissivities)
+    stretched = any(
+        stretch_of(corrected, task, index) > _CURVED_AMPLIFICATION for index in range(len(emissivities))
+    )
+    return ("strongly curved: run again with --uncertainty monte-carlo",) if doubtful or stretched else ()
 
 
 def _flags(corrected: Corrected, screened: Screened, task: FrameTask) -> tuple[str, ...]:

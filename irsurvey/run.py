@@ -9,9 +9,10 @@ from pathlib import Path
 
 from irsurvey import __version__, pipeline
 from irsurvey.analysis.conditions import reviewed
+from irsurvey.analysis.decisions import next_measurements
 from irsurvey.assess.criteria import criteria
 from irsurvey.batch import execute
-from irsurvey.errors import Fault, FrameError, OutputError, SurveyError
+from irsurvey.errors import Fault, FrameError, OutputError, SurveyError, UsageError
 from irsurvey.files import write_text
 from irsurvey.heat.convection import CONVECTION
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
@@ -33,6 +34,7 @@ class Job:
     task: FrameTask
     out: str
     maps: tuple[str, ...]
+    uncertainty: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,14 +53,24 @@ def run(
     documents: tuple[str, ...] = ("html",),
     jobs: int = 1,
     maps: tuple[str, ...] = (),
+    uncertainty: str = pipeline.FIRST_ORDER,
     on_frame: Callable[[FrameReport, int], None] | None = None,
 ) -> Report:
     """Process a whole survey and write its report.
 
     `out` defaults to `report` beside the survey; `documents` names the documents to make beside report.json and
-    findings.csv; `maps` may hold "heat-flux"; `on_frame` is told each finished frame and the number of all.
-    Raises SurveyError, nothing run, where the survey is wrong; OutputError where `out` belongs to something else.
+    findings.csv; `maps` may hold "heat-flux" and "uncertainty"; `uncertainty` is "first-order" or "monte-carlo";
+    `on_frame` is told each finished frame and the number of all.
+    Raises SurveyError, nothing run, where the survey is wrong; UsageError where there is no such document, map or
+    uncertainty; OutputError where `out` belongs to something else.
     """
+    for option, names, known in (
+        ("documents", documents, WRITERS),
+        ("maps", maps, pipeline.MAPS),
+        ("uncertainty", (uncertainty,), pipeline.UNCERTAINTIES),
+    ):
+        if unknown := [name for name in names if name not in known]:
+            raise UsageError(Fault(option, f"some of {', '.join(known)}", ", ".join(unknown)))
     survey = load_survey(survey_path)
     faults, _ = _judge_pixels(task for task in survey.tasks if is_drawn_on(task))
     if faults:
@@ -66,7 +78,8 @@ def run(
     out = out or Path(survey.folder) / "report"
     _claim_folder(out, {task.id for task in survey.tasks})
     frames = []
-    for frame in execute(analyse_file, [Job(task, str(out), maps) for task in _resolved(survey)], jobs):
+    made = [Job(task, str(out), maps, uncertainty) for task in _resolved(survey)]
+    for frame in execute(analyse_file, made, jobs):
         frames.append(frame)
         if on_frame:
             on_frame(frame, len(survey.tasks))
@@ -99,7 +112,7 @@ def analyse_file(job: Job) -> FrameReport:
     """Read one frame, analyse it and write its files; whatever is wrong with it becomes its reason to fail."""
     try:
         frame = read(Path(job.task.path), job.task.read)
-        report, maps = pipeline.analyse(frame, job.task, maps=job.maps)
+        report, maps = pipeline.analyse(frame, job.task, maps=job.maps, uncertainty=job.uncertainty)
         frame_files.write(report, maps, Path(job.out))
     except FrameError as error:
         return pipeline.failed(job.task, str(error))
@@ -165,6 +178,7 @@ def _concluded(survey: Survey, frames: tuple[FrameReport, ...]) -> Report:
         tool={"name": "irsurvey", "version": __version__},
         survey=json.loads(survey.as_read),
         conditions_review=reviewed(survey.tasks),
+        next_visit=next_measurements(frames),
         assets=tuple(_assets(survey, frames)),
         frames=frames,
         cautions=(),

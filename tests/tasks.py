@@ -39,6 +39,11 @@ def scene(**values: float | tuple[float, float]) -> Scene:
         "convection": (1.0, 0.25),
         "ifov": (1e-3, 2e-5),
         "view_angle": (0.0, 0.05),
+        "shading": (0.0, 0.3),
+        "shading_x": (0.0, 0.15),
+        "shading_y": (0.0, 0.15),
+        "outline": (0.0, 0.5),
+        "size_of_source": (0.0, 1 / 3**0.5),
         **values,
     }
     ends = {"emissivity": (0.0, 1.0), "relative_humidity": (0.0, 1.0), "distance": (0.0, np.inf)}

@@ -187,8 +187,11 @@ def test_twins_are_compared_with_the_coolest_whose_own_difference_is_zero():
     assert differences == pytest.approx([0, 7, 1.5], abs=0.011)
     assert [component.similar_to for component in report.components] == [None, "lug 1", "lug 1"]
     assert report.components[1].delta_ambient_k.value == pytest.approx(27, abs=0.006)
-    # A difference of two parts of one emissivity in one frame does not know the camera's offset (1 K / √3).
-    assert report.components[1].delta_similar_k.u < 0.1
+    # A difference of two parts of one emissivity in one frame does not know the camera's offset (1 K / √3): what is
+    # left is lens shading, outlines and what blur may have taken.
+    terms = {term.input: term.contribution for term in report.components[1].budgets["delta_similar_k"]}
+    assert "camera_offset_k" not in terms
+    assert report.components[1].delta_similar_k.u < 0.3
     assert report.components[1].delta_ambient_k.u > 0.5
 
 

@@ -60,7 +60,7 @@ def test_the_offset_of_the_camera_cancels_in_differences_and_not_in_temperatures
 def test_the_uncertainty_of_a_difference_is_far_below_that_of_a_temperature():
     finding = pipeline.analyse(tasks.frame(wall()), tasks.task())[0].findings[0]
     assert finding.mean_c.u > 1.1  # ±2 K, rectangular: 2/√3 = 1.15 K
-    assert finding.mean_delta_k.u < 0.1
+    assert finding.mean_delta_k.u < 0.25  # lens shading of 0.3 K between corner and centre is most of it
 
 
 def test_with_another_emissivity_on_the_region_the_difference_knows_the_reflected_temperature():
@@ -80,7 +80,7 @@ def test_with_another_emissivity_on_the_region_the_difference_knows_the_reflecte
     assert other.mean_delta_k.value == pytest.approx(-3, abs=0.05)
     # ∂T/∂T_r = (1 − ε)/ε·S'(T_r)/S'(T): 3 K · 0.4 ≈ 1.2 K on the patch alone, 3 K · 0.05 on the wall.
     assert other.mean_delta_k.u > 1.0
-    assert one.mean_delta_k.u < 0.2
+    assert one.mean_delta_k.u < 0.35
 
 
 def test_borders_between_emissivities_are_no_findings():

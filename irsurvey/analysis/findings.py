@@ -4,17 +4,21 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
 
 import numpy as np
 
+from irsurvey.analysis.budgets import flips, on_axis
 from irsurvey.analysis.correction import Corrected
 from irsurvey.analysis.planning import Measured, Planned
 from irsurvey.analysis.regions import Screened
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import edge_sharpness, elongation
 from irsurvey.assess.building import assess_finding
-from irsurvey.assess.criteria import Criterion
+from irsurvey.assess.conformity import exceeds
+from irsurvey.assess.criteria import Criterion, criteria
 from irsurvey.assess.electrical import Member, TwinPlan, assess_component, load_ratio, rated_band, twins
+from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.severity import (
     AUTOMATIC_REFERENCE,
     CONDITIONS,
@@ -22,13 +26,58 @@ from irsurvey.assess.severity import (
     NO_SOLUTION,
     SATURATED,
     SIZE_LIMITED,
+    Verdict,
 )
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import mask, outline
-from irsurvey.model import Band, Component, ComponentReport, Estimate, Finding, FrameTask, RatedLoad, Shape
+from irsurvey.model import (
+    Band,
+    BudgetTerm,
+    Component,
+    ComponentReport,
+    Estimate,
+    Finding,
+    Flip,
+    FrameTask,
+    Input,
+    RatedLoad,
+    Shape,
+)
 
 Results = Mapping[tuple[str, str], Estimate | None]
 """(region, number) → estimate in SI units."""
+Budgets = Mapping[tuple[str, str], tuple[BudgetTerm, ...]]
+"""(region, number) → terms of its uncertainty, in the units inputs are shown in."""
+
+BUDGETED = {
+    "delta": "delta_k",
+    "extreme": "extreme_c",
+    "flux": "heat_flux_w_m2",
+    "temperature_factor": "temperature_factor",
+    "delta_similar": "delta_similar_k",
+    "delta_ambient": "delta_ambient_k",
+    "max": "max_c",
+}
+"""Numbers of the measurand whose budgets are reported → their keys."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Evidence:
+    """All that findings and components of one frame are made from."""
+
+    task: FrameTask
+    corrected: Corrected
+    screened: Screened
+    planned: Planned
+    results: Results
+    budgets: Budgets
+    inputs: Mapping[str, Input]
+    criteria: tuple[Criterion, ...]
+
+    def budgets_of(self, region: str) -> dict[str, tuple[BudgetTerm, ...]]:
+        """Budgets of one region by the key of the number."""
+        return {key: self.budgets[region, name] for name, key in BUDGETED.items() if self.budgets.get((region, name))}
+
 
 _KEY_GRID = 8
 """Positions in keys are rounded to this many pixels, so that a re-run with slightly other inputs keeps them."""
@@ -37,28 +86,23 @@ REFLECTIVE = "reflective"
 
 
 def component_twins(
-    task: FrameTask, corrected: Corrected, planned: Planned, criteria: tuple[Criterion, ...]
+    task: FrameTask, corrected: Corrected, planned: Planned, chosen: tuple[Criterion, ...]
 ) -> dict[str, TwinPlan]:
     """Which twin each component is compared with, from the nominal spot temperatures."""
     members = [_member(component, corrected, planned) for component in task.components]
     ambient = planned.scene[planned.plan.ambient].value
-    return dict(zip((member.name for member in members), twins(members, ambient, criteria), strict=True))
+    return dict(zip((member.name for member in members), twins(members, ambient, chosen), strict=True))
 
 
-def findings(
-    task: FrameTask,
-    screened: Screened,
-    planned: Planned,
-    results: Results,
-    criteria: tuple[Criterion, ...],
-    *,
-    is_valid: bool,
-) -> Iterator[Finding]:
+def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
     """The findings of a frame in the order of their labels."""
+    task, screened, results = evidence.task, evidence.screened, evidence.results
     keys: Counter[str] = Counter()
-    for label, (found, measured) in enumerate(zip(screened.regions, planned.anomalies, strict=True), start=1):
+    for label, (found, measured) in enumerate(
+        zip(screened.regions, evidence.planned.anomalies, strict=True), start=1
+    ):
         name = measured.region.name
-        emissivity = _lowest_emissivity(measured, planned)
+        emissivity = _lowest_emissivity(measured, evidence.planned)
         flags = (
             (SATURATED, found.is_saturated),
             (SIZE_LIMITED, not measured.spot.is_full),
@@ -76,12 +120,14 @@ def findings(
         }
         verdict = assess_finding(
             numbers,
-            criteria,
+            evidence.criteria,
             sense=measured.sense,
             emissivity=emissivity,
             flags=tuple(flag for flag, applies in flags if applies),
             viewed_from=task.viewed_from,
         )
+        budgets = evidence.budgets_of(name)
+        changes = _flips(verdict, numbers, budgets, evidence.inputs)
         key = _key(task.id, measured)
         keys[key] += 1
         yield Finding(
@@ -102,35 +148,36 @@ def findings(
             excess_heat_w=results.get((name, "excess_heat")),
             temperature_factor=numbers["temperature_factor"],
             shape=_shape(measured, screened),
+            exceeds_threshold=_exceeds(numbers["delta_k"], screened.min_delta, measured.sense),
             assessments=verdict.assessments,
             urgency=verdict.urgency,
+            outcome=verdict.outcome,
+            flips=changes,
+            budgets=budgets,
             indication=None,
-            flags=verdict.flags,
+            flags=(*verdict.flags, *((FRAGILE,) if changes else ())),
         )
 
 
-def components(
-    task: FrameTask,
-    corrected: Corrected,
-    planned: Planned,
-    plans: Mapping[str, TwinPlan],
-    results: Results,
-    criteria: tuple[Criterion, ...],
-) -> Iterator[ComponentReport]:
+def components(evidence: Evidence, plans: Mapping[str, TwinPlan]) -> Iterator[ComponentReport]:
     """The components of a frame in the order of the survey."""
+    task, corrected, results = evidence.task, evidence.corrected, evidence.results
     for component in task.components:
+        name = component.name
         drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
-        member = _member(component, corrected, planned)
-        plan = plans[component.name]
+        member = _member(component, corrected, evidence.planned)
+        plan = plans[name]
         numbers = {
-            "max_c": _celsius(results.get((component.name, "max"))),
-            "delta_similar_k": results.get((component.name, "delta_similar")),
-            "delta_ambient_k": results.get((component.name, "delta_ambient")),
+            "max_c": _celsius(results.get((name, "max"))),
+            "delta_similar_k": results.get((name, "delta_similar")),
+            "delta_ambient_k": results.get((name, "delta_ambient")),
         }
-        verdict = assess_component(member, plan, numbers, criteria)
+        verdict = assess_component(member, plan, numbers, evidence.criteria)
+        budgets = evidence.budgets_of(name)
+        changes = _flips(verdict, numbers, budgets, evidence.inputs)
         yield ComponentReport(
-            name=component.name,
-            key=f"{task.id}:component:{component.name}",
+            name=name,
+            key=f"{task.id}:component:{name}",
             group=component.group,
             phase=component.phase,
             load_a=component.load,
@@ -138,17 +185,41 @@ def components(
             polygon=component.polygon,
             pixels=int(np.count_nonzero(drawn)),
             max_c=numbers["max_c"],
-            mean_c=_celsius(results.get((component.name, "mean"))),
+            mean_c=_celsius(results.get((name, "mean"))),
             delta_similar_k=numbers["delta_similar_k"],
             similar_to=None if plan.is_coolest else plan.name,
             delta_ambient_k=numbers["delta_ambient_k"],
-            heat_flux_w_m2=results.get((component.name, "flux")),
+            heat_flux_w_m2=results.get((name, "flux")),
             at_rated_load=_at_rated(member, numbers),
             assessments=verdict.assessments,
             urgency=verdict.urgency,
             cleared=verdict.cleared,
-            flags=verdict.flags,
+            outcome=verdict.outcome,
+            flips=changes,
+            budgets=budgets,
+            flags=(*verdict.flags, *((FRAGILE,) if changes else ())),
         )
+
+
+def _flips(
+    verdict: Verdict,
+    numbers: Mapping[str, Estimate | None],
+    budgets: Mapping[str, tuple[BudgetTerm, ...]],
+    inputs: Mapping[str, Input],
+) -> tuple[Flip, ...]:
+    """What would change the governing class; nothing where no class was given."""
+    for assessment in verdict.assessments:
+        criterion = criteria()[assessment.criterion]
+        estimate = numbers.get(criterion.quantity)
+        if assessment.governs and assessment.class_ is not None and estimate is not None:
+            return flips(on_axis(criterion, estimate, budgets.get(criterion.quantity, ()), inputs))
+    return ()
+
+
+def _exceeds(delta: Estimate | None, threshold: float, sense: str) -> float | None:
+    if delta is None or delta.u is None:
+        return None
+    return float(exceeds(delta.value, delta.u, threshold, sense))
 
 
 def _member(component: Component, corrected: Corrected, planned: Planned) -> Member:
@@ -193,7 +264,7 @@ def _key(frame: str, measured: Measured) -> str:
 
 
 def _outline(patch: Patch) -> tuple[tuple[int, int], ...]:
-    return tuple((x + patch.left, y + patch.top) for x, y in outline(patch.mask))
+    return tuple((int(x) + patch.left, int(y) + patch.top) for x, y in outline(patch.mask))
 
 
 def _celsius(estimate: Estimate | None) -> Estimate | None:

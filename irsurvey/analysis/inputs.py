@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from math import degrees, isfinite
+from math import degrees, inf, isfinite
 
 from irsurvey.constants import ZERO_CELSIUS
-from irsurvey.model import Input, Scene
+from irsurvey.model import Input, Quantity, Scene
 
 _CELSIUS = ("_c", 1.0, -ZERO_CELSIUS)
 _KELVIN = ("_k", 1.0, 0.0)
@@ -48,18 +48,74 @@ _SHOWN: dict[str, tuple[str, float, float]] = {
     "known_height": _METRES,
     "temperature": _CELSIUS,
     "load_exponent": _PLAIN,
+    "shading": _KELVIN,
+    "shading_x": _KELVIN,
+    "shading_y": _KELVIN,
+    "size_of_source": _PLAIN,
+    "selection": _PLAIN,
+    "noise": _KELVIN,
+    "outline": ("_px", 1.0, 0.0),
+    "slope_x": ("_k_per_px", 1.0, 0.0),
+    "slope_y": ("_k_per_px", 1.0, 0.0),
 }
 """Scene name → ending of its key, factor and shift to the unit shown."""
 
 
+_BY_KEY = {name + ending: name for name, (ending, _, _) in _SHOWN.items()}
+_ENDS = {
+    "emissivity": (0.0, 1.0),
+    "relative_humidity": (0.0, 1.0),
+    "window_transmittance": (0.0, 1.0),
+    "window_reflectance": (0.0, 1.0),
+    "distance": (0.0, inf),
+    "wind": (0.0, inf),
+    "convection": (0.0, inf),
+    "ifov": (0.0, inf),
+}
+
+_OF_AREAS = ("noise", "outline", "slope_x", "slope_y", "selection")
+"""What belongs to the areas of a frame and not to its inputs."""
+
+
 def inputs(scene: Scene) -> dict[str, Input]:
-    """Inputs by key (`air_c`, `emissivity:cover plate`), in the order of the scene; noise terms are not inputs."""
-    shown = {}
-    for quantity in scene.quantities:
-        base, _, owner = quantity.name.partition(":")
-        if base == "noise" or not isfinite(quantity.value):
-            continue
-        ending, factor, shift = _SHOWN[base]
-        key = f"{base}{ending}:{owner}" if owner else f"{base}{ending}"
-        shown[key] = Input(quantity.value * factor + shift, quantity.u * factor, quantity.source)
-    return shown
+    """Inputs by key (`air_c`, `emissivity:cover plate`), in the order of the scene."""
+    return {
+        shown(quantity.name)[0]: Input(in_unit(quantity.name, quantity.value), *_spread(quantity))
+        for quantity in scene.quantities
+        if quantity.name.partition(":")[0] not in _OF_AREAS and isfinite(quantity.value)
+    }
+
+
+def shown(name: str) -> tuple[str, float]:
+    """Key of a scene name, and how many of the key's units one SI unit is: `air` → ("air_c", 1)."""
+    base, _, owner = name.partition(":")
+    ending, factor, _ = _SHOWN[base]
+    return (f"{base}{ending}:{owner}" if owner else f"{base}{ending}"), factor
+
+
+def named(key: str) -> str:
+    """The scene name behind a key: "air_c" → `air`."""
+    base, _, owner = key.partition(":")
+    name = _BY_KEY[base]
+    return f"{name}:{owner}" if owner else name
+
+
+def domain(name: str) -> tuple[float, float]:
+    """Least and greatest value [SI] an input can have."""
+    return _ENDS.get(name.partition(":")[0], (-inf, inf))
+
+
+def in_unit(name: str, value: float) -> float:
+    """A value in the unit its key ends in."""
+    _, factor, shift = _SHOWN[name.partition(":")[0]]
+    return value * factor + shift
+
+
+def in_si(name: str, value: float) -> float:
+    """A value in the unit of its key, in SI units."""
+    _, factor, shift = _SHOWN[name.partition(":")[0]]
+    return (value - shift) / factor
+
+
+def _spread(quantity: Quantity) -> tuple[float, str]:
+    return quantity.u * shown(quantity.name)[1], quantity.source

@@ -42,10 +42,18 @@ class Part:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Area:
-    """The pixels a set of numbers comes from; `noise` names its own noise in the Scene."""
+    """The pixels a set of numbers comes from.
 
-    noise: str
+    `shifts`: what else moves its apparent temperature as a whole, (scene name, kelvin per unit of it): its own noise,
+    lens shading where it lies, its outline, contrast that blur may have taken, picking the extreme.
+    """
+
     parts: tuple[Part, ...]
+    shifts: tuple[tuple[str, float], ...] = ()
+
+    def shift(self, values: Columns) -> NDArray[np.float64]:
+        """Sum of the shifts (n, 1) [K]."""
+        return np.asarray(sum((values[name] * factor for name, factor in self.shifts), np.zeros((1, 1))))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -53,7 +61,8 @@ class Region:
     """An anomaly or component: its measurement spot, the whole of it, and its extent.
 
     The levers [px] are what the slopes of the reference plane are multiplied by at their places; `extent` is the
-    number of pixels or, with a known rectangle, the share of that rectangle it covers.
+    number of pixels or, with a known rectangle, the share of that rectangle it covers; it changes by `rim` per
+    pixel that its outline (a scene name) moves.
     """
 
     name: str
@@ -62,6 +71,8 @@ class Region:
     spot_lever: tuple[float, float]
     whole_lever: tuple[float, float]
     extent: float
+    rim: float = 0.0
+    outline: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -105,7 +116,6 @@ class Plan:
 
 
 def area(
-    noise: str,
     corrected: Corrected,
     rows: NDArray[np.intp],
     columns: NDArray[np.intp],
@@ -123,7 +133,7 @@ def area(
         here = optics == index
         apparent, merged = _histogram(codes[here], share[:, here], corrected.apparent)
         parts.append(Part(corrected.optics_names[index], apparent, merged))
-    return Area(noise, tuple(parts))
+    return Area(tuple(parts))
 
 
 def measure(plan: Plan, values: Columns) -> Numbers:
@@ -131,8 +141,8 @@ def measure(plan: Plan, values: Columns) -> Numbers:
     temperatures = _Temperatures(plan, values)
     numbers: Numbers = {}
     reference = temperatures.functionals(plan.reference) if plan.reference else None
-    if reference is not None:
-        numbers["", "reference"] = reference[:, 0]
+    if plan.reference and reference is not None:
+        numbers |= _reference(plan, values, reference, plan.reference.parts[0].optics)
     per_pixel = _area_per_extent(plan, values)
     for region in plan.regions:
         if reference is None:
@@ -185,7 +195,7 @@ class _Temperatures:
         for (emissivity, reflected), members in by_optics.items():
             apparent = np.concatenate(
                 [
-                    part.apparent + values["camera_gain"] * (part.apparent - plan.pivot) + values[owner.noise]
+                    part.apparent + values["camera_gain"] * (part.apparent - plan.pivot) + owner.shift(values)
                     for owner, part in members
                 ],
                 axis=1,
@@ -205,6 +215,16 @@ class _Temperatures:
     def functionals(self, member: Area) -> NDArray[np.float64]:
         """The area's linear functionals of its temperatures, (n, f) [K]."""
         return np.asarray(sum(self.of(part) @ part.weights.T for part in member.parts))
+
+
+def _reference(plan: Plan, values: Columns, reference: NDArray[np.float64], optics: Optics) -> Numbers:
+    """The reference area by itself: level, heat flux, and U where both air temperatures are known."""
+    flux = flux_of(reference[:, :1], optics, plan.surroundings, values)[:, 0]
+    results = {"reference": reference[:, 0], "reference_flux": flux}
+    if plan.factor_between:
+        indoor, outdoor = (values[name][:, 0] for name in plan.factor_between)
+        results["u_value"] = flux / np.abs(indoor - outdoor)
+    return {("", name): number for name, number in results.items()}
 
 
 def _anomaly(
@@ -231,7 +251,8 @@ def _anomaly(
         "excess_flux": flux - reference_flux,
     }
     if per_pixel is not None:
-        results["area"] = per_pixel * region.extent
+        grown = 0.0 if region.outline is None else values[region.outline][:, 0] * region.rim
+        results["area"] = per_pixel * np.maximum(region.extent + grown, 0)
         results["excess_heat"] = (flux - reference_flux) * results["area"]
     if plan.factor_between:
         indoor, outdoor = (values[name][:, 0] for name in plan.factor_between)
@@ -264,7 +285,7 @@ def _reference_at(
     values: Columns, reference: NDArray[np.float64], lever: tuple[float, float]
 ) -> NDArray[np.float64]:
     """Reference temperature (n,) at a place: level and slopes, the slopes with the noise of their own."""
-    slope_x, slope_y = reference[:, 1] + values["noise:slope x"][:, 0], reference[:, 2] + values["noise:slope y"][:, 0]
+    slope_x, slope_y = reference[:, 1] + values["slope_x"][:, 0], reference[:, 2] + values["slope_y"][:, 0]
     return np.asarray(reference[:, 0] + slope_x * lever[0] + slope_y * lever[1])
 
 

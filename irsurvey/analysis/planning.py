@@ -7,8 +7,9 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from irsurvey.analysis import imperfections
 from irsurvey.analysis.correction import Corrected
-from irsurvey.analysis.measurand import Plan, Region, Surroundings, Twin, area
+from irsurvey.analysis.measurand import Area, Plan, Region, Surroundings, Twin, area
 from irsurvey.analysis.regions import Screened, stretch_of
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import Spot, extreme_spot
@@ -29,6 +30,7 @@ class Measured:
     centre: tuple[float, float]
     t_spot: float  # nominal mean over the spot [K]
     region: Region
+    own: tuple[Quantity, ...]  # what the scene holds for it alone
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -42,7 +44,7 @@ class Planned:
 
 
 def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planned:
-    """Fix masks, spots and weights of everything that is reported, and add the noise of each area to the scene."""
+    """Fix masks, spots and weights of everything that is reported, and add to the scene what is each area's own."""
     anomalies = [
         measured
         for number, found in enumerate(screened.regions, start=1)
@@ -55,35 +57,19 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
         if (patch := cropped(mask(component.polygon, shape)))
         and (measured := _measured(component.name, patch, "hot", corrected, screened, task))
     }
-    apparent_noise = screened.noise / stretch_of(corrected, task, 0)
-    noises = [
-        Quantity(part.noise, 0.0, apparent_noise / pixels**0.5)
-        for measured in (*anomalies, *components.values())
-        for part, pixels in (
-            (measured.region.spot, measured.spot.rows.size),
-            (measured.region.whole, measured.patch.pixels),
-        )
-    ]
-    reference = screened.reference
-    if reference is not None:
-        noises += [
-            Quantity("noise:reference", 0.0, reference.u_level / stretch_of(corrected, task, 0)),
-            Quantity("noise:slope x", 0.0, reference.u_slope[0]),
-            Quantity("noise:slope y", 0.0, reference.u_slope[1]),
-        ]
-    scene = corrected.scene.with_(*noises)
+    reference, own = _reference(corrected, screened, task)
+    own = (*own, *(quantity for measured in (*anomalies, *components.values()) for quantity in measured.own))
+    scene = corrected.scene.with_(imperfections.SELECTION, *own)
     plan = Plan(
         band=task.camera.band,
         pivot=corrected.pivot,
         surroundings=_surroundings(task, scene),
         scale=_scale(task, scene),
         length_pixels=_length_pixels(task),
-        reference=area("noise:reference", corrected, reference.rows, reference.columns, reference.weights)
-        if reference
-        else None,
+        reference=reference,
         regions=tuple(measured.region for measured in anomalies),
         components=tuple(measured.region for measured in components.values()),
-        ambient="ambient" if "ambient" in scene else "air",
+        ambient=_ambient(scene),
         factor_between=_factor_between(task, scene),
     )
     return Planned(plan, scene, tuple(anomalies), components)
@@ -114,15 +100,49 @@ def _measured(
     measurable = ~np.isnan(screened.t[rows, columns])
     rows, columns = rows[measurable], columns[measurable]
     centre = (float(columns.mean()), float(rows.mean()))
+    t_spot = float(screened.t[spot.rows, spot.columns].mean())
+    stretch, scene = stretch_of(corrected, task, 0), corrected.scene
+    around = scene[_ambient(scene)].value if screened.reference is None else screened.reference.at(*spot.centre)
+    known = {"noise": screened.noise / stretch, "contrast": (t_spot - around) / stretch}
+    spot_shifts, spot_own = imperfections.of_spot(
+        name, spot, patch, sense, **known, scene=scene, shape=screened.t.shape
+    )
+    whole_shifts, whole_own = imperfections.of_whole(name, patch, screened.t, stretch, **known, scene=scene)
+    extent = _extent(patch, task, screened.t.shape)
     region = Region(
         name,
-        area(f"noise:{name} spot", corrected, spot.rows, spot.columns),
-        area(f"noise:{name} whole", corrected, rows, columns),
+        replace(area(corrected, spot.rows, spot.columns), shifts=spot_shifts),
+        replace(area(corrected, rows, columns), shifts=whole_shifts),
         _lever(spot.centre, screened),
         _lever(centre, screened),
-        _extent(patch, task, screened.t.shape),
+        extent,
+        rim=imperfections.perimeter(patch) * extent / patch.pixels,
+        outline=next((q.name for q in whole_own if q.name.startswith(imperfections.OUTLINE)), None),
     )
-    return Measured(patch, sense, spot, centre, float(screened.t[spot.rows, spot.columns].mean()), region)
+    return Measured(patch, sense, spot, centre, t_spot, region, (*spot_own, *whole_own))
+
+
+def _reference(
+    corrected: Corrected, screened: Screened, task: FrameTask
+) -> tuple[Area | None, tuple[Quantity, ...]]:
+    """The reference as an area of the plan, and what is its own."""
+    reference = screened.reference
+    if reference is None:
+        return None, ()
+    stretch = stretch_of(corrected, task, 0)
+    shifts, own = imperfections.of_reference(
+        reference, screened.reference_area, screened.t, stretch, corrected.scene
+    )
+    drawn = area(corrected, reference.rows, reference.columns, reference.weights)
+    slopes = (
+        Quantity("slope_x", 0.0, reference.u_slope[0]),
+        Quantity("slope_y", 0.0, reference.u_slope[1]),
+    )
+    return replace(drawn, shifts=shifts), (*own, *slopes)
+
+
+def _ambient(scene: Scene) -> str:
+    return "ambient" if "ambient" in scene else "air"
 
 
 def _lever(place: tuple[float, float], screened: Screened) -> tuple[float, float]:

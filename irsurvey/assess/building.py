@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import replace
-from math import isfinite
+from math import copysign, isfinite, nan
 from typing import Final
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from irsurvey.assess.criteria import Criterion
+from irsurvey.assess.judged import Judged, Sensitivity
 from irsurvey.assess.severity import (
+    AGAINST_REFERENCE,
     AUTOMATIC_REFERENCE,
     NO_CRITERION,
     NOT_CLEARED,
@@ -26,9 +28,6 @@ from irsurvey.model.report import Assessment
 
 FILM_RESISTANCE: Final = 0.13
 """Inner film resistance a camera sees on a plane wall [m² K W⁻¹] (ISO 6946, horizontal heat flow [P])."""
-
-AGAINST_REFERENCE: Final = ("delta_k", "mean_delta_k")
-"""Numbers that depend on the reference area; criteria judge their magnitude."""
 
 
 def temperature_factor(t_surface: ArrayLike, t_indoor: ArrayLike, t_outdoor: ArrayLike) -> NDArray[np.float64]:
@@ -85,38 +84,60 @@ def assess_finding(
     return Verdict(assessments, urgency, False, tuple(dict.fromkeys(told)))
 
 
+def judged(
+    criterion: Criterion,
+    estimate: Estimate,
+    sensitivities: Iterable[Sensitivity] = (),
+    *,
+    film_resistance: float = FILM_RESISTANCE,
+) -> Judged:
+    """A number of a finding on the axis of the criterion that judges it, its sensitivities brought along.
+
+    A difference against the reference area becomes its magnitude; a temperature factor seen at
+    `film_resistance` [m² K W⁻¹] becomes the one at the film resistance the criterion assumes, its u by half
+    the swing over ±u.  Any other number stays as it is.
+    """
+    value, u, slope = estimate.value, nan if estimate.u is None else estimate.u, 1.0
+    if criterion.quantity in AGAINST_REFERENCE:
+        value, slope = abs(value), copysign(1.0, value)
+    elif criterion.film_resistance is not None:
+        wanted = criterion.film_resistance
+        low, at, high = factor_at_resistance([value - u, value, value + u], film_resistance, wanted).tolist()
+        value, u, slope = at, (high - low) / 2, _slope(value, film_resistance, wanted)
+    moved = tuple(replace(one, sensitivity=slope * one.sensitivity) for one in sensitivities)
+    return Judged(criterion, value, u, moved)
+
+
+def _slope(factor: float, seen: float, wanted: float) -> float:
+    """Derivative of `factor_at_resistance` with respect to the factor; NaN where that is."""
+    at = float(factor_at_resistance(factor, seen, wanted))
+    return seen * wanted / (seen * factor + wanted * (1 - factor)) ** 2 if isfinite(at) else nan
+
+
 def _assess(
     criterion: Criterion, estimate: Estimate | None, film_resistance: float, blocked: Sequence[str]
 ) -> Assessment:
+    if estimate is None:
+        against = criterion.quantity in AGAINST_REFERENCE
+        words = "against the reference area" if against else f"({criterion.quantity})"
+        return assess(criterion, None, words, blocked)
+    on_axis = judged(criterion, estimate, film_resistance=film_resistance)
+    number = Estimate(on_axis.value, on_axis.u if isfinite(on_axis.u) else None)
     if criterion.quantity in AGAINST_REFERENCE:
-        return _against_reference(criterion, estimate, blocked)
-    if criterion.film_resistance is None or estimate is None:
-        return assess(criterion, estimate, f"({criterion.quantity})", blocked)
-    converted = _at_resistance(estimate, film_resistance, criterion.film_resistance)
+        words = f"{'colder' if estimate.value < 0 else 'warmer'} than the reference area"
+        return _until_confirmed(assess(criterion, number, words, blocked), blocked)
+    if criterion.film_resistance is None:
+        return assess(criterion, number, f"({criterion.quantity})", blocked)
     words = (
         f"temperature factor at the film resistance of {criterion.film_resistance:g} m² K/W the limit assumes "
         f"({estimate.value:.2f} at the {film_resistance:g} m² K/W seen)"
     )
-    return assess(criterion, converted, words, blocked)
+    return assess(criterion, number, words, blocked)
 
 
-def _against_reference(criterion: Criterion, estimate: Estimate | None, blocked: Sequence[str]) -> Assessment:
-    if estimate is None:
-        return assess(criterion, None, "against the reference area", blocked)
-    words = f"{'colder' if estimate.value < 0 else 'warmer'} than the reference area"
-    magnitude = replace(estimate, value=abs(estimate.value))
-    assessment = assess(criterion, magnitude, words, blocked)
+def _until_confirmed(assessment: Assessment, blocked: Sequence[str]) -> Assessment:
+    """The assessment, or without class and urgency where the reference area is only a suggestion."""
     if AUTOMATIC_REFERENCE not in blocked:
         return assessment
     statement = "A suggestion: the reference area was found automatically, no severity until it is confirmed."
-    return replace(assessment, class_=None, urgency=None, probabilities={}, statement=statement)
-
-
-def _at_resistance(estimate: Estimate, seen: float, wanted: float) -> Estimate:
-    """The estimate of a temperature factor at another film resistance; its u by half the swing over ±u."""
-    value = float(factor_at_resistance(estimate.value, seen, wanted))
-    if estimate.u is None:
-        return Estimate(value, None)
-    low, high = factor_at_resistance([estimate.value - estimate.u, estimate.value + estimate.u], seen, wanted)
-    u = float(high - low) / 2
-    return Estimate(value, u if isfinite(u) else None)
+    return replace(assessment, class_=None, urgency=None, probabilities={}, statement=statement, verdict=None)

@@ -83,9 +83,7 @@ def accepted(value: ArrayLike, u: ArrayLike, criterion: Criterion) -> NDArray[np
     return np.asarray((index >= 0) & (u >= 0) & ~_asks(index, criterion) & (criterion.worse != 0))
 
 
-def outcome(
-    value: ArrayLike, u: ArrayLike, criterion: Criterion, blocked: ArrayLike = False
-) -> NDArray[np.str_]:
+def outcome(value: ArrayLike, u: ArrayLike, criterion: Criterion, blocked: ArrayLike = False) -> NDArray[np.str_]:
     """One of OUTCOMES for each value: when in doubt, look again.
 
     Action begins, for every criterion, at its lowest urgency above 0: investigating is an action too.

@@ -12,6 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from irsurvey.assess.criteria import Criterion, class_of, criteria
 from irsurvey.assess.severity import (
+    BOUNDING,
     LEAST_EMISSIVITY,
     LOAD_UNKNOWN,
     LOW_LOAD,
@@ -231,8 +232,8 @@ def _load_blockers(member: Member) -> tuple[str, ...]:
 def _assess(criterion: Criterion, estimate: Estimate | None, plan: TwinPlan, blocked: Sequence[str]) -> Assessment:
     """One assessment; a part and a twin that are both too small give a difference that is no bound."""
     both_small = criterion.quantity == "delta_similar_k" and TWIN_SIZE_LIMITED in plan.flags
-    limits = [flag for flag in blocked if not (both_small and flag == SIZE_LIMITED)]
-    return assess(criterion, estimate, _words(criterion.quantity, plan), limits)
+    bounding = (SATURATED,) if both_small else BOUNDING
+    return assess(criterion, estimate, _words(criterion.quantity, plan), blocked, bounding=bounding)
 
 
 def _surely_below(estimate: Estimate | None, limit: float) -> bool:

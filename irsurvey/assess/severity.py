@@ -7,7 +7,16 @@ from dataclasses import replace
 from math import isnan
 from typing import Final, NamedTuple
 
-from irsurvey.assess.conformity import GUARD, accepted, class_probabilities
+from irsurvey.assess.conformity import (
+    ACT,
+    CLEARED,
+    FOUR_WAY,
+    GUARD,
+    NOT_SETTLED,
+    accepted,
+    class_probabilities,
+    four_way_by,
+)
 from irsurvey.assess.criteria import Criterion, class_of
 from irsurvey.model.quantities import Estimate
 from irsurvey.model.report import Assessment
@@ -36,6 +45,12 @@ BLOCKERS: Final[Mapping[str, str]] = {
 }
 """Flags that never clear anything and may always raise it, and how to look again."""
 
+BOUNDING: Final = (SATURATED, SIZE_LIMITED)
+"""Blockers that make a number a bound: the truth is at least as bad."""
+
+AGAINST_REFERENCE: Final = ("delta_k", "mean_delta_k")
+"""Numbers of a finding that depend on the reference area; criteria judge their magnitude."""
+
 LEAST_EMISSIVITY: Final = 0.6
 """Below it a surface shows its surroundings rather than itself: no class."""
 
@@ -48,6 +63,13 @@ class Verdict(NamedTuple):
     cleared: bool
     flags: tuple[str, ...]
 
+    @property
+    def outcome(self) -> str:
+        """One of `conformity.OUTCOMES`: "act" wherever what governs asks for anything, else by `cleared`."""
+        if self.urgency:
+            return ACT
+        return CLEARED if self.cleared else NOT_SETTLED
+
 
 def blockers(flags: Iterable[str], emissivity: float) -> tuple[str, ...]:
     """What keeps a surface with these flags and this emissivity from being cleared, without repeats."""
@@ -55,19 +77,26 @@ def blockers(flags: Iterable[str], emissivity: float) -> tuple[str, ...]:
     return tuple(dict.fromkeys([*(flag for flag in flags if flag in BLOCKERS), *reflective]))
 
 
-def assess(criterion: Criterion, estimate: Estimate | None, words: str, blocked: Collection[str]) -> Assessment:
+def assess(
+    criterion: Criterion,
+    estimate: Estimate | None,
+    words: str,
+    blocked: Collection[str],
+    *,
+    bounding: Collection[str] = BOUNDING,
+) -> Assessment:
     """One criterion applied to one number, in the unit the criterion's quantity ends in.
 
-    `words` say what the number is ("above ambient air").  No blocker changes the urgency: a bound
-    (saturated, size-limited) is classed by its value and may be worse; a reflective surface keeps the
-    urgency of its number but gets no class.
+    `words` say what the number is ("above ambient air"), `bounding` which of the blockers make it a bound.
+    No blocker changes the urgency: a bound is classed by its value and may be worse; a reflective surface
+    keeps the urgency of its number but gets no class.  Where anything blocks, no number is said to pass.
     """
     source = f"{criterion.source}, {criterion.edition} [{criterion.mark}]"
     blank = Assessment(criterion.name, None, None, "", {}, source)
     kind = None if estimate is None else class_of(estimate.value, criterion)
     if estimate is None or kind is None:
         return replace(blank, statement=f"No value {words}: it could not be measured here.")
-    bound = bool({SATURATED, SIZE_LIMITED} & set(blocked))
+    bound = bool(set(bounding) & set(blocked))
     sign = ("≥ " if criterion.worse >= 0 else "≤ ") if bound else ""
     measured = f"{sign}{_shown(estimate, criterion)} {words}"
     if REFLECTIVE in blocked:
@@ -81,6 +110,7 @@ def assess(criterion: Criterion, estimate: Estimate | None, words: str, blocked:
         statement=f"{measured}: {kind.statement}.{_doubt(estimate, criterion, probabilities)}",
         probabilities=probabilities,
         source=source,
+        verdict=_verdict(estimate, criterion, blocked),
     )
 
 
@@ -113,6 +143,14 @@ def remedy(blocked: Iterable[str]) -> str:
     """One sentence that says what is not cleared and how to look again; empty where nothing blocks."""
     told = "; ".join(f"{flag}, {BLOCKERS[flag]}" for flag in blocked)
     return f"It {NOT_CLEARED}: {told}." if told else ""
+
+
+def _verdict(estimate: Estimate, criterion: Criterion, blocked: Collection[str]) -> str | None:
+    """The four-way statement at the edge where action begins; None without u, and for a pass something blocks."""
+    if estimate.u is None:
+        return None
+    verdict = str(four_way_by(estimate.value, estimate.u, criterion))
+    return None if verdict == "" or (blocked and verdict in FOUR_WAY[:2]) else verdict
 
 
 def _probabilities(estimate: Estimate, criterion: Criterion) -> dict[str, float]:

@@ -49,8 +49,11 @@ class Scene:
     `indoor_air`, `outdoor_air`, `ambient`, `mean_radiant`, `wind`, `convection` (factor on the film
     coefficient, 1 ± u), `camera_offset` [K], `camera_gain` (relative, about the frame's median),
     `ifov` [rad], `view_angle` [rad], `known_length` [m], `known_width` [m], `known_height` [m],
-    `load_exponent` (rise ∝ load^n), `temperature:<surface>` (known-temperature surfaces), and the noise of
-    each area, `noise:<area>` [K], `noise:slope x`, `noise:slope y` [K px⁻¹].
+    `load_exponent` (rise ∝ load^n), `temperature:<surface>` (known-temperature surfaces); the camera's own
+    imperfections `shading` (corner against centre), `shading_x`, `shading_y` (edge against centre) [K],
+    `size_of_source` (share of what blur could take of a contrast), `selection` (of what picking an extreme could
+    add), and of each area `noise:<area>` [K] and `outline:<area>` [px], of the reference plane `slope_x`,
+    `slope_y` [K px⁻¹].
     """
 
     quantities: tuple[Quantity, ...]

@@ -66,12 +66,18 @@ class ReferenceReport:
     spread_k: float
     pixels: int
     gradient_k: float
+    heat_flux_w_m2: Estimate | None
+    u_value_w_m2k: Estimate | None  # seen from inside with both air temperatures recorded
     polygon: tuple[tuple[float, float], ...]
 
 
 @dataclass(frozen=True, slots=True)
 class Assessment:
-    """One criterion applied to one finding or component; class None: no class may be given, the statement says why."""
+    """One criterion applied to one finding or component; class None: no class may be given, the statement says why.
+
+    `verdict` holds the number against the edge where action begins, with a guard band of 2u (ILAC-G8:09/2019):
+    "pass", "conditional pass", "conditional fail", "fail"; None without a class or an uncertainty.
+    """
 
     criterion: str
     class_: str | None
@@ -80,6 +86,36 @@ class Assessment:
     probabilities: dict[str, float]
     source: str
     governs: bool = False
+    verdict: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class BudgetTerm:
+    """What one input does to the uncertainty of one number; `u`, `sensitivity` in the unit the input's key ends in."""
+
+    input: str
+    u: float
+    sensitivity: float  # of the number, per unit of the input
+    contribution: float  # |change| of the number for one u
+    share: float  # of the variance
+
+
+@dataclass(frozen=True, slots=True)
+class Flip:
+    """A plausible change of one input (within 2u), in the unit its key ends in, that would change the class."""
+
+    input: str
+    change: float
+    class_: str
+
+
+@dataclass(frozen=True, slots=True)
+class NextMeasurement:
+    """One measurement for the next visit, and the findings and components (ids, keys) it would settle."""
+
+    measurement: str
+    settles: tuple[str, ...]
+    why: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,8 +158,12 @@ class Finding:
     excess_heat_w: Estimate | None
     temperature_factor: Estimate | None
     shape: Shape
+    exceeds_threshold: float | None  # probability that |ΔT| truly exceeds the smallest that counts
     assessments: tuple[Assessment, ...]
     urgency: int | None
+    outcome: str  # "not cleared" | "act"
+    flips: tuple[Flip, ...]  # changes of single inputs that would change the governing class
+    budgets: dict[str, tuple[BudgetTerm, ...]]  # number → its terms, largest first
     indication: Indication | None
     flags: tuple[str, ...]
 
@@ -166,6 +206,9 @@ class ComponentReport:
     assessments: tuple[Assessment, ...]
     urgency: int | None
     cleared: bool
+    outcome: str  # "cleared" | "not cleared" | "act"
+    flips: tuple[Flip, ...]
+    budgets: dict[str, tuple[BudgetTerm, ...]]
     flags: tuple[str, ...]
 
 
@@ -187,6 +230,8 @@ class FrameReport:
     source: Source
     inputs: dict[str, Input]
     humid_air: dict[str, float]  # dew_point_c, vapour_density_g_m3
+    uncertainty: str | None  # "first order" | "Monte Carlo"
+    draws: int | None  # of Monte Carlo
     atmosphere_transmittance: float | None
     radiance_table_error_k: float | None  # worst error of the run-time table, −40…300 °C
     detectable: Detectable | None
@@ -230,6 +275,7 @@ class Report:
     tool: dict[str, str]
     survey: dict[str, object]
     conditions_review: tuple[ConditionCheck, ...]
+    next_visit: tuple[NextMeasurement, ...]
     assets: tuple[AssetReport, ...]
     frames: tuple[FrameReport, ...]
     cautions: tuple[str, ...]
@@ -243,3 +289,4 @@ class Maps:
     labels: NDArray[np.uint16]  # 0 none, k = finding k
     reference: NDArray[np.bool_]
     heat_flux: NDArray[np.float32] | None = None  # [W m⁻²], on request
+    u_temperature: NDArray[np.float32] | None = None  # standard uncertainty [K], on request

@@ -26,7 +26,8 @@ COLUMNS = (
     *(column for name in _ESTIMATES for column in (name, f"u_{name}")),
     *(f"at_rated_load_{name}" for name in _RATED),
     *_SHAPE,
-    *("criterion", "class", "urgency", "flags"),
+    "exceeds_threshold",
+    *("criterion", "class", "urgency", "verdict", "outcome", "flags"),
 )
 
 _FORMULA_STARTS = tuple("=+-@\t\r\n＝＋－＠")
@@ -63,8 +64,10 @@ def _row(frame: FrameReport, item: Finding | ComponentReport) -> dict[str, Any]:
     for delta, band in (written.get("at_rated_load") or {}).items():
         row |= {f"at_rated_load_{delta}_{end}": number for end, number in (band or {}).items()}
     row |= {name: written.get("shape", {}).get(name) for name in _SHAPE}
-    row |= {"criterion": governs.criterion, "class": governs.class_} if governs else {}
-    return row | {"urgency": item.urgency, "flags": ";".join(item.flags)}
+    row["exceeds_threshold"] = written.get("exceeds_threshold")
+    if governs:
+        row |= {"criterion": governs.criterion, "class": governs.class_, "verdict": governs.verdict}
+    return row | {"urgency": item.urgency, "outcome": item.outcome, "flags": ";".join(item.flags)}
 
 
 def _cell(value: str | float | None) -> str | float:

@@ -12,22 +12,24 @@ from irsurvey.model import FrameReport, Maps
 from irsurvey.report import picture
 from irsurvey.report.inks import COLORMAP
 
-NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "annotated.png")
+NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "u_temperature.tif", "annotated.png")
 """Every file this module may write into a frame's folder."""
 
 
 def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP) -> Path:
-    """Write OUT/frames/<id>/temperature.tif, findings.tif, annotated.png (and heat_flux.tif where it is given).
+    """Write OUT/frames/<id>/temperature.tif, findings.tif, annotated.png, and the maps made on request.
 
     temperature.tif: float32 °C, NaN where not measurable; findings.tif: uint16, 0 none, k = finding k;
-    heat_flux.tif: float32 W m⁻².  Each file is written whole or not at all; returns the frame's folder."""
+    on request heat_flux.tif: float32 W m⁻², and u_temperature.tif: float32 K, standard uncertainty of
+    temperature.tif pixel by pixel, NaN where that is or where it does not exist.  Each file is written whole or not at all; returns the frame's folder."""
     folder = out / "frames" / frame.id
     _write_tiff(folder / "temperature.tif", maps.temperature_c.astype(np.float32, copy=False))
     _write_tiff(folder / "findings.tif", maps.labels.astype(np.uint16, copy=False))
-    if maps.heat_flux is None:
-        (folder / "heat_flux.tif").unlink(missing_ok=True)  # one of an earlier run would not belong to this one
-    else:
-        _write_tiff(folder / "heat_flux.tif", maps.heat_flux.astype(np.float32, copy=False))
+    for name, on_request in (("heat_flux.tif", maps.heat_flux), ("u_temperature.tif", maps.u_temperature)):
+        if on_request is None:
+            (folder / name).unlink(missing_ok=True)  # one of an earlier run would not belong to this one
+        else:
+            _write_tiff(folder / name, on_request.astype(np.float32, copy=False))
     with files.whole(folder / "annotated.png") as part:
         picture.save(picture.annotated(frame, maps, colormap=colormap), part)
     return folder

@@ -16,9 +16,11 @@ NOTHING = "–"
 """What stands where there is no number."""
 
 UNITS = {
+    "w_m2k": "W/(m²·K)",
     "w_m2": "W/m²",
     "g_m3": "g/m³",
     "m_s": "m/s",
+    "k_per_px": "K/px",
     "per_pixel": "1/px",
     "percent": "%",
     "mrad": "mrad",
@@ -26,6 +28,7 @@ UNITS = {
     "m2": "m²",
     "deg": "°",
     "pa": "Pa",
+    "px": "px",
     "um": "µm",
     "a": "A",
     "c": "°C",
@@ -36,18 +39,30 @@ UNITS = {
 """The ending of a key → the unit as people write it; longer endings first."""
 
 
+_OF_A_DIFFERENCE = {"°C": "K", "%": "points"}
+"""Units in which a change is not told as the number itself is: 45 % and 50 % are 5 points apart, or 11 %."""
+
+
 def unit(key: str) -> str:
-    """The unit that the ending of a key stands for: "delta_k" → "K"; "" where the number has none."""
-    return next((symbol for ending, symbol in UNITS.items() if key.endswith(f"_{ending}")), "")
+    """The unit that the ending of a key stands for: "delta_k" → "K"; "" where the number has none.
+
+    What follows a colon names whose number it is: "temperature_c:plate" → "°C"."""
+    stem = key.partition(":")[0]
+    return next((symbol for ending, symbol in UNITS.items() if stem.endswith(f"_{ending}")), "")
+
+
+def difference_unit(key: str) -> str:
+    """The unit of a change of that number, and of its uncertainty: "air_c" → "K"."""
+    return _OF_A_DIFFERENCE.get(unit(key), unit(key))
 
 
 def plus_minus(value: float, expanded: float) -> str:
     """A value and its expanded uncertainty U: "3.14 ± 0.28".
 
-    U keeps two significant digits and the value is rounded to the same decimal place, the one rule used
-    everywhere (JCGM 100:2008, 7.2.6: at most two digits in U, the estimate rounded consistently with it)."""
-    place = Decimal(f"{expanded:.1e}").as_tuple().exponent
-    assert isinstance(place, int)  # only infinities and NaN have another exponent
+    The one rule used everywhere: U keeps two significant digits, rounded to the nearest, and the value is
+    rounded to the same decimal place.  JCGM 100:2008, 7.2.6: at most two digits in U, the estimate consistent
+    with it.  To the nearest rather than up: the usual rules of rounding, as ILAC-P14:01/2013, 6.3 b asks."""
+    place = _place(expanded, 2)
     return f"{_rounded(value, place)}\u00a0±\u00a0{_rounded(expanded, place)}"
 
 
@@ -58,6 +73,22 @@ def shown(estimate: Estimate | None) -> str:
     if estimate.u is None or not isfinite(estimate.u) or estimate.u <= 0:
         return number(estimate.value)
     return plus_minus(estimate.value, COVERAGE_FACTOR * estimate.u)
+
+
+def interval(estimate: Estimate | None) -> str:
+    """The 95 % interval of a result where one was drawn, to the place of its U: "15.1 to 16.6 (95 %)"; else ""."""
+    if estimate is None or estimate.interval_95 is None or not all(isfinite(end) for end in estimate.interval_95):
+        return ""
+    low, high = estimate.interval_95
+    if not high > low:
+        return ""
+    place = _place(COVERAGE_FACTOR * estimate.u if estimate.u else (high - low) / 2, 2)
+    return f"{_rounded(low, place)} to {_rounded(high, place)} (95\u00a0%)"
+
+
+def signed(value: float, digits: int = 2) -> str:
+    """A change, to so many significant digits and with its sign: "+0.5", "−1.3"."""
+    return f"+{number(value, digits)}" if value > 0 else number(value, digits)
 
 
 def stated(entry: Input) -> str:
@@ -71,9 +102,7 @@ def number(value: float | None, digits: int = 4) -> str:
         return NOTHING
     if value == 0:
         return "0"
-    place = Decimal(f"{value:.{digits - 1}e}").as_tuple().exponent
-    assert isinstance(place, int)
-    text = _rounded(value, place)
+    text = _rounded(value, _place(value, digits))
     return text.rstrip("0").rstrip(".") if "." in text else text
 
 
@@ -102,9 +131,20 @@ def percent(fraction: float | None) -> str:
 
 def with_unit(text: str, key: str) -> str:
     """The number, a space that does not break, and the unit its key ends in."""
-    symbol = unit(key)
+    return with_symbol(text, unit(key))
+
+
+def with_symbol(text: str, symbol: str) -> str:
+    """The number, a space that does not break, and a unit; the number alone where there is no unit."""
     space = "" if symbol == "°" else "\u00a0"
     return f"{text}{space}{symbol}" if symbol and text != NOTHING else text
+
+
+def _place(value: float, digits: int) -> int:
+    """The decimal place 10^place of the last of so many significant digits, after rounding to them."""
+    place = Decimal(f"{value:.{digits - 1}e}").as_tuple().exponent
+    assert isinstance(place, int)  # only infinities and NaN have another exponent
+    return place
 
 
 def _rounded(value: float, place: int) -> str:

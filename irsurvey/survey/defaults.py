@@ -19,6 +19,11 @@ class Default:
     source: str
     mark: str
 
+    @property
+    def distribution(self) -> str:
+        """As `Quantity.distribution`."""
+        return "normal" if self.half_width is None else "rectangular"
+
 
 @cache
 def defaults(section: str) -> dict[str, Default]:

@@ -8,7 +8,10 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class Known:
-    """Names of criteria and of convection correlations; materials by name as (emissivity, its standard uncertainty)."""
+    """Names of criteria and of convection correlations; materials by name as (emissivity, its u).
+
+    That u comes from a range of real samples: a rectangular distribution.
+    """
 
     criteria: tuple[str, ...]
     convections: tuple[str, ...]

@@ -12,6 +12,7 @@ from typing import Any
 from irsurvey.errors import Fault, SurveyError
 from irsurvey.model import Asset, Survey
 from irsurvey.survey import places, table
+from irsurvey.survey.correlations import unknown_inputs
 from irsurvey.survey.faults import follows_from, validated
 from irsurvey.survey.known import Known
 from irsurvey.survey.notices import notices
@@ -75,6 +76,7 @@ def _survey(content: Mapping[str, Any], folder: Path, known: Known) -> Survey:
     faults += [fault for fault in unresolved if not follows_from(fault, faults)]
     if not tasks and not faults:
         faults = [Fault("frame", "at least one frame", "nothing", "list [[frame]] or give a [[group]] a glob")]
+    faults += unknown_inputs(document, tasks, with_areas=not faults)  # an area at fault may lack what it is named for
     if faults:
         raise SurveyError(*dict.fromkeys(faults))
     about = document.survey

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from irsurvey.model import Component, Polygon, Quantity, Surface
+from irsurvey.model import Component, Polygon, Surface
 from irsurvey.survey import schema
 from irsurvey.survey.known import Known
 from irsurvey.survey.levels import Levels
@@ -23,8 +23,8 @@ def surfaces(levels: Levels, quantities: Quantities, uncertainties: Uncertaintie
         temperature = None
         if area.temperature_c is not None:
             value = si("temperature_c", area.temperature_c)
-            u = uncertainties.of(value, "known_temperature_k")
-            temperature = put(quantities, [f"temperature:{area.name}"], Quantity("", value, u, "surface", 0.0))
+            own_temperature = uncertainties.quantity("", value, "known_temperature_k", source="surface", low=0.0)
+            temperature = put(quantities, [f"temperature:{area.name}"], own_temperature)
         surface = Surface(
             name=str(area.name),
             polygon=points(area.polygon),

@@ -29,6 +29,7 @@ def notices(document: Document, tasks: list[FrameTask], noted: Iterable[tuple[st
         by_text.setdefault(text, []).append(frame)
     concerning = tuple(f"{text} ({_frames(ids, tasks)})" for text, ids in by_text.items())
     stated = sorted({key for _, level in every_level(document) for key in level.uncertainty.model_fields_set})
+    stated = [key for key in stated if key != "correlations"]
     besides = f" besides {', '.join(stated)}" if stated else ""
     return (*concerning, f"uncertainties not stated: common practice or judgement assumed for all inputs{besides}")
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from itertools import chain, count
 
 from irsurvey.model import Quantity
@@ -24,8 +25,7 @@ def target(stated: Mapping[str, Stated], uncertainties: Uncertainties, known: Kn
     if own is not None:
         return own
     value = defaults("assumed")["emissivity"].value
-    u = uncertainties.of(value, "emissivity", assumed="emissivity")
-    return Quantity("emissivity", value, u, "default", *_LIMITS)
+    return _quantity(value, "default", uncertainties, assumed="emissivity")
 
 
 def own_emissivity(
@@ -58,7 +58,7 @@ def own_reflected(area: schema.Surface | schema.Component, quantities: Quantitie
     if area.reflected_c is None:
         return "reflected"
     value = si("reflected_c", area.reflected_c)
-    own = Quantity("", value, uncertainties.of(value, "reflected_k"), "surface", 0.0)
+    own = uncertainties.quantity("", value, "reflected_k", source="surface", low=0.0)
     return put(quantities, [f"reflected:{area.name}"], own)
 
 
@@ -66,8 +66,8 @@ def put(quantities: Quantities, names: Sequence[str], own: Quantity) -> str:
     """Adds `own` under the first of `names` that is free or stands for the same value already, and says which."""
     numbered = (f"{names[-1]} ({number})" for number in count(2))
     for name in chain(names, numbered):
-        present = quantities.setdefault(name, Quantity(name, own.value, own.u, own.source, own.low, own.high))
-        if (present.value, present.u) == (own.value, own.u):
+        present = quantities.setdefault(name, replace(own, name=name))
+        if (present.value, present.u, present.distribution) == (own.value, own.u, own.distribution):
             break
     return name
 
@@ -75,12 +75,17 @@ def put(quantities: Quantities, names: Sequence[str], own: Quantity) -> str:
 def _emissivity(stated: Mapping[str, Stated], uncertainties: Uncertainties, known: Known) -> Quantity | None:
     if "emissivity" in stated:
         value, source = stated["emissivity"].value, stated["emissivity"].source
-        return Quantity("emissivity", value, uncertainties.of(value, "emissivity"), source, *_LIMITS)
+        return _quantity(value, source, uncertainties)
     material = stated.get("material")
     if material is None or material.value not in known.materials:
         return None
     value, u = known.materials[material.value]
     general = uncertainties.stated.get("emissivity")
     if general is not None and general.depth >= material.depth:  # stated where the material is, not for all above it
-        u = uncertainties.of(value, "emissivity")
-    return Quantity("emissivity", value, u, "material table", *_LIMITS)
+        return _quantity(value, "material table", uncertainties)
+    return Quantity("emissivity", value, u, "material table", *_LIMITS, distribution="rectangular")
+
+
+def _quantity(value: float, source: str, uncertainties: Uncertainties, assumed: str = "") -> Quantity:
+    low, high = _LIMITS
+    return uncertainties.quantity("emissivity", value, "emissivity", source=source, low=low, high=high, assumed=assumed)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import UTC, datetime, tzinfo
 from pathlib import Path
 from typing import Any
@@ -22,6 +22,7 @@ from irsurvey.model import (
 )
 from irsurvey.survey import log, places, scene, schema
 from irsurvey.survey.cameras import cameras
+from irsurvey.survey.correlations import correlations
 from irsurvey.survey.entries import Entry, entries
 from irsurvey.survey.faults import nearest
 from irsurvey.survey.known import Known
@@ -101,10 +102,11 @@ def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
         air = quantities.get("air")
         quantities |= {q.name: q for q in scene.window(window.value, window.source, air, uncertainties)}
     quantities |= {q.name: q for q in scene.scale(frame, camera, uncertainties)}
+    quantities |= {q.name: q for q in scene.imperfections(uncertainties)}
     seen = surfaces(levels, quantities, uncertainties, context.known)  # these add what is their own
     parts = components(levels, quantities, uncertainties, context.known)
 
-    return FrameTask(
+    task = FrameTask(
         id=entry.id,
         file=entry.file,
         path=str(context.folder / entry.file),
@@ -133,6 +135,7 @@ def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
         photo_path=_photo_path(levels, context),
         taken=taken,
     )
+    return replace(task, scene=replace(task.scene, correlations=correlations(task, levels, context.faults)))
 
 
 def _kind(levels: Levels, context: Context) -> tuple[str, str, str | None]:

@@ -26,7 +26,7 @@ class _Scalar:
     high: float = inf
 
 
-_CONDITIONS = {
+CONDITIONS = {
     "air_c": _Scalar("air", ("air_k",)),
     "relative_humidity_percent": _Scalar("relative_humidity", ("relative_humidity_percent",), high=1.0),
     "pressure_hpa": _Scalar("pressure", ("pressure_hpa",)),
@@ -45,60 +45,78 @@ _CONDITIONS = {
     "irradiance_w_m2": _Scalar("irradiance", ("irradiance_fraction",)),
     "pressure_pa": _Scalar("pressure_difference", ("pressure_pa",), low=-inf),
 }
+"""Conditions that are one number, by their keys of the survey file."""
 _ASSUMED = ("relative_humidity_percent", "pressure_hpa", "view_angle_deg")
+
+IMPERFECTIONS = {
+    "shading": "shading_k",
+    "shading_x": "shading_tilt_k",
+    "shading_y": "shading_tilt_k",
+    "outline": "outline_px",
+    "size_of_source": "size_of_source_fraction",
+}
+"""What the camera adds to every picture → its key of [uncertainty]."""
 
 
 def conditions(stated: Mapping[str, Stated], uncertainties: Uncertainties) -> Iterator[Quantity]:
     """Quantities of [conditions], and of those among them that nobody stated but every measurement needs."""
-    for key, scalar in _CONDITIONS.items():
+    for key, scalar in CONDITIONS.items():
         if key in stated:
-            value = si(key, stated[key].value)
-            u = uncertainties.of(value, *scalar.uncertainty)
-            yield Quantity(scalar.name, value, u, stated[key].source, scalar.low, scalar.high)
+            value, source, assumed = stated[key].value, stated[key].source, ""
         elif key in _ASSUMED:
-            value = si(key, defaults("assumed")[key].value)
-            u = uncertainties.of(value, *scalar.uncertainty, assumed=key)
-            yield Quantity(scalar.name, value, u, "default", scalar.low, scalar.high)
+            value, source, assumed = defaults("assumed")[key].value, "default", key
+        else:
+            continue
+        yield uncertainties.quantity(
+            scalar.name,
+            si(key, value),
+            *scalar.uncertainty,
+            source=source,
+            low=scalar.low,
+            high=scalar.high,
+            assumed=assumed,
+        )
     if "outdoor_24h_c" in stated:
+        source = stated["outdoor_24h_c"].source
         for name, celsius in zip(("low", "high"), stated["outdoor_24h_c"].value, strict=True):
             value = si("outdoor_24h_c", celsius)
-            u = uncertainties.of(value, "outdoor_24h_k")
-            yield Quantity(f"outdoor_24h_{name}", value, u, stated["outdoor_24h_c"].source, 0.0)
+            yield uncertainties.quantity(f"outdoor_24h_{name}", value, "outdoor_24h_k", source=source, low=0.0)
 
 
 def surroundings(scene: Quantities, uncertainties: Uncertainties) -> Iterator[Quantity]:
-    """What a surface exchanges heat with, where nobody stated it: the air, further off than a stated value."""
+    """What a surface exchanges heat with; where nobody stated it, the air nearby."""
     at = uncertainties.surroundings
-    air = scene.get("air")
-    if at == "electrical" and air is not None and "ambient" not in scene:
-        air = Quantity("ambient", air.value, uncertainties.of(air.value, "ambient_k", assumed="ambient_k"), low=0.0)
-        yield air
-    nearby = scene.get({"inside": "indoor_air", "outside": "outdoor_air", "electrical": "ambient"}[at], air)
+    nearby = scene.get({"inside": "indoor_air", "outside": "outdoor_air", "electrical": "ambient"}[at])
+    if nearby is None:
+        nearby = scene.get("air")
+        if at == "electrical" and nearby is not None:
+            nearby = _as(nearby, "ambient", "ambient_k", uncertainties)
+            yield nearby
     if nearby is not None and "mean_radiant" not in scene:
-        u = uncertainties.of(nearby.value, "mean_radiant_k", assumed="mean_radiant_k")
-        yield Quantity("mean_radiant", nearby.value, u, low=0.0)
-    yield Quantity("convection", 1.0, uncertainties.of(1.0, "convection_fraction"), low=0.0)
-    yield Quantity("atmosphere", 0.0, uncertainties.of(1.0, "atmosphere_fraction"), low=-1.0)
+        yield _as(nearby, "mean_radiant", "mean_radiant_k", uncertainties)
+    yield uncertainties.quantity("convection", 1.0, "convection_fraction", low=0.0)
+    yield uncertainties.quantity("atmosphere", 0.0, "atmosphere_fraction", low=-1.0, relative_to=1.0)
 
 
 def window(
     stated: schema.Window, source: str, air: Quantity | None, uncertainties: Uncertainties
 ) -> Iterator[Quantity]:
     """An infrared window in the path."""
-    of, tau, rho = uncertainties.of, stated.transmittance, stated.reflectance
-    u_tau, u_rho = of(tau, "window_transmittance"), of(rho, "window_reflectance")
-    yield Quantity("window_transmittance", tau, u_tau, source, 0.001, max(1.0 - rho, tau))
+    tau, rho = stated.transmittance, stated.reflectance
     is_stated = "reflectance" in stated.model_fields_set
-    yield Quantity("window_reflectance", rho, u_rho, source if is_stated else "default", 0.0, max(1.0 - tau, rho))
+    for name, value, other, of, low in (
+        ("window_transmittance", tau, rho, source, 0.001),
+        ("window_reflectance", rho, tau, source if is_stated else "default", 0.0),
+    ):
+        yield uncertainties.quantity(name, value, name, source=of, low=low, high=max(1.0 - other, value))
     for name, key, celsius in (
         ("window_temperature", "window_k", stated.temperature_c),
         ("window_ambient", "window_ambient_k", stated.ambient_c),
     ):
         if celsius is not None:
-            value = si("temperature_c", celsius)
-            yield Quantity(name, value, of(value, key), source, 0.0)
+            yield uncertainties.quantity(name, si("temperature_c", celsius), key, source=source, low=0.0)
         elif air is not None:
-            yield Quantity(name, air.value, of(air.value, key, assumed=key), low=0.0)
+            yield _as(air, name, key, uncertainties)
 
 
 def scale(frame: schema.Frame, camera: Camera, uncertainties: Uncertainties) -> Iterator[Quantity]:
@@ -110,6 +128,17 @@ def scale(frame: schema.Frame, camera: Camera, uncertainties: Uncertainties) -> 
     if frame.known_rectangle is not None:
         lengths = {"known_width": frame.known_rectangle.width_m, "known_height": frame.known_rectangle.height_m}
     for name, metres in lengths.items():
-        yield Quantity(name, metres, uncertainties.of(metres, *keys), "frame", 0.0)
+        yield uncertainties.quantity(name, metres, *keys, source="frame", low=0.0)
     if camera.ifov is not None:
-        yield Quantity("ifov", camera.ifov, uncertainties.of(camera.ifov, "ifov_fraction"), "survey", 0.0)
+        yield uncertainties.quantity("ifov", camera.ifov, "ifov_fraction", source="survey", low=0.0)
+
+
+def imperfections(uncertainties: Uncertainties) -> Iterator[Quantity]:
+    """What the camera does to every picture that nothing corrects: its best value is 0, and its uncertainty counts."""
+    for name, key in IMPERFECTIONS.items():
+        yield uncertainties.quantity(name, 0.0, key, source=uncertainties.source(key), relative_to=1.0)
+
+
+def _as(leader: Quantity, name: str, key: str, uncertainties: Uncertainties) -> Quantity:
+    """A temperature nobody stated, taken from `leader`: it moves with that, and may be off by something of its own."""
+    return uncertainties.quantity(name, leader.value, key, low=0.0, assumed=key, follows=leader.name)

@@ -61,6 +61,15 @@ Uncertain = Annotated[
 ]
 
 
+class Correlation(Table):
+    between: Annotated[tuple[Name, Name], Field(json_schema_extra={"uniqueItems": True})] = required(
+        'Two inputs, by their keys in report.json: ["air_c", "reflected_c"], "emissivity:cover plate"'
+    )
+    coefficient: Annotated[float, Strict(), FINITE, Field(ge=-1, le=1)] = required(
+        "Correlation coefficient of their errors; 0: none, as where nothing is stated"
+    )
+
+
 def _uncertainty(of: str, name: str = "") -> Any:
     """A key of [uncertainty]; its default is that of a stated value, from defaults.toml."""
     default = defaults("stated").get(name)
@@ -100,6 +109,17 @@ class Uncertainty(Table):
     known_length_m: Uncertain | None = _uncertainty("known lengths [m]; or known_length_fraction")
     known_length_fraction: Uncertain | None = _uncertainty("known lengths, relative to them", "known_length_fraction")
     known_temperature_k: Uncertain | None = _uncertainty("known surface temperatures [K]", "known_temperature_k")
+    shading_k: Uncertain | None = _uncertainty("what the camera reads in corners against the centre [K]", "shading_k")
+    shading_tilt_k: Uncertain | None = _uncertainty(
+        "what the camera reads at each edge against the centre [K]", "shading_tilt_k"
+    )
+    outline_px: Uncertain | None = _uncertainty("where an outline lies, drawn or found [pixels]", "outline_px")
+    size_of_source_fraction: Uncertain | None = _uncertainty(
+        "a small region's contrast, relative to what blur could take from it", "size_of_source_fraction"
+    )
+    correlations: list[Correlation] = key(
+        "Inputs whose errors go together; of a pair stated at several levels the lowest counts", []
+    )
 
     @model_validator(mode="after")
     def _one_of_each(self) -> Uncertainty:

@@ -1,11 +1,12 @@
-"""Standard uncertainties of a scene's quantities: stated under [uncertainty], or by default."""
+"""Quantities of a scene with their standard uncertainties: stated under [uncertainty], or by default."""
 
 from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from math import sqrt
+from math import inf, sqrt
 
+from irsurvey.model import Quantity
 from irsurvey.survey.defaults import defaults
 from irsurvey.survey.levels import Stated
 from irsurvey.survey.schema import HalfWidth
@@ -19,23 +20,43 @@ class Uncertainties:
     stated: Mapping[str, Stated]
     surroundings: str
 
-    def of(self, value: float, *keys: str, assumed: str = "") -> float:
-        """Standard uncertainty of a `value` in SI units, by the first of `keys` that is stated or has a default.
+    def quantity(
+        self,
+        name: str,
+        value: float,
+        *keys: str,
+        source: str = "default",
+        low: float = -inf,
+        high: float = inf,
+        assumed: str = "",
+        follows: str | None = None,
+        relative_to: float | None = None,
+    ) -> Quantity:
+        """A quantity in SI units, as uncertain as the first of `keys` that is stated or has a default; else exact.
 
-        A key in `_fraction` is relative to the value.  `assumed` is the entry that counts for a value nobody stated.
+        A key in `_fraction` is relative to the value, or to `relative_to`.  `assumed` is the entry that counts for a
+        value nobody stated.  What comes from a half-width is rectangular.
         """
+        key, u, distribution = self._spread(keys, assumed)
+        if key.endswith("_fraction"):
+            u *= abs(value if relative_to is None else relative_to)
+        return Quantity(name, value, si(key, u), source, low, high, distribution, follows)
+
+    def source(self, key: str) -> str:
+        """Where `key` is stated."""
+        return self.stated[key].source if key in self.stated else "default"
+
+    def _spread(self, keys: tuple[str, ...], assumed: str) -> tuple[str, float, str]:
+        """The key that counts, the standard uncertainty in its unit, and the distribution."""
         for key in keys:
             if key in self.stated:
                 u = self.stated[key].value
-                return _si(key, u.half_width / sqrt(3) if isinstance(u, HalfWidth) else u, value)
+                is_half_width = isinstance(u, HalfWidth)
+                return (key, u.half_width / sqrt(3), "rectangular") if is_half_width else (key, u, "normal")
         section, keys = ("assumed", (assumed,)) if assumed else ("stated", keys)
         table = defaults(section)
         for key in keys:
             default = table.get(f"{key}_{self.surroundings}") or table.get(key)
             if default is not None:
-                return _si(key, default.u, value)
-        return 0.0
-
-
-def _si(key: str, u: float, value: float) -> float:
-    return abs(value) * u if key.endswith("_fraction") else si(key, u)
+                return key, default.u, default.distribution
+        return "", 0.0, "normal"

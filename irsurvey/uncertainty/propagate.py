@@ -1,36 +1,75 @@
-"""First-order propagation with finite sensitivities, all inputs moved through the whole model at once."""
+"""First-order propagation with finite sensitivities, every input moved through the whole model at once."""
 
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from math import isfinite, isnan
+from math import inf, isfinite, isnan
 
 import numpy as np
-from numpy.typing import NDArray
 
 from irsurvey.model import Estimate, Scene
+from irsurvey.uncertainty.joint import Array, joint, moved
 
-Model = Callable[[Mapping[str, NDArray[np.float64]]], NDArray[np.float64]]
+Model = Callable[[Mapping[str, Array]], Array]
 """Values by name, each of shape (n, 1), to results of shape (n, m): n scenes, m numbers."""
+
+_ROUNDING = 1e-14
+"""Of (Σ |half swing|)²: a variance below it is what rounding left of swings that cancel."""
+
+
+@dataclass(frozen=True, slots=True)
+class Term:
+    """What one input contributes to one result.
+
+    `u` of the input; `sensitivity` ∂result/∂input, finite and with all that follows the input moving along;
+    `contribution` |sensitivity|·u, the result's standard uncertainty from this input alone; `share` of the
+    result's variance: s Σ r s′ / u² over all inputs s′, so that the shares sum to 1.  What two correlated
+    inputs do together is halved between them; an input that takes from the variance by its correlation has
+    a negative share.  All shares are 0 where nothing contributes, NaN where the uncertainty does not exist.
+    """
+
+    name: str
+    u: float
+    sensitivity: float
+    contribution: float
+    share: float
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Budget:
     """What each input contributes to each result.
 
-    `values` (m,), `half_swings` (k, m) signed, one row per name in `terms`: the change of the results
-    when that input moves by one standard uncertainty.
+    `values` (m,); for each of the k `names` its standard uncertainty `inputs_u` (k,) and `half_swings` (k, m),
+    signed: the change of the results when that input moves by one standard uncertainty.  `correlation` (k, k);
+    `adjusted`: the largest change of a stated coefficient that was needed to make them possible together.
     """
 
-    values: NDArray[np.float64]
-    terms: tuple[str, ...]
-    half_swings: NDArray[np.float64]
+    values: Array
+    names: tuple[str, ...]
+    inputs_u: Array
+    half_swings: Array
+    correlation: Array
+    adjusted: float
 
     @property
-    def u(self) -> NDArray[np.float64]:
-        """Standard uncertainty of each result for independent inputs, shape (m,).  JCGM 100:2008, eq. 11a."""
-        return np.asarray(np.sqrt(np.sum(self.half_swings**2, axis=0)))
+    def u(self) -> Array:
+        """Standard uncertainty of each result, shape (m,): u² = Σ r_ij s_i s_j.  JCGM 100:2008, eq. 13 and 16."""
+        return np.asarray(np.sqrt(self._shared().sum(axis=0)))
+
+    def terms(self, index: int) -> tuple[Term, ...]:
+        """The inputs of one result, the largest contribution first; what has none, because no step of it had a
+        solution (NaN), stands before all."""
+        swings, shared = self.half_swings[:, index], self._shared()[:, index]
+        variance = shared.sum()
+        shares = shared / variance if variance != 0 else shared
+        terms = [
+            Term(name, u, swing / u, abs(swing), share)
+            for name, u, swing, share in zip(
+                self.names, self.inputs_u.tolist(), swings.tolist(), shares.tolist(), strict=True
+            )
+        ]
+        return tuple(sorted(terms, key=lambda term: -inf if isnan(term.contribution) else -term.contribution))
 
     def estimates(self) -> tuple[Estimate | None, ...]:
         """Each result with its uncertainty, None where it does not exist (NaN); u None where only that does not."""
@@ -39,30 +78,37 @@ class Budget:
             for value, u in zip(self.values.tolist(), self.u.tolist(), strict=True)
         )
 
+    def _shared(self) -> Array:
+        """Parts (k, m) of the variances of the results: s_i Σ_j r_ij s_j."""
+        parts = self.half_swings * (self.correlation @ self.half_swings)
+        cancelled = parts.sum(axis=0) <= _ROUNDING * np.abs(self.half_swings).sum(axis=0) ** 2
+        return np.where(cancelled, 0.0, parts)
+
 
 def propagate(model: Model, scene: Scene) -> Budget:
-    """First-order propagation with finite sensitivities (JCGM 100:2008, 5.1.3 note 2).
+    """First-order propagation with finite sensitivities (JCGM 100:2008, 5.1.3 note 2, 5.2.2).
 
-    Every quantity with an uncertainty moves by ±u through the whole model, so what two results share
-    cancels in their difference by itself.  A step that would leave the quantity's domain is cut at its
-    edge and the swing scaled back to u; where the model has no solution on one side (NaN), the other
+    Every quantity with an uncertainty moves by ±u through the whole model, whatever follows it with it, so
+    what two results share cancels in their difference by itself.  A step that would leave a domain is cut at
+    its edge and the swing scaled back to u; where the model has no solution on one side (NaN), the other
     side alone counts.
     """
-    uncertain = [quantity for quantity in scene.quantities if quantity.u > 0]
-    count = len(uncertain)
-    columns = {q.name: np.full((2 * count + 1, 1), float(q.value)) for q in scene.quantities}
-    steps = np.empty((2, count, 1))
-    for row, quantity in enumerate(uncertain, start=1):
-        up, down = min(quantity.value + quantity.u, quantity.high), max(quantity.value - quantity.u, quantity.low)
-        columns[quantity.name][row] = up
-        columns[quantity.name][row + count] = down
-        steps[:, row - 1, 0] = (up - quantity.value) / quantity.u, (quantity.value - down) / quantity.u
+    inputs = joint(scene)
+    count = len(inputs.quantities)
+    inputs_u = np.array([quantity.u for quantity in inputs.quantities])
+    up, down = np.minimum(inputs_u, inputs.high), np.maximum(-inputs_u, inputs.low)
+    every = {quantity.name: quantity for quantity in scene.quantities}
+    columns = {name: np.full((2 * count + 1, 1), float(quantity.value)) for name, quantity in every.items()}
+    for row, names in enumerate(inputs.moves, start=1):
+        for name in names:
+            columns[name][[row, row + count], 0] = moved(every[name], np.array([up[row - 1], down[row - 1]]))
     results = model(columns)
     rises = results[1 : count + 1] - results[0]
     falls = results[0] - results[count + 1 :]
     missing_up, missing_down = np.isnan(rises), np.isnan(falls)
-    reach = np.where(missing_up, 0, steps[0]) + np.where(missing_down, 0, steps[1])
+    reach = np.where(missing_up, 0, up[:, None]) - np.where(missing_down, 0, down[:, None])
     swing = np.where(missing_up, 0, rises) + np.where(missing_down, 0, falls)
     with np.errstate(invalid="ignore", divide="ignore"):
-        half_swings = swing / reach  # 0/0: no side has a solution, and the uncertainty does not exist
-    return Budget(results[0], tuple(quantity.name for quantity in uncertain), half_swings)
+        half_swings = swing / reach * inputs_u[:, None]  # 0/0: no side has a solution, no uncertainty exists
+    terms = tuple(quantity.name for quantity in inputs.quantities)
+    return Budget(results[0], terms, inputs_u, half_swings, inputs.correlation, inputs.adjusted)

@@ -8,7 +8,9 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from irsurvey.assess.building import assess_finding, factor_at_resistance, temperature_factor
+from irsurvey.assess.building import judged as on_axis
 from irsurvey.assess.criteria import Criterion, chosen, criteria
+from irsurvey.assess.judged import Sensitivity
 from irsurvey.assess.severity import (
     AUTOMATIC_REFERENCE,
     BLOCKERS,
@@ -205,3 +207,28 @@ def test_findings_of_an_invalid_survey_keep_their_class_and_say_so() -> None:
     verdict = judged(-4.0, flags=(CONDITIONS,))
     assert verdict.urgency == 2
     assert CONDITIONS in verdict.assessments[0].statement
+
+
+def test_a_number_on_the_axis_of_its_criterion_brings_its_sensitivities_along() -> None:
+    inputs = (Sensitivity("reflected", 1.0, -0.35),)
+    cold = on_axis(criteria()["building-contrast"], Estimate(-2.4, 0.4), inputs)
+    assert (cold.value, cold.u) == (2.4, 0.4)
+    assert cold.sensitivities[0].sensitivity == 0.35  # what makes it colder makes its magnitude larger
+    factor = on_axis(FACTOR_DE, Estimate(0.80, 0.01), (Sensitivity("outdoor_air", 0.5, 0.02),))
+    h = 1e-6
+    slope = np.diff(factor_at_resistance([0.80 - h, 0.80 + h], 0.13, 0.25))[0] / (2 * h)
+    assert factor.sensitivities[0].sensitivity == pytest.approx(0.02 * slope, rel=1e-6)  # error of the difference, h²
+    assert factor.u == pytest.approx(0.01 * slope, rel=1e-3)  # its u is half the swing over ±0.01: curvature of 1e-4
+
+
+def test_what_cannot_be_put_on_the_axis_has_neither_value_nor_sensitivity() -> None:
+    nowhere = on_axis(FACTOR_DE, Estimate(5.0, 0.01), (Sensitivity("outdoor_air", 0.5, 0.02),))
+    assert np.isnan([nowhere.value, nowhere.u, nowhere.sensitivities[0].sensitivity]).all()
+    assert np.isnan(on_axis(FACTOR_DE, Estimate(0.8, None)).u)
+
+
+def test_a_finding_that_asks_for_anything_is_acted_upon_and_no_finding_is_cleared() -> None:
+    assert judged(-2.0, 5.0).outcome == "act"  # raised by the value itself
+    assert judged(-0.5, 0.01).outcome == "not cleared"
+    assert judged(-2.0, flags=(AUTOMATIC_REFERENCE,)).outcome == "not cleared"  # no severity until confirmed
+    assert judged(-2.0, flags=(SATURATED, CONDITIONS)).outcome == "act"

@@ -352,6 +352,28 @@ def test_sound_twins_at_load_are_cleared_with_a_guard_band() -> None:
     assert [verdict.cleared for verdict in judged(members, u=0.25).values()] == [True, False]  # 0.5 + 2·0.25 = 1
 
 
+def test_a_component_is_cleared_looked_at_again_or_acted_upon() -> None:
+    sound = (lug("1", 5.0), lug("2", 5.5))
+    assert [verdict.outcome for verdict in judged(sound, u=0.2).values()] == ["cleared", "cleared"]
+    assert [verdict.outcome for verdict in judged(sound, u=0.25).values()] == ["cleared", "not cleared"]
+    low = (lug("1", 5.0, load=80.0), lug("2", 6.5, load=80.0))
+    assert [verdict.outcome for verdict in judged(low).values()] == ["not cleared", "act"]
+    assert judged((lug("1", nan), lug("2", 5.0)))["1"].outcome == "not cleared"
+
+
+def test_the_four_way_statement_of_an_assessment_never_passes_what_is_blocked() -> None:
+    # action begins at 1 K, guard band 2·0.2 = 0.4 K (ILAC-G8:09/2019, 4.2.3)
+    members = [lug(str(k), t) for k, t in enumerate((5.0, 5.5, 5.8, 6.2, 6.5))]
+    found = [verdict.assessments[0].verdict for verdict in judged(tuple(members), u=0.2).values()]
+    assert found == ["pass", "pass", "conditional pass", "conditional fail", "fail"]
+    low = tuple(replace(member, load=80.0) for member in members)
+    found = [verdict.assessments[0].verdict for verdict in judged(low, u=0.2).values()]
+    assert found == [None, None, None, "conditional fail", "fail"]
+    small = tuple(replace(member, flags=(SIZE_LIMITED,)) for member in members)
+    found = [verdict.assessments[0].verdict for verdict in judged(small, u=0.2).values()]
+    assert found == [None, None, None, "conditional fail", "fail"]
+
+
 def test_a_bare_bar_is_never_cleared_and_gets_no_class() -> None:
     # a bare bar at 35 °C apparent with 25 °C reflected may truly be at 80 to 151 °C (domain example)
     verdict = judged((lug("1", 1.0), lug("bar", 1.1, emissivity=0.15)))["bar"]

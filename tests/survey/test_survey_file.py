@@ -125,6 +125,27 @@ def test_conditions_are_si_with_stated_uncertainty_and_source(survey: Survey) ->
     assert scene["atmosphere"].u == 0.2
 
 
+def test_the_camera_s_imperfections_are_in_every_scene_as_stated(survey: Survey) -> None:
+    tilt = 0.3 / sqrt(3)
+    for task in survey.tasks:
+        assert [task.scene[name] for name in ("shading", "shading_x", "shading_y", "outline", "size_of_source")] == [
+            Quantity("shading", 0.0, 0.4, "survey"),
+            Quantity("shading_x", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular"),
+            Quantity("shading_y", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular"),
+            Quantity("outline", 0.0, 1.0, "survey"),
+            Quantity("size_of_source", 0.0, 0.2, "survey"),
+        ]
+
+
+def test_correlations_are_between_names_of_the_scene(survey: Survey) -> None:
+    air_and_reflected = ("air", "reflected", 0.8)
+    assert frame(survey, "F01").scene.correlations == (
+        air_and_reflected,
+        ("emissivity", "emissivity:steel", 1.0),  # the cover plate's
+    )
+    assert frame(survey, "P01").scene.correlations == (air_and_reflected,)  # no cover plate there
+
+
 def test_a_logged_value_says_so(survey: Survey) -> None:
     air = frame(survey, "F01").scene["air"]
     assert (air.value, air.source) == (pytest.approx(273.15 + 21.2, rel=ULP), "log")  # 12 of 60 minutes from 20 to 26
@@ -138,7 +159,7 @@ def test_a_group_overrides_the_survey_and_says_so(survey: Survey) -> None:
     assert (task.reflected_from, "reflected" in task.scene) == ("F03", False)
     assert (task.viewed_from, task.camera.name) == ("outside", "tele")
     assert task.detection == Detection(1.0, 25, 0.01)
-    assert task.scene["emissivity"] == Quantity("emissivity", 0.93, 0.02, "material table", 0.001, 1.0)
+    assert task.scene["emissivity"] == Quantity("emissivity", 0.93, 0.02, "material table", 0.001, 1.0, "rectangular")
     assert [surface.name for surface in task.surfaces] == ["pane"]
     assert task.reference == ((10.0, 10.0), (60.0, 10.0), (60.0, 60.0))
 

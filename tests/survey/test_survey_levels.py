@@ -14,6 +14,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from irsurvey.model import Scene, Survey
+from irsurvey.survey.defaults import defaults
 from irsurvey.survey.load import Known, load
 
 LEVELS = ("survey", "group", "frame")
@@ -168,7 +169,8 @@ def test_what_nobody_stated_is_assumed_said_and_further_off_than_what_somebody_s
     survey = load_text(minimal)
     scene = survey.tasks[0].scene
     assumed = {q.name: q.value for q in scene.quantities if q.source == "default" and not isfinite(q.high - q.low)}
-    assert assumed == {"pressure": 101_325.0, "mean_radiant": 293.15, "convection": 1.0, "atmosphere": 0.0}
+    camera = dict.fromkeys(("shading", "shading_x", "shading_y", "outline", "size_of_source"), 0.0)
+    assert assumed == {"pressure": 101_325.0, "mean_radiant": 293.15, "convection": 1.0, "atmosphere": 0.0, **camera}
     assert (scene["relative_humidity"].value, scene["relative_humidity"].source) == (0.5, "default")
     assert (scene["emissivity"].value, scene["emissivity"].source) == (0.93, "default")
     assert "wind" not in scene
@@ -228,8 +230,17 @@ def test_every_default_has_a_source_and_a_mark() -> None:
     assert len(entries) > 30
     for key, entry in entries:
         assert entry["source"], key
-        assert entry["mark"] in ("CP", "J"), key
+        assert entry["mark"] in ("CP", "C", "J"), key
         assert ("standard" in entry) != ("half_width" in entry), key
+
+
+def test_every_key_of_uncertainty_has_a_default_or_one_in_another_unit() -> None:
+    from irsurvey.survey.schema import Uncertainty
+
+    in_fractions = {"distance_m": "distance_fraction", "wind_m_s": "wind_fraction"}
+    in_fractions |= {"known_length_m": "known_length_fraction"}
+    keys = {in_fractions.get(key, key) for key in Uncertainty.model_fields if key != "correlations"}
+    assert keys <= set(defaults("stated"))
 
 
 def test_no_stated_uncertainty_key_is_without_effect(minimal: str, load_text: Load) -> None:
@@ -246,7 +257,7 @@ def test_no_stated_uncertainty_key_is_without_effect(minimal: str, load_text: Lo
     )
     files = {"log.csv": "time,sky_c\n2026-01-01T00:00,0\n"}
     before = load_text(rich, files).tasks[0].scene
-    for key in Uncertainty.model_fields:
+    for key in Uncertainty.model_fields.keys() - {"correlations"}:  # not one number; it has tests of its own
         after = load_text(f"{rich}[uncertainty]\n{key} = 0.0123\n", files).tasks[0].scene
         assert before.values() == after.values(), key
         assert before != after, key

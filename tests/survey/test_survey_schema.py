@@ -73,6 +73,10 @@ def test_the_schema_rejects_an_unknown_key_in_every_table(place: tuple[Any, ...]
         (("frame", 0, "reference"), "manual"),
         (("cameras", "wide", "signal", "quantity"), "radiance"),
         (("uncertainty", "air_k"), {"half_width": -1}),
+        (("uncertainty", "correlations", 0, "coefficient"), 1.01),
+        (("uncertainty", "correlations", 0, "between"), ["air_c", "air_c"]),
+        (("uncertainty", "correlations", 0, "between"), ["air_c"]),
+        (("uncertainty", "correlations", 0, "between"), ["air_c", "reflected_c", "wind_m_s"]),
     ],
 )
 def test_the_schema_rejects_what_loading_rejects(place: tuple[Any, ...], value: Any) -> None:
@@ -100,6 +104,8 @@ def test_known_defaults_are_listed() -> None:
     assert definitions["Conditions"]["properties"]["pressure_hpa"]["default"] == 1013.25
     assert definitions["Camera"]["properties"]["accuracy_k"]["default"] == 2.0
     assert definitions["Uncertainty"]["properties"]["emissivity"]["default"] == {"half_width": 0.05}
+    assert definitions["Uncertainty"]["properties"]["size_of_source_fraction"]["default"] == {"half_width": 1.0}
+    assert definitions["Uncertainty"]["properties"]["correlations"]["default"] == []
     assert definitions["Detection"]["properties"]["min_pixels"]["default"] == 25
     assert schema()["required"] == ["survey"]
     assert definitions["About"]["required"] == ["title"]

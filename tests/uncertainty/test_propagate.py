@@ -31,7 +31,7 @@ def test_end_gauge_calibration_gives_the_published_first_order_uncertainty():
         return v["standard"] + v["difference"] - v["standard"] * thermal
 
     budget = propagate(model, scene)
-    shares = dict(zip(budget.terms, np.abs(budget.half_swings[:, 0]), strict=True))
+    shares = {term.name: term.contribution for term in budget.terms(0)}
     assert shares["standard"] == pytest.approx(25, abs=0.05)
     assert shares["difference"] == pytest.approx(9.7, abs=0.05)
     assert shares["expansion difference"] == pytest.approx(2.9, abs=0.05)
@@ -85,3 +85,70 @@ def test_linear_laws_follow_the_law_of_propagation_exactly(inputs, slopes):
     budget = propagate(lambda v: sum(slopes[i] * v[str(i)] for i in range(len(inputs))), scene)
     expected = np.sqrt(sum((slopes[i] * u) ** 2 for i, (_, u) in enumerate(inputs)))
     assert budget.u[0] == pytest.approx(expected, abs=1e-9)
+
+
+def test_every_step_of_the_whole_is_the_model_run_scene_by_scene():
+    scene = Scene((Quantity("a", 3.0, 0.3), Quantity("b", 2.0, 0.1, high=2.05), Quantity("c", 1.0, 0.2, follows="a")))
+
+    def scalar(a, b, c):
+        return [a**2 * b, np.log(a) + c * b]
+
+    def model(v):
+        return np.hstack([v["a"] ** 2 * v["b"], np.log(v["a"]) + v["c"] * v["b"]])
+
+    budget = propagate(model, scene)
+    steps = [  # c goes with a; the step of b upwards ends at 2.05, three quarters of the way from end to end
+        np.subtract(scalar(3.3, 2.0, 1.3), scalar(2.7, 2.0, 0.7)) / 2,
+        np.subtract(scalar(3.0, 2.05, 1.0), scalar(3.0, 1.9, 1.0)) / 1.5,
+        np.subtract(scalar(3.0, 2.0, 1.2), scalar(3.0, 2.0, 0.8)) / 2,
+    ]
+    assert budget.half_swings == pytest.approx(np.array(steps), rel=1e-12)  # the same operations on doubles
+    assert budget.values == pytest.approx(scalar(3.0, 2.0, 1.0), rel=1e-15)
+
+
+def test_terms_are_sorted_signed_and_sum_up_to_the_variance():
+    # JCGM 100:2008, 5.1.3: contributions c_i u_i of y = 3 a − 4 b + 0 c: 3, 8 and 0, u² = 73.
+    scene = Scene((Quantity("a", 1.0, 1.0), Quantity("b", 1.0, 2.0), Quantity("c", 1.0, 5.0)))
+    terms = propagate(lambda v: 3 * v["a"] - 4 * v["b"] + 0 * v["c"], scene).terms(0)
+    assert [term.name for term in terms] == ["b", "a", "c"]
+    assert [term.u for term in terms] == [2.0, 1.0, 5.0]
+    assert [term.sensitivity for term in terms] == pytest.approx([-4, 3, 0], rel=1e-12)
+    assert [term.contribution for term in terms] == pytest.approx([8, 3, 0], rel=1e-12)
+    assert [term.share for term in terms] == pytest.approx([64 / 73, 9 / 73, 0], rel=1e-12)
+
+
+def test_a_term_without_any_solution_stands_first_and_has_no_share():
+    scene = Scene((Quantity("a", 1.0, 1.0), Quantity("b", 1.0, 0.5)))
+    terms = propagate(lambda v: np.where(v["b"] == 1, v["a"], np.nan), scene).terms(0)
+    assert [term.name for term in terms] == ["b", "a"]
+    assert np.isnan([terms[0].contribution, terms[0].share, terms[1].share]).all()
+    assert terms[1].contribution == pytest.approx(1.0, rel=1e-12)
+
+
+def test_where_nothing_contributes_all_shares_are_zero():
+    scene = Scene((Quantity("a", 1.0, 1.0), Quantity("b", 1.0, 0.5)))
+    budget = propagate(lambda v: 0 * v["a"] + 7, scene)
+    assert [term.share for term in budget.terms(0)] == [0.0, 0.0]
+    assert budget.u[0] == 0
+
+
+def test_a_scene_without_uncertainty_has_results_and_no_terms():
+    budget = propagate(lambda v: 2 * v["a"], Scene((Quantity("a", 1.5),)))
+    assert budget.values[0] == 3.0
+    assert budget.u[0] == 0
+    assert budget.terms(0) == ()
+
+
+def test_a_quantity_nobody_stated_is_not_moved():
+    # A window temperature without a window: NaN, and its term has no weight.
+    scene = Scene((Quantity("a", 1.0, 0.1), Quantity("window", np.nan, 2.0)))
+    budget = propagate(lambda v: v["a"] + np.where(np.isnan(v["window"]), 0, v["window"]), scene)
+    assert budget.names == ("a",)
+    assert budget.u[0] == pytest.approx(0.1, rel=1e-12)
+
+
+def test_a_rectangular_input_moves_by_its_standard_uncertainty_like_any_other():
+    # JCGM 100:2008, 4.3.7: u = a/√3 for bounds ±a; H.1.3.4: ±1 °C gives 0.58 °C.
+    half_width = 1.0
+    scene = Scene((Quantity("a", 19.9, half_width / np.sqrt(3), distribution="rectangular"),))
+    assert propagate(lambda v: v["a"], scene).u[0] == pytest.approx(0.58, abs=0.005)
