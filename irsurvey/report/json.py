@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-import re
 from dataclasses import fields, is_dataclass
 from math import isfinite
 from numbers import Integral, Real
@@ -17,18 +16,40 @@ from irsurvey.report.numbers import unit
 SIGNIFICANT_DIGITS = 7
 """Enough for a temperature to 0.1 mK, and what a single-precision map carries."""
 
-_FLAT_LIST = re.compile(r"\[\n[^\[\]{}\"]*\]")
-"""A list of plain numbers over several lines; no string can hold one, its line ends are escaped."""
-_LIST_OF_FLAT_LISTS = re.compile(r"\[\n(?:\s*\[[^\[\]{}\"\n]*\],?)+\s*\]")
+_LINE = 120
+"""Characters up to which a list or record stands on one line; one of numbers alone always does."""
 
 _WORDS = {
-    "status": ["analysed", "failed"],
-    "kind": ["building", "electrical"],
-    "claim": ["quantitative", "qualitative", "not valid"],
-    "how": ["polygon", "automatic"],
-    "sense": ["hot", "cold"],
-    "verdict": ["met", "not met", "not recorded"],
+    "FrameReport.status": ["analysed", "failed"],
+    "FrameReport.kind": ["building", "electrical"],
+    "FrameReport.claim": ["quantitative", "qualitative", "not valid"],
+    "ReferenceReport.how": ["polygon", "automatic"],
+    "Finding.sense": ["hot", "cold"],
+    "Finding.outcome": ["not cleared", "act"],
+    "ComponentReport.outcome": ["cleared", "not cleared", "act"],
+    "Assessment.verdict": ["pass", "conditional pass", "conditional fail", "fail", None],
+    "ConditionCheck.verdict": ["met", "not met", "not recorded"],
 }
+"""Record and key → all it may hold."""
+
+_MEANINGS = {
+    "urgency": "0 none, 1 investigate, 2 repair as time permits, 3 watch closely, 4 at once",
+    "Assessment.verdict": "the number against the edge where action begins, guard band 2u; null without a class or an uncertainty",
+    "outcome": "what is done about it; cleared only where the number stays 2u clear of where action begins",
+    "exceeds_threshold": "probability that its ΔT truly exceeds the smallest that counts",
+    "flips": "changes of single inputs, within 2u, that would change the governing class, the likeliest first",
+    "budgets": "number → the inputs its uncertainty comes from, the largest first",
+    "interval_95": "ends of the 95 % interval, where it was drawn",
+    "input": "key of an input of the frame, or of what is one area's own (noise, outline)",
+    "sensitivity": "change of the number per unit of the input",
+    "contribution": "standard uncertainty of the number from this input alone",
+    "share": "of the variance of the number; negative where a correlation takes from it",
+    "change": "added to the input, in the unit its key ends in",
+    "next_visit": "single measurements that would settle open decisions, the one that settles most first",
+    "settles": "ids of findings and keys of components",
+    "draws": "of a Monte Carlo propagation",
+}
+"""Key, or record and key → what it means, where its name alone does not say so."""
 
 
 def plain(record: Any) -> dict[str, Any]:
@@ -43,8 +64,9 @@ def plain(record: Any) -> dict[str, Any]:
 
 
 def text(record: Any) -> str:
-    """A record as JSON text, one key a line, lists of numbers on one line; the same record gives the same text."""
-    return _compact(json.dumps(plain(record), ensure_ascii=False, allow_nan=False, indent=1)) + "\n"
+    """A record as JSON text, one key a line, but on one line what is short or numbers alone (an outline, an estimate,
+    a term of a budget); the same record gives the same text."""
+    return _written(plain(record)) + "\n"
 
 
 def write(report: Report, _tasks: tuple[FrameTask, ...], out: Path) -> Path:
@@ -65,9 +87,10 @@ def report_schema() -> dict[str, Any]:
     from pydantic import TypeAdapter
 
     schema = TypeAdapter(Report).json_schema(mode="serialization")
-    for record in (schema, *schema["$defs"].values()):
+    for name, record in {"Report": schema, **schema["$defs"]}.items():
         record["properties"] = {
-            key.removesuffix("_"): _described(key, value) for key, value in record["properties"].items()
+            key.removesuffix("_"): _described(name, key.removesuffix("_"), value)
+            for key, value in record["properties"].items()
         }
         record["required"] = [key for key in record["properties"] if key != "interval_95"]
         record["additionalProperties"] = False
@@ -103,22 +126,39 @@ def _finite(value: Any) -> Any:
     return None if isinstance(value, float) and not isfinite(value) else value
 
 
-def _compact(indented: str) -> str:
-    def on_one_line(match: re.Match[str]) -> str:
-        return re.sub(r"\s+", " ", match[0]).replace("[ ", "[").replace(" ]", "]")
+def _written(value: Any, indent: str = "") -> str:
+    """JSON text of dicts, lists and plain values; lists and dicts over several lines only where they have to be."""
+    if not isinstance(value, dict | list) or not value:
+        return json.dumps(value, ensure_ascii=False, allow_nan=False)
+    deeper = f"{indent} "
+    if isinstance(value, dict):
+        opening, closing = "{", "}"
+        parts = [
+            f"{json.dumps(key, ensure_ascii=False)}: {_written(entry, deeper)}" for key, entry in value.items()
+        ]
+    else:
+        opening, closing = "[", "]"
+        parts = [_written(entry, deeper) for entry in value]
+    one_line = f"{opening}{', '.join(parts)}{closing}"
+    if _is_numbers(value) or (len(one_line) <= _LINE and "\n" not in one_line):
+        return one_line
+    return f"{opening}\n{deeper}" + f",\n{deeper}".join(parts) + f"\n{indent}{closing}"
 
-    return _LIST_OF_FLAT_LISTS.sub(on_one_line, _FLAT_LIST.sub(on_one_line, indented))
+
+def _is_numbers(value: Any) -> bool:
+    """Whether this is a number, or a list of numbers, however deep."""
+    return all(map(_is_numbers, value)) if isinstance(value, list) else isinstance(value, int | float)
 
 
-def _described(key: str, schema: dict[str, Any]) -> dict[str, Any]:
+def _described(record: str, key: str, schema: dict[str, Any]) -> dict[str, Any]:
     """The schema of one key with its unit, its words and, for numbers by name, the null that stands for NaN."""
     schema = {name: value for name, value in schema.items() if name not in ("title", "default")}
     if schema.get("additionalProperties") == {"type": "number"}:
         schema["additionalProperties"] = {"type": ["number", "null"]}
-    if key in _WORDS:
-        schema["enum"] = _WORDS[key]
-    if key == "urgency":
-        schema["description"] = "0 none, 1 investigate, 2 repair as time permits, 3 watch closely, 4 at once"
-    if symbol := unit(key):
-        schema["description"] = f"in {symbol}"
+    place = f"{record}.{key}"
+    if place in _WORDS:
+        schema["enum"] = _WORDS[place]
+    meaning = _MEANINGS.get(place, _MEANINGS.get(key, ""))
+    if description := "; ".join(filter(None, (meaning, f"in {unit(key)}" if unit(key) else ""))):
+        schema["description"] = description
     return schema
