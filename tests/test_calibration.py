@@ -41,7 +41,7 @@ def apparent(level):
 def air_table():
     """τ of 7.5–13 µm over air temperature [°C], relative humidity [%] and the root of the path [m^½]."""
     text = (Path(__file__).parent / "reference" / "atmosphere_table.csv").read_text("utf-8")
-    rows = [row for row in csv.DictReader(line for line in text.splitlines() if not line.startswith("#"))]
+    rows = list(csv.DictReader(line for line in text.splitlines() if not line.startswith("#")))
     rows = [row for row in rows if row["band_um"] == "7.5-13" and float(row["p_hpa"]) == 1013.25]
     axes = [sorted({float(row[key]) for row in rows}) for key in ("t_air_c", "rh_pct", "path_m")]
     tau = np.full([len(axis) for axis in axes], np.nan)
@@ -108,10 +108,10 @@ def reality(task, air, generator):
 
 
 def intervals(report):
-    (finding,) = report.findings
+    finding = report.findings[0]  # the patch; strong drawn shading may cross 1 K in a corner as well
     numbers = {
-        "T": finding.mean_c,
-        "ΔT": finding.mean_delta_k,
+        "T": finding.extreme_c,
+        "ΔT": finding.delta_k,
         "flux": finding.heat_flux_w_m2,
         "U": report.reference.u_value_w_m2k,
     }
@@ -165,6 +165,6 @@ def test_forward_model_and_pipeline_agree_where_nothing_is_uncertain():
     generator = np.random.default_rng(1)
     frame, truth = reality(exact, air_table(), generator)
     report, _ = pipeline.analyse(frame, exact)
-    # ±1 K and 2 % of the camera are drawn all the same; the difference knows only the gain: 3 K × 2 %.
-    assert report.findings[0].mean_delta_k.value == pytest.approx(truth["ΔT"], abs=0.1)
-    assert report.findings[0].mean_c.value == pytest.approx(truth["T"], abs=1.2)
+    # ±1 K and 2 % of the camera are drawn all the same; the difference knows the gain (3 K × 2 %) and selection.
+    assert report.findings[0].delta_k.value == pytest.approx(truth["ΔT"], abs=0.15)
+    assert report.findings[0].extreme_c.value == pytest.approx(truth["T"], abs=1.2)

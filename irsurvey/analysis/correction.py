@@ -179,8 +179,8 @@ def _with_camera(task: FrameTask, pivot: float) -> Scene:
     """The scene with the camera's own errors: an offset common to the frame, a gain about its median."""
     accuracy = max(task.camera.accuracy, task.camera.accuracy_fraction * abs(pivot - ZERO_CELSIUS))
     scene = task.scene.with_(
-        Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey"),  # accuracies are half-widths, rectangular
-        Quantity("camera_gain", 0.0, task.camera.accuracy_fraction / 3**0.5, "survey"),
+        Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey", distribution="rectangular"),
+        Quantity("camera_gain", 0.0, task.camera.accuracy_fraction / 3**0.5, "survey", distribution="rectangular"),
     )
     atmosphere = scene["atmosphere"]
     if atmosphere.u < absorptance_u(task.camera.band):  # a band without a fit of its own is less well known

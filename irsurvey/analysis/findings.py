@@ -268,7 +268,11 @@ def _outline(patch: Patch) -> tuple[tuple[int, int], ...]:
 
 
 def _celsius(estimate: Estimate | None) -> Estimate | None:
-    return None if estimate is None else Estimate(estimate.value - ZERO_CELSIUS, estimate.u)
+    if estimate is None:
+        return None
+    interval = estimate.interval_95
+    shifted = None if interval is None else (interval[0] - ZERO_CELSIUS, interval[1] - ZERO_CELSIUS)
+    return Estimate(estimate.value - ZERO_CELSIUS, estimate.u, shifted)
 
 
 def _at_rated(member: Member, numbers: Mapping[str, Estimate | None]) -> RatedLoad | None:

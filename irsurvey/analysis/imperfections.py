@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 from math import erf, log, pi, sqrt
+from typing import Any
 
 import cv2
 import numpy as np
@@ -26,6 +27,8 @@ SIZE_OF_SOURCE = "size_of_source"
 OUTLINE = "outline"
 
 Shifts = tuple[tuple[str, float], ...]
+Tilts = tuple[tuple[str, float, float], ...]
+"""(scene name, slopes in x and y of the reference plane per unit of it [K px⁻¹])."""
 Own = tuple[Quantity, ...]
 
 
@@ -52,7 +55,7 @@ def of_spot(
     shifts = (
         (own.name, 1.0),
         *_shading(spot.rows, spot.columns, shape),
-        (SIZE_OF_SOURCE, contrast * _lost_at(spot, patch)),
+        (SIZE_OF_SOURCE, contrast * _lost_inside(patch)),
         (SELECTION.name, picked),
     )
     return _known(shifts, scene, own), (own,)
@@ -80,21 +83,35 @@ def of_whole(
 
 def of_reference(
     reference: Reference, area: NDArray[np.bool_], t: NDArray[np.float32], stretch: float, scene: Scene
-) -> tuple[Shifts, Own]:
-    """The reference area: the standard error of its level, shading over it, and where its outline was drawn."""
+) -> tuple[Shifts, Tilts, Own]:
+    """The reference area: the standard errors of its fit, shading over it, and where its outline was drawn.
+
+    Where a plane was fitted shading tilts it too, and is then partly taken out of differences by it.
+    """
     own = Quantity("noise:reference", 0.0, reference.u_level / stretch)
+    slopes = tuple(
+        Quantity(name, 0.0, u) for name, u in zip(("slope_x", "slope_y"), reference.u_slope, strict=True) if u > 0
+    )
     outline = _outline("reference", scene)
     kernel = np.ones((3, 3), np.uint8)
     drawn = area.view(np.uint8)
     inner = cv2.erode(drawn, kernel, borderValue=0).view(np.bool_) & ~np.isnan(t)
     outer = cv2.dilate(drawn, kernel).view(np.bool_) & ~np.isnan(t)
     moved = float(np.median(t[inner][::7]) - np.median(t[outer][::7])) / 2 if inner.any() else 0.0
-    shifts = (
-        (own.name, 1.0),
-        *_shading(reference.rows, reference.columns, t.shape),
-        *((quantity.name, moved / stretch) for quantity in outline),
-    )
-    return _known(shifts, scene, own, *outline), (own, *outline)
+    if slopes:
+        profiles = _profiles(reference.rows, reference.columns, t.shape)
+        levels = tuple((name, float(reference.weights[0] @ profile)) for name, profile in profiles)
+        tilts = tuple(
+            (name, float(reference.weights[1] @ profile) * stretch, float(reference.weights[2] @ profile) * stretch)
+            for name, profile in profiles
+            if name in scene
+        )
+    else:
+        rows, columns = np.nonzero(area)
+        levels, tilts = _shading(rows, columns, t.shape), ()
+    shifts = ((own.name, 1.0), *levels, *((quantity.name, moved / stretch) for quantity in outline))
+    own_tilts = tuple((one.name, float(one.name == "slope_x"), float(one.name == "slope_y")) for one in slopes)
+    return _known(shifts, scene, own, *outline), (*tilts, *own_tilts), (own, *slopes, *outline)
 
 
 def perimeter(patch: Patch) -> float:
@@ -115,23 +132,29 @@ def _known(shifts: Shifts, scene: Scene, *own: Quantity) -> Shifts:
 
 
 def _shading(rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]) -> Shifts:
-    """Where an area lies in the lens: radial with the fourth power of the distance from the centre, and two tilts."""
-    y = (rows - (shape[0] - 1) / 2) / max((shape[0] - 1) / 2, 1)
-    x = (columns - (shape[1] - 1) / 2) / max((shape[1] - 1) / 2, 1)
+    """Where an area lies in the lens, on average."""
+    return tuple((name, float(profile.mean())) for name, profile in _profiles(rows, columns, shape))
+
+
+def _profiles(
+    rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]
+) -> tuple[tuple[str, NDArray[Any]], ...]:
+    """Lens shading at pixels: radial with the fourth power of the distance from the centre, and two tilts."""
+    y = np.asarray((rows - (shape[0] - 1) / 2) / max((shape[0] - 1) / 2, 1))
+    x = np.asarray((columns - (shape[1] - 1) / 2) / max((shape[1] - 1) / 2, 1))
     ratio = shape[0] / shape[1]
     radial = ((x**2 + (ratio * y) ** 2) / (1 + ratio**2)) ** 2
-    return ("shading", float(radial.mean())), ("shading_x", float(x.mean())), ("shading_y", float(y.mean()))
+    return ("shading", radial), ("shading_x", x), ("shading_y", y)
 
 
-def _lost_at(spot: Spot, patch: Patch) -> float:
-    """Share of the contrast that blur takes from the middle of a spot: 1 − erf(a/(√2 σ))² for a square target.
+def _lost_inside(patch: Patch) -> float:
+    """Share of the contrast that blur takes from the widest part of a region: 1 − erf(a/(√2 σ))² for a square target.
 
-    a, half its side, is the distance from the spot's centre to the outline of the region.
+    a, half its side, is the greatest distance to the outline.  The extreme lies where blur took least, so what it
+    lost is no more than that.
     """
     distance = cv2.distanceTransform(np.pad(patch.mask, 1).view(np.uint8), cv2.DIST_L2, 5)
-    x, y = spot.centre
-    half = float(distance[round(y) - patch.top + 1, round(x) - patch.left + 1]) - 0.5
-    return 1 - erf(max(half, 0.5) / (sqrt(2) * POINT_SPREAD)) ** 2
+    return 1 - erf(max(float(distance.max()) - 0.5, 0.5) / (sqrt(2) * POINT_SPREAD)) ** 2
 
 
 def _per_pixel_of_outline(patch: Patch, t: NDArray[np.float32]) -> float:

@@ -108,6 +108,7 @@ class Plan:
     scale: str  # how pixels become m²: "ifov" | "known_length" | "known_rectangle" | "none"
     length_pixels: float = 1.0  # of the known length
     reference: Area | None = None
+    tilts: tuple[tuple[str, float, float], ...] = ()  # what else tilts its plane: scene name, K px⁻¹ per unit, x and y
     regions: tuple[Region, ...] = ()
     components: tuple[Region, ...] = ()
     twins: Mapping[str, Twin] = field(default_factory=dict)
@@ -237,7 +238,8 @@ def _anomaly(
 ) -> Numbers:
     extreme = temperatures.functionals(region.spot)[:, 0]
     mean = temperatures.functionals(region.whole)[:, 0]
-    at_spot, at_centre = (_reference_at(values, reference, lever) for lever in (region.spot_lever, region.whole_lever))
+    levers = (region.spot_lever, region.whole_lever)
+    at_spot, at_centre = (_reference_at(plan, values, reference, lever) for lever in levers)
     flux = _mean_flux(region.whole, plan, values, temperatures)
     optics = region.whole.parts[0].optics
     reference_flux = flux_of(at_centre[:, None], optics, plan.surroundings, values)[:, 0]
@@ -282,10 +284,12 @@ def _component(
 
 
 def _reference_at(
-    values: Columns, reference: NDArray[np.float64], lever: tuple[float, float]
+    plan: Plan, values: Columns, reference: NDArray[np.float64], lever: tuple[float, float]
 ) -> NDArray[np.float64]:
-    """Reference temperature (n,) at a place: level and slopes, the slopes with the noise of their own."""
-    slope_x, slope_y = reference[:, 1] + values["slope_x"][:, 0], reference[:, 2] + values["slope_y"][:, 0]
+    """Reference temperature (n,) at a place: level and slopes, with what tilts the plane."""
+    slope_x, slope_y = reference[:, 1], reference[:, 2]
+    for name, along_x, along_y in plan.tilts:
+        slope_x, slope_y = slope_x + values[name][:, 0] * along_x, slope_y + values[name][:, 0] * along_y
     return np.asarray(reference[:, 0] + slope_x * lever[0] + slope_y * lever[1])
 
 

@@ -57,7 +57,7 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
         if (patch := cropped(mask(component.polygon, shape)))
         and (measured := _measured(component.name, patch, "hot", corrected, screened, task))
     }
-    reference, own = _reference(corrected, screened, task)
+    reference, tilts, own = _reference(corrected, screened, task)
     own = (*own, *(quantity for measured in (*anomalies, *components.values()) for quantity in measured.own))
     scene = corrected.scene.with_(imperfections.SELECTION, *own)
     plan = Plan(
@@ -67,6 +67,7 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
         scale=_scale(task, scene),
         length_pixels=_length_pixels(task),
         reference=reference,
+        tilts=tilts,
         regions=tuple(measured.region for measured in anomalies),
         components=tuple(measured.region for measured in components.values()),
         ambient=_ambient(scene),
@@ -124,21 +125,16 @@ def _measured(
 
 def _reference(
     corrected: Corrected, screened: Screened, task: FrameTask
-) -> tuple[Area | None, tuple[Quantity, ...]]:
-    """The reference as an area of the plan, and what is its own."""
+) -> tuple[Area | None, imperfections.Tilts, tuple[Quantity, ...]]:
+    """The reference as an area of the plan, what tilts its plane, and what is its own."""
     reference = screened.reference
     if reference is None:
-        return None, ()
-    stretch = stretch_of(corrected, task, 0)
-    shifts, own = imperfections.of_reference(
-        reference, screened.reference_area, screened.t, stretch, corrected.scene
+        return None, (), ()
+    shifts, tilts, own = imperfections.of_reference(
+        reference, screened.reference_area, screened.t, stretch_of(corrected, task, 0), corrected.scene
     )
     drawn = area(corrected, reference.rows, reference.columns, reference.weights)
-    slopes = (
-        Quantity("slope_x", 0.0, reference.u_slope[0]),
-        Quantity("slope_y", 0.0, reference.u_slope[1]),
-    )
-    return replace(drawn, shifts=shifts), (*own, *slopes)
+    return replace(drawn, shifts=shifts), tilts, own
 
 
 def _ambient(scene: Scene) -> str:

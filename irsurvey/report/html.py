@@ -11,10 +11,10 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from irsurvey import files
-from irsurvey.model import ComponentReport, Estimate, Finding, FrameReport, FrameTask, Report
-from irsurvey.report import numbers, texts
+from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
+from irsurvey.report import numbers, results, texts
 from irsurvey.report.labels import component_mark
-from irsurvey.report.ranking import governing, in_order, is_saturated
+from irsurvey.report.ranking import Ranked, governing, in_order
 
 if TYPE_CHECKING:
     from jinja2 import Environment
@@ -22,7 +22,6 @@ if TYPE_CHECKING:
 SUMMARY_LENGTH = 8
 """Results named on the first page; the table behind it has all of them."""
 
-_HELD_BACK = "cannot be cleared"  # the flag of a result that asks for nothing, yet must not pass for sound
 _LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
 _NOT_FREE_TEXT = {"title", "kind", "method", "viewed_from", "timezone", "reference", "camera"}
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
@@ -67,13 +66,15 @@ def write(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> Path:
 def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
     """The text of the page.  All text of the survey is escaped; control characters become U+FFFD."""
     by_id = {task.id: task for task in tasks}
+    ranked = in_order(report)
     template = _environment().get_template("report.html.j2")
     rendered = template.render(
         report=report,
         title=_about(report).get("title") or "Thermographic survey",
         about={texts.about(key): text for key, text in _about(report).items() if key not in _NOT_FREE_TEXT},
         sheets=[Sheet(frame, by_id.get(frame.id), _picture(frame, out), _highest(frame)) for frame in report.frames],
-        ranked=in_order(report),
+        ranked=ranked,
+        named={_name(entry): entry for entry in ranked},
         open_points=list(not_cleared(report)),
         cautions=(*report.cautions, *texts.cautions(frame.kind for frame in report.frames)),
     )
@@ -81,7 +82,7 @@ def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
 
 
 def not_cleared(report: Report) -> Iterator[Open]:
-    """What must not be taken for sound: results without a class or held back, pixels and frames without a claim."""
+    """What must not be taken for sound: results that are not cleared, pixels and frames without a claim."""
     for frame in report.frames:
         if frame.status == "failed":
             continue
@@ -90,35 +91,22 @@ def not_cleared(report: Report) -> Iterator[Open]:
         if frame.temperature and (lost := frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels):
             yield Open(frame, f"{lost} pixels", "no temperature could be measured there")
         for finding in frame.findings:
-            if finding.urgency is None or (finding.urgency == 0 and _HELD_BACK in finding.flags):
+            if finding.outcome == "not cleared":
                 yield Open(frame, f"finding {finding.id}", _why(finding))
         for component in frame.components:
-            if not component.cleared and not component.urgency:
+            if component.outcome == "not cleared":
                 yield Open(frame, component.name, _why(component))
-
-
-def reading(item: Finding | ComponentReport, key: str, *, unit: bool = True) -> str:
-    """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
-    estimate: Estimate | None = getattr(item, key)
-    text = numbers.with_unit(numbers.shown(estimate), key) if unit else numbers.shown(estimate)
-    if estimate is None or text == numbers.NOTHING or not _is_bound(item, key):
-        return text
-    return f"{'≤' if isinstance(item, Finding) and item.sense == 'cold' else '≥'}\u00a0{text}"
-
-
-def _is_bound(item: Finding | ComponentReport, key: str) -> bool:
-    if key == "delta_similar_k" and "twin size-limited" in item.flags:
-        return False  # both are too small: which way the difference errs is not known
-    if key in ("mean_c", "mean_delta_k"):
-        return is_saturated(item)
-    at_the_spot = key in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k")
-    return at_the_spot and (is_saturated(item) or "size-limited" in item.flags)
 
 
 def _about(report: Report) -> dict[str, str]:
     """What [survey] says in words: title, date and free texts."""
     survey = report.survey.get("survey")
     return {key: text for key, text in survey.items() if isinstance(text, str)} if isinstance(survey, dict) else {}
+
+
+def _name(entry: Ranked) -> str:
+    """What the next-visit card calls a finding or component."""
+    return entry.item.id if isinstance(entry.item, Finding) else entry.item.key
 
 
 def _why(item: Finding | ComponentReport) -> str:
@@ -166,7 +154,7 @@ def _environment() -> Environment:
         "component_mark": component_mark,
         "governing": governing,
         "n": numbers,
-        "reading": reading,
+        "r": results,
         "summary_length": SUMMARY_LENGTH,
         "t": texts,
     }

@@ -34,7 +34,7 @@ _WORDS = {
 
 _MEANINGS = {
     "urgency": "0 none, 1 investigate, 2 repair as time permits, 3 watch closely, 4 at once",
-    "Assessment.verdict": "the number against the edge where action begins, guard band 2u; null without a class or an uncertainty",
+    "Assessment.verdict": "the number against the edge where action begins, guard band 2u; null: no class or no u",
     "outcome": "what is done about it; cleared only where the number stays 2u clear of where action begins",
     "exceeds_threshold": "probability that its ΔT truly exceeds the smallest that counts",
     "flips": "changes of single inputs, within 2u, that would change the governing class, the likeliest first",

@@ -106,6 +106,11 @@ def number(value: float | None, digits: int = 4) -> str:
     return text.rstrip("0").rstrip(".") if "." in text else text
 
 
+def grouped(count: int) -> str:
+    """A count, its digits in threes: "20 000"."""
+    return f"{count:,}".replace(",", "\u202f")
+
+
 def rounded_up(value: float | None) -> str:
     """A smallest size or deviation, two significant digits and upwards, so that no more is promised than was seen."""
     if value is None or not isfinite(value) or value <= 0:

@@ -11,6 +11,10 @@ from typing import Any
 from irsurvey.report.numbers import UNITS
 
 
+_OF_AREAS = ("noise", "outline")
+"""Inputs that each area of a frame has of its own."""
+
+
 def flag(code: str) -> str:
     """What a flag means to the reader, or the flag itself; after a colon it may give detail ("saturated: 3 pixels")."""
     meaning: str = _texts()["flags"].get(code.partition(":")[0], code)
@@ -20,6 +24,21 @@ def flag(code: str) -> str:
 def urgency(level: int | None) -> str:
     """What an urgency asks for."""
     return _word("urgency", "none" if level is None else str(level))
+
+
+def outcome(kind: str) -> str:
+    """What an outcome means."""
+    return _word("outcome", kind)
+
+
+def verdict(kind: str) -> str:
+    """Where a number lies against the edge where action begins."""
+    return _word("verdict", kind)
+
+
+def uncertainty(kind: str) -> str:
+    """How uncertainty was propagated."""
+    return _word("uncertainty", kind)
 
 
 def claim(kind: str) -> str:
@@ -43,17 +62,31 @@ def about(key: str) -> str:
 
 
 def name(key: str) -> str:
-    """What people call a key of report.json, without unit: "emissivity:cover plate" → "Emissivity, cover plate"."""
-    stem, _, which = key.partition(":")
-    stem, which = _without_unit(stem), _without_unit(which) if which else ""
+    """What people call a key of report.json, without unit: "emissivity:cover plate" → "Emissivity, cover plate".
+
+    Noise and outlines belong to an area: "noise_k:F01-1 spot" → "Pixel noise, measurement spot of F01-1"."""
+    stem, _, owner = key.partition(":")
+    stem = _without_unit(stem)
     found = _texts()["names"].get(stem, _plain(stem))
-    return f"{found}, {which}" if which else found
+    if not owner:
+        return found
+    return f"{found}, {_area(stem, owner) if stem in _OF_AREAS else owner}"
 
 
 def cautions(kinds: Iterable[str]) -> tuple[str, ...]:
     """The standing cautions for these kinds of survey."""
     texts = _texts()["cautions"]
     return tuple(caution for kind in ("all", *sorted(set(kinds))) for caution in texts.get(kind, ()))
+
+
+def _area(kind: str, owner: str) -> str:
+    """Whose noise or outline it is, in words: of the reference area, or of a finding or component; noise, of its spot
+    or of its whole."""
+    areas = _texts()["areas"]
+    if owner == "reference":
+        return str(areas["reference"])
+    whose, _, part = owner.rpartition(" ")
+    return areas[part].replace("{name}", whose) if kind == "noise" and part in ("spot", "whole") else owner
 
 
 def _without_unit(key: str) -> str:

@@ -34,10 +34,12 @@ INPUTS = {
     "shading_k": "shading",
     "shading_x_k": "shading_x",
     "shading_y_k": "shading_y",
-    "outline_px": "outline",
     "size_of_source": "size_of_source",
 }
-"""Key in report.json, or among [conditions] → name in the scene, of the inputs that any frame may have."""
+"""Key in report.json, or among [conditions] → name in the scene, of the inputs that any frame may have.
+
+Not `outline`: every outline lies where it lies, independent of any other input.
+"""
 _OF_AREAS = {"emissivity": "emissivity", "reflected": "reflected_c", "temperature": "temperature_c"}
 """Name in the scene of what an area has of its own → its key, before the colon and the area's name."""
 

@@ -66,7 +66,7 @@ def monte_carlo(
 
     Batches of draws are added until, for every result, twice the standard deviation of the average over the
     batches of mean, standard uncertainty and both ends of the interval is within half a unit of the last of
-    `digits` significant digits of u, or `draws_at_most` is reached.  Needs 16·draws·m bytes.
+    `digits` significant digits of u, or `draws_at_most` is reached.  Needs some 40·draws·m bytes.
 
     A "normal" input is cut off at the ends of its domain (drawn by the inverse of its distribution function),
     a "rectangular" one (half-width √3 u) likewise: `u` is that of the whole distribution, what is drawn spreads

@@ -262,8 +262,8 @@ def test_a_value_at_the_end_of_its_domain_leaves_half_a_normal_distribution():
 def test_followers_move_with_their_leader_and_stay_in_their_domain():
     scene = Scene(
         (
-            Quantity("lug", 0.90, 0.05, low=0.0, high=1.0),
             Quantity("cover", 0.96, 0.02, low=0.0, high=1.0, follows="bar"),
+            Quantity("lug", 0.90, 0.05, low=0.0, high=1.0),
             Quantity("bar", 0.93, 0.0, low=0.0, high=1.0, follows="lug"),
         )
     )
@@ -276,6 +276,7 @@ def test_followers_move_with_their_leader_and_stay_in_their_domain():
     fixed(model, scene, 50_000)
     lug, bar, cover = np.concatenate(seen[1:]).T
     assert max(lug.max(), bar.max(), cover.max()) <= 1.0
+    assert (cover == 1.0).mean() < 0.001  # drawn inside, not pushed back onto the end
     assert bar - lug == pytest.approx(0.03, abs=1e-12)
     # The lug goes no further than the cover can: its own limit is 0.94.  The cover adds its own term.
     assert stats.kstest(lug, stats.truncnorm(-18, 0.8, loc=0.90, scale=0.05).cdf).pvalue > 0.001

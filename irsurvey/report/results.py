@@ -1,0 +1,148 @@
+"""One finding or component as people see it: its numbers, where their uncertainty comes from, what its class hangs on."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from irsurvey.assess.criteria import criteria
+from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
+from irsurvey.report import numbers, texts
+from irsurvey.report.ranking import governing, is_saturated
+
+Item = Finding | ComponentReport
+
+_LEAST_SHARE = 0.005
+"""Terms below half a percent of the variance are shown together; report.json has them one by one."""
+_BARS, _LEAST_BAR = 5, 0.02
+"""The longest bars a chart shows, and the share from which a term gets one; the rest together get the last."""
+_NEAR_EDGE = 0.975
+"""A class less probable than that has an edge within about U of the value: Φ(2) = 0.977."""
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """One input in a budget, in words and with units; `bar` is its length in percent."""
+
+    name: str
+    u: str
+    sensitivity: str
+    contribution: str
+    share: str
+    bar: int
+
+
+@dataclass(frozen=True, slots=True)
+class Shown:
+    """The budget of one number: what it is, its reading, the unit of contributions, its lines, a chart of the largest."""
+
+    name: str
+    reading: str
+    unit: str
+    lines: tuple[Line, ...]
+    chart: tuple[Line, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Change:
+    """Changes of single inputs, each in words, that would put something into another class."""
+
+    class_: str
+    inputs: tuple[str, ...]
+
+
+def reading(item: Item, key: str, *, unit: bool = True) -> str:
+    """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
+    estimate: Estimate | None = getattr(item, key)
+    text = numbers.with_unit(numbers.shown(estimate), key) if unit else numbers.shown(estimate)
+    if estimate is None or text == numbers.NOTHING or not _is_bound(item, key):
+        return text
+    return f"{'≤' if isinstance(item, Finding) and item.sense == 'cold' else '≥'}\u00a0{text}"
+
+
+def interval(item: Item, key: str) -> str:
+    """The 95 % interval of one number where it was drawn and the reading is not only a bound; else ""."""
+    return "" if _is_bound(item, key) else numbers.interval(getattr(item, key))
+
+
+def budgets(item: Item) -> tuple[Shown, ...]:
+    """The budgets of a finding or component, that of the number it is judged by before the others."""
+    first = _judged(item)
+    keys = sorted(item.budgets, key=lambda key: key != first)
+    return tuple(_shown(item, key, item.budgets[key]) for key in keys if item.budgets[key])
+
+
+def changes(item: Item) -> tuple[Change, ...]:
+    """What would change the class, by the class it would become."""
+    return tuple(
+        Change(class_, tuple(_told(flip) for flip in item.flips if flip.class_ == class_))
+        for class_ in dict.fromkeys(flip.class_ for flip in item.flips)
+    )
+
+
+def probabilities(assessment: Assessment) -> dict[str, float]:
+    """The classes that come into question where an edge is near; nothing where one class is as good as certain."""
+    told = {name: p for name, p in assessment.probabilities.items() if p >= _LEAST_SHARE}
+    return told if max(told.values(), default=1.0) < _NEAR_EDGE else {}
+
+
+def _is_bound(item: Item, key: str) -> bool:
+    if key == "delta_similar_k" and "twin size-limited" in item.flags:
+        return False  # both are too small: which way the difference errs is not known
+    if key in ("mean_c", "mean_delta_k"):
+        return is_saturated(item)
+    at_the_spot = key in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k")
+    return at_the_spot and (is_saturated(item) or "size-limited" in item.flags)
+
+
+def _judged(item: Item) -> str | None:
+    """Key of the number that the governing assessment judges."""
+    assessment = governing(item.assessments)
+    criterion = criteria().get(assessment.criterion) if assessment else None
+    return criterion.quantity if criterion else None
+
+
+def _shown(item: Item, key: str, terms: tuple[BudgetTerm, ...]) -> Shown:
+    listed = tuple(_line(term, key) for term in terms if abs(term.share) >= _LEAST_SHARE)
+    charted = [term for term in terms if term.share >= _LEAST_BAR][:_BARS]
+    return Shown(
+        name=texts.name(key),
+        reading=reading(item, key),
+        unit=numbers.difference_unit(key),
+        lines=(*listed, *_rest([term for term in terms if abs(term.share) >= _LEAST_SHARE])),
+        chart=(*(_line(term, key) for term in charted), *_rest(charted)),
+    )
+
+
+def _line(term: BudgetTerm, key: str) -> Line:
+    of_input, of_number = numbers.difference_unit(term.input), numbers.difference_unit(key)
+    return Line(
+        name=texts.name(term.input),
+        u=numbers.with_symbol(numbers.number(term.u, 2), of_input),
+        sensitivity=numbers.with_symbol(numbers.number(term.sensitivity, 2), _per(of_number, of_input)),
+        contribution=numbers.number(term.contribution, 2),
+        share=numbers.percent(term.share),
+        bar=_bar(term.share),
+    )
+
+
+def _rest(named: list[BudgetTerm]) -> tuple[Line, ...]:
+    """What the named terms leave of the variance, as a line of its own."""
+    share = 1 - sum(term.share for term in named)
+    if abs(share) < 1e-3:  # nothing a whole percent could show
+        return ()
+    return (Line("All other inputs together", "", "", "", numbers.percent(share), _bar(share)),)
+
+
+def _bar(share: float) -> int:
+    return round(100 * min(max(share, 0.0), 1.0))
+
+
+def _per(of_number: str, of_input: str) -> str:
+    return f"{of_number} per {of_input.removesuffix('s')}".strip() if of_input else of_number
+
+
+def _told(flip: Flip) -> str:
+    """A change of one input in words: "reflected apparent temperature by −1.3 K"."""
+    change = numbers.with_symbol(numbers.signed(flip.change), numbers.difference_unit(flip.input))
+    name = texts.name(flip.input)
+    return f"{name[:1].lower()}{name[1:]} by {change}"
