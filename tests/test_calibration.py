@@ -96,7 +96,9 @@ def reality(task, air, generator):
     radial = ((x**2 + (ratio * y) ** 2) / (1 + ratio**2)) ** 2
     shading = true["shading"] * radial + true["shading_x"] * x + true["shading_y"] * y
     reading = reading - true["camera_offset"] - true["camera_gain"] * (reading - pivot) - shading
-    frame = tasks.frame(reading + generator.normal(0, 0.04, SHAPE), seed=None)
+    slope = np.gradient(_RADIANCE, _T)
+    noise = task.camera.noise * np.interp(303.15, _T, slope) / np.interp(WALL, _T, slope)  # NETD holds at 30 °C
+    frame = tasks.frame(reading + generator.normal(0, noise, SHAPE), seed=None)
 
     def flux(surface):
         film = 2.5 * true["convection"]

@@ -7,7 +7,7 @@ quantities among them that are the area's own.
 from __future__ import annotations
 
 from dataclasses import replace
-from math import erf, log, pi, sqrt
+from math import erf, inf, log, pi, sqrt
 from typing import Any
 
 import cv2
@@ -112,6 +112,24 @@ def of_reference(
     shifts = ((own.name, 1.0), *levels, *((quantity.name, moved / stretch) for quantity in outline))
     own_tilts = tuple((one.name, float(one.name == "slope_x"), float(one.name == "slope_y")) for one in slopes)
     return _known(shifts, scene, own, *outline), (*tilts, *own_tilts), (own, *slopes, *outline)
+
+
+def bounded_tilts(reference: Reference, area: NDArray[np.bool_], stretch: float, scene: Scene) -> Own:
+    """The tilts of lens shading, no larger than a reference area without a gradient leaves room for.
+
+    One that would show as a gradient of more than `hidden` over the area is not there: what is left is taken as
+    rectangular within it.
+    """
+    if any(reference.slope):
+        return ()
+    rows, columns = np.nonzero(area)
+    bounded = []
+    for name, profile in _profiles(rows, columns, area.shape)[1:]:
+        span = float(np.ptp(profile))
+        limit = reference.hidden / stretch / span / sqrt(3) if span > 0 else inf
+        if name in scene and scene[name].u > limit:
+            bounded.append(replace(scene[name], u=limit, distribution="rectangular"))
+    return tuple(bounded)
 
 
 def perimeter(patch: Patch) -> float:

@@ -130,9 +130,9 @@ def _reference(
     reference = screened.reference
     if reference is None:
         return None, (), ()
-    shifts, tilts, own = imperfections.of_reference(
-        reference, screened.reference_area, screened.t, stretch_of(corrected, task, 0), corrected.scene
-    )
+    stretch, scene = stretch_of(corrected, task, 0), corrected.scene
+    shifts, tilts, own = imperfections.of_reference(reference, screened.reference_area, screened.t, stretch, scene)
+    own = (*own, *imperfections.bounded_tilts(reference, screened.reference_area, stretch, scene))
     drawn = area(corrected, reference.rows, reference.columns, reference.weights)
     return replace(drawn, shifts=shifts), tilts, own
 

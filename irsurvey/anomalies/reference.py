@@ -28,7 +28,8 @@ class Reference:
 
     `rows`, `columns` are the pixels it was computed from and `weights` (3, n) the linear functionals that
     give level and slopes from their temperatures, fixed by this fit: uncertainty moves the temperatures.
-    `u_level`, `u_slope` are standard errors from block means [K, K px⁻¹].
+    `u_level`, `u_slope` are standard errors from block means [K, K px⁻¹]; `hidden` [K] is the range over the area
+    below which a gradient does not count.
     """
 
     level: float
@@ -40,6 +41,7 @@ class Reference:
     gradient: float
     u_level: float
     u_slope: tuple[float, float]
+    hidden: float
     rows: NDArray[np.intp]
     columns: NDArray[np.intp]
     weights: NDArray[np.float64]
@@ -88,7 +90,8 @@ def fit(t: NDArray[np.float32], area: NDArray[np.bool_], noise: float) -> Refere
     gradient = float(np.ptp(over_area))
     u_gradient = float(np.hypot(*(u_coefficients[1:] * np.ptp(design[:, 1:], axis=0))))
     pixels = int(np.count_nonzero(area))
-    if blocks >= 6 and gradient > max(noise, 5 * u_gradient):
+    hidden = max(noise, 5 * u_gradient) if blocks >= 6 else float("inf")
+    if gradient > hidden:
         return Reference(
             float(coefficients[0]),
             (float(coefficients[1]), float(coefficients[2])),
@@ -99,6 +102,7 @@ def fit(t: NDArray[np.float32], area: NDArray[np.bool_], noise: float) -> Refere
             gradient,
             float(u_coefficients[0]),
             (float(u_coefficients[1]), float(u_coefficients[2])),
+            hidden,
             rows,
             columns,
             functional,
@@ -121,6 +125,7 @@ def fit(t: NDArray[np.float32], area: NDArray[np.bool_], noise: float) -> Refere
         0.0,
         float(u_level),
         (0.0, 0.0),
+        hidden,
         rows[middle],
         columns[middle],
         weights,

@@ -29,7 +29,7 @@ def half_width(normal_u: Array, rectangular: Array) -> Array:
             below = (_integral(middle + a, sigma) - _integral(middle - a, sigma)) / (2 * a)
             inside = 2 * below - 1
             low, high = np.where(inside < COVERAGE, middle, low), np.where(inside < COVERAGE, high, middle)
-    return np.where(scale > 0, (low + high) / 2, scale)
+    return np.asarray(np.where(scale > 0, (low + high) / 2, scale))
 
 
 def _integral(z: Array, sigma: Array) -> Array:
