@@ -276,6 +276,7 @@ def test_identical_input_gives_equal_reports_which_survive_pickling():
     other, _ = pipeline.analyse(tasks.frame(wall()), tasks.task())
     assert one == other
     assert pickle.loads(pickle.dumps(one)) == one
+    assert all(type(place) is int for point in one.findings[0].polygon for place in point)
 
 
 def test_a_frame_whose_numbers_mean_nothing_fails_with_the_reason():

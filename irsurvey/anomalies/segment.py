@@ -98,7 +98,7 @@ def segment(
     for label in np.unique(labels[seeds]):
         if label == 0:
             continue
-        x, y, width, height_px = stats[label, :4]
+        x, y, width, height_px = (int(value) for value in stats[label, :4])
         box = (slice(y, y + height_px), slice(x, x + width))
         part = labels[box] == label
         weight = part if isinstance(min_pixels, int) else part * min_pixels[box]
