@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -37,6 +39,8 @@ _STRONG_AMPLIFICATION = 3.0
 """∂T/∂T_app from which a reader is warned."""
 _LARGE_RELATIVE_U, _CURVED_AMPLIFICATION = 0.1, 2.0
 """u(ε)/ε and ∂T/∂T_app from which first order is low and the distribution skewed (computed, ε 0.30 ± 0.05)."""
+_ROUNDING = 1e-6
+"""Of a correlation coefficient."""
 FIRST_ORDER, DRAWN = "first-order", "monte-carlo"
 UNCERTAINTIES = (FIRST_ORDER, DRAWN)
 """How uncertainty may be propagated."""
@@ -102,7 +106,7 @@ def analyse(
         reference=_reference(screened, task, results),
         findings=tuple(findings(evidence, is_valid=level != "not valid")),
         components=tuple(components(evidence, twins)),
-        flags=(*_flags(corrected, screened, task), *_curved(budget, drawn, corrected, task)),
+        flags=(*_flags(corrected, screened, task), *_doubts(budget, drawn, corrected, task)),
     )
     celsius = corrected.t - np.float32(ZERO_CELSIUS)
     flux = heat_flux_map(corrected, measured.plan.surroundings) if "heat-flux" in maps else None
@@ -212,17 +216,21 @@ def _reference(screened: Screened, task: FrameTask, results: Results) -> Referen
     )
 
 
-def _curved(budget: Budget, drawn: Drawn | None, corrected: Corrected, task: FrameTask) -> tuple[str, ...]:
-    """Where first order may not do: told beforehand from the inputs, or found by drawing."""
+def _doubts(budget: Budget, drawn: Drawn | None, corrected: Corrected, task: FrameTask) -> Iterator[str]:
+    """Where the propagation itself is in doubt: told beforehand from the inputs, or found by drawing."""
+    if budget.adjusted > _ROUNDING:
+        yield f"declared correlations contradict each other: coefficients changed by up to {budget.adjusted:.2f}"
     if drawn is not None:
-        count = int(np.count_nonzero(differ(budget, drawn)))
-        return (f"first order differs by more than 20 % from Monte Carlo in {count} numbers",) if count else ()
-    emissivities = [corrected.scene[name] for name, _ in corrected.optics_names]
-    doubtful = any(one.u > _LARGE_RELATIVE_U * one.value for one in emissivities)
-    stretched = any(
-        stretch_of(corrected, task, index) > _CURVED_AMPLIFICATION for index in range(len(emissivities))
-    )
-    return ("strongly curved: run again with --uncertainty monte-carlo",) if doubtful or stretched else ()
+        if count := int(np.count_nonzero(differ(budget, drawn))):
+            yield f"first order differs by more than 20 % from Monte Carlo in {count} numbers"
+        if count := int(np.count_nonzero(~drawn.converged & np.isfinite(drawn.u))):
+            yield f"not settled after {drawn.draws} draws: {count} numbers"
+        return
+    for index, (emissivity, _) in enumerate(corrected.optics_names):
+        doubtful = corrected.scene[emissivity].u > _LARGE_RELATIVE_U * corrected.scene[emissivity].value
+        if doubtful or stretch_of(corrected, task, index) > _CURVED_AMPLIFICATION:
+            yield "strongly curved: run again with --uncertainty monte-carlo"
+            return
 
 
 def _flags(corrected: Corrected, screened: Screened, task: FrameTask) -> tuple[str, ...]:

@@ -21,6 +21,7 @@ from irsurvey.model import Quantity, Scene
 
 POINT_SPREAD = 0.7
 """Standard deviation [px] of the blur of a lens: 0.5 to 0.8 px, see the small-target readings of electrical surveys."""
+_PROFILE_PIXELS = 4000
 SELECTION = Quantity("selection", 0.0, 1 / 3**0.5, low=-1.0, high=1.0, distribution="rectangular")
 """How far picking the extreme spot among noisy ones has gone, of what it can: rectangular, common to a frame."""
 SIZE_OF_SOURCE = "size_of_source"
@@ -98,7 +99,7 @@ def of_reference(
     inner = cv2.erode(drawn, kernel, borderValue=0).view(np.bool_) & ~np.isnan(t)
     outer = cv2.dilate(drawn, kernel).view(np.bool_) & ~np.isnan(t)
     moved = float(np.median(t[inner][::7]) - np.median(t[outer][::7])) / 2 if inner.any() else 0.0
-    if slopes:
+    if slopes:  # functionals of the very pixels the plane was fitted to
         profiles = _profiles(reference.rows, reference.columns, t.shape)
         levels = tuple((name, float(reference.weights[0] @ profile)) for name, profile in profiles)
         tilts = tuple(
@@ -122,9 +123,10 @@ def bounded_tilts(reference: Reference, area: NDArray[np.bool_], stretch: float,
     """
     if any(reference.slope):
         return ()
-    rows, columns = np.nonzero(area)
+    rows, columns = (np.flatnonzero(area.any(axis=axis)) for axis in (1, 0))
+    corners = np.array([rows[0], rows[-1]]), np.array([columns[0], columns[-1]])
     bounded = []
-    for name, profile in _profiles(rows, columns, area.shape)[1:]:
+    for name, profile in _profiles(*corners, area.shape)[1:]:
         span = float(np.ptp(profile))
         limit = reference.hidden / stretch / span / sqrt(3) if span > 0 else inf
         if name in scene and scene[name].u > limit:
@@ -150,7 +152,9 @@ def _known(shifts: Shifts, scene: Scene, *own: Quantity) -> Shifts:
 
 
 def _shading(rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]) -> Shifts:
-    """Where an area lies in the lens, on average."""
+    """Where an area lies in the lens, on average (of every k-th pixel: the profiles are smooth)."""
+    stride = max(1, rows.size // _PROFILE_PIXELS)
+    rows, columns = rows[::stride], columns[::stride]
     return tuple((name, float(profile.mean())) for name, profile in _profiles(rows, columns, shape))
 
 

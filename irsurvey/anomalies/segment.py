@@ -13,6 +13,8 @@ from irsurvey.anomalies.patch import Patch, cropped
 
 _SPLIT_RADIUS = 4.0
 """Half-width [px] each part must have before a neck between two is looked for: ragged rims are not necks."""
+_SOLID = 0.9
+"""Solidity from which a region is too nearly convex to have a neck of half its width."""
 _SEED_SIGMAS = 3.0
 """A region is kept where a 3 × 3 mean exceeds its threshold by this many standard deviations of that mean."""
 
@@ -130,11 +132,24 @@ def _split(part: NDArray[np.bool_], height: NDArray[np.float32], min_pixels: int
     smooth = cv2.GaussianBlur(np.where(part, height, 0).astype(np.float32), (0, 0), 1.5)
     weight = cv2.GaussianBlur(part.astype(np.float32), (0, 0), 1.5)
     contrast = np.where(part, smooth / np.maximum(weight, 1e-6), 0).astype(np.float32)
-    for relief in (distance, contrast):
-        pieces = _watershed(part, relief, distance, min_pixels)
+    core = contrast[distance >= _SPLIT_RADIUS]
+    may_split = (
+        (distance, _solidity(part) < _SOLID),
+        (contrast, core.min() <= core.max() / 2),  # else no saddle is low enough
+    )
+    for relief, possible in may_split:
+        pieces = _watershed(part, relief, distance, min_pixels) if possible else [part]
         if len(pieces) > 1:
             return pieces
     return [part]
+
+
+def _solidity(part: NDArray[np.bool_]) -> float:
+    """Pixels of a region over those of its convex hull, about 1 for a convex one: it has no neck."""
+    points = cv2.findNonZero(part.view(np.uint8))
+    hull = np.zeros(part.shape, np.uint8)
+    cv2.fillConvexPoly(hull, cv2.convexHull(points), 1)
+    return float(np.count_nonzero(part) / np.count_nonzero(hull))
 
 
 def _watershed(

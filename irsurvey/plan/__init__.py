@@ -1,4 +1,4 @@
-"""What a survey will be able to show, answered before anybody goes out: from its survey file alone, no frame is read."""
+"""What a survey will be able to show, told before anybody goes out: from its survey file alone, no frame is read."""
 
 from __future__ import annotations
 
@@ -217,11 +217,11 @@ def _cases(survey: Survey) -> list[_Case]:
             for quantity in scene.quantities
             if ":" not in quantity.name and not quantity.name.startswith(_IDLE)
         )
-        alike = (task.group, task.camera.name, task.kind, task.viewed_from, task.has_window, task.detection)
-        alike = (*alike, task.convection, task.surface_height)
+        who = (task.group, task.camera.name, task.kind, task.viewed_from, task.has_window)
+        how = (task.detection, task.convection, task.surface_height, conditions)
         for name, against, optics in _seen(task):
             own = tuple((scene[part].value, scene[part].u) for part in optics)
-            key = (*alike, conditions, against, name is None, own)
+            key = (who, how, against, name is None, own)
             case = found.get(key) or _Case(task, against, optics)
             names = case.seen if name is None else tuple(dict.fromkeys((*case.seen, name)))
             found[key] = replace(case, frames=tuple(dict.fromkeys((*case.frames, task.id))), seen=names)
