@@ -11,6 +11,7 @@ import numpy as np
 from irsurvey.analysis.budgets import flips, on_axis
 from irsurvey.analysis.correction import Corrected
 from irsurvey.analysis.planning import Measured, Planned
+from irsurvey.analysis.propagation import Propagated
 from irsurvey.analysis.regions import Screened
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import edge_sharpness, elongation
@@ -44,22 +45,6 @@ from irsurvey.model import (
     Shape,
 )
 
-Results = Mapping[tuple[str, str], Estimate | None]
-"""(region, number) → estimate in SI units."""
-Budgets = Mapping[tuple[str, str], tuple[BudgetTerm, ...]]
-"""(region, number) → terms of its uncertainty, in the units inputs are shown in."""
-
-BUDGETED = {
-    "delta": "delta_k",
-    "extreme": "extreme_c",
-    "flux": "heat_flux_w_m2",
-    "temperature_factor": "temperature_factor",
-    "delta_similar": "delta_similar_k",
-    "delta_ambient": "delta_ambient_k",
-    "max": "max_c",
-}
-"""Numbers of the measurand whose budgets are reported → their keys."""
-
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Evidence:
@@ -69,14 +54,9 @@ class Evidence:
     corrected: Corrected
     screened: Screened
     planned: Planned
-    results: Results
-    budgets: Budgets
+    numbers: Propagated
     inputs: Mapping[str, Input]
     criteria: tuple[Criterion, ...]
-
-    def budgets_of(self, region: str) -> dict[str, tuple[BudgetTerm, ...]]:
-        """Budgets of one region by the key of the number."""
-        return {key: self.budgets[region, name] for name, key in BUDGETED.items() if self.budgets.get((region, name))}
 
 
 _KEY_GRID = 8
@@ -96,7 +76,7 @@ def component_twins(
 
 def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
     """The findings of a frame in the order of their labels."""
-    task, screened, results = evidence.task, evidence.screened, evidence.results
+    task, screened, results = evidence.task, evidence.screened, evidence.numbers.results
     keys: Counter[str] = Counter()
     for label, (found, measured) in enumerate(
         zip(screened.regions, evidence.planned.anomalies, strict=True), start=1
@@ -126,7 +106,7 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
             flags=tuple(flag for flag, applies in flags if applies),
             viewed_from=task.viewed_from,
         )
-        budgets = evidence.budgets_of(name)
+        budgets = evidence.numbers.budgets_of(name)
         changes = _flips(verdict, numbers, budgets, evidence.inputs)
         key = _key(task.id, measured)
         keys[key] += 1
@@ -161,7 +141,7 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
 
 def components(evidence: Evidence, plans: Mapping[str, TwinPlan]) -> Iterator[ComponentReport]:
     """The components of a frame in the order of the survey."""
-    task, corrected, results = evidence.task, evidence.corrected, evidence.results
+    task, corrected, results = evidence.task, evidence.corrected, evidence.numbers.results
     for component in task.components:
         name = component.name
         drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
@@ -173,7 +153,7 @@ def components(evidence: Evidence, plans: Mapping[str, TwinPlan]) -> Iterator[Co
             "delta_ambient_k": results.get((name, "delta_ambient")),
         }
         verdict = assess_component(member, plan, numbers, evidence.criteria)
-        budgets = evidence.budgets_of(name)
+        budgets = evidence.numbers.budgets_of(name)
         changes = _flips(verdict, numbers, budgets, evidence.inputs)
         yield ComponentReport(
             name=name,

@@ -2,20 +2,43 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
+
 import numpy as np
 from numpy.typing import NDArray
 
 from irsurvey.analysis.correction import Corrected, air_path
+from irsurvey.analysis.findings import Evidence
 from irsurvey.analysis.measurand import Columns, Surroundings, flux_of
 from irsurvey.analysis.regions import Screened
-from irsurvey.model import Scene
+from irsurvey.constants import ZERO_CELSIUS
+from irsurvey.model import Maps, Scene
 from irsurvey.radiometry.measurement import object_temperature
 from irsurvey.uncertainty import propagate
+
+HEAT_FLUX, UNCERTAINTY = "heat-flux", "uncertainty"
+MAPS = (HEAT_FLUX, UNCERTAINTY)
+"""Maps that are made on request."""
 
 _NODES = 200
 """Temperatures at which u is computed; between them it is a smooth curve."""
 _OF_AREAS = ("noise", "outline", "slope_x", "slope_y", "selection", "size_of_source")
 """What belongs to areas, not to single pixels."""
+
+
+def maps_of(evidence: Evidence, wanted: Collection[str]) -> Maps:
+    """The maps of a frame: temperature, labels, reference, and those of `MAPS` that are wanted."""
+    corrected, screened, measured = evidence.corrected, evidence.screened, evidence.planned
+    band = evidence.task.camera.band
+    return Maps(
+        temperature_c=corrected.t - np.float32(ZERO_CELSIUS),
+        labels=label_map(screened),
+        reference=screened.reference_area,
+        heat_flux=heat_flux_map(corrected, measured.plan.surroundings) if HEAT_FLUX in wanted else None,
+        u_temperature=uncertainty_map(corrected, measured.scene, band, screened.noise)
+        if UNCERTAINTY in wanted
+        else None,
+    )
 
 
 def label_map(screened: Screened) -> NDArray[np.uint16]:

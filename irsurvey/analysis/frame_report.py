@@ -1,0 +1,197 @@
+"""The record of one frame: what was read, stated, found and claimed, and what a reader must know first."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+
+import numpy as np
+
+from irsurvey.analysis.correction import Corrected
+from irsurvey.analysis.findings import Evidence, components, findings
+from irsurvey.analysis.regions import Screened, stretch_of
+from irsurvey.assess.electrical import TwinPlan
+from irsurvey.constants import ZERO_CELSIUS
+from irsurvey.geometry.polygons import outline
+from irsurvey.heat.humid_air import dew_point, vapour_density
+from irsurvey.model import Detectable, Frame, FrameReport, FrameTask, ReferenceReport, Source, TemperatureSummary
+from irsurvey.radiometry.atmosphere import transmittance, validity_notes
+from irsurvey.radiometry.band import band_table
+
+_STRONG_AMPLIFICATION = 3.0
+"""∂T/∂T_app from which a reader is warned."""
+_LARGE_RELATIVE_U, _CURVED_AMPLIFICATION = 0.1, 2.0
+"""u(ε)/ε and ∂T/∂T_app from which first order is low and the distribution skewed (computed, ε 0.30 ± 0.05)."""
+_COARSE = 0.005
+"""Step [K] of quantised float frames from which it is told: a tenth of a good camera's noise."""
+
+
+def frame_report(
+    frame: Frame, evidence: Evidence, twins: Mapping[str, TwinPlan], claimed: tuple[str, str]
+) -> FrameReport:
+    """The report of an analysed frame; `claimed`: what it may claim, and why."""
+    task, corrected, screened = evidence.task, evidence.corrected, evidence.screened
+    level, reason = claimed
+    return FrameReport(
+        id=task.id,
+        status="analysed",
+        reason=None,
+        kind=task.kind,
+        claim=level,
+        claim_reason=reason,
+        group=task.group,
+        label=task.label,
+        asset=task.asset,
+        notes=task.notes,
+        taken=task.taken.isoformat() if task.taken else None,
+        source=Source(
+            task.file, frame.sha256, (frame.stored.shape[0], frame.stored.shape[1]), str(frame.stored.dtype)
+        ),
+        inputs=dict(evidence.inputs),
+        humid_air=_humid_air(corrected),
+        uncertainty=evidence.numbers.how,
+        draws=evidence.numbers.draws,
+        atmosphere_transmittance=_transmittance(corrected, task),
+        radiance_table_error_k=band_table(task.camera.band).worst_error,
+        detectable=_detectable(screened, task),
+        temperature=_summary(corrected),
+        reference=_reference(evidence),
+        findings=tuple(findings(evidence, is_valid=level != "not valid")),
+        components=tuple(components(evidence, twins)),
+        flags=(*_flags(corrected, screened, task), *evidence.numbers.doubts),
+    )
+
+
+def failed(task: FrameTask, reason: str) -> FrameReport:
+    """The report of a frame that could not be read or analysed."""
+    return FrameReport(
+        id=task.id,
+        status="failed",
+        reason=reason,
+        kind=task.kind,
+        claim="not valid",
+        claim_reason="the frame could not be analysed",
+        group=task.group,
+        label=task.label,
+        asset=task.asset,
+        notes=task.notes,
+        taken=task.taken.isoformat() if task.taken else None,
+        source=Source(task.file, None, None, None),
+        inputs={},
+        humid_air={},
+        uncertainty=None,
+        draws=None,
+        atmosphere_transmittance=None,
+        radiance_table_error_k=None,
+        detectable=None,
+        temperature=None,
+        reference=None,
+        findings=(),
+        components=(),
+        flags=(),
+    )
+
+
+def _humid_air(corrected: Corrected) -> dict[str, float]:
+    """Dew point and vapour content of the air along the path."""
+    values = corrected.scene.values()
+    air, humidity = values["air"], values["relative_humidity"]
+    return {
+        "dew_point_c": float(dew_point(air, humidity)) - ZERO_CELSIUS,
+        "vapour_density_g_m3": 1e3 * float(vapour_density(air, humidity)),
+    }
+
+
+def _transmittance(corrected: Corrected, task: FrameTask) -> float:
+    """Band transmittance of the air path for radiation of the frame's median temperature."""
+    values = corrected.scene.values()
+    return float(
+        transmittance(
+            corrected.pivot,
+            distance=values["distance"],
+            t_air=values["air"],
+            vapour_density=vapour_density(values["air"], values["relative_humidity"]),
+            pressure=values["pressure"],
+            band=task.camera.band,
+        )
+    )
+
+
+def _detectable(screened: Screened, task: FrameTask) -> Detectable:
+    """The least this frame could have shown: a clean frame is a bounded statement."""
+    area = None
+    if screened.pixel_area is not None:
+        area = task.detection.min_area or task.detection.min_pixels * float(np.nanmedian(screened.pixel_area))
+    found_nothing_to_compare = screened.reference is None
+    return Detectable(
+        min_delta_k=None if found_nothing_to_compare else screened.detectable_delta,
+        min_area_m2=area,
+        min_pixels=task.detection.min_pixels,
+        noise_k=screened.noise,
+        shading_allowance_k=abs(screened.shading),
+    )
+
+
+def _summary(corrected: Corrected) -> TemperatureSummary:
+    measured = corrected.t[~np.isnan(corrected.t)]
+    unmeasurable = corrected.unsolved_pixels + corrected.without_data_pixels
+    if measured.size == 0:
+        return TemperatureSummary(None, None, None, None, unmeasurable, corrected.saturated_pixels)
+    return TemperatureSummary(
+        float(measured.min()) - ZERO_CELSIUS,
+        float(measured.max()) - ZERO_CELSIUS,
+        float(measured.mean(dtype=np.float64)) - ZERO_CELSIUS,
+        float(np.median(measured)) - ZERO_CELSIUS,
+        unmeasurable,
+        corrected.saturated_pixels,
+    )
+
+
+def _reference(evidence: Evidence) -> ReferenceReport | None:
+    task, screened, results = evidence.task, evidence.screened, evidence.numbers.results
+    reference, level = screened.reference, results.get(("", "reference"))
+    if reference is None:
+        return None
+    return ReferenceReport(
+        how="polygon" if task.reference else "automatic",
+        median_c=reference.level - ZERO_CELSIUS,
+        u_c=None if level is None else level.u,
+        spread_k=reference.spread,
+        pixels=reference.pixels,
+        gradient_k=reference.gradient,
+        heat_flux_w_m2=results.get(("", "reference_flux")),
+        u_value_w_m2k=results.get(("", "u_value")),
+        polygon=task.reference or tuple((float(x), float(y)) for x, y in outline(screened.reference_area)),
+    )
+
+
+def _flags(corrected: Corrected, screened: Screened, task: FrameTask) -> Iterator[str]:
+    """What whoever reads the frame's report should know first, in short sentences."""
+    scene, values = corrected.scene, corrected.scene.values()
+    if screened.reference is None:
+        yield "no reference area found: nothing can be compared in this frame"
+    elif task.reference is None:
+        yield "automatic reference"
+    for pixels, words in (
+        (corrected.saturated_pixels, "saturated: {} pixels at or beyond the range"),
+        (corrected.unsolved_pixels, "no physical solution: {} pixels"),
+        (corrected.without_data_pixels, "without data: {} pixels"),
+    ):
+        if pixels:
+            yield words.format(pixels)
+    if (stretch := stretch_of(corrected, task, 0)) > _STRONG_AMPLIFICATION:
+        yield f"errors of the reading are amplified {stretch:.1f} times"
+    if "wind" in scene and scene["wind"].source == "default":
+        yield "wind not recorded, assumed"
+    if corrected.quantised_to > _COARSE:
+        yield f"numbers read in steps of {corrected.quantised_to:.3f} K: a far-off one stretches their range"
+    if any(_is_curved(corrected, task, index) for index in range(len(corrected.optics_names))):
+        yield "strongly curved: run again with --uncertainty monte-carlo"
+    yield from validity_notes(values["distance"], values["air"], values["pressure"])
+
+
+def _is_curved(corrected: Corrected, task: FrameTask, index: int) -> bool:
+    """Whether first order may not do on one optics of the frame."""
+    emissivity = corrected.scene[corrected.optics_names[index][0]]
+    return emissivity.u > _LARGE_RELATIVE_U * emissivity.value or (
+        stretch_of(corrected, task, index) > _CURVED_AMPLIFICATION
+    )
