@@ -17,13 +17,22 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from irsurvey import __version__
-from irsurvey.errors import Fault, IrsurveyError, UsageError
+from irsurvey.errors import IrsurveyError
 
 if TYPE_CHECKING:
     from irsurvey.assess.criteria import SeverityClass
     from irsurvey.model import ComponentReport, Finding, FrameReport, Report
 
 ALL_DONE, SOME_FAILED, NOTHING_RUN, INTERRUPTED = 0, 1, 2, 130
+
+ABOVE_ZERO = click.FloatRange(min=0, min_open=True)
+UNCERTAINTY = click.option(
+    "--uncertainty",
+    type=click.Choice(["first-order", "monte-carlo"]),
+    default="first-order",
+    show_default=True,
+    help="How uncertainty is propagated; monte-carlo where first order is said not to do.",
+)
 
 
 class Commands(click.Group):
@@ -46,7 +55,7 @@ class Commands(click.Group):
             help_at = f"; see {context.command_path} --help" if context else ""
             code = _complain(NOTHING_RUN, error.format_message().rstrip(".") + help_at)
         except click.Abort:
-            code = _complain(INTERRUPTED, "stopped: every file written so far is whole; run it again to finish")
+            code = _complain(INTERRUPTED, "stopped: every file written so far is whole, the next run starts anew")
         except Exception as error:  # the last resort: whatever it is, a user sees one line
             if os.environ.get("IRSURVEY_DEBUG"):
                 raise
@@ -105,20 +114,44 @@ def check(survey: Path) -> int:
 
 @main.command()
 @click.argument("survey", type=Path)
+@click.option("--contrast-k", type=ABOVE_ZERO, help="Difference to be read, K; default: the smallest that counts.")
+@click.option("--size-mm", type=ABOVE_ZERO, default=20, show_default=True, help="Side of a part to be read, mm.")
+def plan(survey: Path, contrast_k: float | None, size_mm: float) -> int:
+    """Tell before going out what SURVEY (the survey file or its folder) will be able to show.
+
+    No frame needs to exist.  How uncertain a temperature difference will be, in the middle of a picture and near
+    a corner; from where on it can be claimed; what sizes are resolved; how uncertain U-values are; and what to
+    improve first.
+    """
+    from irsurvey.plan import plan as plan_survey
+    from irsurvey.plan.tables import remarks, tables
+    from irsurvey.run import load_survey
+
+    prospects = plan_survey(load_survey(_survey_file(survey)), contrast=contrast_k, size=size_mm / 1e3)
+    for table in tables(prospects, size_mm / 1e3):
+        click.echo(table.title)
+        _print_table(table.columns, table.rows)
+    for remark in remarks(prospects):
+        click.echo(remark)
+    return ALL_DONE
+
+
+@main.command()
+@click.argument("survey", type=Path)
 @click.option("-o", "--out", type=Path, help="Folder to write to; default: report, beside the survey file.")
 @click.option("--jobs", type=click.IntRange(min=1), default=1, show_default=True, help="Frames worked on at once.")
 @click.option("--documents", default="html", show_default=True, help="Documents to make, joined by commas.")
-@click.option("--maps", default="", help="Further maps for each frame, joined by commas: heat-flux.")
-def run(survey: Path, out: Path | None, jobs: int, documents: str, maps: str) -> int:
+@click.option("--maps", default="", help="Further maps for each frame, joined by commas: heat-flux, uncertainty.")
+@UNCERTAINTY
+def run(survey: Path, out: Path | None, jobs: int, documents: str, maps: str, uncertainty: str) -> int:
     """Analyse every frame of SURVEY (the survey file or its folder) and write the report."""
-    from irsurvey.report import WRITERS
     from irsurvey.run import run as run_survey
 
-    chosen = {"documents": _names("--documents", documents, WRITERS), "maps": _names("--maps", maps, ("heat-flux",))}
+    chosen = {"documents": _names(documents), "maps": _names(maps)}
     path = _survey_file(survey)
     out = out or path.parent / "report"
     with _progress() as on_frame:
-        report = run_survey(path, out, jobs=jobs, on_frame=on_frame, **chosen)
+        report = run_survey(path, out, jobs=jobs, uncertainty=uncertainty, on_frame=on_frame, **chosen)
     failed = [frame for frame in report.frames if frame.status == "failed"]
     _complain(SOME_FAILED, *(f"frame {frame.id} failed: {frame.reason}" for frame in failed))
     _print_table(("frame", "label", "findings", "components", "class", "urgency", "claim"), _summary(report))
@@ -129,17 +162,18 @@ def run(survey: Path, out: Path | None, jobs: int, documents: str, maps: str) ->
 @main.command()
 @click.argument("source", type=Path, metavar="IN.csv")
 @click.option("-o", "--out", type=Path, required=True, metavar="OUT.csv", help="Table to write.")
-def readings(source: Path, out: Path) -> int:
+@UNCERTAINTY
+def readings(source: Path, out: Path, uncertainty: str) -> int:
     """Correct single spot readings, with uncertainty.
 
     Column apparent_c is required; emissivity, reflected_c, distance_m, air_c, relative_humidity_percent,
     pressure_hpa, band_low_um, band_high_um, window_transmittance, window_reflectance, window_c and
-    window_ambient_c count where they stand, and u_… before a name is its standard uncertainty.  Other
-    columns pass through.
+    window_ambient_c count where they stand, and u_… before a name is its standard uncertainty; without one
+    the default counts that a survey has.  Other columns pass through.
     """
     from irsurvey.readings import correct_table
 
-    done = correct_table(source, out)
+    done = correct_table(source, out, uncertainty=uncertainty)
     _complain(SOME_FAILED, *done.notices, *done.failed)
     click.echo(f"{out}: {done.rows - len(done.failed)} of {done.rows} readings corrected")
     return SOME_FAILED if done.failed else ALL_DONE
@@ -194,12 +228,8 @@ def _survey_file(path: Path) -> Path:
     return path / "survey.toml" if path.is_dir() else path
 
 
-def _names(option: str, text: str, allowed: Iterable[str]) -> tuple[str, ...]:
-    names = tuple(name.strip() for name in text.split(",") if name.strip())
-    for name in names:
-        if name not in allowed:
-            raise UsageError(Fault(option, f"some of {', '.join(allowed)}", name))
-    return names
+def _names(text: str) -> tuple[str, ...]:
+    return tuple(name.strip() for name in text.split(",") if name.strip())
 
 
 @contextmanager

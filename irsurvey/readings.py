@@ -18,10 +18,11 @@ from irsurvey.analysis.correction import air_path
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.errors import Fault, OutputError, SurveyError
 from irsurvey.files import write_text
-from irsurvey.model import Quantity, Scene
+from irsurvey.model import Camera, Quantity, Scene, Signal
 from irsurvey.radiometry.atmosphere import absorptance_u, fitted_band, transmittance, validity_notes
 from irsurvey.radiometry.measurement import amplification, object_temperature
-from irsurvey.uncertainty.propagate import propagate
+from irsurvey.survey.defaults import defaults
+from irsurvey.uncertainty import Budget, Drawn, differ, monte_carlo, propagate
 
 ADDED = ("object_c", "u_object_k", "atmosphere_transmittance", "note")
 
@@ -29,6 +30,13 @@ REFLECTIVE = 0.6
 """Below this emissivity a temperature carries no claim (common practice)."""
 DELICATE = 3.0
 """From this many kelvin of object temperature per kelvin of apparent temperature on, the note warns (judgement)."""
+FIRST_ORDER, DRAWN = "first-order", "monte-carlo"
+_CURVED_U, _CURVED_GAIN = 0.1, 2.0
+"""u(ε)/ε and kelvin per kelvin from which first order is held against draws (computed, ε 0.30 ± 0.05)."""
+_SEED = 18434
+"""Of the draws: the same table gives the same result."""
+_TOLD_SHARE = 0.1
+"""Of the variance: smaller terms are not named in the note."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,6 +76,24 @@ BAND = {
     "band_low_um": Column("band_low", "a wavelength of 1…30 µm", 1.0, 30.0, 7.5, 1e-6),
     "band_high_um": Column("band_high", "a wavelength of 1…30 µm", 1.0, 30.0, 14.0, 1e-6),
 }
+_DEFAULT_U = {
+    "emissivity": "emissivity",
+    "reflected_c": "reflected_k",
+    "distance_m": "distance_fraction",
+    "air_c": "air_k",
+    "relative_humidity_percent": "relative_humidity_percent",
+    "pressure_hpa": "pressure_hpa",
+    "window_transmittance": "window_transmittance",
+    "window_reflectance": "window_reflectance",
+    "window_c": "window_k",
+    "window_ambient_c": "window_ambient_k",
+}
+"""Column → its entry in the defaults that count for surveys too."""
+_EXACT = {"emissivity": 1.0, "distance_m": 0.0, "window_transmittance": 1.0, "window_reflectance": 0.0}
+"""Values that say: there is no such thing."""
+_CAMERA = Camera("", (7.5e-6, 14e-6), Signal("apparent-temperature"))
+"""Its accuracy is that of a camera of which nothing is stated."""
+_TERMS = {column.name: name for name, column in COLUMNS.items()} | {"atmosphere": "the air-path model"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,12 +123,12 @@ class _Table:
     rows: list[tuple[int, list[str]]]  # (line in the file, cells)
 
 
-def correct(stated: Mapping[str, float]) -> Corrected:
+def correct(stated: Mapping[str, float], uncertainty: str = FIRST_ORDER) -> Corrected:
     """The object temperature of one reading.
 
     `stated` maps names of `COLUMNS` and `BAND`, and `u_<name>` for standard uncertainties, to numbers in the
-    unit the name ends in; what is absent takes its default.  `u_object_k` covers the stated uncertainties and
-    that of the air-path model; None where no uncertainty is stated at all.
+    unit the name ends in; what is absent takes its default, uncertainties those of a survey that states none.
+    `uncertainty` is "first-order" or "monte-carlo".  `u_object_k` is None where none exists.
     """
     value = {name: stated.get(name, column.default) for name, column in (COLUMNS | BAND).items()}
     u = {name: stated.get(f"u_{name}", 0.0) for name in COLUMNS}
@@ -110,18 +136,24 @@ def correct(stated: Mapping[str, float]) -> Corrected:
     if fault is not None:
         return Corrected(None, None, None, str(fault))
     band = (BAND["band_low_um"].si(value["band_low_um"]), BAND["band_high_um"].si(value["band_high_um"]))
-    budget = propagate(partial(_results, band=band), _scene(value, u, band))
+    by_default = _by_default(stated, value, u)
+    u |= by_default
+    scene, model = _scene(value, u, by_default, band), partial(_results, band=band)
+    budget = propagate(model, scene)
     t_object, tau, gain = (float(result) for result in budget.values)
     if isnan(t_object):
         return Corrected(None, None, None, "no physical solution: reflection, air and window alone exceed the reading")
-    notes = _notes(stated, value, band)
+    is_curved = gain > _CURVED_GAIN or u["emissivity"] > _CURVED_U * value["emissivity"]
+    drawn = monte_carlo(model, scene, seed=_SEED) if uncertainty == DRAWN or is_curved else None
+    is_drawn = drawn is not None and (uncertainty == DRAWN or isnan(drawn.u[0]))  # what does not exist is not claimed
+    u_object = float(drawn.u[0] if drawn is not None and is_drawn else budget.u[0])
+    notes = [*_notes(stated, value, band), *_notes_on_u(budget, drawn, by_default)]
     if gain >= DELICATE:
         notes.append(f"1 K in apparent_c is {gain:.1f} K in object_c")
-    estimate = budget.estimates()[0] if any(f"u_{name}" in stated for name in COLUMNS) else None
-    return Corrected(t_object - ZERO_CELSIUS, estimate.u if estimate else None, tau, "; ".join(notes))
+    return Corrected(t_object - ZERO_CELSIUS, None if isnan(u_object) else u_object, tau, "; ".join(notes))
 
 
-def correct_table(source: Path, out: Path) -> Summary:
+def correct_table(source: Path, out: Path, *, uncertainty: str = FIRST_ORDER) -> Summary:
     """Correct every row of a CSV file and write it, with the columns of `ADDED`, to `out`.
 
     Separator (comma, semicolon or tab) and decimal comma follow the file.  Raises SurveyError where the
@@ -136,7 +168,7 @@ def correct_table(source: Path, out: Path) -> Summary:
     writer.writerow([*table.header, *ADDED])
     failed = []
     for line, cells in table.rows:
-        result = _correct_row(cells, table)
+        result = _correct_row(cells, table, uncertainty)
         if result.object_c is None:
             failed.append(f"{source.name}, line {line}: {result.note}")
         numbers = [
@@ -188,7 +220,37 @@ def _has_window(value: Mapping[str, float], u: Mapping[str, float]) -> bool:
     return not is_clear or u["window_transmittance"] > 0 or u["window_reflectance"] > 0
 
 
-def _scene(value: Mapping[str, float], u: Mapping[str, float], band: tuple[float, float]) -> Scene:
+def _by_default(stated: Mapping[str, float], value: Mapping[str, float], u: Mapping[str, float]) -> dict[str, float]:
+    """Standard uncertainties, in the columns' units, of what this reading depends on and whose own nobody stated."""
+    unstated = [name for name in _uses(stated, value, u) if f"u_{name}" not in stated]
+    found = {}
+    for name in unstated:
+        if name == "apparent_c":
+            found[name] = max(_CAMERA.accuracy, _CAMERA.accuracy_fraction * abs(value[name])) / 3**0.5
+        elif value[name] != _EXACT.get(name):
+            key = _DEFAULT_U[name]
+            default = (
+                defaults("stated")[key] if name in stated else defaults("assumed").get(key, defaults("stated")[key])
+            )
+            found[name] = default.u * (abs(value[name]) if key.endswith("_fraction") else 1.0)
+    return found
+
+
+def _uses(stated: Mapping[str, float], value: Mapping[str, float], u: Mapping[str, float]) -> Iterator[str]:
+    """Columns that this reading depends on."""
+    yield "apparent_c"
+    yield "emissivity"
+    if value["emissivity"] < 1 or u["emissivity"] > 0:
+        yield "reflected_c"
+    if value["distance_m"] > 0 or u["distance_m"] > 0:
+        yield from ("distance_m", "air_c", "relative_humidity_percent", "pressure_hpa")
+    if _has_window(value, u):
+        yield from (name for name in COLUMNS if name.startswith("window") and name in stated)
+
+
+def _scene(
+    value: Mapping[str, float], u: Mapping[str, float], by_default: Mapping[str, float], band: tuple[float, float]
+) -> Scene:
     """The inputs in SI; a temperature that plays no part takes the apparent one, which keeps it finite."""
     has_window, quantities = _has_window(value, u), []
     for name, column in COLUMNS.items():
@@ -200,9 +262,10 @@ def _scene(value: Mapping[str, float], u: Mapping[str, float], band: tuple[float
             if name == "window_reflectance":
                 high = 1 - value["window_transmittance"]
             spread = column.scale * u[name] if not isnan(value[name]) else 0.0
-            quantities.append(Quantity(column.name, column.si(used), spread, low=low, high=high))
+            shape = "rectangular" if name in by_default else "normal"  # defaults are half-widths
+            quantities.append(Quantity(column.name, column.si(used), spread, low=low, high=high, distribution=shape))
     model_u = absorptance_u(band) if value["distance_m"] > 0 else 0.0
-    return Scene((*quantities, Quantity("atmosphere", 0.0, model_u)))
+    return Scene((*quantities, Quantity("atmosphere", 0.0, model_u, low=-1.0)))
 
 
 def _results(values: Mapping[str, NDArray[np.float64]], band: tuple[float, float]) -> NDArray[np.float64]:
@@ -222,28 +285,38 @@ def _results(values: Mapping[str, NDArray[np.float64]], band: tuple[float, float
 
 
 def _notes(stated: Mapping[str, float], value: Mapping[str, float], band: tuple[float, float]) -> list[str]:
-    """What a reader of the result should know: assumptions, limits, and what the uncertainty leaves out."""
-    has_air = value["distance_m"] > 0
-    uses = ["apparent_c", "emissivity", *(["reflected_c"] if value["emissivity"] < 1 else [])]
-    uses += ["distance_m", "air_c", "relative_humidity_percent", "pressure_hpa"] if has_air else []
-    uses += [name for name in COLUMNS if name.startswith("window") and name in stated]
+    """What a reader of the result should know: assumptions and limits."""
+    uses = _uses(stated, value, {name: stated.get(f"u_{name}", 0.0) for name in COLUMNS})
     assumed = [f"{name} {value[name]:g}" for name in (*uses, *BAND) if name not in stated]
-    silent = [name for name in uses if f"u_{name}" not in stated]
     notes = [f"assumed {', '.join(assumed)}"] if assumed else []
+    has_air = value["distance_m"] > 0
     fit, is_exact = fitted_band(band)
     if has_air and not is_exact:
         notes.append(f"air path as for {fit}, the nearest band with a model")
     notes += validity_notes(value["distance_m"], *(COLUMNS[name].si(value[name]) for name in ("air_c", "pressure_hpa")))
     if value["emissivity"] < REFLECTIVE:
         notes.append("too reflective for a claim: tape or paint the spot and read again")
-    if len(silent) == len(uses):
-        notes.append("no uncertainty stated")
-    elif silent:
-        notes.append(f"u_object_k leaves out {', '.join(silent)}")
     return notes
 
 
-def _correct_row(cells: Sequence[str], table: _Table) -> Corrected:
+def _notes_on_u(budget: Budget, drawn: Drawn | None, by_default: Mapping[str, float]) -> Iterator[str]:
+    """Which uncertainties nobody stated, what the result owes most of its own to, and where first order does not do."""
+    if by_default:
+        yield f"u by default: {', '.join(f'{name} {u:.2g}' for name, u in by_default.items())}"
+    terms = [term for term in budget.terms(0) if term.share >= _TOLD_SHARE]
+    if terms:
+        yield f"u_object_k mostly from {', '.join(f'{_TERMS[term.name]} {term.share:.0%}' for term in terms)}"
+    if drawn is not None and isnan(drawn.u[0]):
+        yield f"no uncertainty: {drawn.missing[0] / drawn.draws:.0%} of what the inputs may be has no physical solution"
+    elif drawn is not None and differ(budget, drawn)[0]:
+        low, high = drawn.interval[:, 0] - ZERO_CELSIUS
+        yield (
+            f"strongly curved: u {budget.u[0]:.2g} K to first order, {drawn.u[0]:.2g} K by Monte Carlo, "
+            f"95 % within {low:.1f}…{high:.1f} °C"
+        )
+
+
+def _correct_row(cells: Sequence[str], table: _Table, uncertainty: str) -> Corrected:
     surplus = [cell for cell in cells[len(table.header) :] if cell.strip()]
     if surplus:
         return Corrected(None, None, None, f"more cells than the header has: {', '.join(surplus)}")
@@ -254,7 +327,7 @@ def _correct_row(cells: Sequence[str], table: _Table) -> Corrected:
             if isnan(number):
                 return Corrected(None, None, None, str(Fault(name.strip(), "a number", f'"{cell.strip()}"')))
             stated[name.strip()] = number
-    return correct(stated)
+    return correct(stated, uncertainty)
 
 
 def _number(cell: str, decimal_comma: bool) -> float:

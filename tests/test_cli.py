@@ -145,9 +145,46 @@ def test_jobs_change_nothing_but_the_time(lodge: Path, tmp_path: Path) -> None:
         assert (tmp_path / "one" / path).read_bytes() == (tmp_path / "two" / path).read_bytes()
 
 
-def test_heat_flux_maps_are_written_on_request(lodge: Path) -> None:
-    assert irsurvey_("run", lodge, "--maps", "heat-flux").exit_code == 0
-    assert (lodge / "report" / "frames" / "strong" / "heat_flux.tif").is_file()
+def test_further_maps_are_written_on_request(lodge: Path) -> None:
+    assert irsurvey_("run", lodge, "--maps", "heat-flux, uncertainty").exit_code == 0
+    written = {path.name for path in (lodge / "report" / "frames" / "strong").iterdir()}
+    assert {"heat_flux.tif", "u_temperature.tif"} <= written
+
+
+def test_the_way_to_propagate_is_handed_on_and_told(lodge: Path) -> None:
+    for chosen in ("first-order", "monte-carlo"):
+        assert irsurvey_("run", lodge, "--uncertainty", chosen).exit_code == 0
+        frames = json.loads((lodge / "report" / "report.json").read_text(encoding="utf-8"))["frames"]
+        assert {frame["uncertainty"] for frame in frames} == {chosen}
+
+
+def test_a_plan_needs_no_frame_and_writes_nothing(lodge: Path) -> None:
+    with_frames = irsurvey_("plan", lodge)
+    for frame in lodge.glob("*.npy"):
+        frame.unlink()
+    result = irsurvey_("plan", lodge)
+    assert (result.exit_code, error_lines(result)) == (0, [])
+    assert result.stdout == with_frames.stdout
+    assert [path.name for path in lodge.iterdir()] == ["survey.toml"]
+    for table in ("Temperature differences", "Sizes", "U-values", "What to improve first", "How"):
+        assert table in result.stdout
+    assert "sound, faint, strong" in result.stdout  # one answer for frames that are alike
+    assert "Lens shading" in result.stdout.split("assumed, as the survey does not state it")[1]
+
+
+def test_a_plan_answers_for_the_contrast_and_size_it_is_asked_for(lodge: Path) -> None:
+    result = irsurvey_("plan", lodge, "--contrast-k", 7, "--size-mm", 45)
+    assert "7.00\u00a0±" in result.stdout
+    (sizes,) = (line for line in result.stdout.splitlines() if "a part of 45 mm up to" in line)
+    # 45 mm over three pixels of 1.5 mrad: 10 m
+    assert any(line.rstrip().endswith("10.00 m") for line in result.stdout.split(sizes)[1].splitlines())
+
+
+def test_a_plan_of_a_faulty_survey_tells_its_faults(lodge: Path) -> None:
+    (lodge / "survey.toml").write_text(SURVEY.replace("reflected_c = 20.0\n", ""), encoding="utf-8")
+    result = irsurvey_("plan", lodge)
+    assert result.exit_code == 2
+    assert error_lines(result)[0].startswith("conditions.reflected_c: expected a value")
 
 
 @pytest.mark.parametrize(
@@ -156,8 +193,14 @@ def test_heat_flux_maps_are_written_on_request(lodge: Path) -> None:
         (["bogus"], "No such command 'bogus'; see irsurvey --help"),
         (["run"], "Missing argument 'SURVEY'; see irsurvey run --help"),
         (["run", ".", "--jobs", "0"], "'--jobs'"),
-        (["run", ".", "--documents", "html,scroll"], "--documents: expected some of json, csv, html"),
-        (["run", ".", "--maps", "flux"], "--maps: expected some of heat-flux, got flux"),
+        (["run", ".", "--documents", "html,scroll"], "documents: expected some of json, csv, html"),
+        (["run", ".", "--maps", "flux"], "maps: expected some of heat-flux, uncertainty, got flux"),
+        (["run", ".", "--uncertainty", "guess"], "'guess' is not one of 'first-order', 'monte-carlo'"),
+        (["readings", "in.csv", "-o", "out.csv", "--uncertainty", "guess"], "'guess' is not one of 'first-order'"),
+        (["plan"], "Missing argument 'SURVEY'; see irsurvey plan --help"),
+        (["plan", "nowhere/survey.toml"], "survey.toml: expected a survey file"),
+        (["plan", ".", "--contrast-k", "0"], "'--contrast-k'"),
+        (["plan", ".", "--size-mm", "-3"], "'--size-mm'"),
         (["run", "nowhere/survey.toml"], "survey.toml: expected a survey file"),
         (["check", "nowhere/survey.toml"], "survey.toml: expected a survey file"),
         (["start", "nowhere"], "nowhere: expected a folder of frames"),
@@ -203,7 +246,7 @@ def test_stopping_by_hand_ends_with_130_and_says_what_remains(lodge: Path, monke
     monkeypatch.setattr(irsurvey.run, "run", stopped)
     result = irsurvey_("run", lodge)
     assert result.exit_code == 130
-    assert "stopped" in error_lines(result)[-1]
+    assert error_lines(result)[-1] == "stopped: every file written so far is whole, the next run starts anew"
 
 
 def test_readings_ends_with_1_where_a_row_failed(tmp_path: Path) -> None:
@@ -214,6 +257,17 @@ def test_readings_ends_with_1_where_a_row_failed(tmp_path: Path) -> None:
     assert error_lines(result) == ["in.csv, line 3: emissivity: expected a number above 0, up to 1, got 0"]
     (tmp_path / "in.csv").write_text("apparent_c\n30\n")
     assert irsurvey_("readings", tmp_path / "in.csv", "-o", tmp_path / "out.csv").exit_code == 0
+
+
+def test_readings_propagates_as_it_is_told(tmp_path: Path) -> None:
+    (tmp_path / "in.csv").write_text("apparent_c,emissivity,reflected_c,u_emissivity\n44,0.3,25,0.05\n")
+    written = {}
+    for chosen in ("first-order", "monte-carlo"):
+        done = irsurvey_("readings", tmp_path / "in.csv", "-o", tmp_path / "out.csv", "--uncertainty", chosen)
+        assert done.exit_code == 0
+        written[chosen] = (tmp_path / "out.csv").read_text(encoding="utf-8").splitlines()[1].split(",")
+    assert written["first-order"][4] == written["monte-carlo"][4]  # object_c
+    assert float(written["first-order"][5]) < float(written["monte-carlo"][5])  # u_object_k, low to first order
 
 
 def test_start_then_check_leads_to_what_is_missing(lodge: Path) -> None:

@@ -166,7 +166,8 @@ def reflected_by(surface: Surface, task: FrameTask, scene: Scene, t_apparent: ND
         )
         raise FrameError(fault)
     spread = 1.4826 * float(np.nanmedian(np.abs(t - centre)))
-    return Quantity("reflected", centre, float(np.hypot(scene["camera_offset"].u, spread)), "measured in frame", low=0)
+    u = float(np.hypot(scene["camera_offset"].u, spread))
+    return Quantity("reflected", centre, u, "measured in frame", low=0, u_source="measured in frame")
 
 
 def _meaningless(frame: Frame, task: FrameTask) -> FrameError:
@@ -178,10 +179,10 @@ def _meaningless(frame: Frame, task: FrameTask) -> FrameError:
 def _with_camera(task: FrameTask, pivot: float) -> Scene:
     """The scene with the camera's own errors: an offset common to the frame, a gain about its median."""
     accuracy = max(task.camera.accuracy, task.camera.accuracy_fraction * abs(pivot - ZERO_CELSIUS))
-    scene = task.scene.with_(
-        Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey", distribution="rectangular"),
-        Quantity("camera_gain", 0.0, task.camera.accuracy_fraction / 3**0.5, "survey", distribution="rectangular"),
-    )
+    # Accuracies are half-widths, rectangular.
+    offset = Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey", distribution="rectangular", u_source="survey")
+    gain = replace(offset, name="camera_gain", u=task.camera.accuracy_fraction / 3**0.5)
+    scene = task.scene.with_(offset, gain)
     atmosphere = scene["atmosphere"]
     if atmosphere.u < absorptance_u(task.camera.band):  # a band without a fit of its own is less well known
         scene = scene.with_(replace(atmosphere, u=absorptance_u(task.camera.band)))
@@ -221,7 +222,7 @@ def _with_offset(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32])
     weights = 1 / np.maximum(variances, 1e-6)
     offset = float(np.average(offsets, weights=weights))
     u = float(1 / np.sqrt(weights.sum()))
-    return scene.with_(Quantity("camera_offset", offset, u, "measured in frame"))
+    return scene.with_(Quantity("camera_offset", offset, u, "measured in frame", u_source="measured in frame"))
 
 
 def _offset(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: FrameTask) -> float:
@@ -252,9 +253,7 @@ def _offset(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: Fra
 def _emissivity_share(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: FrameTask) -> float:
     """What the emissivity of a known surface adds to the uncertainty of the offset [K]."""
     quantity = scene[surface.emissivity]
-    lower = scene.with_(
-        Quantity(quantity.name, max(quantity.value - quantity.u, 0.01), quantity.u, quantity.source)
-    )
+    lower = scene.with_(replace(quantity, value=max(quantity.value - quantity.u, 0.01)))
     return abs(_offset(seen, surface, lower, task) - _offset(seen, surface, scene, task)) if quantity.u else 0.0
 
 

@@ -117,5 +117,5 @@ def in_si(name: str, value: float) -> float:
     return (value - shift) / factor
 
 
-def _spread(quantity: Quantity) -> tuple[float, str]:
-    return quantity.u * shown(quantity.name)[1], quantity.source
+def _spread(quantity: Quantity) -> tuple[float, str, str]:
+    return quantity.u * shown(quantity.name)[1], quantity.source, quantity.u_source

@@ -25,7 +25,8 @@ class Quantity:
     `source` is one of "survey", "group", "frame", "surface", "default", "material table",
     "measured in frame", "log".  `low` and `high` bound the domain (an emissivity ends at 1), so that
     a step out of it is taken one-sided.  `distribution` is "normal" or "rectangular".  `follows` names a
-    quantity this one moves with, one to one, its own `u` on top: one value given for several.
+    quantity this one moves with, one to one, its own `u` on top: one value given for several.  `u_source` says
+    where `u` comes from, as `source` does for the value.
     """
 
     name: str
@@ -36,6 +37,7 @@ class Quantity:
     high: float = inf
     distribution: str = "normal"
     follows: str | None = None
+    u_source: str = "default"
 
 
 @dataclass(frozen=True, slots=True)

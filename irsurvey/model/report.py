@@ -16,11 +16,12 @@ from irsurvey.model.quantities import Estimate
 
 @dataclass(frozen=True, slots=True)
 class Input:
-    """One input of the measurement, in the unit its key ends in, and where it came from."""
+    """One input of the measurement, in the unit its key ends in, and where its value and its u came from."""
 
     value: float
     u: float
     from_: str
+    u_from: str = "default"
 
 
 @dataclass(frozen=True, slots=True)

@@ -10,17 +10,19 @@ from statistics import NormalDist
 from irsurvey.analysis.correction import Optics
 from irsurvey.analysis.inputs import inputs
 from irsurvey.assess.severity import LEAST_EMISSIVITY
+from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.footprint import largest_distance, pixel_area, pixel_side, spot_size
-from irsurvey.model import FrameTask, Input, Survey
+from irsurvey.model import FrameTask, Input, Scene, Survey
 from irsurvey.plan.gains import Gain, gains
 from irsurvey.plan.picture import CORNER, MIDDLE, PANEL, TARGET, Picture, imagined, ready, t_wall
 
-__all__ = ["ASSUMED", "U_VALUES", "Difference", "Gain", "Prospect", "Sizes", "WallU", "plan"]
+__all__ = ["ASSUMED", "OVER_AMBIENT", "U_VALUES", "Difference", "Gain", "Prospect", "Sizes", "WallU", "plan"]
 
 U_VALUES = (0.3, 0.5, 1.5)
 """Walls [W m⁻² K⁻¹] whose U is asked about: well insulated, insulated once, hardly insulated."""
 SURE = 0.95
 """Probability from which a difference can be claimed."""
+OVER_AMBIENT = "over ambient air"
 ASSUMED = (
     "what is sound is as warm as the air it faces; a wall of known U as warm as that leaves it",
     "a region is three measurement spots across, its reference area in the middle of the picture and half as high",
@@ -91,7 +93,8 @@ class Prospect:
     threshold: float
     contrast: float
     differences: tuple[Difference, ...]
-    walls: tuple[WallU, ...]  # seen from inside with both air temperatures stated
+    air_c: tuple[float, float] | None  # indoors and outdoors, where both are stated
+    walls: tuple[WallU, ...]  # of the target, seen from inside
     sizes: Sizes | None  # None: the camera's IFOV is not stated
     assumed: dict[str, Input]
 
@@ -121,7 +124,7 @@ def _prospect(case: _Case, contrast: float | None, size: float) -> Prospect:
     number = "delta_similar" if case.against == "twin" else "delta"
     numbers = {"in the middle": (MIDDLE, number), "near a corner": (CORNER, number)}
     if case.task.kind == "electrical":
-        numbers["over ambient air"] = (MIDDLE, "delta_ambient")
+        numbers[OVER_AMBIENT] = (MIDDLE, "delta_ambient")
     return Prospect(
         group=case.task.group,
         frames=case.frames,
@@ -135,6 +138,7 @@ def _prospect(case: _Case, contrast: float | None, size: float) -> Prospect:
         threshold=threshold,
         contrast=threshold if contrast is None else contrast,
         differences=tuple(_difference(case, place, number, picture) for place, number in numbers.items()),
+        air_c=_air_c(picture.scene),
         walls=tuple(_walls(case, picture)),
         sizes=_sizes(case.task, size),
         assumed={key: entry for key, entry in inputs(picture.scene).items() if entry.from_ == "default"},
@@ -192,6 +196,12 @@ def _walls(case: _Case, picture: Picture) -> Iterator[WallU]:
 def _relative(picture: Picture, number: tuple[str, str], value: float) -> float | None:
     u = _or_nan(picture.estimate(number).u)
     return 2 * u / value if isfinite(u) else None
+
+
+def _air_c(scene: Scene) -> tuple[float, float] | None:
+    if "indoor_air" not in scene or "outdoor_air" not in scene:
+        return None
+    return scene["indoor_air"].value - ZERO_CELSIUS, scene["outdoor_air"].value - ZERO_CELSIUS
 
 
 def _sizes(task: FrameTask, size: float) -> Sizes | None:

@@ -19,9 +19,9 @@ NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "u_temperature.tif"
 def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP) -> Path:
     """Write OUT/frames/<id>/temperature.tif, findings.tif, annotated.png, and the maps made on request.
 
-    temperature.tif: float32 °C, NaN where not measurable; findings.tif: uint16, 0 none, k = finding k;
-    on request heat_flux.tif: float32 W m⁻², and u_temperature.tif: float32 K, standard uncertainty of
-    temperature.tif pixel by pixel, NaN where that is or where it does not exist.  Each file is written whole or not at all; returns the frame's folder."""
+    temperature.tif: float32 °C, NaN where not measurable; findings.tif: uint16, 0 none, k = finding k.  On request
+    heat_flux.tif: float32 W m⁻², and u_temperature.tif: float32 K, the standard uncertainty of each pixel of
+    temperature.tif, NaN where none exists.  Each file is written whole or not at all; returns the frame's folder."""
     folder = out / "frames" / frame.id
     _write_tiff(folder / "temperature.tif", maps.temperature_c.astype(np.float32, copy=False))
     _write_tiff(folder / "findings.tif", maps.labels.astype(np.uint16, copy=False))

@@ -133,9 +133,7 @@ def _written(value: Any, indent: str = "") -> str:
     deeper = f"{indent} "
     if isinstance(value, dict):
         opening, closing = "{", "}"
-        parts = [
-            f"{json.dumps(key, ensure_ascii=False)}: {_written(entry, deeper)}" for key, entry in value.items()
-        ]
+        parts = [f"{json.dumps(key, ensure_ascii=False)}: {_written(entry, deeper)}" for key, entry in value.items()]
     else:
         opening, closing = "[", "]"
         parts = [_written(entry, deeper) for entry in value]

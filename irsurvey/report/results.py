@@ -1,4 +1,4 @@
-"""One finding or component as people see it: its numbers, where their uncertainty comes from, what its class hangs on."""
+"""One finding or component as people see it: its numbers, their uncertainty budgets, what its class hangs on."""
 
 from __future__ import annotations
 
@@ -15,6 +15,7 @@ _LEAST_SHARE = 0.005
 """Terms below half a percent of the variance are shown together; report.json has them one by one."""
 _BARS, _LEAST_BAR = 5, 0.02
 """The longest bars a chart shows, and the share from which a term gets one; the rest together get the last."""
+_NO_CHANCE = 1e-9
 _NEAR_EDGE = 0.975
 """A class less probable than that has an edge within about U of the value: Φ(2) = 0.977."""
 
@@ -33,8 +34,9 @@ class Line:
 
 @dataclass(frozen=True, slots=True)
 class Shown:
-    """The budget of one number: what it is, its reading, the unit of contributions, its lines, a chart of the largest."""
+    """The budget of one number: its key, name and reading, the unit of contributions, lines, a chart of the largest."""
 
+    key: str
     name: str
     reading: str
     unit: str
@@ -64,10 +66,19 @@ def interval(item: Item, key: str) -> str:
     return "" if _is_bound(item, key) else numbers.interval(getattr(item, key))
 
 
+def exceeds(item: Item) -> str:
+    """The probability that a finding's ΔT truly exceeds the least that counts, where it is known; else "".
+
+    What carries an uncertainty is never certain: a probability that rounds to 1 is still shown as above 99 %."""
+    if not isinstance(item, Finding) or item.exceeds_threshold is None:
+        return ""
+    return numbers.percent(min(max(item.exceeds_threshold, _NO_CHANCE), 1 - _NO_CHANCE))
+
+
 def budgets(item: Item) -> tuple[Shown, ...]:
-    """The budgets of a finding or component, that of the number it is judged by before the others."""
+    """The budgets of a finding or component: of the number it is judged by, of other differences, of the rest."""
     first = _judged(item)
-    keys = sorted(item.budgets, key=lambda key: key != first)
+    keys = sorted(item.budgets, key=lambda key: (key != first, not key.startswith("delta_")))
     return tuple(_shown(item, key, item.budgets[key]) for key in keys if item.budgets[key])
 
 
@@ -105,6 +116,7 @@ def _shown(item: Item, key: str, terms: tuple[BudgetTerm, ...]) -> Shown:
     listed = tuple(_line(term, key) for term in terms if abs(term.share) >= _LEAST_SHARE)
     charted = [term for term in terms if term.share >= _LEAST_BAR][:_BARS]
     return Shown(
+        key=key,
         name=texts.name(key),
         reading=reading(item, key),
         unit=numbers.difference_unit(key),
@@ -142,7 +154,6 @@ def _per(of_number: str, of_input: str) -> str:
 
 
 def _told(flip: Flip) -> str:
-    """A change of one input in words: "reflected apparent temperature by −1.3 K"."""
+    """A change of one input in words: "−1.3 K in reflected apparent temperature"."""
     change = numbers.with_symbol(numbers.signed(flip.change), numbers.difference_unit(flip.input))
-    name = texts.name(flip.input)
-    return f"{name[:1].lower()}{name[1:]} by {change}"
+    return f"{change} in {texts.inside(flip.input)}"

@@ -10,7 +10,6 @@ from typing import Any
 
 from irsurvey.report.numbers import UNITS
 
-
 _OF_AREAS = ("noise", "outline")
 """Inputs that each area of a frame has of its own."""
 
@@ -67,10 +66,16 @@ def name(key: str) -> str:
     Noise and outlines belong to an area: "noise_k:F01-1 spot" → "Pixel noise, measurement spot of F01-1"."""
     stem, _, owner = key.partition(":")
     stem = _without_unit(stem)
-    found = _texts()["names"].get(stem, _plain(stem))
+    found: str = _texts()["names"].get(stem, _plain(stem))
     if not owner:
         return found
     return f"{found}, {_area(stem, owner) if stem in _OF_AREAS else owner}"
+
+
+def inside(key: str) -> str:
+    """The same within a sentence: "emissivity, cover plate", but "ΔT" and "U-value"."""
+    found = name(key)
+    return f"{found[0].lower()}{found[1:]}" if found[1:2].islower() else found
 
 
 def cautions(kinds: Iterable[str]) -> tuple[str, ...]:
@@ -82,9 +87,9 @@ def cautions(kinds: Iterable[str]) -> tuple[str, ...]:
 def _area(kind: str, owner: str) -> str:
     """Whose noise or outline it is, in words: of the reference area, or of a finding or component; noise, of its spot
     or of its whole."""
-    areas = _texts()["areas"]
+    areas: dict[str, str] = _texts()["areas"]
     if owner == "reference":
-        return str(areas["reference"])
+        return areas["reference"]
     whose, _, part = owner.rpartition(" ")
     return areas[part].replace("{name}", whose) if kind == "noise" and part in ("spot", "whole") else owner
 

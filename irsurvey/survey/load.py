@@ -76,7 +76,7 @@ def _survey(content: Mapping[str, Any], folder: Path, known: Known) -> Survey:
     faults += [fault for fault in unresolved if not follows_from(fault, faults)]
     if not tasks and not faults:
         faults = [Fault("frame", "at least one frame", "nothing", "list [[frame]] or give a [[group]] a glob")]
-    faults += unknown_inputs(document, tasks, with_areas=not faults)  # an area at fault lacks its own
+    faults += unknown_inputs(document, tasks, with_areas=not faults)  # those of an area at fault may be missing
     if faults:
         raise SurveyError(*dict.fromkeys(faults))
     about = document.survey

@@ -37,26 +37,27 @@ class Uncertainties:
         A key in `_fraction` is relative to the value, or to `relative_to`.  `assumed` is the entry that counts for a
         value nobody stated.  What comes from a half-width is rectangular.
         """
-        key, u, distribution = self._spread(keys, assumed)
+        key, u, distribution, u_source = self._spread(keys, assumed)
         if key.endswith("_fraction"):
             u *= abs(value if relative_to is None else relative_to)
-        return Quantity(name, value, si(key, u), source, low, high, distribution, follows)
+        return Quantity(name, value, si(key, u), source, low, high, distribution, follows, u_source)
 
     def source(self, key: str) -> str:
         """Where `key` is stated."""
         return self.stated[key].source if key in self.stated else "default"
 
-    def _spread(self, keys: tuple[str, ...], assumed: str) -> tuple[str, float, str]:
-        """The key that counts, the standard uncertainty in its unit, and the distribution."""
+    def _spread(self, keys: tuple[str, ...], assumed: str) -> tuple[str, float, str, str]:
+        """The key that counts, the standard uncertainty in its unit, the distribution, and where it comes from."""
         for key in keys:
             if key in self.stated:
-                u = self.stated[key].value
-                is_half_width = isinstance(u, HalfWidth)
-                return (key, u.half_width / sqrt(3), "rectangular") if is_half_width else (key, u, "normal")
+                u, source = self.stated[key].value, self.stated[key].source
+                if isinstance(u, HalfWidth):
+                    return key, u.half_width / sqrt(3), "rectangular", source
+                return key, u, "normal", source
         section, keys = ("assumed", (assumed,)) if assumed else ("stated", keys)
         table = defaults(section)
         for key in keys:
             default = table.get(f"{key}_{self.surroundings}") or table.get(key)
             if default is not None:
-                return key, default.u, default.distribution
-        return "", 0.0, "normal"
+                return key, default.u, default.distribution, "default"
+        return "", 0.0, "normal", "default"

@@ -121,7 +121,7 @@ def test_conditions_are_si_with_stated_uncertainty_and_source(survey: Survey) ->
         assert quantity.value == pytest.approx(value, rel=ULP), name
         assert quantity.u == pytest.approx(u, rel=ULP), name
         assert quantity.source == "survey", name
-    assert scene["convection"] == Quantity("convection", 1.0, 0.2, "default", low=0.0)
+    assert scene["convection"] == Quantity("convection", 1.0, 0.2, "default", low=0.0, u_source="survey")
     assert scene["atmosphere"].u == 0.2
 
 
@@ -129,11 +129,11 @@ def test_the_camera_s_imperfections_are_in_every_scene_as_stated(survey: Survey)
     tilt = 0.3 / sqrt(3)
     for task in survey.tasks:
         assert [task.scene[name] for name in ("shading", "shading_x", "shading_y", "outline", "size_of_source")] == [
-            Quantity("shading", 0.0, 0.4, "survey"),
-            Quantity("shading_x", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular"),
-            Quantity("shading_y", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular"),
-            Quantity("outline", 0.0, 1.0, "survey"),
-            Quantity("size_of_source", 0.0, 0.2, "survey"),
+            Quantity("shading", 0.0, 0.4, "survey", u_source="survey"),
+            Quantity("shading_x", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular", u_source="survey"),
+            Quantity("shading_y", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular", u_source="survey"),
+            Quantity("outline", 0.0, 1.0, "survey", u_source="survey"),
+            Quantity("size_of_source", 0.0, 0.2, "survey", u_source="survey"),
         ]
 
 
@@ -239,7 +239,9 @@ def test_what_reading_and_scaling_need_is_carried(survey: Survey) -> None:
     assert panel.read == ReadOptions(1, "t", (480, 640), "uint16", "big", (-1.0,))
     assert wall.read == ReadOptions(fill_values=(0.0, 65535.0))
     assert wall.known_scale == KnownLength((10.0, 20.0), (110.0, 20.0))
-    assert wall.scene["known_length"] == Quantity("known_length", 0.9, pytest.approx(0.009, rel=ULP), "frame", low=0.0)
+    assert wall.scene["known_length"] == Quantity(
+        "known_length", 0.9, pytest.approx(0.009, rel=ULP), "frame", low=0.0, u_source="survey"
+    )
     assert panel.known_scale == KnownRectangle(((0.0, 0.0), (50.0, 0.0), (50.0, 40.0), (0.0, 40.0)))
     assert (panel.scene["known_width"].value, panel.scene["known_height"].value) == (0.6, 0.5)
     assert (wall.scene["ifov"].value, wall.scene["ifov"].u) == (1e-3, pytest.approx(1e-5, rel=ULP))

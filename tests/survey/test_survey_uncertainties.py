@@ -155,7 +155,7 @@ def test_every_frame_has_the_imperfections_of_its_camera(minimal: str, load_text
     for text in (minimal, electrical(minimal)):
         scene = scene_of(load_text, text)
         assert [scene[name] for name in ("shading", "shading_x", "shading_y", "outline", "size_of_source")] == [
-            Quantity("shading", 0.0, 0.3),
+            Quantity("shading", 0.0, 0.5),
             Quantity("shading_x", 0.0, 0.15),
             Quantity("shading_y", 0.0, 0.15),
             Quantity("outline", 0.0, 0.5),
@@ -178,9 +178,9 @@ def test_a_level_that_states_an_imperfection_is_its_source(
     survey = f'{minimal}group = "g"\n[uncertainty]\n{key} = 0.7\n[[group]]\nid = "g"\n'
     group = f"{survey}uncertainty = {{ {key} = {{ half_width = 0.9 }} }}\n"
     for name in names:
-        assert scene_of(load_text, survey)[name] == Quantity(name, 0.0, 0.7, "survey")
+        assert scene_of(load_text, survey)[name] == Quantity(name, 0.0, 0.7, "survey", u_source="survey")
         assert scene_of(load_text, group)[name] == Quantity(
-            name, 0.0, pytest.approx(0.9 / sqrt(3), rel=ULP), "group", distribution="rectangular"
+            name, 0.0, pytest.approx(0.9 / sqrt(3), rel=ULP), "group", distribution="rectangular", u_source="group"
         )
 
 
