@@ -126,12 +126,12 @@ def test_conditions_are_si_with_stated_uncertainty_and_source(survey: Survey) ->
 
 
 def test_the_camera_s_imperfections_are_in_every_scene_as_stated(survey: Survey) -> None:
-    tilt = 0.3 / sqrt(3)
+    tilt = pytest.approx(0.3 / sqrt(3), rel=ULP)
     for task in survey.tasks:
         assert [task.scene[name] for name in ("shading", "shading_x", "shading_y", "outline", "size_of_source")] == [
             Quantity("shading", 0.0, 0.4, "survey", u_source="survey"),
-            Quantity("shading_x", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular", u_source="survey"),
-            Quantity("shading_y", 0.0, pytest.approx(tilt, rel=ULP), "survey", distribution="rectangular", u_source="survey"),
+            Quantity("shading_x", 0.0, tilt, "survey", distribution="rectangular", u_source="survey"),
+            Quantity("shading_y", 0.0, tilt, "survey", distribution="rectangular", u_source="survey"),
             Quantity("outline", 0.0, 1.0, "survey", u_source="survey"),
             Quantity("size_of_source", 0.0, 0.2, "survey", u_source="survey"),
         ]
