@@ -67,8 +67,9 @@ def remarks(prospects: Sequence[Prospect]) -> Iterator[str]:
     shiny = [name for one in prospects if one.emissivity < LEAST_EMISSIVITY for name in one.seen or ("the target",)]
     if shiny:
         yield f"too reflective for a claim, tape or paint it first: {', '.join(dict.fromkeys(shiny))}"
-    if any(one.sizes is None for one in prospects):
-        yield "no sizes: ifov_mrad of the camera is not stated"
+    blind = dict.fromkeys(one.camera for one in prospects if one.sizes is None)
+    if blind:
+        yield f"no sizes, as ifov_mrad is not stated: {', '.join(blind)}"
     assumed: dict[str, dict[str, None]] = {}
     for one in prospects:
         for key, entry in one.assumed.items():

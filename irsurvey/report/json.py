@@ -45,6 +45,8 @@ _MEANINGS = {
     "contribution": "standard uncertainty of the number from this input alone",
     "share": "of the variance of the number; negative where a correlation takes from it",
     "change": "added to the input, in the unit its key ends in",
+    "from": "where the value comes from",
+    "u_from": "where its standard uncertainty comes from",
     "next_visit": "single measurements that would settle open decisions, the one that settles most first",
     "settles": "ids of findings and keys of components",
     "draws": "of a Monte Carlo propagation",

@@ -50,6 +50,11 @@ def origin(source: str) -> str:
     return _word("origin", source)
 
 
+def founded(source: str) -> str:
+    """The same in one word: "stated", "measured" or "assumed"."""
+    return origin(source).partition(" ")[0]
+
+
 def sense(kind: str) -> str:
     """Warmer or colder."""
     return _word("sense", kind)
