@@ -121,9 +121,10 @@ def _detectable(screened: Screened, task: FrameTask) -> Detectable:
     area = None
     if screened.pixel_area is not None:
         area = task.detection.min_area or task.detection.min_pixels * float(np.nanmedian(screened.pixel_area))
-    found_nothing_to_compare = screened.reference is None
+    compared = screened.reference is not None
     return Detectable(
-        min_delta_k=None if found_nothing_to_compare else screened.detectable_delta,
+        threshold_k=screened.min_delta if compared else None,
+        min_delta_k=screened.detectable_delta if compared else None,
         min_area_m2=area,
         min_pixels=task.detection.min_pixels,
         noise_k=screened.noise,

@@ -105,10 +105,11 @@ def _measured(
     stretch, scene = stretch_of(corrected, task, 0), corrected.scene
     around = scene[_ambient(scene)].value if screened.reference is None else screened.reference.at(*spot.centre)
     known = {"noise": screened.noise / stretch, "contrast": (t_spot - around) / stretch}
+    label = name if name.startswith(f"{task.id}-") else f"component {name}"  # no component may pass for the reference
     spot_shifts, spot_own = imperfections.of_spot(
-        name, spot, patch, sense, **known, scene=scene, shape=screened.t.shape
+        label, spot, patch, sense, **known, scene=scene, shape=screened.t.shape
     )
-    whole_shifts, whole_own = imperfections.of_whole(name, patch, screened.t, stretch, **known, scene=scene)
+    whole_shifts, whole_own = imperfections.of_whole(label, patch, screened.t, stretch, **known, scene=scene)
     extent = _extent(patch, task, screened.t.shape)
     region = Region(
         name,

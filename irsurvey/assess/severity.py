@@ -11,7 +11,6 @@ from irsurvey.assess.conformity import (
     ACT,
     CLEARED,
     FOUR_WAY,
-    GUARD,
     NOT_SETTLED,
     accepted,
     class_probabilities,
@@ -20,6 +19,7 @@ from irsurvey.assess.conformity import (
 from irsurvey.assess.criteria import Criterion, class_of
 from irsurvey.model.quantities import Estimate
 from irsurvey.model.report import Assessment
+from irsurvey.numbers import shown, unit, with_symbol
 
 SATURATED: Final = "saturated"
 SIZE_LIMITED: Final = "size-limited"
@@ -107,7 +107,7 @@ def assess(
         criterion=criterion.name,
         class_=kind.name,
         urgency=kind.urgency,
-        statement=f"{measured}: {kind.statement}.{_doubt(estimate, criterion, probabilities)}",
+        statement=f"{measured}: {kind.statement}.",
         probabilities=probabilities,
         source=source,
         verdict=_verdict(estimate, criterion, blocked),
@@ -159,16 +159,7 @@ def _probabilities(estimate: Estimate, criterion: Criterion) -> dict[str, float]
     return {name: float(p) for name, p in by_class.items() if not isnan(p)}
 
 
-def _doubt(estimate: Estimate, criterion: Criterion, probabilities: Mapping[str, float]) -> str:
-    """The class probabilities, where a class edge lies within ±U of the value."""
-    reach = GUARD * (estimate.u or 0.0)
-    if not probabilities or all(abs(edge - estimate.value) > reach for edge in criterion.edges):
-        return ""
-    told = ", ".join(f"{name} {p:.0%}" for name, p in probabilities.items() if p >= 0.005)
-    return f" An edge between classes lies within its uncertainty: {told}."
-
-
 def _shown(estimate: Estimate, criterion: Criterion) -> str:
-    unit = " K" if criterion.quantity.endswith("_k") else " °C" if criterion.quantity.endswith("_c") else ""
-    spread = "" if estimate.u is None else f" ± {GUARD * estimate.u:.2f}{unit} (k = 2)"
-    return f"{estimate.value:.2f}{unit}{spread}"
+    """The number as people read it everywhere, with its unit and k."""
+    known = "" if estimate.u is None else " (k = 2)"
+    return f"{with_symbol(shown(estimate), unit(criterion.quantity))}{known}"

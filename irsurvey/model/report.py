@@ -36,8 +36,12 @@ class Source:
 
 @dataclass(frozen=True, slots=True)
 class Detectable:
-    """The smallest deviation and size this frame could have shown."""
+    """The smallest deviation and size this frame could have shown.
 
+    A region is what deviates by `threshold_k` or more; it is reported where part of it passes `min_delta_k`.
+    """
+
+    threshold_k: float | None
     min_delta_k: float | None
     min_area_m2: float | None
     min_pixels: int
@@ -231,7 +235,7 @@ class FrameReport:
     source: Source
     inputs: dict[str, Input]
     humid_air: dict[str, float]  # dew_point_c, vapour_density_g_m3
-    uncertainty: str | None  # "first order" | "Monte Carlo"
+    uncertainty: str | None  # "first-order" | "monte-carlo"
     draws: int | None  # of Monte Carlo
     atmosphere_transmittance: float | None
     radiance_table_error_k: float | None  # worst error of the run-time table, −40…300 °C

@@ -10,9 +10,9 @@ from functools import cache
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from irsurvey import files
+from irsurvey import files, numbers
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
-from irsurvey.report import numbers, results, texts
+from irsurvey.report import results, texts
 from irsurvey.report.labels import component_mark
 from irsurvey.report.ranking import Ranked, governing, in_order
 

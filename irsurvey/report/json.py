@@ -11,7 +11,7 @@ from typing import Any
 
 from irsurvey import files
 from irsurvey.model import Estimate, FrameTask, Report
-from irsurvey.report.numbers import unit
+from irsurvey.numbers import unit
 
 SIGNIFICANT_DIGITS = 7
 """Enough for a temperature to 0.1 mK, and what a single-precision map carries."""

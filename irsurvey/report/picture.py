@@ -11,10 +11,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from irsurvey.model import FrameReport, Maps
+from irsurvey.numbers import decimals
 from irsurvey.report import outlines, scale
 from irsurvey.report.inks import COLORMAP, DARK, LEVELS, LIGHT, UNMEASURABLE, Pixels, palette
 from irsurvey.report.labels import Box, Label, Point, component_mark, place
-from irsurvey.report.numbers import decimals
 
 if TYPE_CHECKING:
     from PIL import Image

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from irsurvey import numbers
 from irsurvey.assess.criteria import criteria
 from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
-from irsurvey.report import numbers, texts
+from irsurvey.report import texts
 from irsurvey.report.ranking import governing, is_saturated
 
 Item = Finding | ComponentReport

@@ -6,8 +6,8 @@ from math import ceil, floor, log10
 
 import numpy as np
 
+from irsurvey.numbers import decimals
 from irsurvey.report.inks import DARK, LEVELS, LIGHT, Pixels, lettering
-from irsurvey.report.numbers import decimals
 
 LEAST_HEIGHT = 160
 """A scale lower than this many pixels has no room for its ticks."""

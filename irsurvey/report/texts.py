@@ -8,7 +8,7 @@ from functools import cache
 from importlib.resources import files
 from typing import Any
 
-from irsurvey.report.numbers import UNITS
+from irsurvey.numbers import UNITS
 
 _OF_AREAS = ("noise", "outline")
 """Inputs that each area of a frame has of its own."""

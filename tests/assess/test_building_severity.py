@@ -120,7 +120,7 @@ def test_a_factor_is_classed_as_converted_and_both_are_told() -> None:
     verdict = judged(-2.0, factor=0.80, criteria_=(FACTOR_DE,))
     (assessment,) = verdict.assessments
     assert assessment.class_ == "below the limit"
-    assert "0.68 ± 0.03" in assessment.statement
+    assert "0.675\u00a0±\u00a00.027" in assessment.statement  # U keeps two digits, the value its places
     assert "0.80 at the 0.13 m² K/W seen" in assessment.statement
     assert "0.25 m² K/W the limit assumes" in assessment.statement
 
@@ -168,10 +168,10 @@ def test_a_reflective_patch_gets_no_class() -> None:
 @pytest.mark.parametrize("flag", [SATURATED, SIZE_LIMITED])
 def test_a_bound_is_shown_as_a_bound(flag: str) -> None:
     verdict = judged(12.0, flags=(flag,), criteria_=(criteria()["electrical-contrast"],))
-    assert verdict.assessments[0].statement.startswith("≥ 12.00 K")
+    assert verdict.assessments[0].statement.startswith("≥ 12.00\u00a0±\u00a0")
     assert verdict.urgency == 2
     cold = judged(-2.0, factor=0.80, flags=(flag,), criteria_=(FACTOR_DE,))
-    assert cold.assessments[0].statement.startswith("≤ 0.68")
+    assert cold.assessments[0].statement.startswith("≤ 0.675")
 
 
 # House rule: the edges of a part above ambient air, from the reference area.

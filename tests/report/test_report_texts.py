@@ -1,0 +1,128 @@
+"""The words of the documents: every word the records can hold has its text."""
+
+from __future__ import annotations
+
+import re
+import tomllib
+from importlib.resources import files
+
+import pytest
+
+from irsurvey.analysis.inputs import shown
+from irsurvey.assess.conformity import FOUR_WAY, OUTCOMES
+from irsurvey.assess.fragile import FRAGILE
+from irsurvey.assess.severity import BLOCKERS
+from irsurvey.model import Scene
+from irsurvey.report import WRITERS, texts
+
+TEXTS = tomllib.loads((files("irsurvey.report") / "texts.toml").read_text(encoding="utf-8"))
+
+# the words of irsurvey.model: Quantity.source, FrameReport.claim, Finding.sense; urgencies of the specification
+ORIGINS = ["survey", "group", "frame", "surface", "default", "material table", "measured in frame", "log"]
+
+
+@pytest.mark.parametrize("source", ORIGINS)
+def test_every_origin_is_stated_measured_or_assumed(source: str) -> None:
+    assert texts.founded(source) in ("stated", "measured", "assumed")
+    assert texts.origin(source).startswith(texts.founded(source))
+
+
+def test_what_was_not_measured_is_called_assumed() -> None:
+    assumed = [source for source in ORIGINS if texts.origin(source).startswith("assumed")]
+    assert assumed == ["default", "material table"]
+
+
+def test_every_urgency_has_its_words_and_none_is_not_harmless() -> None:
+    words = [texts.urgency(level) for level in (0, 1, 2, 3, 4, None)]
+    assert len(set(words)) == 6
+    assert texts.urgency(None) == "cannot be classed"
+
+
+def test_outcomes_and_verdicts_have_words_of_their_own() -> None:
+    assert set(TEXTS["outcome"]) == set(OUTCOMES)
+    assert set(TEXTS["verdict"]) == set(FOUR_WAY)
+    assert len(set(map(texts.verdict, FOUR_WAY))) == len(FOUR_WAY)
+
+
+# whatever may stand in a budget: the names the docstring of a scene lists
+SCENE = sorted(set(re.findall(r"`([a-z_]+)(?::<[a-z]+>)?`", Scene.__doc__ or "")))
+
+
+def test_the_names_of_a_scene_are_found_in_its_description() -> None:
+    assert {"emissivity", "noise", "slope_y", "camera_offset", "load_exponent"} <= set(SCENE)
+
+
+@pytest.mark.parametrize("name", SCENE)
+def test_every_input_of_a_budget_has_plain_words(name: str) -> None:
+    words = texts.name(shown(name)[0])
+    assert words in TEXTS["names"].values()
+    assert "_" not in words
+
+
+def test_claims_and_senses_have_words() -> None:
+    assert set(TEXTS["claim"]) == {"quantitative", "qualitative", "not valid"}
+    assert set(TEXTS["sense"]) == {"hot", "cold"}
+
+
+@pytest.mark.parametrize(
+    ("key", "name"),
+    [
+        ("emissivity:cover plate", "Emissivity, cover plate"),
+        ("reflected_c:foil", "Reflected apparent temperature, foil"),
+        ("relative_humidity_percent", "Relative humidity"),
+        ("distance_m", "Distance"),
+        ("edge_sharpness_per_pixel", "Edge sharpness"),
+        ("something_new_k", "Something new"),
+        ("elongation", "Elongation"),
+        ("noise_k:F01-1 spot", "Pixel noise, measurement spot of F01-1"),
+        ("noise_k:phase 2 lug whole", "Pixel noise, all of phase 2 lug"),
+        ("noise_k:reference", "Pixel noise, reference area"),
+        ("outline_px:reference", "Place of an outline, reference area"),
+        ("outline_px:left spot", "Place of an outline, left spot"),
+        ("emissivity:reference", "Emissivity, reference"),
+        ("noise_k:{name} spot", "Pixel noise, measurement spot of {name}"),
+    ],
+)
+def test_a_key_is_called_by_its_name_without_unit(key: str, name: str) -> None:
+    assert texts.name(key) == name
+
+
+@pytest.mark.parametrize(
+    ("key", "words"), [("heat_flux_w_m2", "heat flux"), ("delta_k", "ΔT"), ("u_value_w_m2k", "U-value")]
+)
+def test_within_a_sentence_a_name_begins_small_unless_it_is_a_symbol(key: str, words: str) -> None:
+    assert texts.inside(key) == words
+
+
+def test_an_unknown_flag_is_shown_as_it_is() -> None:
+    assert texts.flag("nobody knows") == "nobody knows"
+    assert texts.flag("nobody knows: 3 pixels") == "nobody knows: 3 pixels"
+
+
+def test_a_flag_with_detail_is_explained_like_the_flag() -> None:
+    assert texts.flag("saturated: 40 pixels at or beyond the range") == texts.flag("saturated") != "saturated"
+
+
+def test_electrical_cautions_come_with_electrical_frames_only() -> None:
+    electrical = set(texts.cautions(["electrical"])) - set(texts.cautions([]))
+    assert any("arc-flash" in caution for caution in electrical)
+    assert electrical.isdisjoint(texts.cautions(["building"]))
+    assert len(texts.cautions(["building", "building"])) == len(texts.cautions(["building"]))
+
+
+def test_no_text_hides_a_flag_that_blocks_clearing() -> None:
+    # the specification: saturation, low emissivity, too small, low or unknown load, no solution clear nothing
+    for code in (
+        "saturated",
+        "size-limited",
+        "too reflective for a claim",
+        "low load",
+        "load unknown",
+        *BLOCKERS,
+        FRAGILE,
+    ):
+        assert code in TEXTS["flags"]
+
+
+def test_the_documents_are_json_csv_and_html() -> None:
+    assert list(WRITERS) == ["json", "csv", "html"]

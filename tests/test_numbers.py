@@ -1,0 +1,176 @@
+"""Numbers as people see them: the rounding rule against the worked examples of the GUM, units, missing numbers."""
+
+from __future__ import annotations
+
+from decimal import Decimal
+from math import inf, nan
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from irsurvey.model import Estimate, Input
+from irsurvey import numbers
+
+SPACED = "\u00a0±\u00a0"
+
+
+def test_the_mass_example_of_the_gum_is_shown_as_the_gum_shows_it() -> None:
+    # JCGM 100:2008, 7.2.2 and 7.2.4: m = 100.02147 g, u = 0.35 mg, k = 2.26: (100.02147 ± 0.00079) g
+    assert numbers.plus_minus(100.02147, 2.26 * 0.35e-3) == f"100.02147{SPACED}0.00079"
+
+
+def test_the_gauge_block_example_of_the_gum_is_shown_as_the_gum_shows_it() -> None:
+    # JCGM 100:2008, H.1.6: l = 50.000 838 mm, u = 32 nm, k = 2.92: U = 93 nm
+    assert numbers.plus_minus(50.000838, 2.92 * 32e-6) == f"50.000838{SPACED}0.000093"
+
+
+@pytest.mark.parametrize(
+    ("value", "expanded", "text"),
+    [
+        (10.05762, 0.027, "10.058 ± 0.027"),  # y = 10.057 62 Ω with 27 mΩ: 10.058 Ω
+        (1000.0, 28.05, "1000 ± 28"),  # 28.05 kHz is rounded down to 28 kHz
+    ],
+)
+def test_the_rounding_examples_of_the_gum_are_rounded_as_there(value: float, expanded: float, text: str) -> None:
+    # JCGM 100:2008, 7.2.6
+    assert numbers.plus_minus(value, expanded).replace("\u00a0", " ") == text
+
+
+def test_u_in_the_gum_becomes_a_result_with_k_2() -> None:
+    # JCGM 100:2008, 6.2.1: U = k u.  0.142 K doubled is 0.284 K, two digits 0.28 K.
+    assert numbers.shown(Estimate(-3.1275, 0.142)) == f"−3.13{SPACED}0.28"
+
+
+@pytest.mark.parametrize(
+    ("value", "expanded", "text"),
+    [
+        (3.14159, 0.0996, "3.14 ± 0.10"),  # rounding U up to the next power of ten keeps two digits
+        (1234.5, 123.0, "1230 ± 120"),  # places left of the point
+        (-0.004, 0.3, "0.00 ± 0.30"),  # no minus zero
+        (20.0, 2.0, "20.0 ± 2.0"),  # zeros that are known are shown
+        (0.25, 1.0, "0.2 ± 1.0"),  # half to even
+        (0.35, 1.0, "0.4 ± 1.0"),
+        (1e-30, 1e20, "0 ± 100000000000000000000"),
+        (1e30, 1e-3, "1000000000000000000000000000000.0000 ± 0.0010"),
+    ],
+)
+def test_u_keeps_two_digits_and_the_value_its_place(value: float, expanded: float, text: str) -> None:
+    assert numbers.plus_minus(value, expanded).replace("\u00a0", " ") == text
+
+
+@given(st.floats(-1e6, 1e6), st.floats(1e-6, 1e6))
+def test_rounding_moves_value_and_u_by_no_more_than_half_a_place(value: float, expanded: float) -> None:
+    shown_value, shown_u = (
+        Decimal(part.replace("−", "-")) for part in numbers.plus_minus(value, expanded).split(SPACED)
+    )
+    digits = str(shown_u).replace(".", "").strip("0")
+    place = Decimal(f"{expanded:.1e}").as_tuple().exponent
+    half = Decimal(1).scaleb(place) / 2  # the definition of rounding; no other tolerance
+    assert len(digits) <= 2
+    assert abs(shown_u - Decimal(repr(expanded))) <= half
+    assert abs(shown_value - Decimal(repr(value))) <= half
+
+
+@pytest.mark.parametrize("missing", [None, Estimate(nan, 0.1), Estimate(inf, 0.1)])
+def test_what_does_not_exist_is_a_dash(missing: Estimate | None) -> None:
+    assert numbers.shown(missing) == "–"
+
+
+@pytest.mark.parametrize("u", [None, nan, 0.0])
+def test_a_value_without_uncertainty_stands_alone(u: float | None) -> None:
+    assert numbers.shown(Estimate(150.0, u)) == "150"
+
+
+@pytest.mark.parametrize(
+    ("estimate", "text"),
+    [
+        (Estimate(15.43, 0.61, (14.312, 16.761)), "14.3 to 16.8 (95 %)"),  # to the place of U = 1.2
+        (Estimate(-3.1275, 0.142, (-3.4049, -2.8501)), "−3.40 to −2.85 (95 %)"),
+        (Estimate(1.0, None, (0.5, 1.5)), "0.50 to 1.50 (95 %)"),  # to the place of its half width
+        (Estimate(1.0, 0.1), ""),
+        (Estimate(1.0, 0.0, (1.0, 1.0)), ""),
+        (Estimate(1.0, 0.1, (nan, 1.5)), ""),
+        (None, ""),
+    ],
+)
+def test_an_interval_is_rounded_like_its_value(estimate: Estimate | None, text: str) -> None:
+    assert numbers.interval(estimate).replace("\u00a0", " ") == text
+
+
+@pytest.mark.parametrize(("value", "text"), [(0.0213, "+0.021"), (-1.27, "−1.3"), (0.0, "0"), (12.0, "+12")])
+def test_a_change_has_its_sign(value: float, text: str) -> None:
+    assert numbers.signed(value) == text
+
+
+@pytest.mark.parametrize(
+    ("key", "symbol"),
+    [
+        ("reflected_c", "K"),  # 1 °C more is 1 K more
+        ("temperature_c:plate", "K"),
+        ("relative_humidity_percent", "points"),
+        ("outline_px:F01-1", "px"),
+        ("slope_x_k_per_px", "K/px"),
+        ("heat_flux_w_m2", "W/m²"),
+        ("u_value_w_m2k", "W/(m²·K)"),
+        ("emissivity:wall_m", ""),  # what follows the colon is a name
+        ("size_of_source", ""),
+    ],
+)
+def test_a_change_has_the_unit_of_a_difference(key: str, symbol: str) -> None:
+    assert numbers.difference_unit(key) == symbol
+
+
+def test_a_count_is_grouped_in_threes() -> None:
+    assert [numbers.grouped(count) for count in (999, 20_000, 1_234_567)] == [
+        "999",
+        "20\u202f000",
+        "1\u202f234\u202f567",
+    ]
+
+
+@pytest.mark.parametrize(
+    ("value", "text"),
+    [(21.0, "21"), (0.9934, "0.9934"), (12345.6, "12350"), (-0.5, "−0.5"), (0.0, "0"), (None, "–"), (nan, "–")],
+)
+def test_a_plain_number_has_four_digits_and_no_trailing_zeros(value: float | None, text: str) -> None:
+    assert numbers.number(value) == text
+
+
+def test_an_input_without_uncertainty_is_shown_as_it_was_stated() -> None:
+    assert numbers.stated(Input(1013.25, 0.0, "default")) == "1013.25"
+    assert numbers.stated(Input(0.92, 0.02, "survey")) == f"0.920{SPACED}0.040"
+
+
+@pytest.mark.parametrize(("value", "text"), [(0.401, "0.41"), (0.40, "0.4"), (0.000999, "0.0010"), (nan, "–")])
+def test_a_detection_limit_is_never_rounded_down(value: float, text: str) -> None:
+    assert numbers.rounded_up(value) == text
+
+
+@pytest.mark.parametrize(
+    ("fraction", "text"),
+    [(0.0, "0 %"), (0.0049, "< 1 %"), (0.7475, "75 %"), (0.9951, "> 99 %"), (1.0, "100 %"), (nan, "–")],
+)
+def test_a_probability_that_is_not_certain_is_not_shown_as_certain(fraction: float, text: str) -> None:
+    assert numbers.percent(fraction).replace("\u00a0", " ") == text
+
+
+@pytest.mark.parametrize(
+    ("key", "symbol"),
+    [
+        ("delta_k", "K"),
+        ("extreme_c", "°C"),
+        ("excess_heat_w", "W"),
+        ("heat_flux_w_m2", "W/m²"),
+        ("area_m2", "m²"),
+        ("vapour_density_g_m3", "g/m³"),
+        ("wind_m_s", "m/s"),
+        ("distance_m", "m"),
+        ("relative_humidity_percent", "%"),
+        ("edge_sharpness_per_pixel", "1/px"),
+        ("temperature_factor", ""),
+        ("emissivity", ""),
+    ],
+)
+def test_the_unit_is_what_the_key_ends_in(key: str, symbol: str) -> None:
+    assert numbers.unit(key) == symbol
