@@ -127,7 +127,7 @@ def plan(survey: Path, contrast_k: float | None, size_mm: float) -> int:
     from irsurvey.plan.tables import remarks, tables
     from irsurvey.run import load_survey
 
-    prospects = plan_survey(load_survey(_survey_file(survey)), contrast=contrast_k, size=size_mm / 1e3)
+    prospects = plan_survey(load_survey(_survey_file(survey), ahead=True), contrast=contrast_k, size=size_mm / 1e3)
     for table in tables(prospects, size_mm / 1e3):
         click.echo(table.title)
         _print_table(table.columns, table.rows)

@@ -98,14 +98,17 @@ def check(survey_path: Path) -> Checked:
     return Checked(survey, survey.notices, unreadable)
 
 
-def load_survey(survey_path: Path) -> Survey:
-    """The survey file, held against the materials, criteria and convection correlations there are."""
+def load_survey(survey_path: Path, *, ahead: bool = False) -> Survey:
+    """The survey file, held against the materials, criteria and convection correlations there are.
+
+    `ahead`: before going out, when frames, tables and logs need not be there.
+    """
     known = Known(
         criteria=tuple(criteria()),
         convections=tuple(CONVECTION),
         materials={name: (material.emissivity, material.u) for name, material in materials().items()},
     )
-    return load(survey_path, known=known)
+    return load(survey_path, known=known, ahead=ahead)
 
 
 def analyse_file(job: Job) -> FrameReport:

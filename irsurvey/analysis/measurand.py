@@ -224,7 +224,7 @@ def _reference(plan: Plan, values: Columns, reference: NDArray[np.float64], opti
     results = {"reference": reference[:, 0], "reference_flux": flux}
     if plan.factor_between:
         indoor, outdoor = (values[name][:, 0] for name in plan.factor_between)
-        results["u_value"] = flux / np.abs(indoor - outdoor)
+        results["u_value"] = flux / np.where(indoor == outdoor, np.nan, np.abs(indoor - outdoor))
     return {("", name): number for name, number in results.items()}
 
 

@@ -28,13 +28,14 @@ class Entry:
     group: str | None
 
 
-def entries(document: Document, folder: Path, faults: list[Fault]) -> list[Entry]:
+def entries(document: Document, folder: Path, faults: list[Fault], *, ahead: bool) -> list[Entry]:
     """All frames: listed ones in their order, then those found by globs, group by group, sorted; adds to `faults`.
 
     A listed frame whose file a glob finds, or that names no file but the id of one that it finds, is not a second
-    one; it belongs to that group unless it names another.
+    one; it belongs to that group unless it names another.  `ahead`, before any frame was taken, a glob may find
+    nothing, and a group without frames, or a survey without groups, is given one to stand for those to come.
     """
-    found = list(_found(document.group, folder, faults))
+    found = list(_found(document.group, folder, [] if ahead else faults))
     groups_of: dict[str, str] = {}
     for group, file in found:
         groups_of.setdefault(posixpath.normpath(file), group)
@@ -57,6 +58,11 @@ def entries(document: Document, folder: Path, faults: list[Fault]) -> list[Entry
     taken = {posixpath.normpath(entry.file) for entry in listed}
     globbed = [Entry(PurePosixPath(name).stem, name, Frame(), group) for group, name in found if name not in taken]
     result = [*listed, *globbed]
+    if ahead:
+        occupied = {entry.group for entry in result}
+        to_come = [group.id for group in document.group if group.id not in occupied]
+        result += [Entry(group, f"{group} (to come)", Frame(), group) for group in to_come]
+        result = result or [Entry("frame", "to come", Frame(), None)]
     faults += _id_faults(result)
     return result
 

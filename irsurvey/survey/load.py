@@ -25,14 +25,15 @@ __all__ = ["Known", "load", "polygon_faults", "schema"]
 _FREE_TEXT = ("surveyor", "qualification", "client", "site", "construction", "limitations", "notes")
 
 
-def load(path: Path, *, known: Known) -> Survey:
+def load(path: Path, *, known: Known, ahead: bool = False) -> Survey:
     """The survey in a TOML file, resolved frame by frame, in SI units.
 
-    Raises `SurveyError` with every fault that can be found without reading a frame.
+    `ahead`: read before going out, when frames, tables and logs need not be there; one frame then stands for each
+    group without any.  Raises `SurveyError` with every fault that can be found without reading a frame.
     """
     try:
         content = _content(path)
-        return _survey(content, path.parent.resolve(), known)
+        return _survey(content, path.parent.resolve(), known, ahead=ahead)
     except RecursionError as error:
         fault = Fault(path.name, "tables a few levels deep", "tables nested without end", "see irsurvey schema survey")
         raise SurveyError(fault) from error
@@ -66,13 +67,15 @@ def _content(path: Path) -> dict[str, Any]:
         raise SurveyError(Fault(f"{path.name}, {where}", "TOML", message, "text stands in quotes")) from error
 
 
-def _survey(content: Mapping[str, Any], folder: Path, known: Known) -> Survey:
+def _survey(content: Mapping[str, Any], folder: Path, known: Known, *, ahead: bool) -> Survey:
     rows, faults = _table_rows(content, folder)
+    if ahead and not rows:
+        faults = []
     listed = content.get("frame", [])
     whole = {**content, "frame": [*listed, *rows]} if rows and isinstance(listed, list) else dict(content)
     document, wrong = validated(whole)
     faults += wrong
-    tasks, unresolved, noted = resolved(document, folder, known, _names(whole))
+    tasks, unresolved, noted = resolved(document, folder, known, _names(whole), ahead=ahead)
     faults += [fault for fault in unresolved if not follows_from(fault, faults)]
     if not tasks and not faults:
         faults = [Fault("frame", "at least one frame", "nothing", "list [[frame]] or give a [[group]] a glob")]

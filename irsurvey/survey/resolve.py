@@ -57,12 +57,18 @@ class Context:
 
 
 def resolved(
-    document: schema.Document, folder: Path, known: Known, named: Mapping[str, Collection[str]]
+    document: schema.Document,
+    folder: Path,
+    known: Known,
+    named: Mapping[str, Collection[str]],
+    *,
+    ahead: bool = False,
 ) -> tuple[list[FrameTask], list[Fault], list[tuple[str, str]]]:
     """All frames of a survey, in order; what is wrong; and what only resolving shows to be assumed, as notices.
 
     `named` are the names of groups, cameras, circuits, assets and frames as written, also of those whose table is
-    at fault: a reference to such a one is no second fault.
+    at fault: a reference to such a one is no second fault.  `ahead`: before any frame was taken, see `entries`; a log
+    that is not there yet is then a notice.
     """
     faults: list[Fault] = []
     try:
@@ -70,11 +76,17 @@ def resolved(
     except SurveyError as error:
         faults += error.faults
         zone = UTC
-    found = entries(document, folder, faults)
+    found = entries(document, folder, faults, ahead=ahead)
     groups = {group.id: group for group in document.group}
     levels = [Levels(document, groups.get(entry.group or ""), entry.frame, entry.id) for entry in found]
-    logs = _logs(document, folder, zone, faults)
-    context = Context(folder, known, zone, cameras(document), logs, faults, [])
+    missing: list[Fault] = []
+    logs = _logs(document, folder, zone, missing)
+    notices = [("", f"{fault.where}: {fault.got}, not used") for fault in missing] if ahead else []
+    if ahead:
+        logs = {written: series for written, series in logs.items() if series is not None}
+    else:
+        faults += missing
+    context = Context(folder, known, zone, cameras(document), logs, faults, notices)
     tasks = [_task(entry, of, context) for entry, of in zip(found, levels, strict=True)]
     every = {**named, "frame": {*named["frame"], *(entry.id for entry in found)}}
     without_reflector = {task.id for task in tasks} - {task.id for task in tasks if _draws_reflector(task)}
