@@ -76,13 +76,20 @@ def shown(estimate: Estimate | None) -> str:
 
 
 def interval(estimate: Estimate | None) -> str:
-    """The 95 % interval of a result where one was drawn, to the place of its U: "15.1 to 16.6 (95 %)"; else ""."""
+    """The 95 % interval of a result, to the place of its U, where ± U does not tell it: "15.1 to 16.6 (95 %)"; else "".
+
+    ± U tells it where both arms are alike and no longer than U: first order, a rectangular input dominating.
+    """
     if estimate is None or estimate.interval_95 is None or not all(isfinite(end) for end in estimate.interval_95):
         return ""
     low, high = estimate.interval_95
     if not high > low:
         return ""
-    place = _place(COVERAGE_FACTOR * estimate.u if estimate.u else (high - low) / 2, 2)
+    expanded = COVERAGE_FACTOR * estimate.u if estimate.u else (high - low) / 2
+    arms = estimate.value - low, high - estimate.value
+    if estimate.u and abs(arms[0] - arms[1]) <= 1e-3 * expanded and max(arms) <= expanded:
+        return ""
+    place = _place(expanded, 2)
     return f"{_rounded(low, place)} to {_rounded(high, place)} (95\u00a0%)"
 
 

@@ -174,3 +174,9 @@ def test_a_probability_that_is_not_certain_is_not_shown_as_certain(fraction: flo
 )
 def test_the_unit_is_what_the_key_ends_in(key: str, symbol: str) -> None:
     assert numbers.unit(key) == symbol
+
+
+def test_an_interval_that_plus_minus_covers_alike_on_both_sides_is_not_repeated() -> None:
+    # A rectangular ±1: u = 1/√3, 95 % within ±0.95, U = 1.15.
+    assert numbers.interval(Estimate(20.0, 3**-0.5, (19.05, 20.95))) == ""
+    assert numbers.interval(Estimate(20.0, 3**-0.5, (19.05, 20.85))) != ""

@@ -248,7 +248,7 @@ def _words(quantity: str, plan: TwinPlan) -> str:
     if plan.twin is None:
         return "above a twin (none can be compared)"
     if plan.is_coolest:
-        return "above itself, the coolest of its group"
+        return "by definition, being the coolest of its group"
     if NORMALISED in plan.flags:
         return f"above “{plan.name}”, its rise first brought to {plan.load_ratio:.2f} times its load"
     return f"above “{plan.name}”, the coolest comparable one of its group"

@@ -161,5 +161,5 @@ def _probabilities(estimate: Estimate, criterion: Criterion) -> dict[str, float]
 
 def _shown(estimate: Estimate, criterion: Criterion) -> str:
     """The number as people read it everywhere, with its unit and k."""
-    known = "" if estimate.u is None else " (k = 2)"
+    known = " (k = 2)" if estimate.u else ""
     return f"{with_symbol(shown(estimate), unit(criterion.quantity))}{known}"

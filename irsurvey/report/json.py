@@ -39,7 +39,7 @@ _MEANINGS = {
     "exceeds_threshold": "probability that its ΔT truly exceeds the smallest that counts",
     "flips": "changes of single inputs, within 2u, that would change the governing class, the likeliest first",
     "budgets": "number → the inputs its uncertainty comes from, the largest first",
-    "interval_95": "ends of the 95 % interval, where it was drawn",
+    "interval_95": "ends of the 95 % interval, where it was drawn or is not value ± 1.96 u",
     "input": "key of an input of the frame, or of what is one area's own (noise, outline)",
     "sensitivity": "change of the number per unit of the input",
     "contribution": "standard uncertainty of the number from this input alone",
