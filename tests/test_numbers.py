@@ -9,8 +9,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from irsurvey.model import Estimate, Input
 from irsurvey import numbers
+from irsurvey.model import Estimate, Input
 
 SPACED = "\u00a0±\u00a0"
 
@@ -86,7 +86,7 @@ def test_a_value_without_uncertainty_stands_alone(u: float | None) -> None:
     ("estimate", "text"),
     [
         (Estimate(15.43, 0.61, (14.312, 16.761)), "14.3 to 16.8 (95 %)"),  # to the place of U = 1.2
-        (Estimate(-3.1275, 0.142, (-3.4049, -2.8501)), "−3.40 to −2.85 (95 %)"),
+        (Estimate(-3.1275, 0.142, (-3.4049, -2.8301)), "−3.40 to −2.83 (95 %)"),
         (Estimate(1.0, None, (0.5, 1.5)), "0.50 to 1.50 (95 %)"),  # to the place of its half width
         (Estimate(1.0, 0.1), ""),
         (Estimate(1.0, 0.0, (1.0, 1.0)), ""),

@@ -15,10 +15,10 @@ import numpy as np
 import pytest
 
 from irsurvey.model import FrameTask, Maps, Report
+from irsurvey.numbers import shown
 from irsurvey.report import frame_files
 from irsurvey.report.html import not_cleared, page, write
 from irsurvey.report.json import plain
-from irsurvey.numbers import shown
 
 VOID = {"meta", "link", "img", "br", "hr", "input"}
 RTL = "\u202eשלום עולם مرحبا\u202c"
