@@ -180,3 +180,16 @@ def test_the_u_value_of_the_reference_is_its_flux_over_the_air_difference():
     reference = analysed(task)[0].reference
     assert reference.u_value_w_m2k.value == pytest.approx(reference.heat_flux_w_m2.value / 20.0, rel=1e-12)
     assert reference.u_value_w_m2k.u > 0
+
+
+def test_a_foil_read_in_the_same_frame_errs_with_the_camera_and_not_on_its_own():
+    # Wall and foil read too warm together: with ε 0.5 the wall's own error is then 1 K for 1 K of offset, where an
+    # independent reflected temperature would make it √(2² + 1²) K, and a stated one 2 K.
+    foil = Surface("foil", ((5.0, 90.0), (45.0, 90.0), (45.0, 115.0), (5.0, 115.0)), role="reflector")
+    scene = tasks.scene(emissivity=0.5, distance=0.0, reflected=(291.15, 0.0), outline=0.0, size_of_source=0.0)
+    camera = tasks.camera(accuracy=1.0, accuracy_fraction=0.0)
+    shared = tasks.task(scene=scene, camera=camera, surfaces=(foil,))
+    one, other = (analysed(task, wall(delta=-4.0))[0].reference for task in (shared, replace(shared, surfaces=())))
+    offset = 1.0 / 3**0.5
+    assert other.u_c == pytest.approx(2 * offset, rel=0.25)  # shading of the lens adds to it
+    assert one.u_c < 0.75 * other.u_c

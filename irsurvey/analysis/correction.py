@@ -89,8 +89,9 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
     if np.isnan(pivot):
         raise _meaningless(frame, task)
     scene = _with_camera(task, pivot)
-    scene = _with_reflected(task, scene, t_apparent)
-    scene = _with_offset(task, scene, t_apparent)
+    for _ in range(2):  # foil is read with the offset of a known surface, which itself mirrors what the foil shows
+        scene = _with_reflected(task, scene, t_apparent)
+        scene = _with_offset(task, scene, t_apparent)
 
     low, high = task.camera.range or (-np.inf, np.inf)
     has_data = _has_data(codes)
@@ -137,21 +138,23 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
 
 
 def reflected_by_reflector(frame: Frame, task: FrameTask) -> Quantity:
-    """Reflected apparent temperature [K] that the reflector in this frame measures, for it and the frames it serves.
+    """Reflected apparent temperature [K] that the reflector in this frame measures for the frames it serves.
 
-    Raises FrameError where it has no readable reflector."""
+    The camera's error is in it whole: from one frame to another it need not be the same.  Raises FrameError where
+    there is no readable reflector."""
     signal = task.camera.signal
     codes = encode(frame.stored, frame.missing, resolution=_resolution(frame, task.camera))
     t_apparent = look_up(codes, apparent_temperature(stored_values(codes), signal, task.camera.band))
     scene = _with_reflected(task, _with_camera(task, float(np.nanmedian(t_apparent))), t_apparent)
-    return scene["reflected"]
+    measured = scene["reflected"]
+    return replace(measured, u=float(np.hypot(measured.u, scene["camera_offset"].u)), follows=None)
 
 
 def reflected_by(surface: Surface, task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Quantity:
     """Reflected apparent temperature measured on a crumpled reflector (ASTM E1862, reflector method).
 
     The reflector is read as a black body through the air path.  Its spread stays in the uncertainty: what it
-    shows is not the same in all directions; and the camera's error is in it whole.
+    shows is not the same in all directions.  Read by the same camera in the same frame, it moves with its offset.
     """
     values = scene.values()
     seen = t_apparent[_inner(surface, t_apparent.shape)].astype(np.float64)
@@ -166,8 +169,8 @@ def reflected_by(surface: Surface, task: FrameTask, scene: Scene, t_apparent: ND
         )
         raise FrameError(fault)
     spread = 1.4826 * float(np.nanmedian(np.abs(t - centre)))
-    u = float(np.hypot(scene["camera_offset"].u, spread))
-    return Quantity("reflected", centre, u, "measured in frame", low=0, u_source="measured in frame")
+    measured = Quantity("reflected", centre, spread, "measured in frame", u_source="measured in frame")
+    return replace(measured, low=0, follows="camera_offset")
 
 
 def _meaningless(frame: Frame, task: FrameTask) -> FrameError:
