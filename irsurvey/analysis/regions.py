@@ -73,10 +73,11 @@ def screen(corrected: Corrected, task: FrameTask) -> Screened:
     min_pixels: int | NDArray[np.float32] = task.detection.min_pixels
     if task.detection.min_area and areas is not None:
         min_pixels = np.broadcast_to((areas / task.detection.min_area).astype(np.float32), shape)
+    least = segments.least_delta(min_delta, noise, amplified)
     regions = []
     for sense, sign in (("hot", 1), ("cold", -1)):
         toward = np.maximum(sign * allowance, 0)  # shading that darkens corners excuses cold ones, never hot ones
-        limits = segments.thresholds(min_delta, amplified, toward)
+        limits = segments.thresholds(least, amplified, toward)
         certain = corrected.saturated_hot & ~blocked if sense == "hot" and corrected.saturated_hot.any() else None
         for region in segments.segment(delta, candidates, sense, limits, min_pixels=min_pixels, certain=certain):
             regions.append(Anomalous(region, sense, certain is not None and bool(region.of(certain).any())))

@@ -13,6 +13,8 @@ from irsurvey.anomalies.patch import Patch, cropped
 
 _SPLIT_RADIUS = 4.0
 """Half-width [px] each part must have before a neck between two is looked for: ragged rims are not necks."""
+_AMPLIFIED = 1.05
+"""Noise over that of the frame's main surface from which it counts as amplified."""
 _SOLID = 0.9
 """Solidity from which a region is too nearly convex to have a neck of half its width."""
 _SEED_SIGMAS = 3.0
@@ -31,14 +33,23 @@ class Thresholds:
 
 
 def thresholds(
-    min_delta: float, noise: NDArray[np.float32] | float, allowance: NDArray[np.float32] | float = 0.0
+    least: NDArray[np.float32] | float,
+    noise: NDArray[np.float32] | float,
+    allowance: NDArray[np.float32] | float = 0.0,
 ) -> Thresholds:
-    """Extent and seed thresholds [K], broadcast from the smallest ΔT that counts, noise and shading allowance.
-
-    On surfaces whose noise is amplified (low emissivity) the extent never lies below 5 × noise.
-    """
-    extent = np.maximum(np.float32(min_delta), 5 * np.asarray(noise, np.float32)) + np.asarray(allowance, np.float32)
+    """Extent and seed thresholds [K], broadcast from the smallest ΔT that counts, noise and shading allowance."""
+    extent = np.asarray(least, np.float32) + np.asarray(allowance, np.float32)
     return Thresholds(extent, extent + np.float32(_SEED_SIGMAS / 3) * np.asarray(noise, np.float32))
+
+
+def least_delta(
+    min_delta: float, noise: float, amplified: NDArray[np.float32] | float
+) -> NDArray[np.float32] | float:
+    """Smallest ΔT that counts [K]: as stated, and five times the noise where a low emissivity amplifies it."""
+    if not isinstance(amplified, np.ndarray):
+        return min_delta
+    raised = np.maximum(np.float32(min_delta), 5 * amplified)
+    return np.where(amplified > _AMPLIFIED * noise, raised, np.float32(min_delta))
 
 
 def shading_allowance(delta: NDArray[np.float32], usable: NDArray[np.bool_]) -> tuple[float, NDArray[np.float32]]:
