@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from errno import ELOOP
 from pathlib import Path, PurePosixPath, PureWindowsPath
 
 from irsurvey.errors import Fault, SurveyError
@@ -63,6 +64,13 @@ def _climbs_out(path: PurePosixPath) -> bool:
 
 def _resolves_inside(folder: Path, path: PurePosixPath) -> bool:
     try:
+        (folder / path).stat()
+    except OSError as error:
+        if error.errno == ELOOP:  # which `resolve` reports in some versions of Python and not in others
+            return False
+    except ValueError:  # an impossible name
+        return False
+    try:
         return (folder / path).resolve().is_relative_to(folder)
-    except (OSError, RuntimeError, ValueError):  # a loop of links, an impossible name
+    except (OSError, RuntimeError, ValueError):
         return False
