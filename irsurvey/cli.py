@@ -6,6 +6,7 @@ Before a command runs only click and the standard library are imported, so that 
 from __future__ import annotations
 
 import os
+import re
 import sys
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
@@ -25,7 +26,8 @@ if TYPE_CHECKING:
 
 ALL_DONE, SOME_FAILED, NOTHING_RUN, INTERRUPTED = 0, 1, 2, 130
 
-ABOVE_ZERO = click.FloatRange(min=0, min_open=True)
+ABOVE_ZERO = click.FloatRange(min=0, min_open=True, max=1e6)
+_UNPRINTABLE = re.compile(r"[\x00-\x08\x0b-\x1f\x7f-\x9f]")
 UNCERTAINTY = click.option(
     "--uncertainty",
     type=click.Choice(["first-order", "monte-carlo"]),
@@ -33,6 +35,12 @@ UNCERTAINTY = click.option(
     show_default=True,
     help="How uncertainty is propagated; monte-carlo where first order is said not to do.",
 )
+
+
+def _finite(_context: click.Context, parameter: click.Parameter, value: float | None) -> float | None:
+    if value is not None and not isfinite(value):
+        raise click.BadParameter(f"{value} is not a finite number", param=parameter)
+    return value
 
 
 class Commands(click.Group):
@@ -89,8 +97,9 @@ def start(folder: Path, known: tuple[str, ...]) -> int:
 
     started = write_start(folder, known)
     for notice in started.notices:
-        click.echo(notice)
-    click.echo(f"{started.path}: {started.frames} frames; fill in the lines marked so, then irsurvey check {folder}")
+        _tell(notice)
+    frames = "1 frame" if started.frames == 1 else f"{started.frames} frames"
+    _tell(f"{started.path}: {frames}; fill in the lines marked so, then irsurvey check {folder}")
     return ALL_DONE
 
 
@@ -105,17 +114,21 @@ def check(survey: Path) -> int:
 
     checked = check_survey(_survey_file(survey))
     for notice in checked.notices:
-        click.echo(notice)
+        _tell(notice)
     _complain(SOME_FAILED, *(f"frame {frame} cannot be read: {reason}" for frame, reason in checked.unreadable))
     readable = len(checked.survey.tasks) - len(checked.unreadable)
-    click.echo(f"{survey}: no faults; {readable} of {len(checked.survey.tasks)} frames can be read")
+    _tell(f"{survey}: no faults; {readable} of {len(checked.survey.tasks)} frames can be read")
     return SOME_FAILED if checked.unreadable else ALL_DONE
 
 
 @main.command()
 @click.argument("survey", type=Path)
-@click.option("--contrast-k", type=ABOVE_ZERO, help="Difference to be read, K; default: the smallest that counts.")
-@click.option("--size-mm", type=ABOVE_ZERO, default=20, show_default=True, help="Side of a part to be read, mm.")
+@click.option(
+    "--contrast-k", type=ABOVE_ZERO, callback=_finite, help="Difference to be read, K; default: the least that counts."
+)
+@click.option(
+    "--size-mm", type=ABOVE_ZERO, callback=_finite, default=20, show_default=True, help="Side of a part to be read, mm."
+)
 def plan(survey: Path, contrast_k: float | None, size_mm: float) -> int:
     """Tell before going out what SURVEY (the survey file or its folder) will be able to show.
 
@@ -132,7 +145,7 @@ def plan(survey: Path, contrast_k: float | None, size_mm: float) -> int:
         click.echo(table.title)
         _print_table(table.columns, table.rows)
     for remark in remarks(prospects):
-        click.echo(remark)
+        _tell(remark)
     return ALL_DONE
 
 
@@ -155,7 +168,7 @@ def run(survey: Path, out: Path | None, jobs: int, documents: str, maps: str, un
     failed = [frame for frame in report.frames if frame.status == "failed"]
     _complain(SOME_FAILED, *(f"frame {frame.id} failed: {frame.reason}" for frame in failed))
     _print_table(("frame", "label", "findings", "components", "class", "urgency", "claim"), _summary(report))
-    click.echo(f"report: {out / ('report.html' if 'html' in chosen['documents'] else 'report.json')}")
+    _tell(f"report: {out / ('report.html' if 'html' in chosen['documents'] else 'report.json')}")
     return SOME_FAILED if failed else ALL_DONE
 
 
@@ -175,7 +188,7 @@ def readings(source: Path, out: Path, uncertainty: str) -> int:
 
     done = correct_table(source, out, uncertainty=uncertainty)
     _complain(SOME_FAILED, *done.notices, *done.failed)
-    click.echo(f"{out}: {done.rows - len(done.failed)} of {done.rows} readings corrected")
+    _tell(f"{out}: {done.rows - len(done.failed)} of {done.rows} readings corrected")
     return SOME_FAILED if done.failed else ALL_DONE
 
 
@@ -220,8 +233,17 @@ def schema(which: str) -> int:
 
 def _complain(code: int, *lines: str) -> int:
     for line in lines:
-        click.echo(" ".join(line.split()), err=True)
+        _tell(" ".join(line.split()), err=True)
     return code
+
+
+def _tell(line: str, *, err: bool = False) -> None:
+    """Print a line; names from a survey may hold characters that a terminal obeys."""
+    click.echo(_printable(line), err=err)
+
+
+def _printable(text: str) -> str:
+    return _UNPRINTABLE.sub("\ufffd", text)
 
 
 def _survey_file(path: Path) -> Path:
@@ -256,11 +278,15 @@ def _summary(report: Report) -> Iterator[tuple[str, ...]]:
         if frame.status == "failed":
             yield frame.id, frame.label, "", "", "not inspected: failed", "", ""
             continue
-        name, urgency = "", ""
+        compared = frame.detectable is not None and frame.detectable.min_delta_k is not None
+        name, urgency = "" if compared else "nothing compared", ""
         if frame.id in first:
             governs = governing(first[frame.id].assessments)
             name = governs.class_ if governs and governs.class_ else "no class: look again"
             urgency = "" if first[frame.id].urgency is None else str(first[frame.id].urgency)
+            items: tuple[Finding | ComponentReport, ...] = (*frame.findings, *frame.components)
+            if urgency == "0" and any(item.outcome == "not cleared" for item in items):
+                name += ", not cleared"
         yield frame.id, frame.label, str(len(frame.findings)), str(len(frame.components)), name, urgency, frame.claim
 
 
@@ -281,5 +307,5 @@ def _print_table(columns: Sequence[str], rows: Iterable[Sequence[str]]) -> None:
     console = Console(width=width, markup=False, highlight=False, emoji=False)
     table = Table(*columns, box=SIMPLE)
     for row in rows:
-        table.add_row(*row)
+        table.add_row(*map(_printable, row))
     console.print(table)

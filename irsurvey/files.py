@@ -18,6 +18,10 @@ def sha256(path: Path) -> str:
         return hashlib.file_digest(stream, "sha256").hexdigest()
 
 
+PART = ".part-"
+"""What the name of a file begins with while it is written."""
+
+
 @contextmanager
 def whole(path: Path) -> Iterator[Path]:
     """Give a temporary path beside `path`; move it there only when the block ends without an error.
@@ -27,7 +31,7 @@ def whole(path: Path) -> Iterator[Path]:
     """
     try:
         path.parent.mkdir(parents=True, exist_ok=True)
-        handle, name = tempfile.mkstemp(prefix=".part-", suffix=path.suffix, dir=path.parent)
+        handle, name = tempfile.mkstemp(prefix=PART, suffix=path.suffix, dir=path.parent)
         os.close(handle)
         part = Path(name)
         try:
@@ -37,7 +41,7 @@ def whole(path: Path) -> Iterator[Path]:
         finally:
             part.unlink(missing_ok=True)
     except OSError as error:
-        fault = Fault(path.name, "a place to write it", error.strerror or str(error), "free space or choose another -o")
+        fault = Fault(str(path), "a place to write it", error.strerror or str(error), "free space or choose another -o")
         raise OutputError(fault) from error
 
 

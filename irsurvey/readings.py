@@ -63,7 +63,7 @@ COLUMNS = {
     "apparent_c": Column("apparent", *_SEEN),
     "emissivity": Column("emissivity", "a number above 0, up to 1", _ABOVE_ZERO, 1.0, 1.0),
     "reflected_c": Column("reflected", *_SEEN),
-    "distance_m": Column("distance", "0 m or more", 0.0, inf, 0.0),
+    "distance_m": Column("distance", "a distance of 0…100000 m", 0.0, 1e5, 0.0),
     "air_c": Column("air", *_AIR),
     "relative_humidity_percent": Column("relative_humidity", "0…100 %", 0.0, 100.0, 50.0, 0.01),
     "pressure_hpa": Column("pressure", "a pressure above 0 hPa", _ABOVE_ZERO, inf, 1013.25, 100.0),
@@ -160,9 +160,9 @@ def correct_table(source: Path, out: Path, *, uncertainty: str = FIRST_ORDER) ->
     table as a whole cannot be used, OutputError rather than overwrite anything but an earlier result.
     """
     table = _read(source)
-    if out.exists() and (out.samefile(source) or not _is_result(out)):
-        fault = Fault(str(out), "a new file, or an earlier result of readings", "another file", "choose another -o")
-        raise OutputError(fault)
+    if out.exists() and (not out.is_file() or out.samefile(source) or not _is_result(out)):
+        got = "another file" if out.is_file() else "a folder or a device"
+        raise OutputError(Fault(str(out), "a new file, or an earlier result of readings", got, "choose another -o"))
     text = io.StringIO()
     writer = csv.writer(text, delimiter=table.separator, lineterminator="\n")
     writer.writerow([*table.header, *ADDED])
@@ -354,8 +354,11 @@ def _read(source: Path) -> _Table:
         rows = [(reader.line_num, cells) for cells in reader if any(cell.strip() for cell in cells)]
     except OSError as error:
         raise SurveyError(Fault(str(source), "a CSV file", error.strerror or str(error))) from error
-    except (csv.Error, UnicodeDecodeError) as error:
-        raise SurveyError(Fault(str(source), "a CSV file in UTF-8", str(error), "save it as CSV UTF-8")) from error
+    except UnicodeDecodeError as error:
+        fault = Fault(str(source), "a CSV file in UTF-8", "another encoding", "save it as CSV UTF-8")
+        raise SurveyError(fault) from error
+    except csv.Error as error:
+        raise SurveyError(Fault(str(source), "a CSV file", str(error), "check its quotes")) from error
     header = rows.pop(0)[1] if rows else []
     names = [name.strip() for name in header]
     faults = []
@@ -369,8 +372,9 @@ def _read(source: Path) -> _Table:
             faults.append(Fault(f"{source}: {name}", "no column of this name", "one", "rename it: the result adds it"))
     if faults:
         raise SurveyError(*faults)
-    at = names.index("apparent_c")
-    decimal_comma = separator != "," and any("," in cells[at] for _, cells in rows if len(cells) > at)
+    ours = [_is_ours(name) for name in names]
+    numbers = (cell for _, cells in rows for cell, is_ours in zip(cells, ours, strict=False) if is_ours)
+    decimal_comma = separator != "," and any("," in cell for cell in numbers)
     return _Table(header, separator, decimal_comma, rows)
 
 

@@ -13,7 +13,7 @@ from irsurvey.analysis.decisions import next_measurements
 from irsurvey.assess.criteria import criteria
 from irsurvey.batch import execute
 from irsurvey.errors import Fault, FrameError, OutputError, SurveyError, UsageError
-from irsurvey.files import write_text
+from irsurvey.files import PART, write_text
 from irsurvey.heat.convection import CONVECTION
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
 from irsurvey.radiometry.emissivity import materials
@@ -166,6 +166,8 @@ def _claim_folder(out: Path, ids: set[str]) -> None:
         fault = Fault(out.name, "an empty folder, or one this program wrote", "a folder with other files in it")
         raise OutputError(replace(fault, remedy="choose another -o"))
     write_text(out / OUTPUT_MARKER, _MARKER_TEXT)
+    for part in (*out.glob(f"{PART}*"), *out.glob(f"frames/*/{PART}*")):
+        part.unlink(missing_ok=True)  # of a run that was killed while it wrote
     for folder in (out / "frames").glob("*"):
         if folder.name not in ids:
             for name in frame_files.NAMES:

@@ -17,11 +17,12 @@ import tasks
 from scipy.interpolate import RegularGridInterpolator
 
 from irsurvey import pipeline
-from irsurvey.model import Quantity
+from irsurvey.model import Quantity, Surface
 
 SURVEYS = 2000
 SHAPE = (48, 64)
 PATCH = (slice(14, 34), slice(36, 56))
+PANEL = (slice(37, 48), slice(52, 64))
 WALL, COLD = 290.9, 287.9
 H, C, K, SIGMA = 6.62607015e-34, 299_792_458.0, 1.380649e-23, 5.670374419e-8
 
@@ -89,7 +90,10 @@ def reality(task, air, generator):
     t = np.full(SHAPE, WALL)
     t[PATCH] = COLD
     emissivity = true["emissivity"]
-    seen = tau * (emissivity * radiance(t) + (1 - emissivity) * radiance(true["reflected"]))
+    everywhere = np.full(SHAPE, emissivity)
+    if task.surfaces:
+        t[PANEL], everywhere[PANEL] = true["temperature:panel"], true["emissivity:panel"]
+    seen = tau * (everywhere * radiance(t) + (1 - everywhere) * radiance(true["reflected"]))
     reading = apparent(seen + (1 - tau) * radiance(true["air"]))
     y, x = np.mgrid[-1 : 1 : SHAPE[0] * 1j, -1 : 1 : SHAPE[1] * 1j]
     ratio = SHAPE[0] / SHAPE[1]
@@ -142,6 +146,19 @@ def test_the_95_percent_intervals_hold_the_truth_95_percent_of_the_time():
 def test_with_a_low_emissivity_the_intervals_still_hold():
     for name, share in coverage(stated(0.62, 0.03), seed=7).items():
         assert 0.92 <= share <= 0.98, (name, share)
+
+
+@pytest.mark.slow
+def test_with_a_surface_of_known_temperature_in_a_corner_the_intervals_hold():
+    # A good contact thermometer on a panel in the corner, where lens shading is most of what is left unknown.
+    task = stated(0.93, 0.015)
+    known = {"temperature:panel": (292.65, 0.1), "emissivity:panel": (0.95, 0.02)}
+    added = tasks.scene(**known)
+    corners = ((52.0, 37.0), (63.0, 37.0), (63.0, 47.0), (52.0, 47.0))
+    panel = Surface("panel", corners, "known-temperature", "emissivity:panel", temperature="temperature:panel")
+    task = replace(task, surfaces=(panel,), scene=task.scene.with_(*(added[name] for name in known)))
+    for name, share in coverage(task, seed=11).items():
+        assert 0.93 <= share <= 0.97, (name, share)
 
 
 def test_the_calibration_test_would_notice_an_uncertainty_that_is_too_small():

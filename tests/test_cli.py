@@ -180,6 +180,13 @@ def test_a_plan_answers_for_the_contrast_and_size_it_is_asked_for(lodge: Path) -
     assert any(line.rstrip().endswith("10.00 m") for line in result.stdout.split(sizes)[1].splitlines())
 
 
+def test_a_plan_for_a_contrast_below_absolute_zero_is_refused_in_one_line(lodge: Path) -> None:
+    result = irsurvey_("plan", lodge, "--contrast-k", "400")  # a wall at 20 °C, 400 K colder
+    assert result.exit_code == 2
+    (line,) = error_lines(result)
+    assert line.startswith("--contrast-k: expected a difference that what is seen can have, got 400")
+
+
 def test_a_plan_of_a_faulty_survey_tells_its_faults(lodge: Path) -> None:
     (lodge / "survey.toml").write_text(SURVEY.replace("reflected_c = 20.0\n", ""), encoding="utf-8")
     result = irsurvey_("plan", lodge)
@@ -201,6 +208,8 @@ def test_a_plan_of_a_faulty_survey_tells_its_faults(lodge: Path) -> None:
         (["plan", "nowhere/survey.toml"], "survey.toml: expected a survey file"),
         (["plan", ".", "--contrast-k", "0"], "'--contrast-k'"),
         (["plan", ".", "--size-mm", "-3"], "'--size-mm'"),
+        (["plan", ".", "--size-mm", "nan"], "'--size-mm': nan is not a finite number"),
+        (["plan", ".", "--contrast-k", "inf"], "'--contrast-k'"),
         (["run", "nowhere/survey.toml"], "survey.toml: expected a survey file"),
         (["check", "nowhere/survey.toml"], "survey.toml: expected a survey file"),
         (["start", "nowhere"], "nowhere: expected a folder of frames"),
@@ -311,6 +320,25 @@ def test_text_from_a_survey_is_printed_as_it_is(lodge: Path) -> None:
     text = SURVEY.replace('file = "sound.npy"', 'file = "sound.npy"\nlabel = "[red]north[/red] :skull:"')
     (lodge / "survey.toml").write_text(text, encoding="utf-8")
     assert "[red]north[/red] :skull:" in irsurvey_("run", lodge).stdout
+
+
+def test_what_a_terminal_would_obey_is_not_printed(lodge: Path) -> None:
+    text = SURVEY.replace(
+        'file = "sound.npy"', 'file = "sound.npy"\nlabel = "a\\u001b[31mb\\u0007"\ngroup = "g\\u001b]0;x"'
+    )
+    (lodge / "survey.toml").write_text(text + '[[group]]\nid = "g\\u001b]0;x"\n', encoding="utf-8")
+    for command in ("check", "run"):
+        result = irsurvey_(command, lodge)
+        assert result.exit_code == 0
+        assert not set("\x1b\x07") & set(result.output)
+    assert "a\ufffd[31mb\ufffd" in result.stdout
+
+
+def test_a_frame_in_which_nothing_can_be_compared_says_so_in_the_summary(lodge: Path) -> None:
+    text = SURVEY.replace('file = "sound.npy"', 'file = "sound.npy"\ninspect = { polygon = [[1, 1], [3, 1], [3, 3]] }')
+    (lodge / "survey.toml").write_text(text, encoding="utf-8")
+    (row,) = (line for line in irsurvey_("run", lodge).stdout.splitlines() if line.split()[:1] == ["sound"])
+    assert "nothing compared" in row
 
 
 def test_letters_a_terminal_lacks_do_not_stop_a_command() -> None:

@@ -9,7 +9,7 @@ import pytest
 import tasks
 
 from irsurvey import pipeline
-from irsurvey.model import Surface
+from irsurvey.model import Frame, Signal, Surface
 
 SHAPE = (120, 160)
 
@@ -143,16 +143,118 @@ def test_a_low_emissivity_is_told_to_be_strongly_curved_and_the_draws_show_it():
 
 
 def test_the_uncertainty_map_is_the_budget_of_each_pixel():
-    task = tasks.task()
+    task = with_u(tasks.task(), shading=0.0, shading_x=0.0, shading_y=0.0, size_of_source=0.0, outline=0.0)
     report, maps = analysed(task, maps=("uncertainty",))
-    wide = with_u(task, shading=0.0, shading_x=0.0, shading_y=0.0, size_of_source=0.0, outline=0.0)
-    finding = first(wide)
-    centre = maps.u_temperature[60, 110]
-    # The map holds a pixel's own noise (0.06 K) and the shading of the frame's corner on top of what is shared.
-    assert centre >= finding.extreme_c.u
-    assert centre == pytest.approx(finding.extreme_c.u, abs=0.1)
+    finding = report.findings[0]
+    # A spot of nine pixels has a third of a pixel's noise, and may owe something to having been picked.
+    own = {name: contribution(finding, "extreme_c", name) for name in ("noise_k", "selection")}
+    shared = finding.extreme_c.u**2 - own["noise_k"] ** 2 - own["selection"] ** 2
+    expected = np.sqrt(shared + 9 * own["noise_k"] ** 2)
+    x, y = (round(place) for place in finding.shape.extreme_at)
+    assert maps.u_temperature[y, x] == pytest.approx(expected, rel=2e-3)  # gain term of a pixel beside a spot's mean
     assert maps.u_temperature.shape == maps.temperature_c.shape
     assert report.temperature.unmeasurable_pixels == int(np.isnan(maps.u_temperature).sum())
+
+
+def test_the_uncertainty_map_knows_lens_shading_where_a_pixel_lies():
+    # Black wall at no distance, an exact camera: in the middle nothing but noise is left, in a corner all of the 0.4 K
+    # of shading as well, at the ends of the axes its fourth power of their distance from the centre.
+    scene = tasks.scene(emissivity=(1.0, 0.0), distance=0.0, shading=(0.0, 0.4), shading_x=0.0, shading_y=0.0)
+    task = tasks.task(camera=tasks.camera(accuracy=0.0, accuracy_fraction=0.0, noise=None), scene=scene)
+    _, maps = analysed(task, wall(delta=0), maps=("uncertainty",))
+    u, noise = maps.u_temperature, maps.u_temperature[59:61, 79:81].mean()
+    assert noise == pytest.approx(0.05, abs=0.003)  # the frame's own, estimated from it
+    # Tolerance: half a pixel, by which pixels miss the axes, is below 1e-4 of the fourth power.
+    for place, share in (((0, 0), 1.0), ((60, 159), 1 / (1 + 0.75**2) ** 2), ((0, 80), (0.75**2 / (1 + 0.75**2)) ** 2)):
+        assert u[place] == pytest.approx(np.hypot(0.4 * share, noise), abs=2e-4)
+
+
+def test_the_uncertainty_map_leaves_out_what_lies_beyond_a_calibration_and_falls_with_falling_counts():
+    rising = ((1000.0, 273.15), (2000.0, 293.15), (3000.0, 313.15))
+    falling = ((3000.0, 273.15), (2000.0, 293.15), (1000.0, 313.15))
+    us = []
+    for points, sign in ((rising, 1), (falling, -1)):
+        counts = 2000 + sign * np.random.default_rng(0).normal(-100, 3, SHAPE)
+        counts[:3, :3] = 3500  # above every calibration point
+        camera = tasks.camera(signal=Signal("counts", points=points))
+        frame = Frame(np.rint(counts).astype(np.uint16), "0" * 64)
+        _, maps = pipeline.analyse(frame, tasks.task(camera=camera), maps=("uncertainty",))
+        assert np.array_equal(np.isnan(maps.u_temperature), np.isnan(maps.temperature_c))
+        us.append(np.nanmedian(maps.u_temperature))
+    assert us[0] == pytest.approx(us[1], rel=1e-3)  # the same temperatures, stored the other way round
+
+
+BLACK = {"emissivity": (1.0, 0.0), "distance": 0.0, "reflected": (293.15, 0.0), "size_of_source": 0.0, "outline": 0.0}
+
+
+def read_beside_a_known_surface(place, t_known=291.15, fraction=0.0, **us):
+    """Standard uncertainties of offset and extreme of a black wall with a black surface of known temperature."""
+    left, top = place
+    polygon = ((left, top), (left + 24.0, top), (left + 24.0, top + 24.0), (left, top + 24.0))
+    known = Surface("panel", polygon, "known-temperature", temperature="temperature:panel")
+    stated = {"shading": 0.0, "shading_x": 0.0, "shading_y": 0.0} | us
+    scene = tasks.scene(**BLACK | stated | {"temperature:panel": (t_known, 0.1)})
+    camera = tasks.camera(accuracy=2.0, accuracy_fraction=fraction, noise=1e-6)
+    t = wall()
+    t[int(top) : int(top) + 25, int(left) : int(left) + 25] = t_known
+    report, _ = pipeline.analyse(tasks.frame(t, noise=0.001), tasks.task(scene=scene, camera=camera, surfaces=(known,)))
+    (finding,) = [one for one in report.findings if one.shape.centre[0] > 85]
+    return report.inputs["camera_offset_k"].u, finding
+
+
+def shading_at(x, y):
+    """Of a lens that darkens with the fourth power of the distance from the centre: 1 in the corners."""
+    half_width, half_height = (SHAPE[1] - 1) / 2, (SHAPE[0] - 1) / 2
+    squares = (x - half_width) ** 2 + (y - half_height) ** 2
+    return (squares / (half_width**2 + half_height**2)) ** 2
+
+
+def test_an_offset_fixed_on_a_known_surface_knows_the_lens_where_that_lies():
+    # Shading of 0.5 K (corner), panel in a corner, read without its outermost two pixels.
+    offset_u, finding = read_beside_a_known_surface((2.0, 90.0), shading=(0.0, 0.5))
+    y, x = np.mgrid[92:113, 4:25]
+    at_panel, at_spot = 0.5 * shading_at(x, y).mean(), 0.5 * shading_at(*finding.shape.extreme_at)
+    # Tolerances: noise of a frame that has 1 mK of it, and the spot's extent.
+    assert offset_u == pytest.approx(np.hypot(0.1, at_panel), rel=0.005)
+    # What spot and panel have of it in common cancels; independent, it would be √(0.1² + panel² + spot²).
+    assert finding.extreme_c.u == pytest.approx(np.hypot(0.1, at_panel - at_spot), rel=0.01)
+    # A panel no further from the centre than the spot, in another direction, leaves the thermometer alone.
+    _, near = read_beside_a_known_surface((38.0, 48.0), shading=(0.0, 0.5))
+    assert near.extreme_c.u == pytest.approx(0.1, abs=0.01)
+
+
+def test_an_offset_fixed_on_a_warm_surface_knows_the_gain_of_the_camera():
+    # Panel at 40 °C, spot at 15 °C, gain known to 2 % (rectangular): 25 K · 0.02/√3 between them, wherever the pivot.
+    _, finding = read_beside_a_known_surface((60.0, 90.0), t_known=313.15, fraction=0.02)
+    assert finding.extreme_c.u == pytest.approx(np.hypot(0.1, 25 * 0.02 / 3**0.5), abs=0.003)
+
+
+def test_a_foil_owes_part_of_what_it_shows_to_itself():
+    # Sky of −30 °C on foil as warm as the air, 20 °C, emissivity 0.04 (handbook compilations: 0.03 to 0.05); by
+    # Planck's law in 7.5–13 µm, L(20 °C) 45.97 and L(−30 °C) 17.0, dL/dT there 0.40 W m⁻² sr⁻¹ (K⁻¹): 0.04·29/0.40.
+    foil = Surface("foil", ((100.0, 90.0), (130.0, 90.0), (130.0, 115.0), (100.0, 115.0)), role="reflector")
+    t = wall()
+    t[90:116, 100:131] = 243.15
+    camera = tasks.camera(accuracy=1.0, accuracy_fraction=0.0)
+    scene = tasks.scene(distance=0.0)
+    report, _ = pipeline.analyse(tasks.frame(t, noise=0.01), tasks.task(scene=scene, camera=camera, surfaces=(foil,)))
+    assert report.inputs["reflected_c"].u == pytest.approx(0.04 * 29 / 0.40, rel=0.1)  # to first order
+
+
+def test_what_a_shiny_part_may_have_lost_to_blur_is_a_share_of_what_is_seen_of_it():
+    # ε 0.3: 3 K of deviation are about 1 K in the picture, of which blur may take its share; that is stretched again
+    # to the same share of 3 K, as for a matt part that deviates by 3 K.
+    plate = Surface("plate", ((80.0, 30.0), (140.0, 30.0), (140.0, 90.0), (80.0, 90.0)), emissivity="emissivity:plate")
+    shiny = tasks.task(
+        scene=tasks.scene(distance=0.0, **{"emissivity:plate": (0.3, 0.0)}), surfaces=(plate,), camera=tasks.camera()
+    )
+    matt = replace(shiny, surfaces=())
+    parts = []
+    for task, seen in ((shiny, 0.3 * 6.0), (matt, 0.95 * 6.0)):
+        t = np.full(SHAPE, 293.15)
+        t[50:70, 100:104] += seen  # four pixels wide: blur matters
+        parts.append(contribution(analysed(task, t)[0].findings[0], "delta_k", "size_of_source"))
+    assert parts[0] == pytest.approx(parts[1], rel=0.1)  # radiance is not quite straight in temperature
 
 
 def test_a_class_that_hangs_on_one_input_is_fragile_and_says_on_which():

@@ -284,7 +284,7 @@ def test_the_way_to_propagate_reaches_every_row_of_a_table(tmp_path: Path) -> No
         ({"emissivity": 1.2}, "emissivity: expected a number above 0, up to 1, got 1.2"),
         ({"emissivity": 0.9}, "reflected_c: expected a temperature, as the surface reflects"),
         ({"u_emissivity": 0.02}, "reflected_c"),
-        ({"distance_m": -1.0}, "distance_m: expected 0 m or more, got -1"),
+        ({"distance_m": -1.0}, "distance_m: expected a distance of 0…100000 m, got -1"),
         ({"distance_m": 5.0}, "air_c: expected a temperature, as there is air in the path"),
         ({"relative_humidity_percent": 101.0}, "relative_humidity_percent: expected 0…100 %, got 101"),
         ({"pressure_hpa": 0.0}, "pressure_hpa"),
@@ -343,6 +343,21 @@ def test_other_columns_pass_through_unchanged(tmp_path: Path) -> None:
         header, row = csv.reader(stream)
     assert header == ["tag", "apparent_c", "remark, long", "", *ADDED]
     assert row[:5] == [" 007 ", "30", 'a "b", c\nd', "x", "30.000"]
+
+
+def test_a_decimal_comma_in_any_column_is_one(tmp_path: Path) -> None:
+    correct_table(table(tmp_path, "apparent_c;emissivity;reflected_c\n30;0,9;20\n"), tmp_path / "out.csv")
+    (result,) = rows(tmp_path / "out.csv", ";")
+    assert result["object_c"] == one(tmp_path, "apparent_c,emissivity,reflected_c", "30,0.9,20")["object_c"].replace(
+        ".", ","
+    )
+
+
+def test_nothing_but_a_file_is_written_to(tmp_path: Path) -> None:
+    source = table(tmp_path, "apparent_c\n30\n")
+    for out in (tmp_path, Path("/dev/null")):  # /dev/full has a first line without an end
+        with pytest.raises(OutputError, match="a folder or a device"):
+            correct_table(source, out)
 
 
 @pytest.mark.parametrize("separator", [";", "\t"])

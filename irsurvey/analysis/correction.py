@@ -9,18 +9,25 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from irsurvey.analysis import imperfections
+from irsurvey.anomalies.noise import robust_spread
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.errors import Fault, FrameError
 from irsurvey.geometry.polygons import mask
 from irsurvey.heat.humid_air import vapour_density
 from irsurvey.model import Camera, Component, Frame, FrameTask, Quantity, Scene, Surface
+from irsurvey.radiometry import measurement
 from irsurvey.radiometry.atmosphere import absorptance_u
 from irsurvey.radiometry.lookup import Codes, encode, look_up, stored_values, temperature_table
 from irsurvey.radiometry.measurement import Path, object_temperature
 from irsurvey.radiometry.signal import apparent_temperature
+from irsurvey.uncertainty import propagate
 
 _RESOLUTION = 1e-3
 """Step [K] to which float frames are quantised: a fiftieth of a good camera's noise."""
+
+FOIL_EMISSIVITY = 0.04
+"""Of household aluminium foil, 0.03 to 0.05 (handbook compilations): a reflector shows as much of itself."""
 
 Optics = tuple[str, str]
 """Names of the emissivity and the reflected temperature in the Scene."""
@@ -42,6 +49,7 @@ class Corrected:
     pivot: float
     t: NDArray[np.float32]
     saturated_hot: NDArray[np.bool_]
+    saturated_cold: NDArray[np.bool_]
     saturated_pixels: int
     unsolved_pixels: int
     without_data_pixels: int
@@ -52,6 +60,16 @@ class Corrected:
         if self.codes.step == 1 or self.apparent.size < 2:
             return 0.0
         return float(np.nanmedian(np.abs(np.diff(self.apparent))))
+
+
+@dataclass(frozen=True, slots=True)
+class _Known:
+    """A surface of known temperature as it is read: mean of its pixels [K], that mean's noise, lens shading of it."""
+
+    surface: Surface
+    centre: float
+    noise: Quantity
+    shading: imperfections.Shifts
 
 
 def air_path(values: Mapping[str, Any]) -> Path:
@@ -86,12 +104,13 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
     optics, optics_names = _optics(task, frame.stored.shape)
     t_apparent = look_up(codes, apparent)
     pivot = float(np.nanmedian(t_apparent[::4, ::4])) if np.isfinite(t_apparent[::4, ::4]).any() else float("nan")
+    readable = _readable(codes, apparent, task.camera)
     if np.isnan(pivot):
         raise _meaningless(frame, task)
     scene = _with_camera(task, pivot)
     for _ in range(2):  # foil is read with the offset of a known surface, which itself mirrors what the foil shows
-        scene = _with_reflected(task, scene, t_apparent)
-        scene = _with_offset(task, scene, t_apparent)
+        scene = _with_reflected(task, scene, readable, pivot)
+        scene = _with_offset(task, scene, readable, pivot)
 
     low, high = task.camera.range or (-np.inf, np.inf)
     has_data = _has_data(codes)
@@ -131,6 +150,7 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
         pivot,
         t,
         hot,
+        cold,
         int(np.count_nonzero(saturated)),
         unsolved,
         int(np.count_nonzero(~has_data)),
@@ -144,33 +164,41 @@ def reflected_by_reflector(frame: Frame, task: FrameTask) -> Quantity:
     there is no readable reflector."""
     signal = task.camera.signal
     codes = encode(frame.stored, frame.missing, resolution=_resolution(frame, task.camera))
-    t_apparent = look_up(codes, apparent_temperature(stored_values(codes), signal, task.camera.band))
-    scene = _with_reflected(task, _with_camera(task, float(np.nanmedian(t_apparent))), t_apparent)
+    apparent = apparent_temperature(stored_values(codes), signal, task.camera.band)
+    pivot = float(np.nanmedian(look_up(codes, apparent)))
+    scene = _with_reflected(task, _with_camera(task, pivot), _readable(codes, apparent, task.camera), pivot)
     measured = scene["reflected"]
     return replace(measured, u=float(np.hypot(measured.u, scene["camera_offset"].u)), follows=None)
 
 
-def reflected_by(surface: Surface, task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Quantity:
+def reflected_by(
+    surface: Surface, task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32], pivot: float
+) -> Quantity:
     """Reflected apparent temperature measured on a crumpled reflector (ASTM E1862, reflector method).
 
-    The reflector is read as a black body through the air path.  Its spread stays in the uncertainty: what it
-    shows is not the same in all directions.  Read by the same camera in the same frame, it moves with its offset.
+    The reflector is read as a black body through the air path.  In the uncertainty stay its spread, as what it shows
+    is not the same in all directions, what it sends out itself, and the camera's gain.  Read by the same camera in the
+    same frame, it moves with its offset.
     """
-    values = scene.values()
-    seen = t_apparent[_inner(surface, t_apparent.shape)].astype(np.float64)
-    t = object_temperature(seen + values["camera_offset"], 1.0, values["air"], air_path(values), task.camera.band)
+    values, band = scene.values(), task.camera.band
+    seen = t_apparent[_inner(surface, t_apparent.shape)].astype(np.float64) + values["camera_offset"]
+    t = object_temperature(seen, 1.0, values["air"], air_path(values), band)
     centre = float(np.nanmedian(t)) if np.isfinite(t).any() else float("nan")
     if np.isnan(centre):
-        fault = Fault(
-            f"{task.id}: surface {surface.name}",
-            "a readable reflector",
-            "no measurable pixel in it",
-            "draw it on the foil, clear of its edge",
-        )
-        raise FrameError(fault)
+        raise _unreadable(task, surface, "a readable reflector")
     spread = 1.4826 * float(np.nanmedian(np.abs(t - centre)))
-    measured = Quantity("reflected", centre, spread, "measured in frame", u_source="measured in frame")
+    mirrored = object_temperature(np.nanmedian(seen), 1 - FOIL_EMISSIVITY, values["air"], air_path(values), band)
+    emitted = abs(float(mirrored) - centre)  # were it as warm as the air
+    gain = scene["camera_gain"].u * (centre - pivot)
+    u = float(np.sqrt(spread**2 + np.nan_to_num(emitted) ** 2 + gain**2))
+    measured = Quantity("reflected", centre, u, "measured in frame", u_source="measured in frame")
     return replace(measured, low=0, follows="camera_offset")
+
+
+def _readable(codes: Codes, apparent: NDArray[np.float64], camera: Camera) -> NDArray[np.float32]:
+    """Apparent temperatures (rows, columns) [K], NaN where saturated: a bound is no reading."""
+    low, high = camera.range or (-np.inf, np.inf)
+    return look_up(codes, np.where((apparent > low) & (apparent < high), apparent, np.nan))
 
 
 def _meaningless(frame: Frame, task: FrameTask) -> FrameError:
@@ -195,10 +223,10 @@ def _with_camera(task: FrameTask, pivot: float) -> Scene:
     return scene
 
 
-def _with_reflected(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Scene:
+def _with_reflected(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32], pivot: float) -> Scene:
     for surface in task.surfaces:
         if surface.role == "reflector":
-            scene = scene.with_(reflected_by(surface, task, scene, t_apparent))
+            scene = scene.with_(reflected_by(surface, task, scene, t_apparent, pivot))
     if "reflected" not in scene:
         served_by = f"frame {task.reflected_from}" if task.reflected_from else "this frame"
         fault = Fault(
@@ -211,53 +239,63 @@ def _with_reflected(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float3
     return scene
 
 
-def _with_offset(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32]) -> Scene:
-    """Fix the camera's offset on surfaces of known temperature: the shift of apparent temperature that meets them."""
-    known = [surface for surface in task.surfaces if surface.role == "known-temperature" and surface.temperature]
+def _with_offset(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32], pivot: float) -> Scene:
+    """Fix the camera's offset on surfaces of known temperature: the shift of apparent temperature that meets them.
+
+    It is then as uncertain as everything it was found by, and moves with that: its correlations with the other
+    inputs say how far, so that what a known surface and another one share cancels between them.
+    """
+    stated = [surface for surface in task.surfaces if surface.role == "known-temperature" and surface.temperature]
+    known = [_known(surface, t_apparent) for surface in stated]
     if not known:
         return scene
-    offsets, variances = [], []
-    for surface in known:
-        seen = t_apparent[_inner(surface, t_apparent.shape)].astype(np.float64)
-        seen = seen[np.isfinite(seen)]
-        offsets.append(_offset(seen, surface, scene, task))
-        variances.append(scene[str(surface.temperature)].u ** 2 + _emissivity_share(seen, surface, scene, task) ** 2)
-    weights = 1 / np.maximum(variances, 1e-6)
-    offset = float(np.average(offsets, weights=weights))
-    u = float(1 / np.sqrt(weights.sum()))
-    return scene.with_(Quantity("camera_offset", offset, u, "measured in frame", u_source="measured in frame"))
+
+    def offsets(values: Mapping[str, Any]) -> NDArray[np.float64]:
+        return np.concatenate([_offset(one, values, pivot, task.camera.band) for one in known], axis=1)
+
+    exact = Quantity("camera_offset", 0.0)  # it is what is looked for
+    budget = propagate(offsets, scene.with_(exact, *(one.noise for one in known)))
+    for one, value in zip(known, budget.values, strict=True):
+        if not np.isfinite(value):
+            raise _unreadable(task, one.surface, "a surface of known temperature that can be read")
+    weights = 1 / np.maximum(budget.u**2, 1e-6)
+    weights /= weights.sum()
+    swings = budget.half_swings @ weights
+    covariances = budget.correlation @ swings
+    u = float(np.sqrt(np.maximum(swings @ covariances, 0.0)))
+    others = tuple(pair for pair in scene.correlations if "camera_offset" not in pair)
+    found = tuple(
+        ("camera_offset", name, float(covariance / u))
+        for name, covariance in zip(budget.names, covariances, strict=True)
+        if u > 0 and covariance != 0 and name in scene
+    )
+    offset = Quantity("camera_offset", float(budget.values @ weights), u, "measured in frame")
+    return replace(scene.with_(replace(offset, u_source="measured in frame")), correlations=(*others, *found))
 
 
-def _offset(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: FrameTask) -> float:
-    """Offset [K] at which the mean of a known surface reads its temperature: secant steps on a nearly linear law."""
-    values = scene.values()
-    path, target = air_path(values), values[str(surface.temperature)]
-    centre = float(np.mean(seen)) if seen.size else float("nan")
-
-    def reading(offset: float) -> float:
-        seen_as = np.float64(centre + offset)
-        emissivity, t_reflected = values[surface.emissivity], values[surface.reflected]
-        return float(object_temperature(seen_as, emissivity, t_reflected, path, task.camera.band))
-
-    offset, slope = 0.0, max(reading(0.5) - reading(-0.5), 1e-3)
-    for _ in range(6):
-        offset += (target - reading(offset)) / slope
-    if not abs(reading(offset) - target) < 1e-3:
-        fault = Fault(
-            f"{task.id}: surface {surface.name}",
-            f"a surface that can read {target - ZERO_CELSIUS:.1f} °C",
-            f"an apparent {centre - ZERO_CELSIUS:.1f} °C that no offset explains",
-            "check its temperature, emissivity and outline",
-        )
-        raise FrameError(fault)
-    return offset
+def _known(surface: Surface, t_apparent: NDArray[np.float32]) -> _Known:
+    rows, columns = np.nonzero(_inner(surface, t_apparent.shape) & np.isfinite(t_apparent))
+    seen = t_apparent[rows, columns].astype(np.float64)
+    if seen.size == 0:
+        return _Known(surface, np.nan, Quantity(f"noise:{surface.name}", 0.0), ())
+    noise = Quantity(f"noise:{surface.name}", 0.0, robust_spread(seen) / seen.size**0.5)
+    return _Known(surface, float(seen.mean()), noise, imperfections.shading(rows, columns, t_apparent.shape))
 
 
-def _emissivity_share(seen: NDArray[np.float64], surface: Surface, scene: Scene, task: FrameTask) -> float:
-    """What the emissivity of a known surface adds to the uncertainty of the offset [K]."""
-    quantity = scene[surface.emissivity]
-    lower = scene.with_(replace(quantity, value=max(quantity.value - quantity.u, 0.01)))
-    return abs(_offset(seen, surface, lower, task) - _offset(seen, surface, scene, task)) if quantity.u else 0.0
+def _offset(known: _Known, values: Mapping[str, Any], pivot: float, band: tuple[float, float]) -> NDArray[np.float64]:
+    """Offset (n, 1) [K] at which the mean of a known surface reads its temperature, in n scenes."""
+    surface = known.surface
+    t, optics = values[str(surface.temperature)], (values[surface.emissivity], values[surface.reflected])
+    expected = measurement.apparent_temperature(t, *optics, air_path(values), band)
+    shifts = values[known.noise.name] + values["camera_gain"] * (known.centre - pivot)
+    for name, factor in known.shading:
+        shifts = shifts + values.get(name, 0.0) * factor
+    return np.asarray(expected - known.centre - shifts)
+
+
+def _unreadable(task: FrameTask, surface: Surface, expected: str) -> FrameError:
+    remedy = "draw it on the surface, clear of its edge, and check its temperature and emissivity"
+    return FrameError(Fault(f"{task.id}: surface {surface.name}", expected, "no measurable pixel in it", remedy))
 
 
 def _optics(task: FrameTask, shape: tuple[int, ...]) -> tuple[NDArray[np.uint8], tuple[Optics, ...]]:

@@ -12,7 +12,7 @@ from irsurvey.analysis.budgets import flips, on_axis
 from irsurvey.analysis.correction import Corrected
 from irsurvey.analysis.planning import Measured, Planned
 from irsurvey.analysis.propagation import Propagated
-from irsurvey.analysis.regions import Screened
+from irsurvey.analysis.regions import Screened, near
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import edge_sharpness, elongation
 from irsurvey.assess.building import assess_finding
@@ -23,6 +23,7 @@ from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.severity import (
     AUTOMATIC_REFERENCE,
     CONDITIONS,
+    HOTTER_BESIDE,
     LEAST_EMISSIVITY,
     NO_SOLUTION,
     SATURATED,
@@ -78,6 +79,7 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
     """The findings of a frame in the order of their labels."""
     task, screened, results = evidence.task, evidence.screened, evidence.numbers.results
     keys: Counter[str] = Counter()
+    against = reference_emissivity(evidence)  # a ΔT is no better than what it is taken against
     for label, (found, measured) in enumerate(
         zip(screened.regions, evidence.planned.anomalies, strict=True), start=1
     ):
@@ -102,7 +104,7 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
             numbers,
             evidence.criteria,
             sense=measured.sense,
-            emissivity=emissivity,
+            emissivity=min(emissivity, against),
             flags=tuple(flag for flag, applies in flags if applies),
             viewed_from=task.viewed_from,
         )
@@ -208,16 +210,19 @@ def _member(component: Component, corrected: Corrected, planned: Planned) -> Mem
     drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
     patch = cropped(drawn)
     saturated = drawn & corrected.saturated_hot
+    place = near(component, (drawn.shape[0], drawn.shape[1]))
     flags = (
         (SATURATED, bool(saturated.any())),
         (SIZE_LIMITED, measured is not None and not measured.spot.is_full),
         (NO_SOLUTION, measured is None or bool((drawn & np.isnan(corrected.t) & ~saturated).any())),
         (TOUCHES_EDGE, patch is not None and patch.touches_edge(drawn.shape)),
+        (HOTTER_BESIDE, any(one.sense == "hot" and one.patch.of(place).any() for one in planned.anomalies)),
     )
+    own = planned.scene[component.emissivity].value
     return Member(
         name=component.name,
         t_spot=float("nan") if measured is None else measured.t_spot,
-        emissivity=planned.scene[component.emissivity].value,
+        emissivity=own if measured is None else _lowest_emissivity(measured, planned),
         group=component.group,
         load=component.load,
         rated=component.rated,
@@ -225,7 +230,17 @@ def _member(component: Component, corrected: Corrected, planned: Planned) -> Mem
     )
 
 
+def reference_emissivity(evidence: Evidence) -> float:
+    """The emissivity that most of the reference area was corrected with; NaN without a reference area."""
+    corrected = evidence.corrected
+    pixels = np.bincount(corrected.optics[evidence.screened.reference_area])
+    if pixels.size == 0:
+        return float("nan")
+    return corrected.scene[corrected.optics_names[int(pixels.argmax())][0]].value
+
+
 def _lowest_emissivity(measured: Measured, planned: Planned) -> float:
+    """The lowest that its pixels were corrected with: a part may lie on a surface with optics of its own."""
     return min(planned.scene[part.optics[0]].value for part in measured.region.whole.parts)
 
 

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from math import ceil
 
 import numpy as np
 
 from irsurvey.analysis.correction import Corrected
-from irsurvey.analysis.findings import Evidence, components, findings
+from irsurvey.analysis.findings import Evidence, components, findings, reference_emissivity
 from irsurvey.analysis.regions import Screened, stretch_of
 from irsurvey.assess.electrical import TwinPlan
+from irsurvey.assess.severity import LEAST_EMISSIVITY, REFLECTIVE
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import outline
 from irsurvey.heat.humid_air import dew_point, vapour_density
@@ -57,7 +59,7 @@ def frame_report(
         reference=_reference(evidence),
         findings=tuple(findings(evidence, is_valid=level != "not valid")),
         components=tuple(components(evidence, twins)),
-        flags=(*_flags(corrected, screened, task), *evidence.numbers.doubts),
+        flags=(*_flags(evidence), *evidence.numbers.doubts),
     )
 
 
@@ -122,11 +124,14 @@ def _detectable(screened: Screened, task: FrameTask) -> Detectable:
     if screened.pixel_area is not None:
         area = task.detection.min_area or task.detection.min_pixels * float(np.nanmedian(screened.pixel_area))
     compared = screened.reference is not None
+    pixels = task.detection.min_pixels
+    if task.detection.min_area and screened.pixel_area is not None:
+        pixels = ceil(round(task.detection.min_area / float(np.nanmedian(screened.pixel_area)), 6))
     return Detectable(
         threshold_k=screened.min_delta if compared else None,
         min_delta_k=screened.detectable_delta if compared else None,
         min_area_m2=area,
-        min_pixels=task.detection.min_pixels,
+        min_pixels=pixels,
         noise_k=screened.noise,
         shading_allowance_k=abs(screened.shading),
     )
@@ -165,13 +170,16 @@ def _reference(evidence: Evidence) -> ReferenceReport | None:
     )
 
 
-def _flags(corrected: Corrected, screened: Screened, task: FrameTask) -> Iterator[str]:
+def _flags(evidence: Evidence) -> Iterator[str]:
     """What whoever reads the frame's report should know first, in short sentences."""
+    task, corrected = evidence.task, evidence.corrected
     scene, values = corrected.scene, corrected.scene.values()
-    if screened.reference is None:
+    if evidence.screened.reference is None:
         yield "no reference area found: nothing can be compared in this frame"
     elif task.reference is None:
         yield "automatic reference"
+    if reference_emissivity(evidence) < LEAST_EMISSIVITY:
+        yield f"{REFLECTIVE}: the reference area"
     for pixels, words in (
         (corrected.saturated_pixels, "saturated: {} pixels at or beyond the range"),
         (corrected.unsolved_pixels, "no physical solution: {} pixels"),

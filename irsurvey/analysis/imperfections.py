@@ -55,7 +55,7 @@ def of_spot(
     picked = -sign * own.u * sqrt(2 * log(choices))
     shifts = (
         (own.name, 1.0),
-        *_shading(spot.rows, spot.columns, shape),
+        *shading(spot.rows, spot.columns, shape),
         (SIZE_OF_SOURCE, contrast * _lost_inside(patch)),
         (SELECTION.name, picked),
     )
@@ -75,7 +75,7 @@ def of_whole(
     lost = min(perimeter(patch) * POINT_SPREAD / (sqrt(2 * pi) * patch.pixels), 1.0)
     shifts = (
         (own.name, 1.0),
-        *_shading(rows, columns, t.shape),
+        *shading(rows, columns, t.shape),
         (SIZE_OF_SOURCE, contrast * lost),
         *((quantity.name, _per_pixel_of_outline(patch, t) / stretch) for quantity in outline),
     )
@@ -100,16 +100,16 @@ def of_reference(
     outer = cv2.dilate(drawn, kernel).view(np.bool_) & ~np.isnan(t)
     moved = float(np.median(t[inner][::7]) - np.median(t[outer][::7])) / 2 if inner.any() else 0.0
     if slopes:  # functionals of the very pixels the plane was fitted to
-        profiles = _profiles(reference.rows, reference.columns, t.shape)
-        levels = tuple((name, float(reference.weights[0] @ profile)) for name, profile in profiles)
+        over_area = profiles(reference.rows, reference.columns, t.shape)
+        levels = tuple((name, float(reference.weights[0] @ profile)) for name, profile in over_area)
         tilts = tuple(
             (name, float(reference.weights[1] @ profile) * stretch, float(reference.weights[2] @ profile) * stretch)
-            for name, profile in profiles
+            for name, profile in over_area
             if name in scene
         )
     else:
         rows, columns = np.nonzero(area)
-        levels, tilts = _shading(rows, columns, t.shape), ()
+        levels, tilts = shading(rows, columns, t.shape), ()
     shifts = ((own.name, 1.0), *levels, *((quantity.name, moved / stretch) for quantity in outline))
     own_tilts = tuple((one.name, float(one.name == "slope_x"), float(one.name == "slope_y")) for one in slopes)
     return _known(shifts, scene, own, *outline), (*tilts, *own_tilts), (own, *slopes, *outline)
@@ -126,12 +126,30 @@ def bounded_tilts(reference: Reference, area: NDArray[np.bool_], stretch: float,
     rows, columns = (np.flatnonzero(area.any(axis=axis)) for axis in (1, 0))
     corners = np.array([rows[0], rows[-1]]), np.array([columns[0], columns[-1]])
     bounded = []
-    for name, profile in _profiles(*corners, area.shape)[1:]:
+    for name, profile in profiles(*corners, area.shape)[1:]:
         span = float(np.ptp(profile))
         limit = reference.hidden / stretch / span / sqrt(3) if span > 0 else inf
         if name in scene and scene[name].u > limit:
             bounded.append(replace(scene[name], u=limit, distribution="rectangular"))
     return tuple(bounded)
+
+
+def shading(rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]) -> Shifts:
+    """Lens shading of an area: where its pixels lie in the lens, on average (every k-th: the profiles are smooth)."""
+    stride = max(1, rows.size // _PROFILE_PIXELS)
+    rows, columns = rows[::stride], columns[::stride]
+    return tuple((name, float(profile.mean())) for name, profile in profiles(rows, columns, shape))
+
+
+def profiles(
+    rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]
+) -> tuple[tuple[str, NDArray[Any]], ...]:
+    """Lens shading at pixels: radial with the fourth power of the distance from the centre, and two tilts."""
+    y = np.asarray((rows - (shape[0] - 1) / 2) / max((shape[0] - 1) / 2, 1))
+    x = np.asarray((columns - (shape[1] - 1) / 2) / max((shape[1] - 1) / 2, 1))
+    ratio = shape[0] / shape[1]
+    radial = ((x**2 + (ratio * y) ** 2) / (1 + ratio**2)) ** 2
+    return ("shading", radial), ("shading_x", x), ("shading_y", y)
 
 
 def perimeter(patch: Patch) -> float:
@@ -149,24 +167,6 @@ def _known(shifts: Shifts, scene: Scene, *own: Quantity) -> Shifts:
     """Without what the scene does not hold, and without what moves nothing."""
     names = {quantity.name for quantity in own} | {SELECTION.name}
     return tuple((name, factor) for name, factor in shifts if factor != 0 and (name in names or name in scene))
-
-
-def _shading(rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]) -> Shifts:
-    """Where an area lies in the lens, on average (of every k-th pixel: the profiles are smooth)."""
-    stride = max(1, rows.size // _PROFILE_PIXELS)
-    rows, columns = rows[::stride], columns[::stride]
-    return tuple((name, float(profile.mean())) for name, profile in _profiles(rows, columns, shape))
-
-
-def _profiles(
-    rows: NDArray[np.intp], columns: NDArray[np.intp], shape: tuple[int, ...]
-) -> tuple[tuple[str, NDArray[Any]], ...]:
-    """Lens shading at pixels: radial with the fourth power of the distance from the centre, and two tilts."""
-    y = np.asarray((rows - (shape[0] - 1) / 2) / max((shape[0] - 1) / 2, 1))
-    x = np.asarray((columns - (shape[1] - 1) / 2) / max((shape[1] - 1) / 2, 1))
-    ratio = shape[0] / shape[1]
-    radial = ((x**2 + (ratio * y) ** 2) / (1 + ratio**2)) ** 2
-    return ("shading", radial), ("shading_x", x), ("shading_y", y)
 
 
 def _lost_inside(patch: Patch) -> float:

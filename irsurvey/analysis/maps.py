@@ -3,18 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Collection
+from dataclasses import replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from irsurvey.analysis.correction import Corrected, air_path
+from irsurvey.analysis.correction import Corrected, Optics, air_path
 from irsurvey.analysis.findings import Evidence
+from irsurvey.analysis.imperfections import profiles
 from irsurvey.analysis.measurand import Columns, Surroundings, flux_of
-from irsurvey.analysis.regions import Screened
+from irsurvey.analysis.regions import Screened, stretch_of
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.model import Maps, Scene
 from irsurvey.radiometry.measurement import object_temperature
-from irsurvey.uncertainty import propagate
+from irsurvey.uncertainty import Budget, propagate
 
 HEAT_FLUX, UNCERTAINTY = "heat-flux", "uncertainty"
 MAPS = (HEAT_FLUX, UNCERTAINTY)
@@ -22,6 +25,8 @@ MAPS = (HEAT_FLUX, UNCERTAINTY)
 
 _NODES = 200
 """Temperatures at which u is computed; between them it is a smooth curve."""
+_MARGIN = 0.01
+"""What they reach beyond the lowest and the highest reading [K], so that rounding leaves no pixel outside."""
 _OF_AREAS = ("noise", "outline", "slope_x", "slope_y", "selection", "size_of_source")
 """What belongs to areas, not to single pixels."""
 
@@ -29,15 +34,12 @@ _OF_AREAS = ("noise", "outline", "slope_x", "slope_y", "selection", "size_of_sou
 def maps_of(evidence: Evidence, wanted: Collection[str]) -> Maps:
     """The maps of a frame: temperature, labels, reference, and those of `MAPS` that are wanted."""
     corrected, screened, measured = evidence.corrected, evidence.screened, evidence.planned
-    band = evidence.task.camera.band
     return Maps(
         temperature_c=corrected.t - np.float32(ZERO_CELSIUS),
         labels=label_map(screened),
         reference=screened.reference_area,
         heat_flux=heat_flux_map(corrected, measured.plan.surroundings) if HEAT_FLUX in wanted else None,
-        u_temperature=uncertainty_map(corrected, measured.scene, band, screened.noise)
-        if UNCERTAINTY in wanted
-        else None,
+        u_temperature=uncertainty_map(evidence) if UNCERTAINTY in wanted else None,
     )
 
 
@@ -59,32 +61,62 @@ def heat_flux_map(corrected: Corrected, surroundings: Surroundings) -> NDArray[n
     return flux
 
 
-def uncertainty_map(
-    corrected: Corrected, scene: Scene, band: tuple[float, float], noise: float
-) -> NDArray[np.float32]:
+def uncertainty_map(evidence: Evidence) -> NDArray[np.float32]:
     """Standard uncertainty (rows, columns) [K] of the object temperature of each pixel; NaN where not measured.
 
-    First order; everything the frame's temperatures share, and the noise of one pixel [K].  It is that of a
-    temperature, not of a difference: what two pixels share does not cancel in it.
+    First order; everything the frame's temperatures share, the shading of the lens where the pixel lies, and its own
+    noise.  It is that of a temperature, not of a difference: what two pixels share does not cancel in it.
     """
+    corrected, scene = evidence.corrected, evidence.planned.scene
+    shared = tuple(one for one in scene.quantities if one.name.partition(":")[0] not in _OF_AREAS)
+    noise = evidence.screened.noise / stretch_of(corrected, evidence.task, 0)
     u = np.full(corrected.t.shape, np.nan, np.float32)
-    shared = Scene(
-        tuple(one for one in scene.quantities if one.name.partition(":")[0] not in _OF_AREAS), scene.correlations
-    )
-    for index, (emissivity, reflected) in enumerate(corrected.optics_names):
-        part = corrected.optics == index
-        seen = corrected.t[part]
-        if np.isnan(seen).all():
-            continue
-        apparent = np.linspace(corrected.apparent[0], corrected.apparent[-1], _NODES)
-
-        def model(
-            values: Columns, at: NDArray[np.float64] = apparent, names: tuple[str, str] = (emissivity, reflected)
-        ) -> NDArray[np.float64]:
-            read = at + values["camera_offset"] + values["camera_gain"] * (at - corrected.pivot)
-            return object_temperature(read, values[names[0]], values[names[1]], air_path(values), band)
-
-        budget = propagate(model, shared)
-        known = np.isfinite(budget.values) & np.isfinite(budget.u)
-        u[part] = np.hypot(np.interp(seen, budget.values[known], budget.u[known], np.nan, np.nan), noise)
+    for index, optics in enumerate(corrected.optics_names):
+        rows, columns = np.nonzero((corrected.optics == index) & ~np.isnan(corrected.t))
+        if rows.size:
+            codes = corrected.codes.codes[rows, columns].astype(np.intp) - corrected.codes.lowest
+            ends = corrected.apparent[[codes.min(), codes.max()]]
+            apparent = np.linspace(ends.min() - _MARGIN, ends.max() + _MARGIN, _NODES)
+            budget = _along(apparent, optics, evidence, replace(scene, quantities=shared))
+            shading = profiles(rows, columns, u.shape)
+            u[rows, columns] = _u_at(corrected.t[rows, columns], shading, budget, apparent, noise)
     return u
+
+
+def _along(apparent: NDArray[np.float64], optics: Optics, evidence: Evidence, scene: Scene) -> Budget:
+    """Object temperatures of one optics at these readings [K], as a budget."""
+
+    def model(values: Columns) -> NDArray[np.float64]:
+        gain = values["camera_gain"] * (apparent - evidence.corrected.pivot)
+        read = apparent + values["camera_offset"] + gain
+        band = evidence.task.camera.band
+        return object_temperature(read, values[optics[0]], values[optics[1]], air_path(values), band)
+
+    return propagate(model, scene)
+
+
+def _u_at(
+    t: NDArray[np.float32],
+    shading: tuple[tuple[str, NDArray[Any]], ...],
+    budget: Budget,
+    apparent: NDArray[np.float64],
+    noise: float,
+) -> NDArray[np.float64]:
+    """Standard uncertainty (n,) [K] of pixels of temperatures t, each with its `shading` per unit; noise apparent."""
+    solved = np.isfinite(budget.values) & np.isfinite(budget.u)
+    if np.count_nonzero(solved) < 2:
+        return np.full(t.shape, np.nan)
+
+    def here(curve: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.interp(t, budget.values[solved], curve, np.nan, np.nan)
+
+    gain = here(np.gradient(budget.values[solved], apparent[solved]))
+    variance = here(budget.u[solved] ** 2) + (gain * noise) ** 2
+    covariances = budget.inputs_u[:, None] * (budget.correlation @ budget.half_swings)[:, solved]
+    places = [(budget.names.index(name), profile) for name, profile in shading if name in budget.names]
+    for one, profile in places:  # an offset fixed on a known surface has its shading in it
+        variance += 2 * gain * profile * here(covariances[one])
+        for other, across in places:
+            both = budget.correlation[one, other] * budget.inputs_u[one] * budget.inputs_u[other]
+            variance += gain**2 * profile * across * both
+    return np.asarray(np.sqrt(np.maximum(variance, 0.0)))

@@ -102,9 +102,10 @@ def _measured(
     rows, columns = rows[measurable], columns[measurable]
     centre = (float(columns.mean()), float(rows.mean()))
     t_spot = float(screened.t[spot.rows, spot.columns].mean())
-    stretch, scene = stretch_of(corrected, task, 0), corrected.scene
+    scene, stretch = corrected.scene, _stretch(corrected, task, spot.rows[0], spot.columns[0])
     around = scene[_ambient(scene)].value if screened.reference is None else screened.reference.at(*spot.centre)
-    known = {"noise": screened.noise / stretch, "contrast": (t_spot - around) / stretch}
+    noise = screened.noise / stretch_of(corrected, task, 0)  # that of a pixel, whatever it looks at
+    known = {"noise": noise, "contrast": (t_spot - around) / stretch}
     label = name if name.startswith(f"{task.id}-") else f"component {name}"  # no component may pass for the reference
     spot_shifts, spot_own = imperfections.of_spot(
         label, spot, patch, sense, **known, scene=scene, shape=screened.t.shape
@@ -124,6 +125,12 @@ def _measured(
     return Measured(patch, sense, spot, centre, t_spot, region, (*spot_own, *whole_own))
 
 
+def _stretch(corrected: Corrected, task: FrameTask, row: int, column: int) -> float:
+    """∂T/∂T_app where an area lies: on a shiny part a large deviation is a small one in the picture."""
+    stretch = stretch_of(corrected, task, int(corrected.optics[row, column]))
+    return stretch if stretch > 0 else stretch_of(corrected, task, 0)
+
+
 def _reference(
     corrected: Corrected, screened: Screened, task: FrameTask
 ) -> tuple[Area | None, imperfections.Tilts, tuple[Quantity, ...]]:
@@ -131,7 +138,7 @@ def _reference(
     reference = screened.reference
     if reference is None:
         return None, (), ()
-    stretch, scene = stretch_of(corrected, task, 0), corrected.scene
+    scene, stretch = corrected.scene, _stretch(corrected, task, reference.rows[0], reference.columns[0])
     shifts, tilts, own = imperfections.of_reference(reference, screened.reference_area, screened.t, stretch, scene)
     own = (*own, *imperfections.bounded_tilts(reference, screened.reference_area, stretch, scene))
     drawn = area(corrected, reference.rows, reference.columns, reference.weights)

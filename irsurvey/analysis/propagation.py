@@ -77,6 +77,6 @@ def _doubts(budget: Budget, drawn: Drawn | None) -> Iterator[str]:
     if drawn is None:
         return
     if count := int(np.count_nonzero(differ(budget, drawn))):
-        yield f"first order differs by more than 20 % from Monte Carlo in {count} numbers"
+        yield f"first order differs by more than 20 % from Monte Carlo, in u or an arm of the interval: {count} numbers"
     if count := int(np.count_nonzero(~drawn.converged & np.isfinite(drawn.u))):
         yield f"not settled after {drawn.draws} draws: {count} numbers"

@@ -13,13 +13,14 @@ from irsurvey.analysis.correction import Corrected, air_path
 from irsurvey.anomalies import reference as references
 from irsurvey.anomalies import segment as segments
 from irsurvey.anomalies.noise import pixel_noise
-from irsurvey.anomalies.patch import Patch
+from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.reference import Reference
+from irsurvey.anomalies.shape import Spot, extreme_spot
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.footprint import pixel_area
 from irsurvey.geometry.polygons import mask
 from irsurvey.geometry.rectify import pixel_areas
-from irsurvey.model import FrameTask, KnownLength, KnownRectangle
+from irsurvey.model import Component, FrameTask, KnownLength, KnownRectangle
 from irsurvey.radiometry.band import band_table
 from irsurvey.radiometry.measurement import amplification, object_temperature
 
@@ -39,7 +40,7 @@ class Anomalous:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Screened:
-    """A screened frame.  `t` is the temperature map with saturated-hot pixels at their bound [K]."""
+    """A screened frame.  `t` is the temperature map with saturated pixels at their bound [K]."""
 
     t: NDArray[np.float32]
     delta: NDArray[np.float32] | None
@@ -78,13 +79,12 @@ def screen(corrected: Corrected, task: FrameTask) -> Screened:
     for sense, sign in (("hot", 1), ("cold", -1)):
         toward = np.maximum(sign * allowance, 0)  # shading that darkens corners excuses cold ones, never hot ones
         limits = segments.thresholds(least, amplified, toward)
-        certain = corrected.saturated_hot & ~blocked if sense == "hot" and corrected.saturated_hot.any() else None
+        saturated = corrected.saturated_hot if sense == "hot" else corrected.saturated_cold
+        certain = saturated & ~blocked if saturated.any() else None
         for region in segments.segment(delta, candidates, sense, limits, min_pixels=min_pixels, certain=certain):
             regions.append(Anomalous(region, sense, certain is not None and bool(region.of(certain).any())))
-    if task.components:
-        near = _near_components(task, shape)
-        regions = [region for region in regions if not region.patch.of(near).any()]
-    regions.sort(key=_rank(delta))
+    regions = _beside_components(regions, t, min_delta, task)
+    regions.sort(key=_rank(delta, areas))
     detectable = float(segments.thresholds(min_delta, noise).seed)
     return Screened(t, delta, noise, reference, area, min_delta, detectable, shading, areas, tuple(regions))
 
@@ -105,31 +105,38 @@ def stretch_of(corrected: Corrected, task: FrameTask, index: int) -> float:
     return float(amplification(t, values[emissivity], values[reflected], air_path(values), task.camera.band))
 
 
-def _rank(delta: NDArray[np.float32]) -> Callable[[Anomalous], tuple[bool, float, int]]:
-    """Sort key: saturated first, then |mean ΔT| × pixels, largest first; position decides between equals."""
+def _rank(
+    delta: NDArray[np.float32], areas: NDArray[np.float64] | None
+) -> Callable[[Anomalous], tuple[bool, float, int]]:
+    """Sort key: saturated hot first, then |mean ΔT| × area, largest first; position decides between equals."""
+    has_scale = areas is not None and np.nanmax(areas) > 0
+    per_pixel = np.broadcast_to(areas if areas is not None and has_scale else 1.0, delta.shape)
 
     def key(region: Anomalous) -> tuple[bool, float, int]:
-        weight = abs(float(np.sum(region.patch.of(delta))))
-        return (not region.is_saturated, -weight, region.patch.top * delta.shape[1] + region.patch.left)
+        area = float(np.nansum(region.patch.of(per_pixel)))
+        weight = abs(float(np.sum(region.patch.of(delta)))) / region.patch.pixels * area
+        leads = region.is_saturated and region.sense == "hot"
+        return (not leads, -weight, region.patch.top * delta.shape[1] + region.patch.left)
 
     return key
 
 
 def _bounded(corrected: Corrected, task: FrameTask) -> NDArray[np.float32]:
-    """The temperature map, saturated-hot pixels at the temperature of the range's upper end."""
-    if not corrected.saturated_hot.any() or task.camera.range is None:
+    """The temperature map, saturated pixels at the temperature of the end of the range that they lie beyond."""
+    if not corrected.saturated_pixels or task.camera.range is None:
         return corrected.t
     values = corrected.scene.values()
     t = corrected.t.copy()
-    for index, (emissivity, reflected) in enumerate(corrected.optics_names):
-        bound = object_temperature(
-            np.float64(task.camera.range[1] + values["camera_offset"]),
-            values[emissivity],
-            values[reflected],
-            air_path(values),
-            task.camera.band,
-        )
-        t[corrected.saturated_hot & (corrected.optics == index)] = bound
+    for end, beyond in zip(task.camera.range, (corrected.saturated_cold, corrected.saturated_hot), strict=True):
+        for index, (emissivity, reflected) in enumerate(corrected.optics_names):
+            bound = object_temperature(
+                np.float64(end + values["camera_offset"]),
+                values[emissivity],
+                values[reflected],
+                air_path(values),
+                task.camera.band,
+            )
+            t[beyond & (corrected.optics == index)] = bound
     return t
 
 
@@ -199,13 +206,38 @@ def _pixel_area(task: FrameTask, corrected: Corrected, shape: tuple[int, int]) -
     return None
 
 
-def _near_components(task: FrameTask, shape: tuple[int, int]) -> NDArray[np.bool_]:
-    """Pixels of components and next to them: a region that reaches one is that component's warmth or its rim.
-
-    Next to means across the band around borders of optics, where no region can be.
-    """
-    near = np.zeros(shape, np.uint8)
-    for component in task.components:
-        near |= mask(component.polygon, shape).view(np.uint8)
+def near(component: Component, shape: tuple[int, int]) -> NDArray[np.bool_]:
+    """Pixels of a component and next to it: across the band around borders of optics, where no region can be."""
     reach = 2 * (segments.EDGE_BAND + 1) + 1
-    return cv2.dilate(near, np.ones((reach, reach), np.uint8)).view(np.bool_)
+    drawn = mask(component.polygon, shape).view(np.uint8)
+    return cv2.dilate(drawn, np.ones((reach, reach), np.uint8)).view(np.bool_)
+
+
+def _beside_components(
+    regions: list[Anomalous], t: NDArray[np.float32], min_delta: float, task: FrameTask
+) -> list[Anomalous]:
+    """Without those that are a component's own warmth or its rim, as the component itself tells of them.
+
+    It does not where a region that touches it is hotter, by what counts, than the hottest spot inside its outline:
+    that is something else, or a part of which too little was drawn.
+    """
+    shape = (t.shape[0], t.shape[1])
+    around = [(near(component, shape), _hottest(t, component, task)) for component in task.components]
+    kept = []
+    for region in regions:
+        told = [hottest for place, hottest in around if region.patch.of(place).any()]
+        spot = extreme_spot(t, region.patch, "hot", task.camera.spot_pixels) if told and region.sense == "hot" else None
+        if not told or (spot and _mean(t, spot) > max(told) + min_delta):
+            kept.append(region)
+    return kept
+
+
+def _hottest(t: NDArray[np.float32], component: Component, task: FrameTask) -> float:
+    """Temperature of a component's hottest spot [K]; −∞ where nothing of it can be measured."""
+    patch = cropped(mask(component.polygon, (t.shape[0], t.shape[1])))
+    spot = extreme_spot(t, patch, "hot", task.camera.spot_pixels) if patch else None
+    return _mean(t, spot) if spot else -np.inf
+
+
+def _mean(t: NDArray[np.float32], spot: Spot) -> float:
+    return float(t[spot.rows, spot.columns].mean())

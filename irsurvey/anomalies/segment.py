@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import log
+from typing import Any
 
 import cv2
 import numpy as np
@@ -114,9 +115,11 @@ def segment(
         x, y, width, height_px = (int(value) for value in stats[label, :4])
         box = (slice(y, y + height_px), slice(x, x + width))
         part = labels[box] == label
-        weight = part if isinstance(min_pixels, int) else part * min_pixels[box]
         least = min_pixels if isinstance(min_pixels, int) else 1.0
         kept = certain is not None and bool(certain[box][part].any())
+        around = (slice(max(y - 1, 0), y + height_px + 1), slice(max(x - 1, 0), x + width + 1))
+        reached = _with_corners(labels[around], int(label), inside[around])
+        weight = reached if isinstance(min_pixels, int) else reached * min_pixels[around]
         if weight.sum() < least and not kept:
             continue
         for piece in _split(part, height[box], int(least) if isinstance(min_pixels, int) else 25):
@@ -124,6 +127,12 @@ def segment(
             if patch is not None:
                 regions.append(Patch(patch.top + y, patch.left + x, patch.mask))
     return regions
+
+
+def _with_corners(labels: NDArray[Any], label: int, inside: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """One region with what cleaning took from its corners: a square of just the size that counts does count."""
+    grown = cv2.dilate((labels == label).view(np.uint8), np.ones((3, 3), np.uint8)).view(np.bool_)
+    return np.asarray((labels == label) | (grown & inside & (labels == 0)))
 
 
 def edge_band(optics: NDArray[np.uint8], width: int = EDGE_BAND) -> NDArray[np.bool_]:

@@ -29,6 +29,7 @@ LOW_LOAD: Final = "low load"
 LOAD_UNKNOWN: Final = "load unknown"
 CONDITIONS: Final = "conditions not valid"
 AUTOMATIC_REFERENCE: Final = "automatic reference"
+HOTTER_BESIDE: Final = "hotter beside it"
 
 NOT_CLEARED: Final = "cannot be cleared"
 NO_CRITERION: Final = "no criterion for this method"
@@ -42,6 +43,7 @@ BLOCKERS: Final[Mapping[str, str]] = {
     LOAD_UNKNOWN: "look again with its load measured and its rating noted; a mild reading proves nothing",
     CONDITIONS: "look again under conditions that allow the claim",
     AUTOMATIC_REFERENCE: "confirm the reference area and run again",
+    HOTTER_BESIDE: "draw its outline around all of it, or name what lies beside it, and run again",
 }
 """Flags that never clear anything and may always raise it, and how to look again."""
 

@@ -11,6 +11,7 @@ from irsurvey.analysis.correction import Optics
 from irsurvey.analysis.inputs import inputs
 from irsurvey.assess.severity import LEAST_EMISSIVITY
 from irsurvey.constants import ZERO_CELSIUS
+from irsurvey.errors import Fault, UsageError
 from irsurvey.geometry.footprint import largest_distance, pixel_area, pixel_side, spot_size
 from irsurvey.model import FrameTask, Input, Scene, Survey
 from irsurvey.plan.gains import Gain, gains
@@ -120,8 +121,12 @@ def plan(survey: Survey, *, contrast: float | None = None, size: float = 0.02) -
 
 def _prospect(case: _Case, contrast: float | None, size: float) -> Prospect:
     threshold = imagined(case.task, case.optics).threshold
-    picture = imagined(case.task, case.optics, contrast=threshold if contrast is None else contrast)
+    asked = threshold if contrast is None else contrast
+    picture = imagined(case.task, case.optics, contrast=asked)
     number = "delta_similar" if case.against == "twin" else "delta"
+    if (MIDDLE, number) not in picture:
+        expected = "a difference that what is seen can have"
+        raise UsageError(Fault("--contrast-k", expected, f"{asked:g}", "ask for a smaller one"))
     numbers = {"in the middle": (MIDDLE, number), "near a corner": (CORNER, number)}
     if case.task.kind == "electrical":
         numbers[OVER_AMBIENT] = (MIDDLE, "delta_ambient")
@@ -136,7 +141,7 @@ def _prospect(case: _Case, contrast: float | None, size: float) -> Prospect:
         emissivity=picture.scene[case.optics[0]].value,
         distance=picture.scene["distance"].value,
         threshold=threshold,
-        contrast=threshold if contrast is None else contrast,
+        contrast=asked,
         differences=tuple(_difference(case, place, number, picture) for place, number in numbers.items()),
         air_c=_air_c(picture.scene),
         walls=tuple(_walls(case, picture)),

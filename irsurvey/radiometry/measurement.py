@@ -75,8 +75,9 @@ def object_temperature(
     emitted = (scene.table.radiance(t_apparent) - scene.rest) / scene.gain
     emitted = np.where(emitted > 0, emitted, np.nan)
     t_object = np.asarray(t_apparent, float)
-    for _ in range(_ITERATIONS):
-        t_object = scene.table.temperature(emitted / (1 - scene.air.at(t_object)))
+    with np.errstate(divide="ignore"):  # through so much air that nothing comes of it: infinite, which has no solution
+        for _ in range(_ITERATIONS):
+            t_object = scene.table.temperature(emitted / (1 - scene.air.at(t_object)))
     return t_object
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from dataclasses import fields
 from pathlib import Path
 from typing import Any
@@ -30,6 +31,7 @@ COLUMNS = (
     *("criterion", "class", "urgency", "verdict", "outcome", "flags"),
 )
 
+_CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 _FORMULA_STARTS = tuple("=+-@\t\r\n＝＋－＠")
 """What makes a spreadsheet run a cell as a formula, full-width forms included (OWASP, CSV Injection)."""
 
@@ -49,7 +51,10 @@ def write(report: Report, _tasks: tuple[FrameTask, ...], out: Path) -> Path:
 
 
 def as_text(cell: str) -> str:
-    """A text that a spreadsheet shows instead of running it: an apostrophe before what would start a formula."""
+    """A text that a spreadsheet shows instead of running it: an apostrophe before what would start a formula.
+
+    Control characters, of which NUL ends a table in many a reader, become U+FFFD as on the page."""
+    cell = _CONTROLS.sub("\ufffd", cell)
     return f"'{cell}" if cell.startswith(_FORMULA_STARTS) else cell
 
 

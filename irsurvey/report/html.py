@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import re
 from base64 import b64encode
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, replace
 from functools import cache
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -14,6 +14,7 @@ from irsurvey import files, numbers
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
 from irsurvey.report import results, texts
 from irsurvey.report.labels import component_mark
+from irsurvey.report.picture import NUMBERED
 from irsurvey.report.ranking import Ranked, governing, in_order
 
 if TYPE_CHECKING:
@@ -23,6 +24,7 @@ SUMMARY_LENGTH = 8
 """Results named on the first page; the table behind it has all of them."""
 
 _LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
+_NAMED = 3  # findings or components of one frame named when they are not cleared for one reason; of more, their number
 _NOT_FREE_TEXT = {"title", "kind", "method", "viewed_from", "timezone", "reference", "camera"}
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 
@@ -44,7 +46,8 @@ class Sheet:
     frame: FrameReport
     task: FrameTask | None
     picture: Picture | None
-    urgency: int | None  # the highest of its findings and components
+    to_do: str  # in short: what the most urgent of its findings and components asks for
+    chip: str  # how that is set
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,10 +75,11 @@ def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
         report=report,
         title=_about(report).get("title") or "Thermographic survey",
         about={texts.about(key): text for key, text in _about(report).items() if key not in _NOT_FREE_TEXT},
-        sheets=[Sheet(frame, by_id.get(frame.id), _picture(frame, out), _highest(frame)) for frame in report.frames],
+        sheets=[_sheet(frame, by_id.get(frame.id), out) for frame in report.frames],
         ranked=ranked,
         named={_name(entry): entry for entry in ranked},
-        open_points=list(not_cleared(report)),
+        not_cleared=sum(1 for _ in not_cleared(report)),
+        open_points=gathered(not_cleared(report)),
         cautions=(*report.cautions, *texts.cautions(frame.kind for frame in report.frames)),
     )
     return _CONTROLS.sub("\ufffd", rendered)
@@ -88,6 +92,8 @@ def not_cleared(report: Report) -> Iterator[Open]:
             continue
         if frame.claim == "not valid":
             yield Open(frame, "the whole frame", frame.claim_reason)
+        elif not _is_compared(frame):
+            yield Open(frame, "the whole frame", "nothing in it could be compared with a reference area")
         if frame.temperature and (lost := frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels):
             yield Open(frame, f"{lost} pixels", "no temperature could be measured there")
         for finding in frame.findings:
@@ -96,6 +102,19 @@ def not_cleared(report: Report) -> Iterator[Open]:
         for component in frame.components:
             if component.outcome == "not cleared":
                 yield Open(frame, component.name, _why(component))
+
+
+def gathered(points: Iterable[Open]) -> list[Open]:
+    """Points of one frame that are open for the same reason as one point, in the order of the first of each."""
+    alike: dict[tuple[str, str], list[Open]] = {}
+    for point in points:
+        alike.setdefault((point.frame.id, point.why), []).append(point)
+    return [
+        replace(same[0], what=", ".join(point.what for point in same))
+        if len(same) <= _NAMED
+        else replace(same[0], what=f"{len(same)} of its results")
+        for same in alike.values()
+    ]
 
 
 def _about(report: Report) -> dict[str, str]:
@@ -117,9 +136,24 @@ def _why(item: Finding | ComponentReport) -> str:
     return " ".join(texts.flag(flag) for flag in item.flags) or "no criterion applies"
 
 
-def _highest(frame: FrameReport) -> int | None:
+def _sheet(frame: FrameReport, task: FrameTask | None, out: Path) -> Sheet:
     items: tuple[Finding | ComponentReport, ...] = (*frame.findings, *frame.components)
-    return max((item.urgency for item in items if item.urgency is not None), default=None)
+    urgency = max((item.urgency for item in items if item.urgency is not None), default=None)
+    is_open = any(item.outcome == "not cleared" for item in items)
+    to_do = texts.to_do(urgency, "not cleared" if is_open else "")
+    chip = "weak" if to_do != texts.urgency(urgency) else "ux" if urgency is None else f"u{urgency}"
+    if frame.status == "failed":
+        to_do, chip = "not readable", "weak"
+    elif not items and frame.claim == "not valid":
+        to_do, chip = frame.claim, "weak"
+    elif not items:
+        to_do, chip = ("nothing found", "") if _is_compared(frame) else ("nothing compared", "weak")
+    return Sheet(frame, task, _picture(frame, out), to_do, chip)
+
+
+def _is_compared(frame: FrameReport) -> bool:
+    """Whether a frame has a reference area to hold its pixels against."""
+    return frame.detectable is not None and frame.detectable.min_delta_k is not None
 
 
 def _picture(frame: FrameReport, out: Path) -> Picture | None:
@@ -153,6 +187,7 @@ def _environment() -> Environment:
     environment.globals |= {
         "component_mark": component_mark,
         "governing": governing,
+        "numbered": NUMBERED,
         "n": numbers,
         "r": results,
         "summary_length": SUMMARY_LENGTH,

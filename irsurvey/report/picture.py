@@ -25,6 +25,8 @@ LEGIBLE_SIDE = 560
 """A picture whose longer side has fewer pixels is enlarged by a whole factor until it has them."""
 MINIMUM_SPAN_K = 2.0
 """A colour scale never spans less, so that noise does not look like a pattern."""
+NUMBERED = 30
+"""Findings that get a number, the foremost ones: more would hide the picture and stand far from what they name."""
 _SAMPLE = 20_000  # pixels that give the display range; its percentiles need no more
 _HATCH = 8  # pixels between two lines of the hatching
 _CLEARANCE = 2  # pixels between an extreme and a tag
@@ -140,8 +142,9 @@ def _hatch(picture: Pixels) -> None:
 
 
 def _labels(frame: FrameReport, factor: int) -> list[Label]:
-    """Findings by number, dark on light; components by letter, light on dark; largest findings first."""
-    findings = [Label(str(finding.label), _box(finding.polygon, factor), True) for finding in frame.findings]
+    """The foremost findings by number, dark on light; components by letter, light on dark; largest findings first."""
+    foremost = frame.findings[:NUMBERED]
+    findings = [Label(str(finding.label), _box(finding.polygon, factor), True) for finding in foremost]
     components = [
         Label(component_mark(number), _box(component.polygon, factor), False)
         for number, component in enumerate(frame.components, 1)

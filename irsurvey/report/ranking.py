@@ -28,7 +28,7 @@ def governing(assessments: tuple[Assessment, ...]) -> Assessment | None:
 def in_order(report: Report) -> tuple[Ranked, ...]:
     """All findings and components, the most important first.
 
-    Saturated ones lead (their reading is only a lower bound), then urgency, then components before
+    Saturated hot ones lead (their reading is only a lower bound), then urgency, then components before
     findings, then |mean ΔT| × area of a finding or the larger |ΔT| of a component."""
     ranked: list[Ranked] = []
     for frame in report.frames:
@@ -48,7 +48,8 @@ def _urgency(urgency: int | None) -> float:
 
 def _importance(ranked: Ranked) -> tuple[bool, float, bool, float]:
     item = ranked.item
-    return (not is_saturated(item), -_urgency(item.urgency), isinstance(item, Finding), -_weight(item))
+    leads = is_saturated(item) and (isinstance(item, ComponentReport) or item.sense == "hot")
+    return (not leads, -_urgency(item.urgency), isinstance(item, Finding), -_weight(item))
 
 
 def _weight(item: Finding | ComponentReport) -> float:

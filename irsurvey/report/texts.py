@@ -25,6 +25,11 @@ def urgency(level: int | None) -> str:
     return _word("urgency", "none" if level is None else str(level))
 
 
+def to_do(level: int | None, outcome: str) -> str:
+    """What a result asks for: where its urgency asks for nothing although it is not cleared, to look again."""
+    return _word("urgency", "open") if level == 0 and outcome == "not cleared" else urgency(level)
+
+
 def outcome(kind: str) -> str:
     """What an outcome means."""
     return _word("outcome", kind)

@@ -112,14 +112,14 @@ def test_contrast_is_judged_by_its_magnitude(delta: float, urgency: int) -> None
 def test_a_cold_patch_seen_from_inside_gets_its_contrast_and_its_temperature_factor() -> None:
     contrast, factor = judged(-2.0, factor=0.87).assessments
     assert (contrast.criterion, contrast.class_) == ("building-contrast", "visible")
-    assert (factor.criterion, factor.class_) == ("temperature-factor-ie", "meets the limit")
+    assert (factor.criterion, factor.class_) == ("temperature-factor-ie", "factor meets limit")
 
 
 def test_a_factor_is_classed_as_converted_and_both_are_told() -> None:
     # 0.80 is above 0.70 as seen at 0.13, but 0.675 at the 0.25 the limit assumes
     verdict = judged(-2.0, factor=0.80, criteria_=(FACTOR_DE,))
     (assessment,) = verdict.assessments
-    assert assessment.class_ == "below the limit"
+    assert assessment.class_ == "factor below limit"
     assert "0.675\u00a0±\u00a00.027" in assessment.statement  # U keeps two digits, the value its places
     assert "0.80 at the 0.13 m² K/W seen" in assessment.statement
     assert "0.25 m² K/W the limit assumes" in assessment.statement
@@ -153,7 +153,7 @@ def test_an_automatic_reference_gives_a_suggestion_without_severity() -> None:
     contrast, factor = verdict.assessments
     assert (contrast.class_, contrast.urgency, contrast.probabilities) == (None, None, {})
     assert "no severity until it is confirmed" in contrast.statement
-    assert factor.class_ == "meets the limit"  # needs no reference
+    assert factor.class_ == "factor meets limit"  # needs no reference
     assert {AUTOMATIC_REFERENCE, NOT_CLEARED} <= set(verdict.flags)
     assert judged(-9.0, criteria_=ENVELOPE[:1], flags=(AUTOMATIC_REFERENCE,)).urgency is None
 

@@ -135,7 +135,7 @@ def test_a_difference_exceeds_its_threshold_in_its_own_sense() -> None:
 
 
 def test_the_class_probabilities_of_14_2_k() -> None:
-    expected = {"alike": 0.0, "slight": 0.0, "clear": 0.7475, "severe": 0.2525}  # Φ by table, four digits
+    expected = {"alike": 0.0, "slight": 0.0, "marked": 0.7475, "severe": 0.2525}  # Φ by table, four digits
     assert class_probabilities(14.2, 1.2, SIMILAR) == pytest.approx(expected, abs=5e-5)
 
 

@@ -426,7 +426,7 @@ def test_probabilities_are_those_of_the_normal_distribution_between_the_edges() 
     values = {"delta_similar_k": Estimate(14.2, 1.2), "delta_ambient_k": Estimate(30.0, 1.2)}
     verdict = assess_component(lug("1", 30.0), TwinPlan(1, "2"), values, BOTH)
     assert verdict.assessments[0].probabilities == pytest.approx(
-        {"alike": 0, "slight": 0, "clear": 0.7475, "severe": 0.2525}, abs=5e-5
+        {"alike": 0, "slight": 0, "marked": 0.7475, "severe": 0.2525}, abs=5e-5
     )
 
 
@@ -553,6 +553,10 @@ def test_in_a_sound_group_of_like_load_the_order_of_members_does_not_matter(memb
     assert forward == backward[::-1]
 
 
-def test_a_bare_twin_without_a_load_ratio_is_not_cleared_by_accident() -> None:
-    assert np.isnan(load_ratio(lug("1", 1.0, load=None)))
-    assert np.isnan(load_ratio(lug("1", 1.0, rated=0.0)))
+def test_without_load_or_rating_there_is_no_load_ratio_and_nothing_is_cleared() -> None:
+    for unknown in (lug("1", 1.0, load=None), lug("1", 1.0, rated=0.0)):
+        assert np.isnan(load_ratio(unknown))
+        verdict = judged((unknown, lug("2", 1.2)))["1"]
+        assert verdict.urgency == 0
+        assert not verdict.cleared
+        assert LOAD_UNKNOWN in verdict.flags

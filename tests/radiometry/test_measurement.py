@@ -437,3 +437,11 @@ def test_scenes_times_values_give_what_each_alone_gives() -> None:
                 alone = function(values[column], emissivity[row, 0], t_reflected[row, 0], path, LONG_WAVE)
                 # sums in another order: the last digits of radiances, amplified by 1/ε
                 assert float(alone) == pytest.approx(together[row, column], rel=1e-12)
+
+
+def test_through_so_much_air_that_nothing_comes_there_is_no_temperature_and_no_warning(
+    recwarn: pytest.WarningsRecorder,
+) -> None:
+    opaque = replace(ROOM, distance=1e9)
+    assert np.isnan(object_temperature(295.0, 0.9, 293.15, opaque, LONG_WAVE))
+    assert not recwarn.list

@@ -92,6 +92,12 @@ def test_the_columns_are_those_of_the_specification() -> None:
     assert len(set(COLUMNS)) == len(COLUMNS)
 
 
+def test_control_characters_do_not_reach_the_table() -> None:
+    # NUL ends the file for many readers of CSV; ESC and BEL act on a terminal
+    assert as_text("a\x00b\x1b[31mc\x07") == "a\ufffdb\ufffd[31mc\ufffd"
+    assert as_text("two\nlines\tand a tab") == "two\nlines\tand a tab"
+
+
 # What spreadsheets take for a formula: OWASP, "CSV Injection"
 @pytest.mark.parametrize("start", ["=", "+", "-", "@", "\t", "\r", "\n", "＝", "＋", "－", "＠"])
 def test_a_text_that_would_run_is_shown_instead(report: Report, tmp_path: Path, start: str) -> None:

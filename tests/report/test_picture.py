@@ -17,7 +17,15 @@ from irsurvey.model import FrameReport, Maps, Report
 from irsurvey.report.inks import DARK, LEVELS, LIGHT, UNMEASURABLE, palette
 from irsurvey.report.labels import Label, component_mark, place
 from irsurvey.report.outlines import WIDTH
-from irsurvey.report.picture import MINIMUM_SPAN_K, annotated, display_range, enlargement, save, shades
+from irsurvey.report.picture import (
+    MINIMUM_SPAN_K,
+    NUMBERED,
+    annotated,
+    display_range,
+    enlargement,
+    save,
+    shades,
+)
 from irsurvey.report.scale import LEAST_HEIGHT, round_step, strip
 
 
@@ -184,6 +192,16 @@ def test_a_crowded_picture_still_names_everything_and_spares_what_must_stay_visi
     corners = [corner for _, corner in place([Label(str(n), (0, 0, 160, 120), True) for n in range(12)], busy)]
     assert len(set(corners)) == 12
     assert not [(x, y) for x, y in corners if 60 < x < 90 and 40 < y < 70]
+
+
+def test_of_very_many_findings_the_foremost_are_numbered_and_the_picture_stays_visible(
+    wall: FrameReport, wall_maps: Maps
+) -> None:
+    many = tuple(replace(wall.findings[0], label=k, id=f"F01-{k}") for k in range(1, 200))
+    picture = np.asarray(annotated(replace(wall, findings=many), wall_maps))
+    anywhere = (0, 0, 0, 0)
+    assert all(has_tag(picture, Label(str(k), anywhere, True)) for k in (1, NUMBERED))
+    assert not has_tag(picture, Label(str(NUMBERED + 1), anywhere, True))
 
 
 def test_components_are_named_by_letters() -> None:

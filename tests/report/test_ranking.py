@@ -39,6 +39,18 @@ def test_saturated_first_then_urgency_then_unclassed_before_no_action(report: Re
     assert names(report) == ["S01-1", "phase 2 lug", "F01-1", "phase 3 bare bar", "F01-2", "phase 1 lug"]
 
 
+def test_what_is_colder_than_the_range_does_not_lead(report: Report) -> None:
+    # A clear sky at the edge of a picture is as cold: only heat comes before everything else.
+    frames = tuple(
+        replace(
+            frame,
+            findings=tuple(replace(one, sense="cold") if one.id == "S01-1" else one for one in frame.findings),
+        )
+        for frame in report.frames
+    )
+    assert names(replace(report, frames=frames))[0] != "S01-1"
+
+
 def test_at_one_urgency_the_larger_deviation_times_area_leads(report: Report) -> None:
     wall = report.frames[0]
     small = replace(wall.findings[0], area_m2=Estimate(0.1, 0.01), mean_delta_k=Estimate(-4.0, 0.1))

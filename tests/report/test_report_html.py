@@ -17,7 +17,7 @@ import pytest
 from irsurvey.model import FrameTask, Maps, Report
 from irsurvey.numbers import shown
 from irsurvey.report import frame_files
-from irsurvey.report.html import not_cleared, page, write
+from irsurvey.report.html import Open, gathered, not_cleared, page, write
 from irsurvey.report.json import plain
 
 VOID = {"meta", "link", "img", "br", "hr", "input"}
@@ -269,6 +269,39 @@ def test_a_finding_that_asks_for_nothing_is_still_not_cleared(report: Report) ->
     mild = replace(mild, urgency=0, outcome="not cleared")
     found = [point.what for point in not_cleared(replace(report, frames=(replace(wall, findings=(mild, other)),)))]
     assert found == ["finding F01-1"]
+
+
+def test_results_of_a_frame_that_are_open_for_one_reason_are_one_line(report: Report) -> None:
+    wall = report.frames[0]
+    many = [Open(wall, f"finding F01-{k}", "automatic reference") for k in range(1, 40)]
+    other = [Open(report.frames[3], "bar", "too reflective"), Open(wall, "40 pixels", "not measured")]
+    lines = [(point.what, point.why) for point in gathered([*many, *other])]
+    assert lines == [
+        ("39 of its results", "automatic reference"),
+        ("bar", "too reflective"),
+        ("40 pixels", "not measured"),
+    ]
+    assert [point.what for point in gathered(many[:2])] == ["finding F01-1, finding F01-2"]
+
+
+def test_what_is_not_cleared_is_never_labelled_no_action(report: Report, out: Path) -> None:
+    # one-sided safety: an urgency of 0 beside "not cleared" would be read as all clear
+    wall = report.frames[0]
+    mild = replace(wall.findings[0], urgency=0, outcome="not cleared", assessments=())
+    html = page(replace(report, frames=(replace(wall, findings=(mild,), components=()),)), (), out)
+    chips = re.findall(r'class="chip[^"]*">([^<]+)<', html)
+    assert chips.count("look again") == 3  # in the table, in the index and on its sheet
+    assert not {"no action", "nothing found"} & set(chips)
+
+
+def test_a_frame_in_which_nothing_was_compared_is_not_called_free_of_findings(report: Report, out: Path) -> None:
+    wall = report.frames[0]
+    assert wall.detectable
+    blind = replace(wall, findings=(), reference=None, detectable=replace(wall.detectable, min_delta_k=None))
+    text = Page(page(replace(report, frames=(blind,)), (), out)).text
+    assert "nothing compared" in text
+    assert "nothing found" not in text
+    assert [point.what for point in not_cleared(replace(report, frames=(blind,)))] == ["the whole frame"]
 
 
 def test_inputs_say_whether_they_were_stated_measured_or_assumed(shown_page: Page) -> None:

@@ -119,7 +119,7 @@ def test_changes_are_gathered_by_the_class_they_lead_to(report: Report) -> None:
 
 
 def test_a_component_is_fragile_in_the_same_words(report: Report) -> None:
-    part = replace(report.frames[3].components[0], flips=(Flip("load_exponent", 0.1, "clear"),))
+    part = replace(report.frames[3].components[0], flips=(Flip("load_exponent", 0.1, "marked"),))
     assert changes(part)[0].inputs == ("+0.1 in load exponent (rise grows as load to its power)",)
 
 
