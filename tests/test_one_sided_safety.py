@@ -160,3 +160,24 @@ def test_labels_go_by_area_in_metres_where_pixels_differ_in_size():
     weights = [abs(one.mean_delta_k.value) * one.area_m2.value for one in report.findings]
     assert weights == sorted(weights, reverse=True)
     assert maps.labels[15, 110] == 1
+
+
+@pytest.mark.parametrize(("pixels", "rise"), [(2, 2.0), (1, 10.0)])
+def test_a_hot_spot_too_small_to_be_read_does_not_hide_in_a_generous_outline(pixels, rise):
+    # Blurred by a lens of 0.7 px, a joint of one or two pixels reads a fraction of what it is (electrical trade: a part
+    # smaller than the measuring spot is at least as hot as it reads).
+    import cv2
+
+    t = lugs(0.3)
+    t[50 : 50 + pixels, 30 : 30 + pixels] += rise
+    left, right = panel(cv2.GaussianBlur(t, (0, 0), 0.7)).components
+    assert not left.cleared
+    assert "size-limited" in left.flags
+    assert "size-limited" not in right.flags
+
+
+def test_under_conditions_that_are_not_valid_no_part_is_cleared(monkeypatch):
+    monkeypatch.setattr(pipeline, "claim", lambda *_: ("not valid", "made up"))
+    for lug in panel(lugs(3.0)).components:
+        assert not lug.cleared
+        assert "conditions not valid" in lug.flags

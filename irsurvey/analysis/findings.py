@@ -141,13 +141,15 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
         )
 
 
-def components(evidence: Evidence, plans: Mapping[str, TwinPlan]) -> Iterator[ComponentReport]:
+def components(
+    evidence: Evidence, plans: Mapping[str, TwinPlan], *, is_valid: bool
+) -> Iterator[ComponentReport]:
     """The components of a frame in the order of the survey."""
     task, corrected, results = evidence.task, evidence.corrected, evidence.numbers.results
     for component in task.components:
         name = component.name
         drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
-        member = _member(component, corrected, evidence.planned)
+        member = _member(component, corrected, evidence.planned, is_valid=is_valid)
         plan = plans[name]
         numbers = {
             "max_c": _celsius(results.get((name, "max"))),
@@ -204,7 +206,7 @@ def _exceeds(delta: Estimate | None, threshold: float, sense: str) -> float | No
     return float(exceeds(delta.value, delta.u, threshold, sense))
 
 
-def _member(component: Component, corrected: Corrected, planned: Planned) -> Member:
+def _member(component: Component, corrected: Corrected, planned: Planned, *, is_valid: bool = True) -> Member:
     """A component as its group sees it."""
     measured = planned.components.get(component.name)
     drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
@@ -213,9 +215,10 @@ def _member(component: Component, corrected: Corrected, planned: Planned) -> Mem
     place = near(component, (drawn.shape[0], drawn.shape[1]))
     flags = (
         (SATURATED, bool(saturated.any())),
-        (SIZE_LIMITED, measured is not None and not measured.spot.is_full),
+        (SIZE_LIMITED, measured is not None and (measured.has_narrow_core or not measured.spot.is_full)),
         (NO_SOLUTION, measured is None or bool((drawn & np.isnan(corrected.t) & ~saturated).any())),
         (TOUCHES_EDGE, patch is not None and patch.touches_edge(drawn.shape)),
+        (CONDITIONS, not is_valid),
         (HOTTER_BESIDE, any(one.sense == "hot" and one.patch.of(place).any() for one in planned.anomalies)),
     )
     own = planned.scene[component.emissivity].value

@@ -58,7 +58,7 @@ def frame_report(
         temperature=_summary(corrected),
         reference=_reference(evidence),
         findings=tuple(findings(evidence, is_valid=level != "not valid")),
-        components=tuple(components(evidence, twins)),
+        components=tuple(components(evidence, twins, is_valid=level != "not valid")),
         flags=(*_flags(evidence), *evidence.numbers.doubts),
     )
 

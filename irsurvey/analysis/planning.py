@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
+import cv2
 import numpy as np
 
 from irsurvey.analysis import imperfections
@@ -31,6 +32,7 @@ class Measured:
     t_spot: float  # nominal mean over the spot [K]
     region: Region
     own: tuple[Quantity, ...]  # what the scene holds for it alone
+    has_narrow_core: bool  # what is hottest or coldest in it is smaller than a measurement spot
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -122,7 +124,21 @@ def _measured(
         rim=imperfections.perimeter(patch) * extent / patch.pixels,
         outline=next((q.name for q in whole_own if q.name.startswith(imperfections.OUTLINE)), None),
     )
-    return Measured(patch, sense, spot, centre, t_spot, region, (*spot_own, *whole_own))
+    narrow = _has_narrow_core(patch, sense, screened, task.camera.spot_pixels)
+    return Measured(patch, sense, spot, centre, t_spot, region, (*spot_own, *whole_own), narrow)
+
+
+def _has_narrow_core(patch: Patch, sense: str, screened: Screened, spot_pixels: int) -> bool:
+    """Whether the pixels above half the contrast within an area hold no measurement spot: then none reads them.
+
+    Contrast of the extreme pixel against the median of the area; below five times the noise there is none.
+    """
+    t = np.where(patch.mask, screened.t[patch.box], np.nan) * (1.0 if sense == "hot" else -1.0)
+    extreme, middle = float(np.nanmax(t)), float(np.nanmedian(t))
+    if extreme - middle < 5 * screened.noise:
+        return False
+    core = (t >= (extreme + middle) / 2).astype(np.uint8)
+    return not cv2.erode(core, np.ones((spot_pixels, spot_pixels), np.uint8), borderValue=0).any()
 
 
 def _stretch(corrected: Corrected, task: FrameTask, row: int, column: int) -> float:
