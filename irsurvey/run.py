@@ -14,13 +14,14 @@ from irsurvey.assess.criteria import criteria
 from irsurvey.batch import execute
 from irsurvey.errors import Fault, FrameError, OutputError, SurveyError, UsageError
 from irsurvey.files import PART, write_text
+from irsurvey.geometry.polygons import mask
 from irsurvey.heat.convection import CONVECTION
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
 from irsurvey.report import WRITERS, frame_files
 from irsurvey.survey.load import Known, load
-from irsurvey.survey.outside import is_drawn_on, polygon_faults
+from irsurvey.survey.outside import areas, is_drawn_on, polygon_faults
 from irsurvey.survey.places import OUTPUT_MARKER
 
 _MARKER_TEXT = "irsurvey wrote this folder; its next run writes over it. Keep nothing of your own in it.\n"
@@ -155,6 +156,10 @@ def _judge_pixels(tasks: Iterable[FrameTask]) -> tuple[list[Fault], tuple[tuple[
             unreadable.append((task.id, str(error)))
             continue
         faults += polygon_faults(task, (shape[0], shape[1]))
+        for where, area in areas(task):
+            if not mask(area, (shape[0], shape[1])).any():
+                expected, remedy = "an outline around at least one pixel centre", "pixel centres are whole numbers"
+                faults.append(Fault(f"frame[{task.id}].{where}", expected, "none in it", remedy))
     return faults, tuple(unreadable)
 
 

@@ -195,10 +195,34 @@ def test_one_far_off_number_that_makes_a_float_frame_coarse_is_told():
     camera = tasks.camera(signal=replace(tasks.CENTIKELVIN, scale=1.0))
     fine, _ = pipeline.analyse(Frame(stored.copy(), "0" * 64), tasks.task(camera=camera))
     assert not any("steps of" in flag for flag in fine.flags)
-    stored[0, 0] = -9999  # a fill value nobody declared
-    coarse, maps = pipeline.analyse(Frame(stored, "0" * 64), tasks.task(camera=camera))
+    stored[0, 0] = 1700.0
+    coarse, _ = pipeline.analyse(Frame(stored, "0" * 64), tasks.task(camera=camera))
     assert any("steps of" in flag for flag in coarse.flags)
+
+
+@pytest.mark.parametrize("number", [-9999.0, 0.0, 65_535.0, 1e6, 1e38])
+@pytest.mark.parametrize("limits", [None, (253.15, 423.15)])
+def test_a_fill_value_nobody_declared_costs_its_own_pixel_and_nothing_else(number, limits):
+    stored = np.rint(wall() * 100).astype(np.float32) / 100
+    camera = tasks.camera(signal=replace(tasks.CENTIKELVIN, scale=1.0), range=limits)
+    clean, clean_maps = pipeline.analyse(Frame(stored.copy(), "0" * 64), tasks.task(camera=camera))
+    stored[0, 0] = number
+    report, maps = pipeline.analyse(Frame(stored, "0" * 64), tasks.task(camera=camera))
     assert np.isnan(maps.temperature_c[0, 0])
+    # 150…1800 K in 65 534 steps are 25 mK, half of that is rounding
+    assert np.nanmax(np.abs(maps.temperature_c - clean_maps.temperature_c)) < 0.02
+    found = [finding for finding in report.findings if "saturated" not in finding.flags]  # beyond the range: one
+    assert [finding.pixels for finding in found] == [finding.pixels for finding in clean.findings]
+
+
+def test_wide_integers_keep_their_values_beside_a_far_off_one():
+    stored = np.rint(wall() * 100).astype(np.int32)
+    _, clean = pipeline.analyse(Frame(stored.copy(), "0" * 64), tasks.task())
+    stored[0, 0] = -(2**31)
+    _, maps = pipeline.analyse(Frame(stored, "0" * 64), tasks.task())
+    assert np.isnan(maps.temperature_c[0, 0])
+    # 180 000 hundredths of a kelvin in 65 534 steps are three at a time: 0.03 K, half of that is rounding
+    assert np.nanmax(np.abs(maps.temperature_c - clean.temperature_c)) < 0.02
 
 
 def test_a_clean_frame_is_a_bounded_statement():
@@ -206,6 +230,14 @@ def test_a_clean_frame_is_a_bounded_statement():
     assert report.findings == ()
     assert report.detectable.min_delta_k == pytest.approx(1.0, abs=0.1)
     assert report.detectable.min_area_m2 == pytest.approx(25 * 0.002**2, rel=1e-9)
+
+
+def test_at_distance_0_no_area_is_made_up():
+    # distance 0 leaves out the air or stands for "not recorded"; a pixel's footprint, distance × IFOV, would be nothing
+    report, _ = pipeline.analyse(tasks.frame(wall()), tasks.task(scene=tasks.scene(distance=0.0)))
+    (finding,) = report.findings
+    assert (finding.area_m2, finding.excess_heat_w, report.detectable.min_area_m2) == (None, None, None)
+    assert finding.excess_heat_w_m2 is not None
 
 
 def test_what_is_stated_detectable_is_found_and_half_of_it_is_not():

@@ -310,3 +310,10 @@ def test_tables_never_flatter() -> None:
         f"{100 * one.alone:.0f}\u00a0%" for one in prospect.walls if one.alone is not None
     ]
     assert {why for _, _, _, why, _, _ in shown["What to improve first"]} == {why for why, _ in shown["How"]}
+
+
+def test_at_distance_0_there_are_no_sizes_of_pixels_in_the_table() -> None:
+    (row,) = {table.title: table.rows for table in tables([only(tasks.task(scene=tasks.scene(distance=0.0)))], 0.02)}[
+        "Sizes"
+    ]
+    assert row[1:4] == ("–", "–", "–")

@@ -154,6 +154,26 @@ def test_a_polygon_outside_its_frame_is_a_fault_and_nothing_is_run(site):
         check(site)
 
 
+@pytest.mark.parametrize("corners", ["[[2.2, 2.2], [2.8, 2.2], [2.8, 2.8]]", "[[2.1, 3.5], [90.0, 3.5], [90.0, 3.6]]"])
+def test_a_polygon_around_no_pixel_is_a_fault_and_nothing_is_run(site, corners):
+    # it would be measured as nothing: no reference, no component, no word about why
+    site.write_text(SURVEY.replace("[[2, 2], [50, 2], [50, 117], [2, 117]]", corners), "utf-8")
+    for command in (run, check):
+        with pytest.raises(SurveyError, match=r"reference.polygon: expected an outline around at least one pixel"):
+            command(site)
+    assert not (site.parent / "report").exists()
+
+
+def test_what_a_killed_run_left_half_written_goes_with_the_next_one(site):
+    run(site)
+    out = site.parent / "report"
+    parts = [out / ".part-a.html", out / "frames" / "one" / ".part-b.tif"]
+    for part in parts:
+        part.write_bytes(b"half")
+    run(site)
+    assert not [part for part in parts if part.exists()]
+
+
 def test_check_tells_what_is_assumed_and_what_cannot_be_read(site):
     (site.parent / "two.tif").write_bytes(b"not a picture")
     checked = check(site)

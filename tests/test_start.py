@@ -284,6 +284,25 @@ def test_a_completed_survey_runs(tmp_path: Path) -> None:
     assert frame.temperature is not None
 
 
+def test_frames_with_the_oddest_names_become_a_survey_that_checks(tmp_path: Path) -> None:
+    names = ["A", "a", "con", "Nul.x", "dot.", "küche", "日本", 'quo"te', "new\nline", "esc\x1b[31m", "del\x7f"]
+    names.append("x" * 200)
+    numbers = np.random.default_rng(3).normal(20, 1, (60, 80)).astype(np.float32)
+    for number, name in enumerate(names):
+        (tmp_path / f"{number % 2}").mkdir(exist_ok=True)
+        np.save(tmp_path / f"{number % 2}" / f"{name}.npy", numbers)
+    (tmp_path / "no\x1b\x7fframe.csv").write_text("text\n", "utf-8")
+    (tmp_path / b"latin-\xfc.npy".decode("utf-8", "surrogateescape")).write_bytes(b"")
+    started = write_start(tmp_path)
+    assert any("latin-?.npy: expected a name in UTF-8" in notice for notice in started.notices)
+    completed(started.path, **SITE)
+    checked = check(started.path)
+    assert len(checked.survey.tasks) == len(names)
+    assert not checked.unreadable
+    lines = started.path.read_text("utf-8").splitlines()
+    assert all(re.search(r'" +# \d', line) for line in lines if line.startswith("file"))
+
+
 def test_start_is_deterministic(tmp_path: Path) -> None:
     texts = []
     for copy in ("one", "two"):

@@ -18,6 +18,7 @@ from irsurvey.heat.humid_air import vapour_density
 from irsurvey.model import Camera, Component, Frame, FrameTask, Quantity, Scene, Surface
 from irsurvey.radiometry import measurement
 from irsurvey.radiometry.atmosphere import absorptance_u
+from irsurvey.radiometry.band import TEMPERATURES
 from irsurvey.radiometry.lookup import Codes, encode, look_up, stored_values, temperature_table
 from irsurvey.radiometry.measurement import Path, object_temperature
 from irsurvey.radiometry.signal import apparent_temperature
@@ -99,7 +100,7 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
     camera's offset; both replace what the survey stated.
     """
     signal, band = task.camera.signal, task.camera.band
-    codes = encode(frame.stored, frame.missing, resolution=_resolution(frame, task.camera))
+    codes = _encoded(frame, task.camera)
     apparent = apparent_temperature(stored_values(codes), signal, band)
     optics, optics_names = _optics(task, frame.stored.shape)
     t_apparent = look_up(codes, apparent)
@@ -163,7 +164,7 @@ def reflected_by_reflector(frame: Frame, task: FrameTask) -> Quantity:
     The camera's error is in it whole: from one frame to another it need not be the same.  Raises FrameError where
     there is no readable reflector."""
     signal = task.camera.signal
-    codes = encode(frame.stored, frame.missing, resolution=_resolution(frame, task.camera))
+    codes = _encoded(frame, task.camera)
     apparent = apparent_temperature(stored_values(codes), signal, task.camera.band)
     pivot = float(np.nanmedian(look_up(codes, apparent)))
     scene = _with_reflected(task, _with_camera(task, pivot), _readable(codes, apparent, task.camera), pivot)
@@ -313,6 +314,18 @@ def _optics(task: FrameTask, shape: tuple[int, ...]) -> tuple[NDArray[np.uint8],
             names.append(pair)
         index[mask(area.polygon, (shape[0], shape[1]))] = names.index(pair)
     return index, tuple(names)
+
+
+def _encoded(frame: Frame, camera: Camera) -> Codes:
+    """The frame as codes; what lies beyond the band's table or the camera's range is no reading, wherever it lies."""
+    signal, (lowest, highest) = camera.signal, TEMPERATURES
+    reach = (-np.inf, np.inf)
+    if signal.quantity != "counts":
+        if signal.quantity == "apparent-temperature" and camera.range is not None:
+            lowest, highest = camera.range
+        ends = ((end - signal.offset) / signal.scale for end in (lowest - 1.0, highest + 1.0))
+        reach = (next(ends), next(ends))
+    return encode(frame.stored, frame.missing, resolution=_resolution(frame, camera), reach=reach)
 
 
 def _resolution(frame: Frame, camera: Camera) -> float:

@@ -196,7 +196,7 @@ def _scale(task: FrameTask, scene: Scene) -> str:
         return "known_rectangle"
     if isinstance(task.known_scale, KnownLength):
         return "known_length"
-    return "ifov" if "ifov" in scene else "none"
+    return "ifov" if "ifov" in scene and scene["distance"].value > 0 else "none"
 
 
 def _length_pixels(task: FrameTask) -> float:

@@ -201,7 +201,7 @@ def _pixel_area(task: FrameTask, corrected: Corrected, shape: tuple[int, int]) -
     if isinstance(task.known_scale, KnownLength):
         pixels = np.hypot(*np.subtract(task.known_scale.end, task.known_scale.start))
         return np.full((1, 1), (values["known_length"] / pixels) ** 2)
-    if "ifov" in values:
+    if "ifov" in values and values["distance"] > 0:
         return np.full((1, 1), pixel_area(values["distance"], values["ifov"], values.get("view_angle", 0.0)))
     return None
 

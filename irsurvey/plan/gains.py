@@ -14,13 +14,13 @@ from irsurvey.uncertainty import Budget
 _CAUSES = {"selection": "noise", "slope_x": "noise", "slope_y": "noise", "shading_x": "shading", "shading_y": "shading"}
 """Inputs that go back to another one: who improves that improves them."""
 _ADVICE = {
-    "noise": "Use a quieter camera, or go closer: more pixels average more",
+    "noise": "Use a quieter camera, or more pixels that average: a longer lens, or closer where that is allowed",
     "shading": "Keep what is compared near the middle, or subtract a frame of a uniform surface",
-    "size_of_source": "Go closer or take a longer lens",
+    "size_of_source": "Take a longer lens, or go closer where that is allowed",
     "camera_gain": "Have the camera calibrated",
     "convection": "Choose the correlation that fits the surface; outside, measure the wind",
     "mean_radiant": "Read the surfaces opposite and take their mean",
-    "atmosphere": "Go closer",
+    "atmosphere": "Go closer where that is allowed",
     "view_angle": "Stand square to the surface",
     "outline": "Draw outlines along the steepest edge",
     "pressure": "Read a barometer",

@@ -106,11 +106,15 @@ def _sizes(numbered: Mapping[str, Prospect]) -> Rows:
         if one.sizes is not None:
             yield (
                 number,
-                f"{numbers.number(1e3 * one.sizes.pixel, 3)} mm",
-                f"{numbers.rounded_up(1e3 * one.sizes.spot)} mm",
-                f"{numbers.rounded_up(1e4 * one.sizes.least_area)} cm²",
+                f"{numbers.number(1e3 * one.sizes.pixel, 3)} mm" if one.sizes.pixel > 0 else numbers.NOTHING,
+                _with_unit(numbers.rounded_up(1e3 * one.sizes.spot), "mm"),
+                _with_unit(numbers.rounded_up(1e4 * one.sizes.least_area), "cm²"),
                 f"{floor(100 * one.sizes.farthest + 1e-6) / 100:.2f} m",  # down to a centimetre, rounding aside
             )
+
+
+def _with_unit(text: str, unit: str) -> str:
+    return text if text == numbers.NOTHING else f"{text} {unit}"
 
 
 def _walls(numbered: Mapping[str, Prospect]) -> Rows:

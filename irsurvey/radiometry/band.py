@@ -10,6 +10,8 @@ from numpy.typing import ArrayLike
 
 from irsurvey.radiometry.planck import Array, Band, band_radiance
 
+TEMPERATURES = (150.0, 1800.0)
+"""Ends of every table [K]: beyond them nothing has a temperature."""
 _GRID = np.arange(1500, 18001) / 10  # [K]; 0.1 K keeps linear interpolation within 0.2 mK, also at short wavelengths
 
 

@@ -43,21 +43,30 @@ class Codes:
         return self.first, self.step, self.lowest, self.highest
 
 
-def encode(stored: NDArray[np.generic], missing: NDArray[np.bool_] | None, *, resolution: float) -> Codes:
+def encode(
+    stored: NDArray[np.generic],
+    missing: NDArray[np.bool_] | None,
+    *,
+    resolution: float,
+    reach: tuple[float, float] = (-np.inf, np.inf),
+) -> Codes:
     """A frame of any real type, shape (rows, columns), as codes.
 
     Integers keep their values (uint16 without missing pixels is not even copied) unless they span more than
     65 534; floats are rounded to multiples of `resolution` [stored units] above the lowest, coarser only
-    where their range asks for it.  Missing, NaN and infinite pixels become `no_data`."""
+    where their range asks for it.  Missing, NaN and infinite pixels become `no_data`.  Where a frame cannot be kept
+    as it is, numbers beyond `reach` become its ends: one far-off number may not make all others coarse."""
     if stored.dtype == np.uint16 and (missing is None or not missing.any()):
         return Codes(np.asarray(stored, np.uint16), 0.0, 1.0, int(stored.min()), int(stored.max()), None)
     valid = np.isfinite(stored) if missing is None else np.isfinite(stored) & ~missing
     codes = np.full(stored.shape, _NO_DATA, np.uint16)
     if not valid.any():
         return Codes(codes, 0.0, 1.0, 0, -1, _NO_DATA)
-    values = stored[valid].astype(float)
+    is_float = stored.dtype.kind == "f"
+    low, high = reach if is_float else (np.floor(reach[0]), np.ceil(reach[1]))
+    values = np.clip(stored[valid].astype(float), low, high)
     first, span = float(values.min()), float(np.ptp(values))
-    step = max(resolution if stored.dtype.kind == "f" else 1.0, span / _STEPS)
+    step = max(resolution if is_float else 1.0, span / _STEPS)
     codes[valid] = np.rint((values - first) / step)
     return Codes(codes, first, step, 0, round(span / step), None if valid.all() else _NO_DATA)
 

@@ -31,7 +31,8 @@ def write_start(folder: Path, known: Sequence[str] = ()) -> Started:
     the frames or there is no frame at all, OutputError where a survey.toml stands already.
     """
     if not folder.is_dir():
-        raise UsageError(Fault(str(folder), "a folder of frames", "none of that name", "check the name"))
+        got = "a file" if folder.is_file() else "none of that name"
+        raise UsageError(Fault(str(folder), "a folder of frames", got, "check the name"))
     path = folder / "survey.toml"
     if path.exists():
         remedy = "edit it, or move it away to start again"

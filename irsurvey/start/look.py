@@ -43,6 +43,9 @@ def look(folder: Path, points: Sequence[Known]) -> tuple[tuple[Seen, ...], tuple
     names = (path.relative_to(folder).as_posix() for depth in ("*", "*/*") for path in folder.glob(depth))
     for name in sorted(name for name in names if not any(part.startswith(".") for part in name.split("/"))):
         path = folder / name
+        if not _is_text(name):
+            unread.append(f"{shown_name(name)}: expected a name in UTF-8, got another encoding; rename it")
+            continue
         if not path.is_file() or path.suffix.lower() not in READERS:
             continue
         mine = [point for point in points if point.file in (name, path.name) or (point.file is None and not seen)]
@@ -61,6 +64,15 @@ def look(folder: Path, points: Sequence[Known]) -> tuple[tuple[Seen, ...], tuple
 def rounding(dtype: str) -> float:
     """Step of stored numbers: whole ones, or the two decimals that many exports keep (common practice)."""
     return 0.01 if "float" in dtype else 1.0
+
+
+def shown_name(name: str) -> str:
+    """A file's name as it can be printed; what is not UTF-8 in it becomes question marks."""
+    return name.encode("utf-8", "replace").decode("utf-8")
+
+
+def _is_text(name: str) -> bool:
+    return shown_name(name) == name
 
 
 def _open(path: Path, points: Sequence[Known]) -> tuple[ReadOptions, Frame]:

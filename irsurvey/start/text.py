@@ -10,6 +10,9 @@ from pathlib import Path
 from irsurvey.start.look import Seen
 from irsurvey.start.meaning import Meaning
 
+_CONTROLS = re.compile(r"[\x00-\x1f\x7f]")  # which TOML forbids in a comment
+_NO_FOLDER = re.compile(r"(con|prn|aux|nul|com\d|lpt\d)?(\..*)?|.*\.", re.IGNORECASE)
+"""What some system does not take as the name of a folder, which an id becomes."""
 PHOTOS = (".jpg", ".jpeg", ".JPG", ".JPEG")
 
 
@@ -17,7 +20,7 @@ def survey_lines(
     folder: Path, seen: Sequence[Seen], unread: Sequence[str], cameras: Mapping[str, Meaning]
 ) -> Iterator[str]:
     """The whole file, line by line; with the lines marked "fill in" completed it is ready to run."""
-    yield f"# Written by irsurvey start from {len(seen)} frames."
+    yield f"# Written by irsurvey start from {'1 frame' if len(seen) == 1 else f'{len(seen)} frames'}."
     yield '# fill in: no frame tells this.  Take away "# fill in: " and write the value.'
     yield "# guess: may be wrong, check it.  optional: take away the mark where you know the value."
     yield "format = 1"
@@ -45,7 +48,7 @@ def survey_lines(
     for frame in seen:
         yield from _frame(folder, frame, camera_of[frame] if len(cameras) > 1 else None, taken)
     if unread:
-        yield from ("", "# Not frames, or not readable:", *(f"# {' '.join(reason.split())}" for reason in unread))
+        yield from ("", "# Not frames, or not readable:", *map(_comment, unread))
 
 
 def _camera(key: str, meaning: Meaning) -> Iterator[str]:
@@ -73,9 +76,9 @@ def _frame(folder: Path, frame: Seen, camera: str | None, taken: set[str]) -> It
     size = f"{columns} wide, {rows} high, {frame.dtype}, {frame.low:g} to {frame.high:g}"
     yield _line("file", _text(frame.file), size)
     identifier = _identifier(path.stem)
-    while identifier in taken:
+    while identifier.casefold() in taken:
         identifier = f"{identifier[:56]}-{len(taken)}"
-    taken.add(identifier)
+    taken.add(identifier.casefold())
     if identifier != path.stem:
         yield _line("id", _text(identifier))
     if len(path.parts) > 1:
@@ -97,12 +100,18 @@ def _frame(folder: Path, frame: Seen, camera: str | None, taken: set[str]) -> It
 
 def _line(key: str, value: str, comment: str = "") -> str:
     line = f"{key} = {value}".rstrip()
-    return f"{line:<40}# {comment}" if comment else line
+    return f"{line:<39} # {comment}" if comment else line
+
+
+def _comment(text: str) -> str:
+    return "# " + _CONTROLS.sub("?", " ".join(text.split()))
 
 
 def _text(value: str) -> str:
-    return json.dumps(value, ensure_ascii=False)  # a TOML basic string is escaped as a JSON string is
+    written = json.dumps(value, ensure_ascii=False)  # a TOML basic string is escaped as a JSON string is, nearly
+    return written.replace("\x7f", "\\u007f")
 
 
 def _identifier(name: str) -> str:
-    return re.sub(r"[^A-Za-z0-9._-]+", "-", name)[:64] or "frame"
+    identifier = re.sub(r"[^A-Za-z0-9._-]+", "-", name)[:64]
+    return f"frame-{identifier[:57]}".rstrip("-.") if _NO_FOLDER.fullmatch(identifier) else identifier

@@ -8,7 +8,7 @@ from collections.abc import Iterable, Iterator, Mapping
 from copy import deepcopy
 from difflib import get_close_matches
 from pathlib import PurePosixPath
-from typing import Any, get_args
+from typing import Any, get_args, get_origin
 
 from pydantic import ValidationError
 from pydantic.fields import FieldInfo
@@ -69,6 +69,18 @@ def nearest(word: str, known: Iterable[str]) -> str:
     words = list(known)
     close = get_close_matches(word, words, n=1, cutoff=0.5) or get_close_matches(word.lower(), words, n=1, cutoff=0.0)
     return f"did you mean {close[0]}?" if close else ""
+
+
+def home_of(place: Place) -> str:
+    """The table within this one, else the one at the top, that knows a key which may not stand at its place; or none.
+
+    Keys of `uncertainty` are passed over: they look like those of conditions, and are mistaken for them."""
+    word, here = str(place[-1]), tables_at(place[:-1])
+    tables: list[type[Table]] = [*here, Document]
+    for field_name, field in ((name, field) for table in tables for name, field in table.model_fields.items()):
+        if field_name != "uncertainty" and any(word in keys_of(inner) for inner in _direct(field)):
+            return field_name
+    return ""
 
 
 def key_path(place: Place, content: object) -> str:
@@ -221,7 +233,9 @@ def _fault(detail: ErrorDetails, content: Mapping[str, Any]) -> Fault:
         return Fault(where, ctx["expected"], ctx["got"], ctx["remedy"])
     if kind == "extra_forbidden":
         known = [name for table in tables_at(place[:-1]) for name in keys_of(table)]
-        return Fault(where, _KNOWN_KEY, f"the unknown key {place[-1]}", nearest(str(place[-1]), known))
+        home = home_of(place)
+        remedy = f"it belongs under {home}" if home else nearest(str(place[-1]), known)
+        return Fault(where, _KNOWN_KEY, f"the unknown key {place[-1]}", remedy)
     if kind == "missing":
         field = field_at(place)
         return Fault(where, "a value, as it is required", "nothing", _meaning(field))
@@ -276,6 +290,11 @@ def _metadata(field: FieldInfo) -> Iterator[object]:
 
 def _field(table: type[Table], name: str | int) -> FieldInfo | None:
     return next((field for key, field in table.model_fields.items() if name == (field.alias or key)), None)
+
+
+def _direct(field: FieldInfo) -> list[type[Table]]:
+    """The table that a key holds, if it holds just one."""
+    return [] if get_origin(field.annotation) in (list, dict) else _tables_in(field.annotation)
 
 
 def _tables_in(annotation: Any) -> list[type[Table]]:

@@ -50,8 +50,11 @@ def read(path: Path, zone: tzinfo, where: str) -> Log:
     known = [column for column in table.columns if column in COLUMNS]
     if TIME not in table.columns or not known:
         expected = f"a column {TIME} and columns named as conditions"
-        near = {column: nearest(column, COLUMNS) for column in table.columns if column != TIME}
-        remedy = "; ".join(f"{column}: {remedy}" for column, remedy in list(near.items())[:3])
+        if TIME not in table.columns:
+            remedy = f"name the column of times {TIME}"
+        else:
+            near = {column: nearest(column, COLUMNS) for column in table.columns if column != TIME}
+            remedy = "; ".join(f"{column}: {remedy}" for column, remedy in list(near.items())[:3])
         raise SurveyError(Fault(table.where, expected, ", ".join(table.columns), remedy))
     times, faults = _times(table, zone)
     series = {}

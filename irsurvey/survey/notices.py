@@ -41,7 +41,7 @@ def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[s
     if task.kind == "building":
         missing = [name for name in ("indoor_air", "outdoor_air") if name not in task.scene]
         if task.method == "envelope" and missing:
-            yield f"{' and '.join(missing)}_c not recorded: no envelope claim"
+            yield f"{' and '.join(f'{name}_c' for name in missing)} not recorded: no envelope claim"
         if task.viewed_from == "outside" and "wind" not in task.scene:
             yield "wind not recorded"
         if task.reference is None:

@@ -30,7 +30,8 @@ def is_drawn_on(task: FrameTask) -> bool:
     return next(_drawn(task), None) is not None
 
 
-def _drawn(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
+def areas(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
+    """Every area drawn on a frame, with its key."""
     for where, polygon in (("reference", task.reference), ("inspect", task.inspect)):
         if polygon is not None:
             yield f"{where}.polygon", polygon
@@ -38,6 +39,10 @@ def _drawn(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
         yield f"surface[{surface.name}].polygon", surface.polygon
     for component in task.components:
         yield f"component[{component.name}].polygon", component.polygon
+
+
+def _drawn(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
+    yield from areas(task)
     if isinstance(task.known_scale, KnownLength):
         yield "known_length", (task.known_scale.start, task.known_scale.end)
     elif task.known_scale is not None:

@@ -273,6 +273,20 @@ class KnownRectangle(Table):
     width_m: Positive = required("Top side [m]")
     height_m: Positive = required("Left side [m]")
 
+    @model_validator(mode="after")
+    def _could_be_one(self) -> KnownRectangle:
+        a, b, c, d = self.corners
+        turns = [_turn(*three) for three in ((a, b, c), (b, c, d), (c, d, a), (d, a, b))]
+        if not (min(turns) > 0 or max(turns) < 0):
+            expected = "corners one after the other around it"
+            raise wrong(expected, "corners that are not, or three in line", "start at the top left", key="corners")
+        return self
+
+
+def _turn(a: Point, b: Point, c: Point) -> float:
+    """Twice the signed area of a triangle: above 0 where a, b, c turn clockwise in a picture."""
+    return (b[0] - a[0]) * (c[1] - b[1]) - (b[1] - a[1]) * (c[0] - b[0])
+
 
 class Level(Table):
     """What a group and a frame may both say; a frame overrides its group, a group the survey."""

@@ -14,7 +14,7 @@ from types import NoneType
 from typing import Any, get_args
 
 from irsurvey.errors import Fault, SurveyError
-from irsurvey.survey.faults import field_at, keys_of, nearest, tables_at
+from irsurvey.survey.faults import field_at, home_of, keys_of, nearest, tables_at
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,7 +122,9 @@ def _column_fault(column: str, found: Sheet) -> Fault | None:
     known = [key for table in tables_at(["frame", *path]) for key in keys_of(table)]
     where = f"{found.where}.{column}"
     if field_at(("frame", *path, name)) is None:
-        return Fault(where, "a key of [[frame]]", f"the unknown key {name}", nearest(name, known))
+        inner = (*path, home_of(("frame", *path, name)), name)
+        remedy = f"name it {'.'.join(inner)}" if field_at(("frame", *inner)) else nearest(name, known)
+        return Fault(where, "a key of [[frame]]", f"the unknown key {name}", remedy)
     if any(column.startswith(f"{other}.") for other in found.columns):
         return Fault(where, "a table in one column or in several", "both", "drop one")
     return None

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from datetime import UTC, datetime, tzinfo
+from difflib import get_close_matches
 from zoneinfo import ZoneInfo, available_timezones
 
 from irsurvey.errors import Fault, SurveyError
-from irsurvey.survey.faults import nearest
 
 
 def zone_named(name: str | None) -> tzinfo:
@@ -16,7 +16,8 @@ def zone_named(name: str | None) -> tzinfo:
     try:
         return ZoneInfo(name)
     except (LookupError, ValueError, OSError) as error:  # unknown, not a name, or a folder of the database
-        remedy = nearest(name, sorted(available_timezones()))
+        close = get_close_matches(name, sorted(available_timezones()), n=1, cutoff=0.7)
+        remedy = f"did you mean {close[0]}?" if close else "a region and a city; offsets belong to the times"
         raise SurveyError(Fault("survey.timezone", "a time zone such as Europe/Vienna", repr(name), remedy)) from error
 
 

@@ -140,6 +140,16 @@ APPENDED = {
         "frame[F01].known_length.to",
         "one point twice",
     ),
+    "rectangle folded over": (
+        "known_rectangle = { corners = [[0, 0], [9, 9], [9, 0], [0, 9]], width_m = 1, height_m = 1 }",
+        "frame[F01].known_rectangle.corners",
+        "corners that are not, or three in line",
+    ),
+    "rectangle seen from its edge": (
+        "known_rectangle = { corners = [[0, 0], [3, 0], [6, 0], [9, 0]], width_m = 1, height_m = 1 }",
+        "frame[F01].known_rectangle.corners",
+        "corners that are not, or three in line",
+    ),
     "raw type nobody stores": ('dtype = "uint24"', "frame[F01].dtype", '"uint24"'),
 }
 REPLACED = {
@@ -300,6 +310,25 @@ def test_an_unknown_key_names_the_nearest_known_one(
     assert fault.where == where
     assert fault.got == f"the unknown key {where.split('.')[-1]}"
     assert fault.remedy == f"did you mean {known}?"
+
+
+@pytest.mark.parametrize(
+    ("text", "where", "home"),
+    [
+        ("emissivity = 0.9", "frame[F01].emissivity", "target"),
+        ("reflected_c = 3", "frame[F01].reflected_c", "conditions"),
+        ("min_pixels = 3", "frame[F01].min_pixels", "detection"),
+        ("metres = 3", "frame[F01].metres", "known_length"),
+        ("window = { transmittance = 0.9, air_c = 2 }", "frame[F01].window.air_c", "conditions"),
+        ('[[group]]\nid = "g"\ndistance_m = 8', "group[g].distance_m", "conditions"),
+    ],
+)
+def test_a_key_at_the_wrong_place_is_told_where_it_belongs(
+    text: str, where: str, home: str, minimal: str, faults_of: Faults
+) -> None:
+    fault = faults_of(minimal + text + "\n")[0]
+    assert fault.where == where
+    assert fault.remedy == f"it belongs under {home}"
 
 
 @pytest.mark.parametrize(

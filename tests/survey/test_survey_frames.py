@@ -197,6 +197,14 @@ def test_a_wrong_table_is_a_fault_at_its_column_line_or_frame(
     assert expected in (None, fault.expected)
 
 
+def test_a_column_of_a_nested_key_is_told_its_full_name(minimal: str, faults_of: Faults) -> None:
+    text = 'frame_table = "t.csv"\n' + minimal
+    (fault,) = faults_of(text, {"t.csv": "file,emissivity\na.tif,0.3\n"})
+    assert fault.remedy == "name it target.emissivity"
+    (fault,) = faults_of(text, {"t.csv": "file,band_um\na.tif,3\n"})  # of a camera, which no frame describes
+    assert fault.remedy.startswith("did you mean")
+
+
 def test_a_table_that_is_missing_or_in_another_encoding_is_a_fault(
     minimal: str, faults_of: Faults, folder: Path
 ) -> None:

@@ -116,6 +116,20 @@ def test_without_a_time_zone_local_times_are_utc_and_that_is_listed(minimal: str
     assert "survey.timezone not stated: local times read as UTC (all frames)" in survey.notices
 
 
+def test_a_log_without_a_column_of_times_is_told_its_name(minimal: str, faults_of: Faults) -> None:
+    (fault,) = faults_of(logged(minimal, "2026-01-18T08:00:00"), {"log.csv": "Date;air_c\n2026-01-18 07:00;1\n"})
+    assert fault.remedy == "name the column of times time"
+
+
+@pytest.mark.parametrize(("name", "remedy"), [("Europe/Wien", "did you mean Europe/Vienna?"), ("+01:00", "a region")])
+def test_only_a_time_zone_that_is_nearly_the_one_written_is_suggested(
+    name: str, remedy: str, minimal: str, faults_of: Faults
+) -> None:
+    # of zones, the nearest by letters may be half a world away: Etc/GMT+10 for +01:00
+    text = minimal.replace('kind = "building"', f'kind = "building"\ntimezone = "{name}"')
+    assert faults_of(text)[0].remedy.startswith(remedy)
+
+
 def test_a_frame_without_a_time_cannot_use_a_log(minimal: str, load_text: Load) -> None:
     text = minimal.replace("air_c = 20", 'air_c = 20\nlog = "log.csv"')
     survey = load_text(text, {"log.csv": "time,air_c\n2026-01-18T07:00,10\n"})
