@@ -236,7 +236,8 @@ def test_the_summary_names_the_most_important_first(shown_page: Page) -> None:
 
 def test_a_clean_frame_is_a_bounded_statement(shown_page: Page) -> None:
     assert (
-        "This frame would have shown deviations of at least 0.4 K in the picture (after blur) over at least 0.001 m² (25 pixels); none was found. "
+        "This frame would have shown deviations of at least 0.4 K in the picture (after blur) "
+        "over at least 0.001 m² (25 pixels); none was found. "
         "Smaller or weaker ones may be there unseen." in shown_page.text
     )
 
