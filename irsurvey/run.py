@@ -155,8 +155,9 @@ def _judge_pixels(tasks: Iterable[FrameTask]) -> tuple[list[Fault], tuple[tuple[
         except FrameError as error:
             unreadable.append((task.id, str(error)))
             continue
-        faults += polygon_faults(task, (shape[0], shape[1]))
-        for where, area in areas(task):
+        outside = polygon_faults(task, (shape[0], shape[1]))
+        faults += outside
+        for where, area in () if outside else areas(task):
             if not mask(area, (shape[0], shape[1])).any():
                 expected, remedy = "an outline around at least one pixel centre", "pixel centres are whole numbers"
                 faults.append(Fault(f"frame[{task.id}].{where}", expected, "none in it", remedy))
