@@ -181,3 +181,16 @@ def test_under_conditions_that_are_not_valid_no_part_is_cleared(monkeypatch):
     for lug in panel(lugs(3.0)).components:
         assert not lug.cleared
         assert "conditions not valid" in lug.flags
+
+
+def test_a_part_wholly_beyond_the_range_by_many_different_numbers_is_a_bound_and_no_failure():
+    # 8 K of different stored numbers (hundredths of a kelvin), all of them beyond the range: one bound.
+    t = lugs(3.0)
+    t[40:60, 20:40] = np.linspace(325.0, 333.0, 20)
+    report = panel(t, camera=tasks.camera(accuracy=0.2, accuracy_fraction=0.0, range=(253.15, 323.15)))
+    left = report.components[0]
+    assert "saturated" in left.flags
+    assert not left.cleared
+    # The end of the range, ε 0.95 under 20 °C: (50 − 0.05·20)/0.95, linear; 2 m of air and curvature add 0.3 K.
+    assert left.max_c.value == pytest.approx(51.58, abs=0.5)
+    assert left.urgency == 4

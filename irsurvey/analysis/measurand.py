@@ -329,6 +329,8 @@ def _histogram(
         merged = np.stack([np.bincount(codes - lowest, row)[filled] for row in weights]).astype(np.float64)
         return apparent[lowest + np.flatnonzero(filled)], merged
     x = apparent[codes]
+    if x.min() == x.max():  # all beyond the range: many codes, one bound
+        return x[:1], weights.sum(axis=1, keepdims=True)
     nodes = np.linspace(x.min(), x.max(), _NODES)
     place = (x - nodes[0]) / (nodes[1] - nodes[0])
     left = np.minimum(place.astype(np.intp), _NODES - 2)
