@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from decimal import ROUND_CEILING, ROUND_HALF_EVEN, Context, Decimal
-from math import isfinite
+from math import copysign, isfinite, log10
 
 from irsurvey.model import Estimate, Input
 
@@ -16,10 +16,16 @@ NOTHING = "–"
 """What stands where there is no number."""
 
 UNITS = {
+    "m2k_w": "m²·K/W",
     "w_m2k": "W/(m²·K)",
     "w_m2": "W/m²",
+    "w_mk": "W/(m·K)",
+    "w_k": "W/K",
+    "kwh": "kWh",
+    "kd": "K·d",
     "g_m3": "g/m³",
     "m_s": "m/s",
+    "k_per_m": "K/m",
     "k_per_px": "K/px",
     "per_pixel": "1/px",
     "percent": "%",
@@ -38,6 +44,9 @@ UNITS = {
 }
 """The ending of a key → the unit as people write it; longer endings first."""
 
+
+SMALL_AREA_M2 = 0.01
+"""Areas below it are shown in cm²."""
 
 _OF_A_DIFFERENCE = {"°C": "K", "%": "points"}
 """Units in which a change is not told as the number itself is: 45 % and 50 % are 5 points apart, or 11 %."""
@@ -73,6 +82,34 @@ def shown(estimate: Estimate | None) -> str:
     if estimate.u is None or not isfinite(estimate.u) or estimate.u <= 0:
         return number(estimate.value)
     return plus_minus(estimate.value, COVERAGE_FACTOR * estimate.u)
+
+
+def measured(estimate: Estimate | None, key: str, *, unit: bool = True) -> str:
+    """A result for people with the unit its key ends in; small areas in cm², named even in a column of m²."""
+    if estimate is not None and _is_small_area(estimate.value, key):
+        return with_symbol(shown(_scaled(estimate, 1e4)), "cm²")
+    return with_unit(shown(estimate), key) if unit else shown(estimate)
+
+
+def interval_of(estimate: Estimate | None, key: str) -> str:
+    """The 95 % interval beside what `measured` shows, in the same unit; "" where ± U tells it."""
+    if estimate is not None and _is_small_area(estimate.value, key):
+        return interval(_scaled(estimate, 1e4))
+    return interval(estimate)
+
+
+def magnitude(estimate: Estimate | None) -> str:
+    """A result too uncertain for its digits: "of the order of 100", its nearest power of ten; "at most about 500",
+    its upper end rounded up, where its standard uncertainty exceeds it, so that it may be nothing; "–" for none."""
+    if estimate is None or estimate.u is None or not (isfinite(estimate.value) and isfinite(estimate.u)):
+        return NOTHING
+    if estimate.u < abs(estimate.value):
+        power = Decimal(1).scaleb(round(log10(abs(estimate.value))))
+        return f"of the order of {_rounded(copysign(float(power), estimate.value), min(power.adjusted(), 0))}"
+    most = estimate.value + COVERAGE_FACTOR * estimate.u
+    if most <= 0:
+        return NOTHING
+    return f"at most about {Context(prec=1, rounding=ROUND_CEILING).create_decimal(repr(most)):f}"
 
 
 def interval(estimate: Estimate | None) -> str:
@@ -125,6 +162,20 @@ def rounded_up(value: float | None) -> str:
     return f"{Context(prec=2, rounding=ROUND_CEILING).create_decimal(repr(float(value))):f}"
 
 
+def least_area(square_metres: float) -> str:
+    """A smallest area, rounded up, with its unit."""
+    if square_metres < SMALL_AREA_M2:
+        return with_symbol(rounded_up(float(f"{square_metres * 1e4:.9g}")), "cm²")  # 0.0011 m² are 11 cm², not 12
+    return with_symbol(rounded_up(square_metres), "m²")
+
+
+def area_range(value: float, low: float, high: float) -> str:
+    """An area and what it may be, in one unit: "0.35 m² (0.12 to 0.9 m²)"."""
+    factor, symbol = (1e4, "cm²") if max(value, low, high) < SMALL_AREA_M2 else (1.0, "m²")
+    middle, least, most = (number(area * factor, 2) for area in (value, low, high))
+    return f"{with_symbol(middle, symbol)} ({least} to {with_symbol(most, symbol)})"
+
+
 def decimals(value: float | None, places: int) -> str:
     """A number to so many decimal places, for columns and scales; "–" for none."""
     return NOTHING if value is None or not isfinite(value) else _rounded(value, -places)
@@ -150,6 +201,20 @@ def with_symbol(text: str, symbol: str) -> str:
     """The number, a space that does not break, and a unit; the number alone where there is no unit."""
     space = "" if symbol == "°" else "\u00a0"
     return f"{text}{space}{symbol}" if symbol and text != NOTHING else text
+
+
+def _scaled(estimate: Estimate, factor: float) -> Estimate:
+    """A result in a unit that is 1/factor of its own."""
+    drawn = estimate.interval_95
+    return Estimate(
+        estimate.value * factor,
+        None if estimate.u is None else estimate.u * factor,
+        drawn and (drawn[0] * factor, drawn[1] * factor),
+    )
+
+
+def _is_small_area(value: float, key: str) -> bool:
+    return unit(key) == "m²" and 0 < value < SMALL_AREA_M2
 
 
 def _place(value: float, digits: int) -> int:

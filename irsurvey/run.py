@@ -8,14 +8,21 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 
 from irsurvey import __version__, pipeline
+from irsurvey.analysis.checklist import present_in
 from irsurvey.analysis.conditions import reviewed
 from irsurvey.analysis.decisions import next_measurements
+from irsurvey.analysis.seasons import seasons_of
+from irsurvey.assess.checklist import checklist
+from irsurvey.assess.conditions import overall, requirement_sets
 from irsurvey.assess.criteria import criteria
 from irsurvey.batch import execute
 from irsurvey.errors import Fault, FrameError, OutputError, SurveyError, UsageError
 from irsurvey.files import PART, write_text
 from irsurvey.geometry.polygons import mask
+from irsurvey.heat.building_materials import building_materials
 from irsurvey.heat.convection import CONVECTION
+from irsurvey.heat.season import degree_days
+from irsurvey.heat.sky import SKY_MODELS
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
@@ -108,22 +115,31 @@ def load_survey(survey_path: Path, *, ahead: bool = False) -> Survey:
         criteria=tuple(criteria()),
         convections=tuple(CONVECTION),
         materials={name: (material.emissivity, material.u) for name, material in materials().items()},
+        standards=tuple(one.name for one in requirement_sets()),
+        sky_models={name: model.u for name, model in SKY_MODELS.items()},
+        building_materials={
+            name: (material.conductivity, material.density, material.specific_heat)
+            for name, material in building_materials().items()
+        },
+        degree_days=degree_days,
     )
     return load(survey_path, known=known, ahead=ahead)
 
 
 def analyse_file(job: Job) -> FrameReport:
     """Read one frame, analyse it and write its files; whatever is wrong with it becomes its reason to fail."""
+    task = job.task
     try:
-        frame = read(Path(job.task.path), job.task.read)
-        report, maps = pipeline.analyse(frame, job.task, maps=job.maps, uncertainty=job.uncertainty)
+        frame = read(Path(task.path), task.read)
+        partner = read(Path(task.pair.partner.path), task.pair.partner.read) if task.pair else None
+        report, maps = pipeline.analyse(frame, task, partner=partner, maps=job.maps, uncertainty=job.uncertainty)
         frame_files.write(report, maps, Path(job.out))
     except FrameError as error:
-        return pipeline.failed(job.task, str(error))
+        return pipeline.failed(task, str(error))
     except OutputError:
         raise
     except Exception as error:  # one frame that trips over a fault of ours must not cost the others their report
-        return pipeline.failed(job.task, f"unexpected {type(error).__name__}: {error}; please report this as a bug")
+        return pipeline.failed(task, f"unexpected {type(error).__name__}: {error}; please report this as a bug")
     return report
 
 
@@ -140,7 +156,8 @@ def _resolved(survey: Survey) -> list[FrameTask]:
 
     def served(task: FrameTask) -> FrameTask:
         quantity = measured.get(task.reflected_from or "")
-        return replace(task, scene=task.scene.with_(quantity)) if quantity else task
+        task = replace(task, scene=task.scene.with_(quantity)) if quantity else task
+        return replace(task, pair=replace(task.pair, partner=served(task.pair.partner))) if task.pair else task
 
     return [served(task) for task in survey.tasks]
 
@@ -171,6 +188,10 @@ def _claim_folder(out: Path, ids: set[str]) -> None:
     if out.is_dir() and any(out.iterdir()) and not (out / OUTPUT_MARKER).exists():
         fault = Fault(out.name, "an empty folder, or one this program wrote", "a folder with other files in it")
         raise OutputError(replace(fault, remedy="choose another -o"))
+    for folder in (out / "frames", *(out / "frames").glob("*")):
+        if folder.is_symlink():  # whoever set it: what lies behind it is not ours to write over or to clear away
+            where = folder.relative_to(out.parent).as_posix()
+            raise OutputError(Fault(where, "a folder of this report", "a link", "remove it, or choose another -o"))
     write_text(out / OUTPUT_MARKER, _MARKER_TEXT)
     for part in (*out.glob(f"{PART}*"), *out.glob(f"frames/*/{PART}*")):
         part.unlink(missing_ok=True)  # of a run that was killed while it wrote
@@ -184,14 +205,21 @@ def _claim_folder(out: Path, ids: set[str]) -> None:
 
 def _concluded(survey: Survey, frames: tuple[FrameReport, ...]) -> Report:
     """The statements about the survey as a whole."""
+    analysed = [frame for frame in frames if frame.status == "analysed"]
+    level, reason = overall((frame.id, frame.claim, frame.claim_reason) for frame in analysed)
+    is_building = any(task.kind == "building" for task in survey.tasks)
     return Report(
         format=1,
         tool={"name": "irsurvey", "version": __version__},
         survey=json.loads(survey.as_read),
+        claim=level,
+        claim_reason=reason,
         conditions_review=reviewed(survey.tasks),
         next_visit=next_measurements(frames),
         assets=tuple(_assets(survey, frames)),
         frames=frames,
+        seasons=seasons_of(survey.seasons, frames, survey.elements),
+        checklist=checklist(present_in(survey, frames)) if is_building else (),
         cautions=(),
     )
 

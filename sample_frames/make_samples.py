@@ -12,7 +12,9 @@ from pathlib import Path
 from typing import Any
 
 import camera_model
+import house_detail_frames
 import house_frames
+import house_weather
 import numpy as np
 import pump_station_frames
 import tifffile
@@ -21,7 +23,16 @@ from PIL import Image
 from scipy.ndimage import binary_dilation, binary_erosion, gaussian_filter, uniform_filter
 from shot import Shot
 
-SURVEYS = {"house": house_frames.SHOTS, "pump_station": pump_station_frames.SHOTS}
+SURVEYS = {"house": house_frames.SHOTS + house_detail_frames.SHOTS, "pump_station": pump_station_frames.SHOTS}
+LOGS = {"house": house_weather.LOGS, "pump_station": {}}
+PATTERNS = {  # what a finding is consistent with, by what it truly is; the rest: no pattern of a building
+    "plateau": "missing or displaced insulation",
+    "bridge": "thermal bridge",
+    "plume": "air leakage",
+    "damp": "moisture",
+    "wet insulation": "moisture",
+    "reflection": "possible reflection",
+}
 EDGE_PX = 3  # pixels this near to an edge are blurred: they say nothing about temperature
 BLUR_K = 0.05  # and so does every pixel whose temperature the blur alone changes by more
 
@@ -39,6 +50,9 @@ def main() -> None:
             facts = {shot.id: write(shot, wanted.into / survey) for shot in chosen}
             text = json.dumps(facts, indent=1, ensure_ascii=False)
             (wanted.into / survey / "truth" / "truth.json").write_text(text + "\n", encoding="utf-8")
+        for name, log in LOGS[survey].items():
+            if not wanted.only:
+                (wanted.into / survey / name).write_text(log(), encoding="utf-8")
 
 
 def write(shot: Shot, folder: Path) -> dict[str, Any]:
@@ -89,6 +103,8 @@ def blurred(shot: Shot) -> Mask:
         mask = inside(area.corners, shot.camera.shape)
         rim = binary_dilation(mask, iterations=EDGE_PX) & ~binary_erosion(mask, iterations=EDGE_PX, border_value=1)
         edges |= mask | rim if getattr(area, "role", "") == "reflector" else rim
+    for mirage in shot.subject.mirages:
+        edges |= binary_dilation(mirage.mask, iterations=EDGE_PX)
     return edges
 
 
@@ -97,13 +113,14 @@ def facts(shot: Shot, truth_c: Field, over_range: Mask) -> dict[str, Any]:
     subject, camera, air = shot.subject, shot.camera, shot.air
     pixel_m = camera.ifov_mrad * 1e-3 * air.distance_m
     label_image = labels(shot)
+    area_m2 = np.full(camera.shape, pixel_m**2) if shot.pixel_area_m2 is None else shot.pixel_area_m2
     return {
         "file": f"frames/{shot.file}",
         "sound": shot.sound,
         "camera": camera.name,
         "band_um": camera.band_um,
         "emissivity": subject.emissivity,
-        "reflected_c": round(float(np.mean(subject.reflected_c)), 3),
+        "reflected_c": round(float(np.median(subject.reflected_c)), 3),
         "air_c": air.air_c,
         "relative_humidity_percent": air.relative_humidity_percent,
         "distance_m": air.distance_m,
@@ -117,6 +134,7 @@ def facts(shot: Shot, truth_c: Field, over_range: Mask) -> dict[str, Any]:
         "saturated_pixels": int(over_range.sum()),
         "surfaces": [
             {"name": patch.name, "role": patch.role, "emissivity": patch.emissivity, "polygon": patch.corners}
+            | ({} if patch.emissivity_total is None else {"emissivity_total": patch.emissivity_total})
             | {"mean_c": round(float(truth_c[inside(patch.corners, camera.shape)].mean()), 2)}
             for patch in subject.patches
         ],
@@ -124,14 +142,16 @@ def facts(shot: Shot, truth_c: Field, over_range: Mask) -> dict[str, Any]:
             {
                 "label": k,
                 "kind": defect.kind,
+                "pattern": PATTERNS.get(defect.kind),
                 "sense": "hot" if defect.delta_k.sum() > 0 else "cold",
                 "delta_k": round(float(defect.delta_k.flat[np.abs(defect.delta_k).argmax()]), 2),
                 "mean_delta_k": round(float(defect.delta_k[label_image == k].mean()), 2),
                 "threshold_k": defect.threshold_k,
                 "against": defect.against,
                 "pixels": int((label_image == k).sum()),
-                "area_m2": round(float((label_image == k).sum()) * pixel_m**2, 6),
+                "area_m2": round(float(area_m2[label_image == k].sum()), 6),
             }
+            | defect.more
             for k, defect in enumerate(subject.defects, start=1)
         ],
         "components": [
@@ -139,7 +159,18 @@ def facts(shot: Shot, truth_c: Field, over_range: Mask) -> dict[str, Any]:
             | component_temperatures(truth_c, inside(part.corners, camera.shape))
             for part in subject.parts
         ],
-    }
+        "mirages": [
+            {"kind": mirage.kind, "pattern": PATTERNS.get(mirage.kind), "mirrored_c": mirage.mirrored_c}
+            | {"pixels": int(mirage.mask.sum()), "extent": extent(mirage.mask)}
+            for mirage in subject.mirages
+        ],
+    } | shot.more
+
+
+def extent(mask: Mask) -> list[int]:
+    """The smallest upright rectangle around a mask: left, top, right, bottom [px]."""
+    y, x = np.nonzero(mask)
+    return [int(edge) for edge in (x.min(), y.min(), x.max(), y.max())]
 
 
 def component_temperatures(truth_c: Field, mask: Mask) -> dict[str, float]:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from typing import Any
 from zlib import crc32
 
 import numpy as np
@@ -24,6 +25,7 @@ class Patch:
     corners: Corners
     emissivity: float
     role: str = "inspect"  # "inspect" | "ignore" | "reflector" | "known-temperature"
+    emissivity_total: float | None = None  # over all wavelengths, where the survey states it
 
 
 @dataclass(frozen=True)
@@ -43,11 +45,21 @@ class Defect:
     delta_k: Field
     threshold_k: float
     against: str = "the same wall without the defect"
+    more: dict[str, Any] = field(default_factory=dict)  # what else is true about it, by its name in truth.json
 
     @property
     def mask(self) -> Mask:
         """The pixels that count as defect."""
         return np.abs(self.delta_k) >= self.threshold_k
+
+
+@dataclass(frozen=True)
+class Mirage:
+    """Something mirrored that looks like a deviation where none is: where, and how warm what is mirrored is."""
+
+    kind: str
+    mask: Mask
+    mirrored_c: float
 
 
 @dataclass(frozen=True)
@@ -60,6 +72,7 @@ class Subject:
     defects: tuple[Defect, ...] = ()
     patches: tuple[Patch, ...] = ()
     parts: tuple[Part, ...] = ()
+    mirages: tuple[Mirage, ...] = ()  # already in reflected_c
 
     @property
     def temperature_c(self) -> Field:
@@ -69,10 +82,10 @@ class Subject:
     @property
     def emissivities(self) -> Field:
         """Emissivity of each pixel; where areas overlap the later one counts, components last."""
-        field = np.full(self.sound_c.shape, self.emissivity)
+        emissivity = np.full(self.sound_c.shape, self.emissivity)
         for area in (*self.patches, *self.parts):
-            field[inside(area.corners, field.shape)] = area.emissivity
-        return field
+            emissivity[inside(area.corners, emissivity.shape)] = area.emissivity
+        return emissivity
 
 
 def normals(name: str, shape: tuple[int, int]) -> Field:

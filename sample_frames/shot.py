@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from typing import Any
 
 from camera_model import Air, Camera, Window
-from painting import Subject
+from painting import Field, Subject
 
 
 @dataclass(frozen=True)
@@ -21,3 +22,5 @@ class Shot:
     shading_k: float = 0.0
     offset_k: float = 0.0
     window: Window | None = None
+    pixel_area_m2: Field | None = None  # of each pixel, where it is not (IFOV × distance)²
+    more: dict[str, Any] = field(default_factory=dict)  # what else is true about it, by its name in truth.json

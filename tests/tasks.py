@@ -25,6 +25,15 @@ def camera(**changes: Any) -> Camera:
     return Camera(**given)
 
 
+GOOD_CONDITIONS = {
+    "hours_difference_held": 48 * 3600.0,
+    "hours_since_sun": 14 * 3600.0,
+    "hours_since_rain": 40 * 3600.0,
+    "wind": 1.0,
+}
+"""What an envelope survey must have recorded, besides both air temperatures, for numbers to be claimed."""
+
+
 def scene(**values: float | tuple[float, float]) -> Scene:
     """A calm room at 20 °C; values in SI, or (value, standard uncertainty)."""
     given: dict[str, Any] = {

@@ -136,6 +136,18 @@ def test_a_folder_of_somebody_else_is_left_alone(lodge: Path, tmp_path: Path) ->
     assert [path.name for path in (tmp_path / "diary").iterdir()] == ["today.txt"]
 
 
+def test_a_link_among_the_folders_of_the_report_gets_one_line_and_nothing_is_run(lodge: Path, tmp_path: Path) -> None:
+    assert irsurvey_("run", lodge).exit_code == 0
+    (tmp_path / "photographs").mkdir()
+    (lodge / "report" / "frames").rename(tmp_path / "kept")
+    (lodge / "report" / "frames").symlink_to(tmp_path / "photographs", target_is_directory=True)
+    result = irsurvey_("run", lodge)
+    assert result.exit_code == 2
+    (line,) = error_lines(result)
+    assert line.startswith("report/frames: expected a folder of this report, got a link")
+    assert list((tmp_path / "photographs").iterdir()) == []
+
+
 def test_jobs_change_nothing_but_the_time(lodge: Path, tmp_path: Path) -> None:
     assert irsurvey_("run", lodge, "-o", tmp_path / "one").exit_code == 0
     assert irsurvey_("run", lodge, "-o", tmp_path / "two", "--jobs", 2).exit_code == 0

@@ -10,9 +10,17 @@ import tasks
 
 from irsurvey import pipeline
 from irsurvey.geometry.polygons import mask
-from irsurvey.model import Component, KnownLength, KnownRectangle
+from irsurvey.model import Component, KnownLength, KnownRectangle, Strip
 
 ROOM = {"indoor_air": (294.15, 0.3), "outdoor_air": (274.15, 0.3), "mean_radiant": (294.15, 0.3)}
+WELL = {
+    "wind": 1.0,
+    "hours_difference_held": 48 * 3600.0,
+    "hours_since_sun": 14 * 3600.0,
+    "hours_since_rain": 40 * 3600.0,
+}
+"""With `ROOM`: what has to be known before numbers may be claimed."""
+SIGMA = 5.670374419e-8  # CODATA 2018
 BLACK = {"emissivity": 1.0, "distance": 0.0}
 """A black surface at no distance: object temperature = apparent temperature, so that cases can be done by hand."""
 PATCH = (slice(40, 80), slice(90, 130))
@@ -75,6 +83,21 @@ def test_heat_flux_outside_is_positive_out_of_the_wall_and_larger_at_the_warm_pa
     assert finding.sense == "hot"
     assert finding.heat_flux_w_m2.value == pytest.approx(by_hand, abs=0.2)  # 0.005 K × 17 W/m²K, twice
     assert finding.heat_flux_w_m2.value > finding.reference_heat_flux_w_m2.value > 0
+
+
+def test_a_u_value_from_outside_is_against_what_air_and_surroundings_are_together():
+    # Worked: h_c = 4 + 4·2 = 12, h_r = σ(T_s + T_r)(T_s² + T_r²); U = (h_c + h_r)(T_s − T_env)/(T_i − T_env) with
+    # T_env = (h_c T_a + h_r T_r)/(h_c + h_r): surroundings at −5 °C before a wall at 6.2 °C in air at 5 °C.
+    frame, task = wall(
+        6.2, 8.8, outdoor_air=278.15, indoor_air=294.15, mean_radiant=268.15, air=278.15, reflected=278.15,
+        **{**WELL, "wind": 2.0},
+    )  # fmt: skip
+    finding, _, report = only_finding(frame, replace(task, viewed_from="outside"))
+    for t, u_value in ((279.35, report.reference.u_value_w_m2k), (281.95, finding.u_value_w_m2k)):
+        radiative = SIGMA * (t + 268.15) * (t**2 + 268.15**2)
+        environment = (12 * 278.15 + radiative * 268.15) / (12 + radiative)
+        expected = (12 + radiative) * (t - environment) / (294.15 - environment)
+        assert u_value.value == pytest.approx(expected, abs=0.01)  # 0.005 K × 17 W/m²K over 18 K
 
 
 def test_heat_flux_of_a_cooled_building_turns_its_sign():
@@ -231,3 +254,110 @@ def test_rated_load_is_a_band_for_exponents_from_1_6_to_2():
     hot = pipeline.analyse(frame, task)[0].components[1]
     assert hot.at_rated_load.delta_similar_k.low == pytest.approx(30.3, abs=0.05)
     assert hot.at_rated_load.delta_similar_k.high == pytest.approx(40.0, abs=0.05)
+
+
+# ---- what must not matter -------------------------------------------------------------------------------------
+
+
+def test_five_kelvins_more_everywhere_change_no_difference_and_no_convection():
+    cool, warm = (
+        only_finding(
+            *wall(18.6 + more, 15.5 + more, **WELL, **{name: (t + more, 0.3) for name, (t, _) in ROOM.items()})
+        )
+        for more in (0.0, 5.0)
+    )
+    (one, _, one_frame), (other, _, other_frame) = cool, warm
+    for name in ("delta_k", "mean_delta_k", "temperature_factor"):
+        assert getattr(other, name).value == pytest.approx(getattr(one, name).value, abs=1e-5)
+    by_convection = other.heat_flux_terms_w_m2["convection"].value
+    assert by_convection == pytest.approx(one.heat_flux_terms_w_m2["convection"].value, abs=1e-4)
+    # Radiation goes with T⁴: ε 1, σ(T_mr⁴ − T⁴), and so does what the patch loses more than the wall.
+    for finding, frame, more in ((one, one_frame, 0.0), (other, other_frame, 5.0)):
+        radiated = [SIGMA * ((294.15 + more) ** 4 - (t + more + tasks.KELVIN) ** 4) for t in (15.5, 18.6)]
+        expected = 2.5 * 3.1 + radiated[0] - radiated[1]
+        assert finding.excess_heat_w_m2.value == pytest.approx(expected, abs=0.1)  # stored to 0.01 K
+        assert frame.reference.heat_flux_terms_w_m2["radiation:mean_radiant"].value == pytest.approx(
+            radiated[1], abs=0.05
+        )
+
+
+def test_a_house_cooled_as_much_as_another_is_heated_lets_as_much_heat_through():
+    # Every temperature turned about that of the room; without radiation the two are each other's mirror.
+    given = {**WELL, "total_emissivity": 0.0, "u_value": (0.4, 0.0), "tilt": np.pi / 2}
+    heated, _, heated_frame = only_finding(*wall(18.6, 15.5, **given))
+    cooled, _, cooled_frame = only_finding(*wall(23.4, 26.5, **{**given, "outdoor_air": (314.15, 0.3)}))
+    assert (heated.sense, cooled.sense) == ("cold", "hot")
+    for name in ("heat_flux_w_m2", "excess_heat_w_m2", "u_value_increase_w_m2k", "u_value_from_contrast_w_m2k"):
+        assert getattr(cooled, name).value == pytest.approx(getattr(heated, name).value, rel=1e-6)
+    assert cooled.excess_heat_w_m2.value == pytest.approx(2.5 * 3.1, abs=0.05)  # stored to 0.01 K
+    assert cooled.excess_heat_w_m2.u == pytest.approx(heated.excess_heat_w_m2.u, rel=0.01)  # noise grows with T
+    assert cooled.u_value_increase_w_m2k.value == pytest.approx(2.5 * 3.1 / 20, abs=0.003)
+    for frame in (heated_frame, cooled_frame):
+        assert frame.reference.film_resistance_m2k_w.value == pytest.approx(1 / 2.5, rel=1e-9)
+
+
+@pytest.mark.parametrize("axes", [(0,), (1,), (0, 1)], ids=["upside down", "left to right", "turned by 180°"])
+def test_a_picture_turned_over_measures_the_same(axes):
+    # A bell along a line that begins a quarter down the picture; noise, and a reference at the left.
+    _, task = wall(18.6, 15.5, distance=2.0, **WELL)
+    bell = np.exp(-(((np.arange(160) - 118) / 12) ** 2)) * (np.arange(120) > 30)[:, None]
+    frame = tasks.frame(291.75 - 2.5 * bell, seed=3)
+    right, bottom = (159.0 if 1 in axes else 0.0), (119.0 if 0 in axes else 0.0)
+    turned_reference = tuple((abs(right - x), abs(bottom - y)) for x, y in task.reference)
+    (one,) = pipeline.analyse(frame, task)[0].findings
+    turned = replace(frame, stored=np.ascontiguousarray(np.flip(frame.stored, axes)))
+    (other,) = pipeline.analyse(turned, replace(task, reference=turned_reference))[0].findings
+    assert other.pixels == one.pixels
+    assert other.indication.pattern == one.indication.pattern
+    for name in ("delta_k", "mean_delta_k", "excess_heat_w", "temperature_factor", "area_m2"):
+        assert getattr(other, name).value == pytest.approx(getattr(one, name).value, rel=1e-6)
+        assert getattr(other, name).u == pytest.approx(getattr(one, name).u, rel=1e-3)  # noise is told from a sample
+
+
+def bridged(start, end, metres_per_pixel=0.01, **changes):
+    """A strip across a wall at 18 °C, the room at 20 °C, with a bridge 3 K colder that fades over 0.1 m, ten pixels."""
+    away = np.abs(np.arange(301) - 150) * 0.01
+    t = np.broadcast_to(291.15 - 3 * np.exp(-away / 0.1), (60, 301))
+    room = {"indoor_air": (293.15, 0.3), "outdoor_air": (273.15, 0.3), "mean_radiant": (293.15, 0.3)}
+    task = tasks.task(
+        scene=tasks.scene(**BLACK, **room, **WELL, total_emissivity=0.0, known_length=100 * metres_per_pixel),
+        known_scale=KnownLength((0.0, 10.0), (100.0, 10.0)),
+        reference=((2.0, 2.0), (40.0, 2.0), (40.0, 57.0), (2.0, 57.0)),
+        strips=(Strip("across", (start, 30.0), (end, 30.0), width=5, **changes),),
+    )
+    report, _ = pipeline.analyse(tasks.frame(t, seed=None), task)
+    return report.strips[0], report
+
+
+# Worked: h = 2.5 alone (no radiation), Ψ = h · 2 · 3 K · 0.1 m/20 K = 0.075 W/(m·K); the undisturbed wall loses
+# 2.5 · 2/20 = 0.25 W/(m²·K); I = 1 + Ψ/(U l).
+PSI, U_PLAIN = 0.075, 0.25
+
+
+@pytest.mark.parametrize("half", [90, 115, 140])
+def test_linear_transmittance_does_not_depend_on_how_long_the_strip_is_and_the_incidence_factor_does(half):
+    strip, _ = bridged(150.0 - half, 150.0 + half)
+    assert strip.flags == ()
+    length = (2 * half + 1) * 0.01  # as many samples of a centimetre
+    # Samples of 1 cm of e^(−x/0.1 m) sum to 0.1 % more than the integral; what its ends still hold takes up to 0.6 %.
+    assert strip.linear_transmittance_w_mk.value == pytest.approx(PSI, rel=0.01)
+    assert strip.incidence_factor.value == pytest.approx(1 + PSI / (U_PLAIN * length), rel=0.01)
+    assert strip.length_m.value == pytest.approx(length, rel=1e-9)
+
+
+def test_half_a_bridge_from_its_middle_out_is_half_its_linear_transmittance():
+    strip, _ = bridged(150.0, 290.0, undisturbed="to")
+    other_half = 2.5 * 3 * 0.005 / 20  # the sample in the middle counts whole: half a centimetre of the other side
+    assert strip.linear_transmittance_w_mk.value == pytest.approx(PSI / 2 + other_half, rel=0.01)
+
+
+def test_pixels_twice_as_large_double_lengths_and_quadruple_areas_and_leave_ratios_alone():
+    (one, one_report), (other, other_report) = (bridged(10.0, 290.0, size) for size in (0.01, 0.02))
+    for name in ("length_m", "linear_transmittance_w_mk"):
+        assert getattr(other, name).value == pytest.approx(2 * getattr(one, name).value, rel=1e-9)
+    for name in ("incidence_factor", "temperature_factor", "undisturbed_c", "extreme_c"):
+        assert getattr(other, name).value == pytest.approx(getattr(one, name).value, rel=1e-9)
+    (finding,), (larger,) = one_report.findings, other_report.findings
+    for name in ("area_m2", "excess_heat_w", "excess_heat_w_k"):
+        assert getattr(larger, name).value == pytest.approx(4 * getattr(finding, name).value, rel=1e-9)
+    assert larger.excess_heat_w_m2 == finding.excess_heat_w_m2

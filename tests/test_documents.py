@@ -158,11 +158,12 @@ def test_ci_is_executable() -> None:
     assert os.access(ROOT / ".ci" / "run", os.X_OK)
 
 
-def test_the_survey_file_of_the_readme_is_one(tmp_path: Path) -> None:
-    (text,) = blocks(README, "toml")
+@pytest.mark.parametrize("text", blocks(README, "toml"), ids=["in short", "a building"])
+def test_the_survey_files_of_the_readme_are_some(text: str, tmp_path: Path) -> None:
     (tmp_path / "survey.toml").write_text(text, encoding="utf-8")
     stored = np.random.default_rng(0).normal(7300, 2, (480, 640)).astype(np.uint16)
-    Image.fromarray(stored).save(tmp_path / tomllib.loads(text)["frame"][0]["file"])
+    for frame in tomllib.loads(text)["frame"]:
+        Image.fromarray(stored).save(tmp_path / frame["file"])
     checked = check(tmp_path / "survey.toml")
     assert checked.unreadable == ()
 

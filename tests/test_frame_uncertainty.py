@@ -277,9 +277,13 @@ def test_a_finding_near_the_threshold_says_how_sure_it_is():
     assert far.exceeds_threshold > 0.999
 
 
-def test_the_u_value_of_the_reference_is_its_flux_over_the_air_difference():
-    task = tasks.task(scene=tasks.scene(indoor_air=(294.15, 0.3), outdoor_air=(274.15, 0.3)))
-    reference = analysed(task)[0].reference
+def test_the_u_value_of_the_reference_is_its_flux_over_the_difference_that_drives_it():
+    # What the wall faces is as warm as the air: then the environmental temperature is that of the air.
+    scene = tasks.scene(
+        indoor_air=(294.15, 0.3), outdoor_air=(274.15, 0.3), mean_radiant=(294.15, 0.3), **tasks.GOOD_CONDITIONS
+    )
+    camera = tasks.camera(accuracy=0.5, accuracy_fraction=0.0)
+    reference = analysed(tasks.task(scene=scene, camera=camera))[0].reference
     assert reference.u_value_w_m2k.value == pytest.approx(reference.heat_flux_w_m2.value / 20.0, rel=1e-12)
     assert reference.u_value_w_m2k.u > 0
 

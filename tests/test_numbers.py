@@ -156,8 +156,77 @@ def test_a_probability_that_is_not_certain_is_not_shown_as_certain(fraction: flo
 
 
 @pytest.mark.parametrize(
+    ("square_metres", "u", "text"),
+    [
+        (0.0042, 0.0003, "42.0 ± 6.0 cm²"),
+        (0.00999, 0.001, "100 ± 20 cm²"),
+        (0.01, 0.001, "0.0100 ± 0.0020 m²"),
+        (0.4187, 0.0213, "0.419 ± 0.043 m²"),
+        (0.0, None, "0 m²"),
+    ],
+)
+def test_a_small_area_is_in_square_centimetres(square_metres: float, u: float | None, text: str) -> None:
+    assert numbers.measured(Estimate(square_metres, u), "area_m2").replace("\u00a0", " ") == text
+
+
+def test_in_a_column_of_square_metres_a_small_area_names_its_unit_and_others_do_not() -> None:
+    assert numbers.measured(Estimate(0.0042, 0.0003), "area_m2", unit=False) == "42.0\u00a0±\u00a06.0\u00a0cm²"
+    assert numbers.measured(Estimate(0.42, 0.03), "area_m2", unit=False) == "0.420\u00a0±\u00a00.060"
+    assert numbers.measured(Estimate(0.0042, 0.0003), "u_value_w_m2k", unit=False) == "0.00420\u00a0±\u00a00.00060"
+
+
+def test_the_interval_of_a_small_area_is_in_square_centimetres_too() -> None:
+    small = Estimate(0.0042, 0.0003, (0.0037, 0.0050))
+    assert numbers.interval_of(small, "area_m2").replace("\u00a0", " ") == "37.0 to 50.0 (95 %)"
+    assert numbers.interval_of(Estimate(15.43, 0.61, (14.312, 16.761)), "mean_c").startswith("14.3 to 16.8")
+    assert numbers.interval_of(None, "area_m2") == ""
+
+
+@pytest.mark.parametrize(
+    ("square_metres", "text"),
+    [(0.001, "10 cm²"), (0.0011, "11 cm²"), (0.001101, "12 cm²"), (0.0123, "0.013 m²"), (0.01, "0.01 m²")],
+)
+def test_a_least_area_is_never_rounded_down_nor_up_without_need(square_metres: float, text: str) -> None:
+    assert numbers.least_area(square_metres).replace("\u00a0", " ") == text
+
+
+def test_an_area_and_what_it_may_be_share_one_unit() -> None:
+    assert numbers.area_range(0.0, 0.0, 0.0041).replace("\u00a0", " ") == "0 cm² (0 to 41 cm²)"
+    assert numbers.area_range(0.0035, 0.0012, 0.09).replace("\u00a0", " ") == "0.0035 m² (0.0012 to 0.09 m²)"
+
+
+@pytest.mark.parametrize(
+    ("value", "u", "text"),
+    [
+        (240.0, 150.0, "of the order of 100"),  # log10 240 = 2.38
+        (400.0, 250.0, "of the order of 1000"),  # log10 400 = 2.60
+        (0.7, 0.5, "of the order of 1"),
+        (0.07, 0.05, "of the order of 0.1"),
+        (-240.0, 150.0, "of the order of −100"),
+        (10.0, 10.0, "at most about 30"),  # 10 + 2 · 10
+        (3.0, 200.0, "at most about 500"),  # 3 + 2 · 200 = 403, upwards to one digit
+        (-3.0, 200.0, "at most about 400"),  # 397
+        (5.0, None, "–"),
+        (nan, 1.0, "–"),
+    ],
+)
+def test_what_is_too_uncertain_for_digits_has_an_order_of_magnitude_or_an_upper_end(
+    value: float, u: float | None, text: str
+) -> None:
+    assert numbers.magnitude(Estimate(value, u)) == text
+
+
+@pytest.mark.parametrize(
     ("key", "symbol"),
     [
+        ("film_resistance_m2k_w", "m²·K/W"),
+        ("linear_transmittance_w_mk", "W/(m·K)"),
+        ("excess_heat_w_k", "W/K"),
+        ("energy_kwh", "kWh"),
+        ("degree_days_kd", "K·d"),
+        ("undisturbed_gradient_k_per_m", "K/m"),
+        ("vapour_pressure_pa", "Pa"),
+        ("temperature_factor_at_0_25", ""),
         ("delta_k", "K"),
         ("extreme_c", "°C"),
         ("excess_heat_w", "W"),

@@ -137,6 +137,51 @@ def test_a_folder_that_belongs_to_something_else_is_left_alone(site, tmp_path):
     assert site.read_text("utf-8") == SURVEY
 
 
+@pytest.mark.parametrize("link", ["frames", "frames/one", "frames/gone"])
+def test_nothing_is_written_or_cleared_through_a_link_to_another_folder(site, tmp_path, link):
+    run(site)
+    out, elsewhere = site.parent / "report", tmp_path / "elsewhere"
+    (elsewhere / "gone").mkdir(parents=True)
+    for folder in (elsewhere, elsewhere / "gone"):
+        for name in ("temperature.tif", ".part-a.tif"):
+            (folder / name).write_bytes(b"mine")
+    before = contents(elsewhere)
+    shutil.rmtree(out / link, ignore_errors=True)
+    (out / link).symlink_to(elsewhere, target_is_directory=True)
+    with pytest.raises(OutputError, match=rf"report/{link}: expected a folder of this report, got a link; remove it"):
+        run(site)
+    assert contents(elsewhere) == before
+
+
+def test_a_link_in_place_of_a_file_is_replaced_and_what_it_points_to_stays(site, tmp_path):
+    run(site)
+    mine = tmp_path / "mine.html"
+    mine.write_text("mine", "utf-8")
+    out = site.parent / "report"
+    for name in ("report.html", "report.json", "frames/one/annotated.png", OUTPUT_MARKER):
+        (out / name).unlink()
+        (out / name).symlink_to(mine)
+    run(site)
+    assert mine.read_text("utf-8") == "mine"
+    for name in ("report.html", "report.json", "frames/one/annotated.png", OUTPUT_MARKER):
+        assert not (out / name).is_symlink()
+        assert (out / name).read_bytes() != b"mine"
+
+
+def test_a_slip_in_a_known_temperature_fails_its_frame_alone(site):
+    panel = """[[frame.surface]]
+    name = "panel"
+    polygon = [[100, 2], [130, 2], [130, 30], [100, 30]]
+    role = "known-temperature"
+    temperature_c = 500
+    """
+    site.write_text(SURVEY + panel, "utf-8")
+    one, two = run(site).frames
+    assert (one.status, two.status) == ("analysed", "failed")
+    assert "surface panel: temperature_c" in two.reason
+    assert "500.0 °C" in two.reason
+
+
 def test_frames_that_left_the_survey_leave_the_report(site):
     run(site)
     site.write_text(SURVEY.rsplit("[[frame]]", 1)[0], "utf-8")

@@ -30,6 +30,10 @@ _RESOLUTION = 1e-3
 FOIL_EMISSIVITY = 0.04
 """Of household aluminium foil, 0.03 to 0.05 (handbook compilations): a reflector shows as much of itself."""
 
+_FAR_OFF = 4
+"""Half-widths of the camera's accuracy from which an offset is no offset of that camera [house]: a sound camera keeps
+to one, one that has drifted since its calibration may be off by two or three; further off, what is stated is wrong."""
+
 Optics = tuple[str, str]
 """Names of the emissivity and the reflected temperature in the Scene."""
 
@@ -210,9 +214,9 @@ def _meaningless(frame: Frame, task: FrameTask) -> FrameError:
 
 def _with_camera(task: FrameTask, pivot: float) -> Scene:
     """The scene with the camera's own errors: an offset common to the frame, a gain about its median."""
-    accuracy = max(task.camera.accuracy, task.camera.accuracy_fraction * abs(pivot - ZERO_CELSIUS))
     # Accuracies are half-widths, rectangular.
-    offset = Quantity("camera_offset", 0.0, accuracy / 3**0.5, "survey", distribution="rectangular", u_source="survey")
+    u = _accuracy(task.camera, pivot) / 3**0.5
+    offset = Quantity("camera_offset", 0.0, u, "survey", distribution="rectangular", u_source="survey")
     gain = replace(offset, name="camera_gain", u=task.camera.accuracy_fraction / 3**0.5)
     scene = task.scene.with_(offset, gain)
     atmosphere = scene["atmosphere"]
@@ -222,6 +226,11 @@ def _with_camera(task: FrameTask, pivot: float) -> Scene:
         # Not recorded is not calm.  A light breeze, wide enough to cover still air; only heat flux uses it.
         scene = scene.with_(Quantity("wind", 2.0, 1.0, "default", low=0.0))
     return scene
+
+
+def _accuracy(camera: Camera, pivot: float) -> float:
+    """Half-width of the camera's stated accuracy [K] at its median reading."""
+    return max(camera.accuracy, camera.accuracy_fraction * abs(pivot - ZERO_CELSIUS))
 
 
 def _with_reflected(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32], pivot: float) -> Scene:
@@ -234,7 +243,7 @@ def _with_reflected(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float3
             f"{task.id}: reflected_c",
             "a reflected apparent temperature",
             f"none stated and no reflector read in {served_by}",
-            "state conditions.reflected_c or draw a surface with role = \"reflector\"",
+            'state conditions.reflected_c or draw a surface with role = "reflector"',
         )
         raise FrameError(fault)
     return scene
@@ -244,7 +253,8 @@ def _with_offset(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32],
     """Fix the camera's offset on surfaces of known temperature: the shift of apparent temperature that meets them.
 
     It is then as uncertain as everything it was found by, and moves with that: its correlations with the other
-    inputs say how far, so that what a known surface and another one share cancels between them.
+    inputs say how far, so that what a known surface and another one share cancels between them.  Raises FrameError
+    where a surface asks for an offset that, its own U aside, lies `_FAR_OFF` half-widths of the camera's accuracy off.
     """
     stated = [surface for surface in task.surfaces if surface.role == "known-temperature" and surface.temperature]
     known = [_known(surface, t_apparent) for surface in stated]
@@ -256,9 +266,12 @@ def _with_offset(task: FrameTask, scene: Scene, t_apparent: NDArray[np.float32],
 
     exact = Quantity("camera_offset", 0.0)  # it is what is looked for
     budget = propagate(offsets, scene.with_(exact, *(one.noise for one in known)))
-    for one, value in zip(known, budget.values, strict=True):
+    most = _FAR_OFF * _accuracy(task.camera, pivot)
+    for one, value, u_value in zip(known, budget.values, budget.u, strict=True):
         if not np.isfinite(value):
             raise _unreadable(task, one.surface, "a surface of known temperature that can be read")
+        if abs(value) > most + 2 * u_value:
+            raise _far_off(task, scene, one.surface, float(value), most)
     weights = 1 / np.maximum(budget.u**2, 1e-6)
     weights /= weights.sum()
     swings = budget.half_swings @ weights
@@ -297,6 +310,14 @@ def _offset(known: _Known, values: Mapping[str, Any], pivot: float, band: tuple[
 def _unreadable(task: FrameTask, surface: Surface, expected: str) -> FrameError:
     remedy = "draw it on the surface, clear of its edge, and check its temperature and emissivity"
     return FrameError(Fault(f"{task.id}: surface {surface.name}", expected, "no measurable pixel in it", remedy))
+
+
+def _far_off(task: FrameTask, scene: Scene, surface: Surface, offset: float, most: float) -> FrameError:
+    stated = scene[str(surface.temperature)].value - ZERO_CELSIUS
+    expected = f"a temperature for which the camera is off by no more than {most:.1f} K, {_FAR_OFF} times its accuracy"
+    got = f"{stated:.1f} °C, for which it would be off by {-offset:+.1f} K"
+    remedy = "check temperature_c and that it is drawn on that surface, then its emissivity and reflected temperature"
+    return FrameError(Fault(f"{task.id}: surface {surface.name}: temperature_c", expected, got, remedy))
 
 
 def _optics(task: FrameTask, shape: tuple[int, ...]) -> tuple[NDArray[np.uint8], tuple[Optics, ...]]:

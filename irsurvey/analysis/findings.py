@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
 
 import numpy as np
 
 from irsurvey.analysis.budgets import flips, on_axis
+from irsurvey.analysis.building import envelope_of_finding
 from irsurvey.analysis.correction import Corrected
+from irsurvey.analysis.evidence import Evidence, celsius
+from irsurvey.analysis.indications import indication_of, is_mirror
 from irsurvey.analysis.planning import Measured, Planned
-from irsurvey.analysis.propagation import Propagated
 from irsurvey.analysis.regions import Screened, near
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import edge_sharpness, elongation
@@ -25,12 +26,12 @@ from irsurvey.assess.severity import (
     CONDITIONS,
     HOTTER_BESIDE,
     LEAST_EMISSIVITY,
+    MIRRORS,
     NO_SOLUTION,
     SATURATED,
     SIZE_LIMITED,
     Verdict,
 )
-from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import mask, outline
 from irsurvey.model import (
     Band,
@@ -45,20 +46,6 @@ from irsurvey.model import (
     RatedLoad,
     Shape,
 )
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Evidence:
-    """All that findings and components of one frame are made from."""
-
-    task: FrameTask
-    corrected: Corrected
-    screened: Screened
-    planned: Planned
-    numbers: Propagated
-    inputs: Mapping[str, Input]
-    criteria: tuple[Criterion, ...]
-
 
 _KEY_GRID = 8
 """Positions in keys are rounded to this many pixels, so that a re-run with slightly other inputs keeps them."""
@@ -75,14 +62,12 @@ def component_twins(
     return dict(zip((member.name for member in members), twins(members, ambient, chosen), strict=True))
 
 
-def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
+def findings(evidence: Evidence) -> Iterator[Finding]:
     """The findings of a frame in the order of their labels."""
     task, screened, results = evidence.task, evidence.screened, evidence.numbers.results
     keys: Counter[str] = Counter()
     against = reference_emissivity(evidence)  # a ΔT is no better than what it is taken against
-    for label, (found, measured) in enumerate(
-        zip(screened.regions, evidence.planned.anomalies, strict=True), start=1
-    ):
+    for label, (found, measured) in enumerate(zip(screened.regions, evidence.planned.anomalies, strict=True), start=1):
         name = measured.region.name
         emissivity = _lowest_emissivity(measured, evidence.planned)
         flags = (
@@ -90,15 +75,21 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
             (SIZE_LIMITED, not measured.spot.is_full),
             (REFLECTIVE, emissivity < LEAST_EMISSIVITY),
             (TOUCHES_EDGE, measured.patch.touches_edge(screened.t.shape)),
-            (AUTOMATIC_REFERENCE, task.reference is None),
-            (CONDITIONS, not is_valid),
+            (AUTOMATIC_REFERENCE, task.reference is None and screened.reference is not None),
+            (CONDITIONS, not evidence.is_valid),
+            (MIRRORS, is_mirror(task, measured.patch, screened.t.shape, emissivity)),
+        )
+        factor, factor_at_limit = (
+            results.get((name, number)) if evidence.is_valid else None
+            for number in ("temperature_factor", "temperature_factor_at_limit")
         )
         numbers = {
-            "extreme_c": _celsius(results.get((name, "extreme"))),
-            "mean_c": _celsius(results.get((name, "mean"))),
+            "extreme_c": celsius(results.get((name, "extreme"))),
+            "mean_c": celsius(results.get((name, "mean"))),
             "delta_k": results.get((name, "delta")),
             "mean_delta_k": results.get((name, "mean_delta")),
-            "temperature_factor": results.get((name, "temperature_factor")),
+            "temperature_factor": factor,
+            "temperature_factor_at_0_25": factor_at_limit,
         }
         verdict = assess_finding(
             numbers,
@@ -124,11 +115,10 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
             mean_c=numbers["mean_c"],
             delta_k=numbers["delta_k"],
             mean_delta_k=numbers["mean_delta_k"],
-            heat_flux_w_m2=results.get((name, "flux")),
-            reference_heat_flux_w_m2=results.get((name, "reference_flux")),
-            excess_heat_w_m2=results.get((name, "excess_flux")),
-            excess_heat_w=results.get((name, "excess_heat")),
             temperature_factor=numbers["temperature_factor"],
+            temperature_factor_at_0_25=numbers["temperature_factor_at_0_25"],
+            **envelope_of_finding(evidence, name, measured.sense, verdict.flags),
+            pressure_change_k=evidence.paired.findings[label - 1].change if evidence.paired else None,
             shape=_shape(measured, screened),
             exceeds_threshold=_exceeds(numbers["delta_k"], screened.min_delta, measured.sense),
             assessments=verdict.assessments,
@@ -136,23 +126,21 @@ def findings(evidence: Evidence, *, is_valid: bool) -> Iterator[Finding]:
             outcome=verdict.outcome,
             flips=changes,
             budgets=budgets,
-            indication=None,
+            indication=indication_of(evidence, label, measured.patch, measured.sense, emissivity),
             flags=(*verdict.flags, *((FRAGILE,) if changes else ())),
         )
 
 
-def components(
-    evidence: Evidence, plans: Mapping[str, TwinPlan], *, is_valid: bool
-) -> Iterator[ComponentReport]:
+def components(evidence: Evidence, plans: Mapping[str, TwinPlan]) -> Iterator[ComponentReport]:
     """The components of a frame in the order of the survey."""
     task, corrected, results = evidence.task, evidence.corrected, evidence.numbers.results
     for component in task.components:
         name = component.name
         drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
-        member = _member(component, corrected, evidence.planned, is_valid=is_valid)
+        member = _member(component, corrected, evidence.planned, is_valid=evidence.is_valid)
         plan = plans[name]
         numbers = {
-            "max_c": _celsius(results.get((name, "max"))),
+            "max_c": celsius(results.get((name, "max"))),
             "delta_similar_k": results.get((name, "delta_similar")),
             "delta_ambient_k": results.get((name, "delta_ambient")),
         }
@@ -169,7 +157,7 @@ def components(
             polygon=component.polygon,
             pixels=int(np.count_nonzero(drawn)),
             max_c=numbers["max_c"],
-            mean_c=_celsius(results.get((name, "mean"))),
+            mean_c=celsius(results.get((name, "mean"))),
             delta_similar_k=numbers["delta_similar_k"],
             similar_to=None if plan.is_coolest else plan.name,
             delta_ambient_k=numbers["delta_ambient_k"],
@@ -248,11 +236,9 @@ def _lowest_emissivity(measured: Measured, planned: Planned) -> float:
 
 
 def _shape(measured: Measured, screened: Screened) -> Shape:
-    assert screened.delta is not None  # a region was found against it
     centre = (round(measured.centre[0], 1), round(measured.centre[1], 1))
-    return Shape(
-        elongation(measured.patch), edge_sharpness(screened.delta, measured.patch), centre, measured.spot.centre
-    )
+    sharpness = None if screened.delta is None else edge_sharpness(screened.delta, measured.patch)
+    return Shape(elongation(measured.patch), sharpness, centre, measured.spot.centre)
 
 
 def _key(frame: str, measured: Measured) -> str:
@@ -263,14 +249,6 @@ def _key(frame: str, measured: Measured) -> str:
 
 def _outline(patch: Patch) -> tuple[tuple[int, int], ...]:
     return tuple((int(x) + patch.left, int(y) + patch.top) for x, y in outline(patch.mask))
-
-
-def _celsius(estimate: Estimate | None) -> Estimate | None:
-    if estimate is None:
-        return None
-    interval = estimate.interval_95
-    shifted = None if interval is None else (interval[0] - ZERO_CELSIUS, interval[1] - ZERO_CELSIUS)
-    return Estimate(estimate.value - ZERO_CELSIUS, estimate.u, shifted)
 
 
 def _at_rated(member: Member, numbers: Mapping[str, Estimate | None]) -> RatedLoad | None:

@@ -7,9 +7,13 @@ from math import ceil
 
 import numpy as np
 
+from irsurvey.analysis.building import reference_heat, room_air, strip_reports, transmittances
 from irsurvey.analysis.correction import Corrected
-from irsurvey.analysis.findings import Evidence, components, findings, reference_emissivity
-from irsurvey.analysis.regions import Screened, stretch_of
+from irsurvey.analysis.evidence import Evidence
+from irsurvey.analysis.findings import components, findings, reference_emissivity
+from irsurvey.analysis.regions import ENOUGH_REFERENCE, SMALL_REFERENCE, Screened, has_small_reference, stretch_of
+from irsurvey.analysis.risk import surfaces_at_risk
+from irsurvey.analysis.surroundings import surroundings_flags
 from irsurvey.assess.electrical import TwinPlan
 from irsurvey.assess.severity import LEAST_EMISSIVITY, REFLECTIVE
 from irsurvey.constants import ZERO_CELSIUS
@@ -27,12 +31,10 @@ _COARSE = 0.005
 """Step [K] of quantised float frames from which it is told: a tenth of a good camera's noise."""
 
 
-def frame_report(
-    frame: Frame, evidence: Evidence, twins: Mapping[str, TwinPlan], claimed: tuple[str, str]
-) -> FrameReport:
-    """The report of an analysed frame; `claimed`: what it may claim, and why."""
+def frame_report(frame: Frame, evidence: Evidence, twins: Mapping[str, TwinPlan]) -> FrameReport:
+    """The report of an analysed frame."""
     task, corrected, screened = evidence.task, evidence.corrected, evidence.screened
-    level, reason = claimed
+    level, reason = evidence.claim
     return FrameReport(
         id=task.id,
         status="analysed",
@@ -45,9 +47,7 @@ def frame_report(
         asset=task.asset,
         notes=task.notes,
         taken=task.taken.isoformat() if task.taken else None,
-        source=Source(
-            task.file, frame.sha256, (frame.stored.shape[0], frame.stored.shape[1]), str(frame.stored.dtype)
-        ),
+        source=Source(task.file, frame.sha256, (frame.stored.shape[0], frame.stored.shape[1]), str(frame.stored.dtype)),
         inputs=dict(evidence.inputs),
         humid_air=_humid_air(corrected),
         uncertainty=evidence.numbers.how,
@@ -57,8 +57,13 @@ def frame_report(
         detectable=_detectable(screened, task),
         temperature=_summary(corrected),
         reference=_reference(evidence),
-        findings=tuple(findings(evidence, is_valid=level != "not valid")),
-        components=tuple(components(evidence, twins, is_valid=level != "not valid")),
+        findings=tuple(findings(evidence)),
+        components=tuple(components(evidence, twins)),
+        element=task.element.id if task.element else None,
+        room_air=room_air(evidence),
+        surface_at_risk=tuple(surfaces_at_risk(evidence)),
+        strips=tuple(strip_reports(evidence)),
+        pair=evidence.paired.report if evidence.paired else None,
         flags=(*_flags(evidence), *evidence.numbers.doubts),
     )
 
@@ -89,6 +94,11 @@ def failed(task: FrameTask, reason: str) -> FrameReport:
         reference=None,
         findings=(),
         components=(),
+        element=task.element.id if task.element else None,
+        room_air=None,
+        surface_at_risk=(),
+        strips=(),
+        pair=None,
         flags=(),
     )
 
@@ -157,6 +167,8 @@ def _reference(evidence: Evidence) -> ReferenceReport | None:
     reference, level = screened.reference, results.get(("", "reference"))
     if reference is None:
         return None
+    numbers, refusals = transmittances(evidence, "")
+    heat = reference_heat(evidence, refusals)
     return ReferenceReport(
         how="polygon" if task.reference else "automatic",
         median_c=reference.level - ZERO_CELSIUS,
@@ -164,8 +176,11 @@ def _reference(evidence: Evidence) -> ReferenceReport | None:
         spread_k=reference.spread,
         pixels=reference.pixels,
         gradient_k=reference.gradient,
-        heat_flux_w_m2=results.get(("", "reference_flux")),
-        u_value_w_m2k=results.get(("", "u_value")),
+        **heat,
+        film_resistance_m2k_w=results.get(("", "film_resistance")),
+        u_value_w_m2k=numbers["u_value_w_m2k"],
+        u_value_simple_w_m2k=numbers["u_value_simple_w_m2k"],
+        refusals=refusals,
         polygon=task.reference or tuple((float(x), float(y)) for x, y in outline(screened.reference_area)),
     )
 
@@ -178,6 +193,8 @@ def _flags(evidence: Evidence) -> Iterator[str]:
         yield "no reference area found: nothing can be compared in this frame"
     elif task.reference is None:
         yield "automatic reference"
+    if has_small_reference(evidence.screened):
+        yield f"{SMALL_REFERENCE}: fewer than {ENOUGH_REFERENCE} pixels"
     if reference_emissivity(evidence) < LEAST_EMISSIVITY:
         yield f"{REFLECTIVE}: the reference area"
     for pixels, words in (
@@ -191,6 +208,7 @@ def _flags(evidence: Evidence) -> Iterator[str]:
         yield f"errors of the reading are amplified {stretch:.1f} times"
     if "wind" in scene and scene["wind"].source == "default":
         yield "wind not recorded, assumed"
+    yield from surroundings_flags(task, evidence.planned.scene)
     if corrected.quantised_to > _COARSE:
         yield f"numbers read in steps of {corrected.quantised_to:.3f} K: a far-off one stretches their range"
     if any(_is_curved(corrected, task, index) for index in range(len(corrected.optics_names))):

@@ -4,15 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Collection
 from dataclasses import replace
+from functools import partial
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from irsurvey.analysis.correction import Corrected, Optics, air_path
-from irsurvey.analysis.findings import Evidence
+from irsurvey.analysis.evidence import Evidence
+from irsurvey.analysis.exchange import Columns, Surroundings, flux_of
 from irsurvey.analysis.imperfections import profiles
-from irsurvey.analysis.measurand import Columns, Surroundings, flux_of
 from irsurvey.analysis.regions import Screened, stretch_of
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.model import Maps, Scene
@@ -38,7 +39,8 @@ def maps_of(evidence: Evidence, wanted: Collection[str]) -> Maps:
         temperature_c=corrected.t - np.float32(ZERO_CELSIUS),
         labels=label_map(screened),
         reference=screened.reference_area,
-        heat_flux=heat_flux_map(corrected, measured.plan.surroundings) if HEAT_FLUX in wanted else None,
+        change=evidence.paired.difference if evidence.paired else None,
+        heat_flux=heat_flux_map(corrected, measured.plan.surroundings, measured.scene) if HEAT_FLUX in wanted else None,
         u_temperature=uncertainty_map(evidence) if UNCERTAINTY in wanted else None,
     )
 
@@ -51,13 +53,13 @@ def label_map(screened: Screened) -> NDArray[np.uint16]:
     return labels
 
 
-def heat_flux_map(corrected: Corrected, surroundings: Surroundings) -> NDArray[np.float32]:
+def heat_flux_map(corrected: Corrected, surroundings: Surroundings, scene: Scene) -> NDArray[np.float32]:
     """Heat flux (rows, columns) [W m⁻²], positive out of the heated space or the component; NaN where not measured."""
-    values = {name: np.float64(value) for name, value in corrected.scene.values().items()}
+    values = {name: np.float64(value) for name, value in scene.values().items()}
     flux = np.empty(corrected.t.shape, np.float32)
     for index, optics in enumerate(corrected.optics_names):
         part = corrected.optics == index
-        flux[part] = flux_of(corrected.t[part].astype(np.float64), optics, surroundings, values)
+        flux[part] = flux_of(corrected.t[part].astype(np.float64), optics[0], surroundings, values)
     return flux
 
 
@@ -67,32 +69,39 @@ def uncertainty_map(evidence: Evidence) -> NDArray[np.float32]:
     First order; everything the frame's temperatures share, the shading of the lens where the pixel lies, and its own
     noise.  It is that of a temperature, not of a difference: what two pixels share does not cancel in it.
     """
-    corrected, scene = evidence.corrected, evidence.planned.scene
-    shared = tuple(one for one in scene.quantities if one.name.partition(":")[0] not in _OF_AREAS)
+    corrected, scene = evidence.corrected, shared(evidence.planned.scene)
     noise = evidence.screened.noise / stretch_of(corrected, evidence.task, 0)
     u = np.full(corrected.t.shape, np.nan, np.float32)
     for index, optics in enumerate(corrected.optics_names):
         rows, columns = np.nonzero((corrected.optics == index) & ~np.isnan(corrected.t))
         if rows.size:
-            codes = corrected.codes.codes[rows, columns].astype(np.intp) - corrected.codes.lowest
-            ends = corrected.apparent[[codes.min(), codes.max()]]
-            apparent = np.linspace(ends.min() - _MARGIN, ends.max() + _MARGIN, _NODES)
-            budget = _along(apparent, optics, evidence, replace(scene, quantities=shared))
+            apparent = nodes(corrected, rows, columns)
+            budget = propagate(partial(temperatures, evidence, apparent, optics), scene)
             shading = profiles(rows, columns, u.shape)
             u[rows, columns] = _u_at(corrected.t[rows, columns], shading, budget, apparent, noise)
     return u
 
 
-def _along(apparent: NDArray[np.float64], optics: Optics, evidence: Evidence, scene: Scene) -> Budget:
-    """Object temperatures of one optics at these readings [K], as a budget."""
+def shared(scene: Scene) -> Scene:
+    """The scene without what belongs to areas: what all pixels of a frame have in common."""
+    kept = tuple(one for one in scene.quantities if one.name.partition(":")[0] not in _OF_AREAS)
+    return replace(scene, quantities=kept)
 
-    def model(values: Columns) -> NDArray[np.float64]:
-        gain = values["camera_gain"] * (apparent - evidence.corrected.pivot)
-        read = apparent + values["camera_offset"] + gain
-        band = evidence.task.camera.band
-        return object_temperature(read, values[optics[0]], values[optics[1]], air_path(values), band)
 
-    return propagate(model, scene)
+def nodes(corrected: Corrected, rows: NDArray[np.intp], columns: NDArray[np.intp]) -> NDArray[np.float64]:
+    """Readings (v,) [K] that span those of some pixels."""
+    codes = corrected.codes.codes[rows, columns].astype(np.intp) - corrected.codes.lowest
+    ends = corrected.apparent[[codes.min(), codes.max()]]
+    return np.linspace(ends.min() - _MARGIN, ends.max() + _MARGIN, _NODES)
+
+
+def temperatures(
+    evidence: Evidence, apparent: NDArray[np.float64], optics: Optics, values: Columns
+) -> NDArray[np.float64]:
+    """Object temperatures (n, v) [K] of one optics at readings (v,) [K], in n scenes."""
+    gain = values["camera_gain"] * (apparent - evidence.corrected.pivot)
+    read = apparent + values["camera_offset"] + gain
+    return object_temperature(read, values[optics[0]], values[optics[1]], air_path(values), evidence.task.camera.band)
 
 
 def _u_at(

@@ -8,27 +8,27 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from irsurvey.analysis import envelope
 from irsurvey.analysis.correction import Corrected, Optics, air_path
-from irsurvey.assess.building import temperature_factor
+from irsurvey.analysis.envelope import Air, Humidity
+from irsurvey.analysis.exchange import Columns, Surroundings, flux_of, terms_of
 from irsurvey.assess.electrical import load_factor, similar_rise
 from irsurvey.geometry.footprint import pixel_area
-from irsurvey.heat.convection import film_coefficient
-from irsurvey.heat.surface import surface_flux
+from irsurvey.heat.bridge import incidence_factor, linear_transmittance
 from irsurvey.model import Scene
 from irsurvey.radiometry.measurement import object_temperature
 
 _NODES = 200
 """Values an area is merged to: over 20 K a tenth apart, where the curvature of T(T_app) moves a mean by < 10 µK."""
 
-Columns = Mapping[str, Any]
-"""Scene values by name, arrays (n, 1) of float64: n scenes."""
 Numbers = dict[tuple[str, str], NDArray[np.float64]]
 """(region, number) → (n,) results in SI units; region "" is the frame itself."""
+FLUX_TERM, STRIP = "flux:", "strip "
+"""Before the names of the parts of a heat flux, and of the strips among the regions."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -83,19 +83,18 @@ class Twin:
     load_ratio: float
 
 
-@dataclass(frozen=True, slots=True)
-class Surroundings:
-    """The scene values a surface exchanges heat with, and how.
+@dataclass(frozen=True, slots=True, eq=False)
+class Bridge:
+    """A strip across a thermal bridge: all of it, where it is coldest, and its ends, where the wall is undisturbed.
 
-    `sign` is +1 where heat that leaves the surface seen leaves the heated space or the component.
+    `span`: its length in pixels or, with a known rectangle, across and down as shares of that rectangle.
     """
 
-    air: str
-    radiant: str
-    sign: float
-    convection: str
-    height: float
-    viewed_from: str | None
+    name: str
+    whole: Area
+    spot: Area
+    undisturbed: Area
+    span: tuple[float, float]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -113,7 +112,9 @@ class Plan:
     components: tuple[Region, ...] = ()
     twins: Mapping[str, Twin] = field(default_factory=dict)
     ambient: str = "air"
-    factor_between: tuple[str, str] | None = None  # indoor and outdoor air, where a temperature factor exists
+    bridges: tuple[Bridge, ...] = ()
+    air: Air | None = None  # on both sides of an envelope, where both are recorded
+    humidity: Humidity | None = None  # of the room air, seen from inside
 
 
 def area(
@@ -147,11 +148,16 @@ def measure(plan: Plan, values: Columns) -> Numbers:
     per_pixel = _area_per_extent(plan, values)
     for region in plan.regions:
         if reference is None:
-            continue
-        numbers |= _anomaly(region, plan, values, temperatures, reference, per_pixel)
+            numbers |= _bound(region, values, temperatures, per_pixel)
+        else:
+            numbers |= _anomaly(region, plan, values, temperatures, reference, per_pixel)
     spots = {region.name: temperatures.functionals(region.spot)[:, 0] for region in plan.components}
     for region in plan.components:
         numbers |= _component(region, plan, values, temperatures, spots)
+    for bridge in plan.bridges:
+        numbers |= _bridge(bridge, plan, values, temperatures, per_pixel)
+    if plan.humidity:
+        numbers |= _named("", envelope.room(plan.humidity, values))
     return numbers
 
 
@@ -160,20 +166,6 @@ def stacked(plan: Plan, values: Columns) -> NDArray[np.float64]:
     rows = next(iter(values.values())).shape[0]
     numbers = [np.broadcast_to(number, (rows,)) for number in measure(plan, values).values()]
     return np.stack(numbers, axis=1) if numbers else np.empty((rows, 0))
-
-
-def flux_of(t: NDArray[np.float64], optics: Optics, around: Surroundings, values: Columns) -> NDArray[np.float64]:
-    """Heat flux [W m⁻²] of surface temperatures [K], positive out of the heated space or the component."""
-    t_air = values[around.air]
-    film = values["convection"] * film_coefficient(
-        around.convection,
-        t,
-        t_air,
-        height=around.height,
-        wind=values.get("wind", np.nan),
-        viewed_from=around.viewed_from,
-    )
-    return np.asarray(around.sign * surface_flux(t, t_air, values[around.radiant], values[optics[0]], film))
 
 
 def names(plan: Plan, scene: Scene) -> tuple[tuple[str, str], ...]:
@@ -187,6 +179,7 @@ class _Temperatures:
     def __init__(self, plan: Plan, values: Columns) -> None:
         areas = [plan.reference] if plan.reference else []
         areas += [member for region in (*plan.regions, *plan.components) for member in (region.spot, region.whole)]
+        areas += [member for bridge in plan.bridges for member in (bridge.whole, bridge.spot, bridge.undisturbed)]
         path = air_path(values)
         by_optics: dict[Optics, list[tuple[Area, Part]]] = {}
         for member in areas:
@@ -219,13 +212,15 @@ class _Temperatures:
 
 
 def _reference(plan: Plan, values: Columns, reference: NDArray[np.float64], optics: Optics) -> Numbers:
-    """The reference area by itself: level, heat flux, and U where both air temperatures are known."""
-    flux = flux_of(reference[:, :1], optics, plan.surroundings, values)[:, 0]
+    """The reference area by itself: level, heat flux and what takes it, and U where both air temperatures are known."""
+    level = reference[:, :1]
+    terms = terms_of(level, optics[0], plan.surroundings, values)
+    flux = np.asarray(sum(terms.values()))[:, 0]
     results = {"reference": reference[:, 0], "reference_flux": flux}
-    if plan.factor_between:
-        indoor, outdoor = (values[name][:, 0] for name in plan.factor_between)
-        results["u_value"] = flux / np.where(indoor == outdoor, np.nan, np.abs(indoor - outdoor))
-    return {("", name): number for name, number in results.items()}
+    results |= {f"{FLUX_TERM}{name}": np.asarray(term)[:, 0] for name, term in terms.items()}
+    if plan.air:
+        results |= envelope.of_reference(level, flux, optics[0], plan.surroundings, values, plan.air)
+    return _named("", results)
 
 
 def _anomaly(
@@ -240,9 +235,10 @@ def _anomaly(
     mean = temperatures.functionals(region.whole)[:, 0]
     levers = (region.spot_lever, region.whole_lever)
     at_spot, at_centre = (_reference_at(plan, values, reference, lever) for lever in levers)
-    flux = _mean_flux(region.whole, plan, values, temperatures)
-    optics = region.whole.parts[0].optics
-    reference_flux = flux_of(at_centre[:, None], optics, plan.surroundings, values)[:, 0]
+    terms = _mean_terms(region.whole, plan, values, temperatures)
+    flux = np.asarray(sum(terms.values()))
+    emissivity = region.whole.parts[0].optics[0]
+    reference_flux = flux_of(at_centre[:, None], emissivity, plan.surroundings, values)[:, 0]
     results = {
         "extreme": extreme,
         "mean": mean,
@@ -252,14 +248,84 @@ def _anomaly(
         "reference_flux": reference_flux,
         "excess_flux": flux - reference_flux,
     }
+    results |= {f"{FLUX_TERM}{name}": term for name, term in terms.items()}
     if per_pixel is not None:
-        grown = 0.0 if region.outline is None else values[region.outline][:, 0] * region.rim
-        results["area"] = per_pixel * np.maximum(region.extent + grown, 0)
+        results["area"] = _area(region, values, per_pixel)
         results["excess_heat"] = (flux - reference_flux) * results["area"]
-    if plan.factor_between:
-        indoor, outdoor = (values[name][:, 0] for name in plan.factor_between)
-        results["temperature_factor"] = np.asarray(temperature_factor(extreme, indoor, outdoor))
-    return {(region.name, name): number for name, number in results.items()}
+        if plan.air:
+            results["excess_heat_per_kelvin"] = results["excess_heat"] / plan.air.difference(values)
+    around = plan.surroundings
+    if plan.air:
+        results |= envelope.of_region(mean[:, None], flux, reference_flux, emissivity, around, values, plan.air)
+        if around.viewed_from == "inside":
+            results |= envelope.factors(extreme[:, None], region.spot.parts[0].optics[0], around, values, plan.air)
+    if plan.humidity:
+        results |= envelope.margins(extreme, plan.humidity, values)
+    return _named(region.name, results)
+
+
+def _bound(
+    region: Region, values: Columns, temperatures: _Temperatures, per_pixel: NDArray[np.float64] | None
+) -> Numbers:
+    """A region beyond the range where nothing can be compared: its bounds and its area."""
+    results = {
+        "extreme": temperatures.functionals(region.spot)[:, 0],
+        "mean": temperatures.functionals(region.whole)[:, 0],
+    }
+    if per_pixel is not None:
+        results["area"] = _area(region, values, per_pixel)
+    return _named(region.name, results)
+
+
+def _area(region: Region, values: Columns, per_pixel: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Area of a region (n,) [m²], its outline moved."""
+    grown = 0.0 if region.outline is None else values[region.outline][:, 0] * region.rim
+    return np.asarray(per_pixel * np.maximum(region.extent + grown, 0))
+
+
+def _bridge(
+    bridge: Bridge,
+    plan: Plan,
+    values: Columns,
+    temperatures: _Temperatures,
+    per_pixel: NDArray[np.float64] | None,
+) -> Numbers:
+    """A strip: how much more heat passes than through the undisturbed wall at its ends."""
+    air = plan.air
+    assert air is not None  # without both air temperatures there is no bridge to measure
+    mean, extreme, undisturbed = (
+        temperatures.functionals(member)[:, 0] for member in (bridge.whole, bridge.spot, bridge.undisturbed)
+    )
+    emissivity, around = bridge.undisturbed.parts[0].optics[0], plan.surroundings
+    level = undisturbed[:, None]
+    flux = np.asarray(sum(_mean_terms(bridge.whole, plan, values, temperatures).values()))
+    flux_undisturbed = flux_of(level, emissivity, around, values)[:, 0]
+    facing = values[around.air][:, 0]
+    results = {
+        "undisturbed": undisturbed,
+        "extreme": extreme,
+        "incidence_factor": np.asarray(incidence_factor(mean[:, None], undisturbed, facing)),
+        "u_value": envelope.of_reference(level, flux_undisturbed, emissivity, around, values, air)["u_value"],
+    }
+    if around.viewed_from == "inside":
+        results |= envelope.factors(extreme[:, None], bridge.spot.parts[0].optics[0], around, values, air)
+    length = _length(bridge, plan, values, per_pixel)
+    if length is not None:
+        results["length"] = length
+        results["linear_transmittance"] = np.asarray(
+            linear_transmittance(flux[:, None], flux_undisturbed, length, air.difference(values))
+        )
+    return _named(f"{STRIP}{bridge.name}", results)
+
+
+def _length(
+    bridge: Bridge, plan: Plan, values: Columns, per_pixel: NDArray[np.float64] | None
+) -> NDArray[np.float64] | None:
+    """Length of a strip (n,) [m]; None without a scale."""
+    across, down = bridge.span
+    if plan.scale == "known_rectangle":
+        return np.asarray(np.hypot(across * values["known_width"][:, 0], down * values["known_height"][:, 0]))
+    return None if per_pixel is None else np.asarray(np.hypot(across, down) * np.sqrt(per_pixel))
 
 
 def _component(
@@ -274,7 +340,7 @@ def _component(
         "max": hottest,
         "mean": temperatures.functionals(region.whole)[:, 0],
         "delta_ambient": hottest - ambient,
-        "flux": _mean_flux(region.whole, plan, values, temperatures),
+        "flux": np.asarray(sum(_mean_terms(region.whole, plan, values, temperatures).values())),
     }
     twin = plan.twins.get(region.name)
     if twin is not None:
@@ -293,13 +359,20 @@ def _reference_at(
     return np.asarray(reference[:, 0] + slope_x * lever[0] + slope_y * lever[1])
 
 
-def _mean_flux(member: Area, plan: Plan, values: Columns, temperatures: _Temperatures) -> NDArray[np.float64]:
-    return np.asarray(
-        sum(
-            (flux_of(temperatures.of(part), part.optics, plan.surroundings, values) * part.weights[0]).sum(axis=1)
-            for part in member.parts
-        )
-    )
+def _mean_terms(
+    member: Area, plan: Plan, values: Columns, temperatures: _Temperatures
+) -> dict[str, NDArray[np.float64]]:
+    """Mean heat flux (n,) [W m⁻²] over an area, by what takes it."""
+    sums: dict[str, NDArray[np.float64]] = {}
+    for part in member.parts:
+        terms = terms_of(temperatures.of(part), part.optics[0], plan.surroundings, values)
+        for name, term in terms.items():
+            sums[name] = sums.get(name, 0.0) + (term * part.weights[0]).sum(axis=1)
+    return sums
+
+
+def _named(region: str, results: Mapping[str, NDArray[np.float64]]) -> Numbers:
+    return {(region, name): number for name, number in results.items()}
 
 
 def _area_per_extent(plan: Plan, values: Columns) -> NDArray[np.float64] | None:

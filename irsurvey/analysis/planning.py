@@ -10,14 +10,15 @@ import numpy as np
 
 from irsurvey.analysis import imperfections
 from irsurvey.analysis.correction import Corrected
-from irsurvey.analysis.measurand import Area, Plan, Region, Surroundings, Twin, area
+from irsurvey.analysis.measurand import Area, Plan, Region, Twin, area
 from irsurvey.analysis.regions import Screened, stretch_of
+from irsurvey.analysis.strips import Drawn, drawn_strips
+from irsurvey.analysis.surroundings import air_of, humidity_of, surroundings
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import Spot, extreme_spot
 from irsurvey.assess.electrical import LOAD_EXPONENT, LOAD_EXPONENT_U, TwinPlan
 from irsurvey.geometry.polygons import mask
 from irsurvey.geometry.rectify import pixel_areas
-from irsurvey.heat.surface import outward_sign
 from irsurvey.model import FrameTask, KnownLength, KnownRectangle, Quantity, Scene
 
 
@@ -43,6 +44,7 @@ class Planned:
     scene: Scene
     anomalies: tuple[Measured, ...]
     components: dict[str, Measured]
+    strips: tuple[Drawn, ...] = ()
 
 
 def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planned:
@@ -61,11 +63,14 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
     }
     reference, tilts, own = _reference(corrected, screened, task)
     own = (*own, *(quantity for measured in (*anomalies, *components.values()) for quantity in measured.own))
+    air = air_of(task, corrected.scene)
+    strips = tuple(drawn_strips(corrected, screened, task)) if air else ()
+    own = (*own, *(quantity for strip in strips for quantity in strip.own))
     scene = corrected.scene.with_(imperfections.SELECTION, *own)
     plan = Plan(
         band=task.camera.band,
         pivot=corrected.pivot,
-        surroundings=_surroundings(task, scene),
+        surroundings=surroundings(task, scene),
         scale=_scale(task, scene),
         length_pixels=_length_pixels(task),
         reference=reference,
@@ -73,9 +78,11 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
         regions=tuple(measured.region for measured in anomalies),
         components=tuple(measured.region for measured in components.values()),
         ambient=_ambient(scene),
-        factor_between=_factor_between(task, scene),
+        bridges=tuple(strip.bridge for strip in strips),
+        air=air,
+        humidity=humidity_of(task, scene),
     )
-    return Planned(plan, scene, tuple(anomalies), components)
+    return Planned(plan, scene, tuple(anomalies), components, strips)
 
 
 def with_twins(planned: Planned, plans: Mapping[str, TwinPlan]) -> Planned:
@@ -180,17 +187,6 @@ def _extent(patch: Patch, task: FrameTask, shape: tuple[int, ...]) -> float:
     return float(patch.pixels)
 
 
-def _surroundings(task: FrameTask, scene: Scene) -> Surroundings:
-    """What the surfaces of this frame exchange heat with: the side it was seen from decides."""
-    side = {"inside": "indoor_air", "outside": "outdoor_air"}.get(task.viewed_from or "", "ambient")
-    indoor, outdoor = (scene[name].value if name in scene else np.nan for name in ("indoor_air", "outdoor_air"))
-    viewed_from = task.viewed_from if task.kind == "building" else None
-    sign = outward_sign(viewed_from, indoor, outdoor)
-    air = side if side in scene else "air"
-    radiant = "mean_radiant" if "mean_radiant" in scene else air
-    return Surroundings(air, radiant, float(sign), task.convection, task.surface_height, viewed_from)
-
-
 def _scale(task: FrameTask, scene: Scene) -> str:
     if isinstance(task.known_scale, KnownRectangle):
         return "known_rectangle"
@@ -203,9 +199,3 @@ def _length_pixels(task: FrameTask) -> float:
     if not isinstance(task.known_scale, KnownLength):
         return 1.0
     return float(np.hypot(*np.subtract(task.known_scale.end, task.known_scale.start)))
-
-
-def _factor_between(task: FrameTask, scene: Scene) -> tuple[str, str] | None:
-    """Air temperatures of a temperature factor: seen from inside, both recorded."""
-    recorded = "indoor_air" in scene and "outdoor_air" in scene
-    return ("indoor_air", "outdoor_air") if task.viewed_from == "inside" and recorded else None

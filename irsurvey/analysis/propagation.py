@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from irsurvey.analysis.budgets import terms
-from irsurvey.analysis.measurand import Columns, names, stacked
+from irsurvey.analysis.exchange import Columns
+from irsurvey.analysis.measurand import names, stacked
 from irsurvey.analysis.planning import Planned
 from irsurvey.model import BudgetTerm, Estimate
 from irsurvey.uncertainty import Budget, Drawn, differ, monte_carlo, propagate
@@ -22,7 +23,9 @@ BUDGETED = {
     "delta": "delta_k",
     "extreme": "extreme_c",
     "flux": "heat_flux_w_m2",
-    "temperature_factor": "temperature_factor",
+    "temperature_factor_at_limit": "temperature_factor_at_0_25",
+    "u_value_increase": "u_value_increase_w_m2k",
+    "mould_margin": "mould_margin_k",
     "delta_similar": "delta_similar_k",
     "delta_ambient": "delta_ambient_k",
     "max": "max_c",

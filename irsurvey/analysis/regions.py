@@ -27,6 +27,10 @@ from irsurvey.radiometry.measurement import amplification, object_temperature
 _LEAST_DELTA = {"building": 1.0, "electrical": 2.0}
 """Smallest ΔT [K] that counts when the survey states none, or five times the noise where that is more."""
 _NETD_AT = 30.0 + ZERO_CELSIUS
+SMALL_REFERENCE = "small reference area"
+ENOUGH_REFERENCE = 25
+"""Pixels a reference area should have [house]: with fewer it is smaller than the least defect that counts, and may
+itself be one."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -40,7 +44,10 @@ class Anomalous:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Screened:
-    """A screened frame.  `t` is the temperature map with saturated pixels at their bound [K]."""
+    """A screened frame.  `t` is the temperature map with saturated pixels at their bound [K].
+
+    Without a reference area `delta` is None, and the regions are those that lie beyond the camera's range.
+    """
 
     t: NDArray[np.float32]
     delta: NDArray[np.float32] | None
@@ -58,16 +65,18 @@ def screen(corrected: Corrected, task: FrameTask) -> Screened:
     """Find the reference area and everything that deviates from it by more than counts."""
     shape = (corrected.t.shape[0], corrected.t.shape[1])
     t = _bounded(corrected, task)
-    open_, blocked = _inspectable(corrected, task)
+    open_, blocked = inspectable(corrected, task)
     noise = _noise(corrected, task, open_)
     amplified = _noise_by_optics(corrected, task, noise)
     area = _reference_area(corrected, task, open_ & ~blocked, noise)
     reference = references.fit(corrected.t, area, noise)
     min_delta = task.detection.min_delta or max(_LEAST_DELTA[task.kind], 5 * noise)
     areas = _pixel_area(task, corrected, shape)
+    detectable = float(segments.thresholds(min_delta, noise).seed)
     if reference is None:
-        limits = segments.thresholds(min_delta, noise)
-        return Screened(t, None, noise, None, area, min_delta, float(limits.seed), 0.0, areas, ())
+        beyond = _beside_components(_beyond_range(corrected, t, blocked), t, min_delta, task)
+        beyond.sort(key=_rank(np.ones(shape, np.float32), areas))
+        return Screened(t, None, noise, None, area, min_delta, detectable, 0.0, areas, tuple(beyond))
     delta = t - reference.plane(shape)
     shading, allowance = segments.shading_allowance(delta, open_)
     candidates = open_ & ~blocked
@@ -79,14 +88,17 @@ def screen(corrected: Corrected, task: FrameTask) -> Screened:
     for sense, sign in (("hot", 1), ("cold", -1)):
         toward = np.maximum(sign * allowance, 0)  # shading that darkens corners excuses cold ones, never hot ones
         limits = segments.thresholds(least, amplified, toward)
-        saturated = corrected.saturated_hot if sense == "hot" else corrected.saturated_cold
-        certain = saturated & ~blocked if saturated.any() else None
+        certain = _certain(corrected, t, blocked, sense)
         for region in segments.segment(delta, candidates, sense, limits, min_pixels=min_pixels, certain=certain):
             regions.append(Anomalous(region, sense, certain is not None and bool(region.of(certain).any())))
     regions = _beside_components(regions, t, min_delta, task)
     regions.sort(key=_rank(delta, areas))
-    detectable = float(segments.thresholds(min_delta, noise).seed)
     return Screened(t, delta, noise, reference, area, min_delta, detectable, shading, areas, tuple(regions))
+
+
+def has_small_reference(screened: Screened) -> bool:
+    """Whether so few pixels are the reference that a frame should say so."""
+    return screened.reference is not None and screened.reference.pixels < ENOUGH_REFERENCE
 
 
 def nominal_noise(task: FrameTask, t: float) -> float:
@@ -140,7 +152,28 @@ def _bounded(corrected: Corrected, task: FrameTask) -> NDArray[np.float32]:
     return t
 
 
-def _inspectable(corrected: Corrected, task: FrameTask) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
+def _certain(
+    corrected: Corrected, t: NDArray[np.float32], blocked: NDArray[np.bool_], sense: str
+) -> NDArray[np.bool_] | None:
+    """Pixels beyond the range, which need no contrast to count; not where their bound has no solution.  None: none."""
+    saturated = corrected.saturated_hot if sense == "hot" else corrected.saturated_cold
+    return saturated & ~blocked & ~np.isnan(t) if saturated.any() else None
+
+
+def _beyond_range(corrected: Corrected, t: NDArray[np.float32], blocked: NDArray[np.bool_]) -> list[Anomalous]:
+    """The regions beyond the range of a frame in which nothing can be compared: a bound needs no reference."""
+    unused, never = np.zeros(t.shape, np.bool_), segments.thresholds(np.inf, 0.0)
+    regions = []
+    for sense, sign in (("hot", 1), ("cold", -1)):
+        certain = _certain(corrected, t, blocked, sense)
+        if certain is not None:
+            alike = np.full(t.shape, sign, np.float32)  # no contrast within a region, so that none splits it
+            found = segments.segment(alike, unused, sense, never, min_pixels=1, certain=certain)
+            regions += [Anomalous(region, sense, is_saturated=True) for region in found]
+    return regions
+
+
+def inspectable(corrected: Corrected, task: FrameTask) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
     """Pixels that are measured and inside what is inspected; and those no region may use.
 
     Blocked are ignored surfaces, reflectors and surfaces of known temperature, and a band of two pixels around

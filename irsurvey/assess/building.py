@@ -26,8 +26,8 @@ from irsurvey.assess.severity import (
 from irsurvey.model.quantities import Estimate
 from irsurvey.model.report import Assessment
 
-FILM_RESISTANCE: Final = 0.13
-"""Inner film resistance a camera sees on a plane wall [m² K W⁻¹] (ISO 6946, horizontal heat flow [P])."""
+AT_LIMIT: Final = "temperature_factor_at_0_25"
+"""The temperature factor at the film resistance [m² K W⁻¹] that its limits assume; seen is another one."""
 
 
 def temperature_factor(t_surface: ArrayLike, t_indoor: ArrayLike, t_outdoor: ArrayLike) -> NDArray[np.float64]:
@@ -61,13 +61,12 @@ def assess_finding(
     emissivity: float,
     flags: Sequence[str] = (),
     viewed_from: str | None = None,
-    film_resistance: float = FILM_RESISTANCE,
 ) -> Verdict:
     """Assessments of one finding of any kind of survey, the highest urgency, and its flags; never cleared.
 
     `values` are its measured numbers by their key in report.json (`delta_k`, `temperature_factor`, …).
     With the flag "automatic reference" whatever depends on the reference gets neither class nor urgency
-    until somebody confirms it.  `film_resistance` [m² K W⁻¹] is the one behind `temperature_factor`.
+    until somebody confirms it.
     Criteria for the other sense or the other face do not apply and are left out.
     """
     blocked = blockers(flags, emissivity)
@@ -78,60 +77,39 @@ def assess_finding(
         and criterion.sense in ("either", sense)
         and criterion.viewed_from in (None, viewed_from)
     ]
-    assessed = [_assess(criterion, values.get(criterion.quantity), film_resistance, blocked) for criterion in used]
+    assessed = [_assess(criterion, values, blocked) for criterion in used]
     told = [*flags, *blocked, *(() if used else (NO_CRITERION,)), *((NOT_CLEARED,) if blocked else ())]
     assessments, urgency = governed(assessed, {criterion.name for criterion in used}, remedy(blocked))
     return Verdict(assessments, urgency, False, tuple(dict.fromkeys(told)))
 
 
-def judged(
-    criterion: Criterion,
-    estimate: Estimate,
-    sensitivities: Iterable[Sensitivity] = (),
-    *,
-    film_resistance: float = FILM_RESISTANCE,
-) -> Judged:
+def judged(criterion: Criterion, estimate: Estimate, sensitivities: Iterable[Sensitivity] = ()) -> Judged:
     """A number of a finding on the axis of the criterion that judges it, its sensitivities brought along.
 
-    A difference against the reference area becomes its magnitude; a temperature factor seen at
-    `film_resistance` [m² K W⁻¹] becomes the one at the film resistance the criterion assumes, its u by half
-    the swing over ±u.  Any other number stays as it is.
+    A difference against the reference area becomes its magnitude; any other number stays as it is.
     """
     value, u, slope = estimate.value, nan if estimate.u is None else estimate.u, 1.0
     if criterion.quantity in AGAINST_REFERENCE:
         value, slope = abs(value), copysign(1.0, value)
-    elif criterion.film_resistance is not None:
-        wanted = criterion.film_resistance
-        low, at, high = factor_at_resistance([value - u, value, value + u], film_resistance, wanted).tolist()
-        value, u, slope = at, (high - low) / 2, _slope(value, film_resistance, wanted)
     moved = tuple(replace(one, sensitivity=slope * one.sensitivity) for one in sensitivities)
     return Judged(criterion, value, u, moved)
 
 
-def _slope(factor: float, seen: float, wanted: float) -> float:
-    """Derivative of `factor_at_resistance` with respect to the factor; NaN where that is."""
-    at = float(factor_at_resistance(factor, seen, wanted))
-    return seen * wanted / (seen * factor + wanted * (1 - factor)) ** 2 if isfinite(at) else nan
-
-
-def _assess(
-    criterion: Criterion, estimate: Estimate | None, film_resistance: float, blocked: Sequence[str]
-) -> Assessment:
+def _assess(criterion: Criterion, values: Mapping[str, Estimate | None], blocked: Sequence[str]) -> Assessment:
+    estimate = values.get(criterion.quantity)
     if estimate is None:
         against = criterion.quantity in AGAINST_REFERENCE
         words = "against the reference area" if against else f"({criterion.quantity})"
         return assess(criterion, None, words, blocked)
-    on_axis = judged(criterion, estimate, film_resistance=film_resistance)
+    on_axis = judged(criterion, estimate)
     number = Estimate(on_axis.value, on_axis.u if isfinite(on_axis.u) else None)
     if criterion.quantity in AGAINST_REFERENCE:
         words = f"{'colder' if estimate.value < 0 else 'warmer'} than the reference area"
         return _until_confirmed(assess(criterion, number, words, blocked), blocked)
-    if criterion.film_resistance is None:
+    seen = values.get("temperature_factor")
+    if criterion.quantity != AT_LIMIT or seen is None:
         return assess(criterion, number, f"({criterion.quantity})", blocked)
-    words = (
-        f"temperature factor at the film resistance of {criterion.film_resistance:g} m² K/W the limit assumes "
-        f"({estimate.value:.2f} at the {film_resistance:g} m² K/W seen)"
-    )
+    words = f"temperature factor at the film resistance of 0.25 m² K/W the limit assumes ({seen.value:.2f} as seen)"
     return assess(criterion, number, words, blocked)
 
 

@@ -46,7 +46,7 @@ METHODS: Final[Mapping[str, tuple[str, ...]]] = {
 DEFAULTS: Final[Mapping[tuple[str, str], tuple[str, ...]]] = {
     ("building", "envelope"): ("building-contrast", "temperature-factor-ie"),  # the stricter of the two limits
     ("building", "air-leakage"): ("building-contrast",),
-    ("building", "roof-moisture"): ("building-contrast",),
+    ("building", "roof-moisture"): ("roof-moisture",),
     ("electrical", "contact"): ("neta-similar", "neta-ambient", "electrical-contrast"),
     ("electrical", "voltage-driven"): (),  # tenths of a kelvin matter there: no table for contacts may be borrowed
     ("electrical", "pv"): (),
@@ -84,7 +84,6 @@ class Criterion:
     notes: str
     classes: tuple[SeverityClass, ...]
     viewed_from: str | None = None  # "inside" | "outside"; None: from anywhere
-    film_resistance: float | None = None  # [m² K W⁻¹] the limits assume; for temperature factors
 
     @property
     def edges(self) -> tuple[float, ...]:
@@ -210,7 +209,6 @@ _FIELDS: Final[Mapping[str, Check]] = {
 }
 _OPTIONAL: Final[Mapping[str, Check]] = {
     "viewed_from": _one_of("inside", "outside"),
-    "film_resistance": ((lambda value: _is_number(value) and value > 0), "a positive number [m² K W⁻¹]"),
 }
 _ROW: Final[Mapping[str, Check]] = {"name": _TEXT, "statement": _TEXT, "urgency": _URGENCY}
 _BOUNDS: Final[Mapping[str, Check]] = dict.fromkeys(("at_least", "above", "at_most", "below"), _NUMBER)
@@ -249,9 +247,6 @@ def _meaning_faults(table: dict[str, Any], where: str) -> Iterator[Fault]:
     quantities = QUANTITIES[table["applies_to"]]
     if table["quantity"] not in quantities:
         yield Fault(f"{where}: quantity", "one of " + ", ".join(quantities), repr(table["quantity"]))
-    if (table["quantity"] == "temperature_factor") != ("film_resistance" in table):
-        got = repr(table.get("film_resistance", "nothing"))
-        yield Fault(f"{where}: film_resistance", "a film resistance for temperature factors and for nothing else", got)
 
 
 def _row_faults(row: dict[str, Any], where: str) -> Iterator[Fault]:

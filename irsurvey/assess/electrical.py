@@ -12,8 +12,10 @@ from numpy.typing import ArrayLike, NDArray
 
 from irsurvey.assess.criteria import Criterion, class_of, criteria
 from irsurvey.assess.severity import (
+    BELOW_AIR,
     BOUNDING,
     LEAST_EMISSIVITY,
+    LOAD_ABOVE_RATING,
     LOAD_UNKNOWN,
     LOW_LOAD,
     NO_CRITERION,
@@ -40,6 +42,9 @@ LOAD_EXPONENT_U: Final = 0.2 / 3**0.5
 
 LEAST_LOAD: Final = 0.40
 """Of rated load; below it nothing is cleared (NFPA 70B-2023, 7.4 [S])."""
+MOST_LOAD: Final = 1.05
+"""Of rated load; above it the part is overloaded whatever its joints are like, and nothing is cleared [house]: a clamp
+meter beside live conductors reads to a few percent, so that up to a twentieth too much is no more than a full load."""
 LIKE_LOADS: Final = 1.10
 """Largest over smallest load of twins compared as they are [house]: a load read beside a thermogram, varying over
 the thermal time constant of the part, is hardly known better than to a tenth; correcting below that adds noise."""
@@ -136,7 +141,8 @@ def assess_component(
     where the whole group is warm.  Cleared only by guarded acceptance of everything that governs, with no
     blocker, and, if by comparison, only where the rise over ambient air is no question of its own.
     """
-    blocked = tuple(dict.fromkeys([*blockers(member.flags, member.emissivity), *_load_blockers(member)]))
+    doubts = (*_load_blockers(member), *_air_blockers(values.get("delta_ambient_k")))
+    blocked = tuple(dict.fromkeys([*blockers(member.flags, member.emissivity), *doubts]))
     flags = tuple(dict.fromkeys([*member.flags, *blocked, *plan.flags]))
     used = [criterion for criterion in chosen if criterion.applies_to == "component"]
     if not used:
@@ -226,7 +232,15 @@ def _load_blockers(member: Member) -> tuple[str, ...]:
     ratio = load_ratio(member)
     if not isfinite(ratio):
         return (LOAD_UNKNOWN,)
+    if ratio > MOST_LOAD:
+        return (LOAD_ABOVE_RATING,)
     return () if ratio >= LEAST_LOAD else (LOW_LOAD,)
+
+
+def _air_blockers(above_air: Estimate | None) -> tuple[str, ...]:
+    """A part that carries current is no colder than its air: where it reads so, an input is wrong and it reads low."""
+    surely = above_air is not None and above_air.u is not None and above_air.value + 2 * above_air.u < 0
+    return (BELOW_AIR,) if surely else ()
 
 
 def _assess(criterion: Criterion, estimate: Estimate | None, plan: TwinPlan, blocked: Sequence[str]) -> Assessment:

@@ -99,15 +99,16 @@ def remaining_u(judged: Judged, measurement: Measurement) -> float:
     or unlisted inputs), the less optimistic of the difference and the proportion of variances.
     """
     residuals = {residual.term: residual.u for residual in measurement.leaves}
-    before = after = 0.0
+    largest = max((abs(one.contribution) for one in judged.sensitivities), default=0.0)
+    if isnan(judged.u) or not 0 < largest < inf:
+        return judged.u
+    before = after = 0.0  # in squares of the largest, which however small it is does not vanish when squared
     for one in judged.sensitivities:
         u = min(one.u, residuals.get(one.name.partition(":")[0], one.u))
-        before += one.contribution**2
-        after += (one.sensitivity * u) ** 2
-    if isnan(judged.u) or not 0 < before < inf:
-        return judged.u
-    variance = judged.u**2
-    return sqrt(max(variance - (before - after), variance * after / before))
+        before += (one.contribution / largest) ** 2
+        after += (one.sensitivity * u / largest) ** 2
+    difference = sqrt(max(judged.u**2 - (before - after) * largest**2, 0.0))
+    return max(difference, judged.u * sqrt(after / before))
 
 
 def _would_settle(measurement: Measurement, decision: Decision) -> bool:

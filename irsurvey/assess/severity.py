@@ -24,9 +24,12 @@ from irsurvey.numbers import shown, unit, with_symbol
 SATURATED: Final = "saturated"
 SIZE_LIMITED: Final = "size-limited"
 REFLECTIVE: Final = "too reflective for a claim"
+MIRRORS: Final = "may be a reflection"
 NO_SOLUTION: Final = "no physical solution"
 LOW_LOAD: Final = "low load"
 LOAD_UNKNOWN: Final = "load unknown"
+LOAD_ABOVE_RATING: Final = "load above rating"
+BELOW_AIR: Final = "colder than its air"
 CONDITIONS: Final = "conditions not valid"
 AUTOMATIC_REFERENCE: Final = "automatic reference"
 HOTTER_BESIDE: Final = "hotter beside it"
@@ -38,9 +41,12 @@ BLOCKERS: Final[Mapping[str, str]] = {
     SATURATED: "look again with a temperature range that holds it",
     SIZE_LIMITED: "look again from closer or with a longer lens, so that a whole measurement spot lies on it",
     REFLECTIVE: "look again with matt tape or paint on it (on electrical parts by qualified persons, part dead)",
+    MIRRORS: "look again from another side, as a reflection moves with the camera, or with matt tape on it",
     NO_SOLUTION: "look again after checking emissivity and reflected temperature, best with matt tape on it",
     LOW_LOAD: "look again at load, 40 % of its rating or more",
     LOAD_UNKNOWN: "look again with its load measured and its rating noted; a mild reading proves nothing",
+    LOAD_ABOVE_RATING: "look again with its load brought down to its rating, both checked first",
+    BELOW_AIR: "look again after checking ambient air, emissivity and reflected temperature: a part gives off heat",
     CONDITIONS: "look again under conditions that allow the claim",
     AUTOMATIC_REFERENCE: "confirm the reference area and run again",
     HOTTER_BESIDE: "draw its outline around all of it, or name what lies beside it, and run again",
@@ -91,7 +97,8 @@ def assess(
 
     `words` say what the number is ("above ambient air"), `bounding` which of the blockers make it a bound.
     No blocker changes the urgency: a bound is classed by its value and may be worse; a reflective surface
-    keeps the urgency of its number but gets no class.  Where anything blocks, no number is said to pass.
+    keeps the urgency of its number but gets no class.  The one exception is a wall, pane or roof that mirrors: what it
+    shows is elsewhere, so that it gets neither, and is not cleared.  Where anything blocks, no number is said to pass.
     """
     source = f"{criterion.source}, {criterion.edition} [{criterion.mark}]"
     blank = Assessment(criterion.name, None, None, "", {}, source)
@@ -101,6 +108,8 @@ def assess(
     bound = bool(set(bounding) & set(blocked))
     sign = ("≥ " if criterion.worse >= 0 else "≤ ") if bound else ""
     measured = f"{sign}{_shown(estimate, criterion)} {words}"
+    if MIRRORS in blocked:
+        return replace(blank, statement=f"{measured}: it {MIRRORS}, neither class nor urgency is given.")
     if REFLECTIVE in blocked:
         statement = f"{measured}: the surface is {REFLECTIVE}, no class is given."
         return replace(blank, urgency=kind.urgency, statement=statement)

@@ -1,4 +1,4 @@
-"""From temperatures to heat: humid air, convection, radiation, flux at a surface."""
+"""From temperatures to heat: humid air, convection, radiation, sky, flux at a surface, envelope, moisture, season."""
 
 from __future__ import annotations
 

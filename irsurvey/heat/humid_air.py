@@ -48,6 +48,10 @@ def dew_point(t: Numbers, relative_humidity: Numbers) -> Numbers:
 
     The inverse of `saturation_pressure`, so a surface at the dew point is at saturation exactly; dew points
     below −45 °C continue the formula.  Within 0.045 K of ASHRAE and CoolProp for dew points from 0 to 50 °C."""
-    pressure = vapour_pressure(t, relative_humidity)
-    ratio = np.log(np.where(pressure > 0, pressure, np.nan)[()] / _PRESSURE)
+    return dew_point_of(vapour_pressure(t, relative_humidity))
+
+
+def dew_point_of(pressure: Numbers) -> Numbers:
+    """Dew point over liquid water [K] of air with that vapour pressure [Pa]; NaN where there is none."""
+    ratio = np.log(np.where(np.greater(pressure, 0), pressure, np.nan)[()] / _PRESSURE)
     return ZERO_CELSIUS + _SHIFT * ratio / (_SLOPE - ratio)

@@ -1,6 +1,8 @@
-"""Heat at a surface: flux, its sign by convention, surface resistance."""
+"""Heat at a surface: flux, what it radiates to, its sign by convention, surface resistance."""
 
 from __future__ import annotations
+
+from collections.abc import Sequence
 
 import numpy as np
 
@@ -15,6 +17,15 @@ def surface_flux(
 
     Temperatures [K]; `h` is the convective coefficient alone [W m⁻² K⁻¹].  ISO 6946:2017, not linearised."""
     return h * (t_surface - t_air) + radiative_flux(t_surface, t_radiant, emissivity)
+
+
+def mean_radiant(parts: Sequence[tuple[Numbers, Numbers]]) -> Numbers:
+    """Mean radiant temperature [K] of several things faced: (Σ F T⁴)^¼ of (share of the view F, temperature T [K]).
+
+    With it, `surface_flux` is exactly the sum Σ εσF(Ts⁴ − T⁴), if the shares add up to 1.  Bergman et al. (2011),
+    chapter 13, for black surroundings, which large enclosures are."""
+    fourth: Numbers = sum((share * t**4 for share, t in parts), 0.0)
+    return fourth**0.25
 
 
 def outward_sign(viewed_from: str | None, t_indoor: Numbers, t_outdoor: Numbers) -> Numbers:

@@ -48,8 +48,11 @@ class Scene:
     `emissivity`, `emissivity:<surface>`, `reflected`, `reflected:<surface>`, `air`, `relative_humidity`,
     `distance`, `pressure`, `atmosphere` (relative error of the absorptance of the air path, 0 ± u),
     `window_transmittance`, `window_reflectance`, `window_temperature`, `window_ambient`,
-    `indoor_air`, `outdoor_air`, `ambient`, `mean_radiant`, `wind`, `convection` (factor on the film
-    coefficient, 1 ± u), `camera_offset` [K], `camera_gain` (relative, about the frame's median),
+    `indoor_air`, `outdoor_air`, `ambient`, `mean_radiant`, `sky`, `ground`, `cloud` (0…1), `sky_model` (what a
+    modelled sky may be off, 0 ± u [K]), `tilt` [rad], `indoor_humidity`, `outdoor_humidity` (0…1), `total_emissivity`
+    and `total_emissivity:<surface>` (over all wavelengths), `u_value` (stated for the element), `hours_…` of the
+    conditions [s], `wind`, `convection` (factor on the film coefficient, 1 ± u), `camera_offset` [K], `camera_gain`
+    (relative, about the frame's median),
     `ifov` [rad], `view_angle` [rad], `known_length` [m], `known_width` [m], `known_height` [m],
     `load_exponent` (rise ∝ load^n), `temperature:<surface>` (known-temperature surfaces); the camera's own
     imperfections `shading` (corner against centre), `shading_x`, `shading_y` (edge against centre) [K],

@@ -72,7 +72,11 @@ class ReferenceReport:
     pixels: int
     gradient_k: float
     heat_flux_w_m2: Estimate | None
-    u_value_w_m2k: Estimate | None  # seen from inside with both air temperatures recorded
+    heat_flux_terms_w_m2: dict[str, Estimate | None]  # convection, and radiation to what the surface faces
+    film_resistance_m2k_w: Estimate | None  # of the face seen, convection and radiation together
+    u_value_w_m2k: Estimate | None  # from the heat flux, between environmental and air temperature
+    u_value_simple_w_m2k: Estimate | None  # from the conventional film resistance alone
+    refusals: dict[str, str]  # number that is not given → why, and what would make it possible
     polygon: tuple[tuple[float, float], ...]
 
 
@@ -127,7 +131,8 @@ class NextMeasurement:
 class Indication:
     """What a finding is consistent with, the measured cues, and how to verify it."""
 
-    pattern: str
+    pattern: str  # "no typical pattern" where the cues fit none
+    statement: str  # "Consistent with …; verify by …"
     evidence: dict[str, float]
     verify_by: str
 
@@ -161,7 +166,19 @@ class Finding:
     reference_heat_flux_w_m2: Estimate | None
     excess_heat_w_m2: Estimate | None
     excess_heat_w: Estimate | None
-    temperature_factor: Estimate | None
+    excess_heat_w_k: Estimate | None  # per kelvin between indoor and outdoor air
+    heat_flux_terms_w_m2: dict[str, Estimate | None]
+    u_value_w_m2k: Estimate | None
+    u_value_increase_w_m2k: Estimate | None  # over that of the reference area
+    u_value_from_contrast_w_m2k: Estimate | None  # the element's stated U plus the increase
+    temperature_factor: Estimate | None  # at the film resistance seen
+    temperature_factor_at_0_25: Estimate | None  # at 0.25 m² K W⁻¹, which limits assume
+    dew_point_margin_k: Estimate | None  # coldest spot minus dew point of the room air
+    mould_margin_k: Estimate | None  # coldest spot minus the least surface temperature against mould
+    condensation_probability: float | None
+    mould_probability: float | None
+    pressure_change_k: Estimate | None  # mean over the finding, with pressure minus without
+    refusals: dict[str, str]
     shape: Shape
     exceeds_threshold: float | None  # probability that |ΔT| truly exceeds the smallest that counts
     assessments: tuple[Assessment, ...]
@@ -218,6 +235,79 @@ class ComponentReport:
 
 
 @dataclass(frozen=True, slots=True)
+class RoomAir:
+    """Humidity of the air a surface seen from inside is exposed to, and the surface temperatures it asks for."""
+
+    how: str  # where its humidity comes from: "measured" | "humidity class n"
+    vapour_pressure_pa: Estimate | None
+    dew_point_c: Estimate | None
+    mould_surface_c: Estimate | None  # below it the air at the surface is at 80 % or more
+
+
+@dataclass(frozen=True, slots=True)
+class SurfaceAtRisk:
+    """How much of the surface inspected lies at or below a limit; low and high: with margins of 2u either way."""
+
+    risk: str  # "condensation" | "mould" | name of a criterion
+    limit_c: Estimate | None
+    share: float
+    share_low: float
+    share_high: float
+    area_m2: float | None
+    area_low_m2: float | None
+    area_high_m2: float | None
+    probability: float | None  # that the coldest spot does
+
+
+@dataclass(frozen=True, slots=True)
+class StripReport:
+    """A thermal bridge measured along a line across it."""
+
+    name: str
+    from_: tuple[float, float]
+    to: tuple[float, float]
+    width_px: int
+    length_m: Estimate | None
+    undisturbed_c: Estimate | None
+    undisturbed_gradient_k_per_m: Estimate | None  # how steep its ends still are
+    extreme_c: Estimate | None
+    temperature_factor: Estimate | None
+    incidence_factor: Estimate | None  # heat through the strip over that of the undisturbed wall
+    linear_transmittance_w_mk: Estimate | None  # Ψ
+    u_value_w_m2k: Estimate | None  # undisturbed
+    refusals: dict[str, str]
+    flags: tuple[str, ...]
+    profile: tuple[tuple[float, float], ...]  # distance from the start [px], temperature [°C]
+
+
+@dataclass(frozen=True, slots=True)
+class PressureChange:
+    """A region whose temperature changed with the pressure."""
+
+    sense: str  # "hot" | "cold": how it changed
+    polygon: tuple[tuple[int, int], ...]
+    pixels: int
+    area_m2: Estimate | None
+    mean_change_k: Estimate | None
+    finding: str | None  # id of the finding it overlaps most
+
+
+@dataclass(frozen=True, slots=True)
+class PairReport:
+    """Two frames of one view, with and without a pressure difference."""
+
+    with_: str
+    pressure_pa: float
+    accepted: bool
+    reason: str  # why the two could not be compared; else ""
+    correlation: float | None  # of the two pictures, laid over each other
+    shift_px: tuple[float, float] | None
+    rotation_deg: float | None
+    threshold_k: float | None  # smallest change that counts
+    changes: tuple[PressureChange, ...]
+
+
+@dataclass(frozen=True, slots=True)
 class FrameReport:
     """Everything reported about one frame."""
 
@@ -244,6 +334,11 @@ class FrameReport:
     reference: ReferenceReport | None
     findings: tuple[Finding, ...]
     components: tuple[ComponentReport, ...]
+    element: str | None
+    room_air: RoomAir | None
+    surface_at_risk: tuple[SurfaceAtRisk, ...]
+    strips: tuple[StripReport, ...]
+    pair: PairReport | None
     flags: tuple[str, ...]
 
 
@@ -257,6 +352,45 @@ class ConditionCheck:
     value: float | None
     verdict: str  # "met" | "not met" | "not recorded"
     source: str
+    limits_to: str | None = None  # the most that may be claimed because of it; None where it is met
+
+
+@dataclass(frozen=True, slots=True)
+class ChecklistItem:
+    """Something a complete report states, and whether this one does."""
+
+    item: str
+    asked_by: str  # "simplified report" | "full report"
+    present: bool
+    where: str  # what it was found in, or the key of the survey file that would state it
+
+
+@dataclass(frozen=True, slots=True)
+class SeasonRow:
+    """What one finding, or one whole element, costs in a season."""
+
+    of: str  # id of a finding or of an element
+    frame: str | None
+    heat_w_k: Estimate | None
+    energy_kwh: Estimate | None
+    cost: Estimate | None  # in the season's currency
+    order_of_magnitude: bool  # too uncertain for more than that
+
+
+@dataclass(frozen=True, slots=True)
+class SeasonReport:
+    """An estimate for a heating or cooling season; rows by heat, the largest first."""
+
+    sense: str  # "heating" | "cooling"
+    degree_days_kd: Estimate
+    how: str
+    efficiency: float
+    price: float | None  # per kWh
+    currency: str
+    findings: tuple[SeasonRow, ...]
+    elements: tuple[SeasonRow, ...]
+    findings_total: SeasonRow | None
+    elements_total: SeasonRow | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -279,10 +413,14 @@ class Report:
     format: int
     tool: dict[str, str]
     survey: dict[str, object]
+    claim: str  # that more than half of its frames may make; the reason names the others
+    claim_reason: str
     conditions_review: tuple[ConditionCheck, ...]
     next_visit: tuple[NextMeasurement, ...]
     assets: tuple[AssetReport, ...]
     frames: tuple[FrameReport, ...]
+    seasons: tuple[SeasonReport, ...]
+    checklist: tuple[ChecklistItem, ...]
     cautions: tuple[str, ...]
 
 
@@ -293,5 +431,6 @@ class Maps:
     temperature_c: NDArray[np.float32]  # NaN where not measurable
     labels: NDArray[np.uint16]  # 0 none, k = finding k
     reference: NDArray[np.bool_]
+    change: NDArray[np.float32] | None = None  # with pressure minus without [K], of an accepted pair
     heat_flux: NDArray[np.float32] | None = None  # [W m⁻²], on request
     u_temperature: NDArray[np.float32] | None = None  # standard uncertainty [K], on request

@@ -126,12 +126,73 @@ class KnownRectangle:
 
 
 @dataclass(frozen=True, slots=True)
+class Strip:
+    """A line drawn across a thermal bridge from `start` to `end` [px], read over `width` pixels across it.
+
+    `undisturbed` says at which ends the wall is undisturbed: "both", "from" (the start) or "to" (the end).
+    """
+
+    name: str
+    start: tuple[float, float]
+    end: tuple[float, float]
+    width: int = 5
+    undisturbed: str = "both"
+
+
+@dataclass(frozen=True, slots=True)
+class Layer:
+    """One layer of a building element; an air layer has a resistance alone."""
+
+    material: str = ""
+    thickness: float = 0.0  # [m]
+    conductivity: float | None = None  # [W m⁻¹ K⁻¹]
+    density: float | None = None  # [kg m⁻³]
+    specific_heat: float | None = None  # [J kg⁻¹ K⁻¹]
+    resistance: float | None = None  # [m² K W⁻¹], instead of the four above
+
+
+@dataclass(frozen=True, slots=True)
+class Element:
+    """A building element, such as an outer wall or a roof; layers from inside to outside."""
+
+    id: str
+    description: str = ""
+    layers: tuple[Layer, ...] = ()
+    mass: str | None = None  # "light" | "medium" | "heavy", where layers are not known
+    u_value: float | None = None  # as designed or calculated [W m⁻² K⁻¹]
+    area: float | None = None  # of the whole element [m²]
+
+
+@dataclass(frozen=True, slots=True)
+class Season:
+    """What a heating or a cooling season is worth; `how` says where the degree days come from."""
+
+    sense: str  # "heating" | "cooling"
+    degree_days: float  # [K d]
+    degree_days_u: float  # standard uncertainty, relative
+    how: str
+    efficiency: float = 1.0  # of the heating; of cooling, its seasonal performance factor
+    efficiency_u: float = 0.0  # relative
+    price: float | None = None  # per kWh
+    price_u: float = 0.0  # relative
+    currency: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class Detection:
     """When a deviation counts; None: the default of the kind of survey."""
 
     min_delta: float | None = None  # [K]
     min_pixels: int = 25
     min_area: float | None = None  # [m²]; where given, counts instead of min_pixels
+
+
+@dataclass(frozen=True, slots=True)
+class Pair:
+    """The frame of the same view without the pressure difference that this one was taken with."""
+
+    partner: FrameTask
+    pressure: float  # inside minus outside while this frame was taken [Pa]
 
 
 @dataclass(frozen=True, slots=True)
@@ -157,6 +218,14 @@ class FrameTask:
     convection: str = "iso-6946"
     surface_height: float = 2.5  # [m], for convection correlations
     criteria: tuple[str, ...] = ()
+    standards: tuple[str, ...] = ()  # whose requirements on the conditions count; empty: those of the method
+    strips: tuple[Strip, ...] = ()
+    pair: Pair | None = None
+    element: Element | None = None
+    history: tuple[tuple[str, float], ...] = ()  # what logs tell of the time before, by requirement key
+    sky_model: str = "berdahl-martin"
+    humidity_class: int | None = None  # ISO 13788, 1…5, where the room air was not measured
+    orientation: str = ""
     reflected_from: str | None = None  # id of the frame whose reflector serves this one
     group: str | None = None
     label: str = ""
@@ -189,5 +258,7 @@ class Survey:
     timezone: str | None = None
     about: tuple[tuple[str, str], ...] = ()  # free text of [survey]: ("surveyor", "…"), …
     assets: tuple[Asset, ...] = ()
+    elements: tuple[Element, ...] = ()
+    seasons: tuple[Season, ...] = ()
     as_read: str = "{}"  # the survey file as JSON text, for the report
     notices: tuple[str, ...] = ()  # what `check` lists beside faults

@@ -185,7 +185,9 @@ def _least(required: Callable[[float], float], start: float) -> float | None:
 def _walls(case: _Case, picture: Picture) -> Iterator[WallU]:
     """U-values, where they can be told: of the target, from inside, with a difference of air temperatures."""
     number, values = ("", "u_value"), picture.scene.values()
-    if case.optics != TARGET or number not in picture or values["indoor_air"] == values["outdoor_air"]:
+    if case.task.viewed_from != "inside" or case.optics != TARGET or number not in picture:
+        return
+    if values["indoor_air"] == values["outdoor_air"]:
         return
     for u_value in U_VALUES:
         t = t_wall(u_value, picture)

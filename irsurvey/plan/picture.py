@@ -8,7 +8,8 @@ from math import nan
 import numpy as np
 
 from irsurvey.analysis.correction import Optics, air_path, correct
-from irsurvey.analysis.measurand import Surroundings, Twin, flux_of, names, stacked
+from irsurvey.analysis.exchange import Surroundings, flux_of
+from irsurvey.analysis.measurand import Twin, names, stacked
 from irsurvey.analysis.planning import planned
 from irsurvey.analysis.regions import screen
 from irsurvey.heat.surface import outward_sign
@@ -114,7 +115,7 @@ def t_wall(u_value: float, picture: Picture) -> float:
     columns = {name: np.full((1, 1), value) for name, value in scene.values().items()}
     t = scene[around.air].value + around.sign * np.linspace(-60, 60, 6001)  # the flux grows along it
     across = abs(scene["indoor_air"].value - scene["outdoor_air"].value)
-    return float(np.interp(u_value * across, flux_of(t[None, :], TARGET, around, columns)[0], t))
+    return float(np.interp(u_value * across, flux_of(t[None, :], TARGET[0], around, columns)[0], t))
 
 
 def _measured(frame: Frame, task: FrameTask) -> Picture:

@@ -15,10 +15,14 @@ from irsurvey.report.json import plain
 from irsurvey.report.ranking import governing
 
 _ESTIMATES = dict.fromkeys(
-    field.name for record in (Finding, ComponentReport) for field in fields(record) if "Estimate" in str(field.type)
+    field.name
+    for record in (Finding, ComponentReport)
+    for field in fields(record)
+    if str(field.type) == "Estimate | None"  # one number, not a dict of them
 )
 _PLAIN = ("label", "pixels", "load_a", "rated_a")
 _SHAPE = ("elongation", "edge_sharpness_per_pixel")
+_PROBABILITIES = ("exceeds_threshold", "condensation_probability", "mould_probability")
 _RATED = tuple(f"{delta}_{end}" for delta in ("delta_similar_k", "delta_ambient_k") for end in ("low", "high"))
 
 COLUMNS = (
@@ -27,7 +31,8 @@ COLUMNS = (
     *(column for name in _ESTIMATES for column in (name, f"u_{name}")),
     *(f"at_rated_load_{name}" for name in _RATED),
     *_SHAPE,
-    "exceeds_threshold",
+    *_PROBABILITIES,
+    "indication",
     *("criterion", "class", "urgency", "verdict", "outcome", "flags"),
 )
 
@@ -69,7 +74,8 @@ def _row(frame: FrameReport, item: Finding | ComponentReport) -> dict[str, Any]:
     for delta, band in (written.get("at_rated_load") or {}).items():
         row |= {f"at_rated_load_{delta}_{end}": number for end, number in (band or {}).items()}
     row |= {name: written.get("shape", {}).get(name) for name in _SHAPE}
-    row["exceeds_threshold"] = written.get("exceeds_threshold")
+    row |= {name: written.get(name) for name in _PROBABILITIES}
+    row["indication"] = (written.get("indication") or {}).get("pattern")
     if governs:
         row |= {"criterion": governs.criterion, "class": governs.class_, "verdict": governs.verdict}
     return row | {"urgency": item.urgency, "outcome": item.outcome, "flags": ";".join(item.flags)}

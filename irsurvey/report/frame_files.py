@@ -1,4 +1,4 @@
-"""The files of one frame: object temperatures and finding labels as TIFF, the annotated picture as PNG."""
+"""The files of one frame: object temperatures and finding labels as TIFF, pictures as PNG."""
 
 from __future__ import annotations
 
@@ -9,16 +9,17 @@ from numpy.typing import NDArray
 
 from irsurvey import files
 from irsurvey.model import FrameReport, Maps
-from irsurvey.report import picture
+from irsurvey.report import change_picture, picture
 from irsurvey.report.inks import COLORMAP
 
-NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "u_temperature.tif", "annotated.png")
+NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "u_temperature.tif", "annotated.png", "change.png")
 """Every file this module may write into a frame's folder."""
 
 
 def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP) -> Path:
     """Write OUT/frames/<id>/temperature.tif, findings.tif, annotated.png, and the maps made on request.
 
+    change.png: what pressure changed, where an accepted pair of frames left a map of it.
     temperature.tif: float32 °C, NaN where not measurable; findings.tif: uint16, 0 none, k = finding k.  On request
     heat_flux.tif: float32 W m⁻², and u_temperature.tif: float32 K, the standard uncertainty of each pixel of
     temperature.tif, NaN where none exists.  Each file is written whole or not at all; returns the frame's folder."""
@@ -32,6 +33,11 @@ def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP
             _write_tiff(folder / name, on_request.astype(np.float32, copy=False))
     with files.whole(folder / "annotated.png") as part:
         picture.save(picture.annotated(frame, maps, colormap=colormap), part)
+    if maps.change is None:
+        (folder / "change.png").unlink(missing_ok=True)
+    else:
+        with files.whole(folder / "change.png") as part:
+            picture.save(change_picture.changed(frame, maps.change), part)
     return folder
 
 

@@ -12,26 +12,27 @@ from typing import TYPE_CHECKING
 
 from irsurvey import files, numbers
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
-from irsurvey.report import results, texts
-from irsurvey.report.labels import component_mark
+from irsurvey.report import condition_rows, facts, results, season_table, strip_plot, texts
+from irsurvey.report.labels import change_mark, component_mark, strip_mark
 from irsurvey.report.picture import NUMBERED
-from irsurvey.report.ranking import Ranked, governing, in_order
+from irsurvey.report.ranking import Ranked, foremost, governing, in_order
 
 if TYPE_CHECKING:
     from jinja2 import Environment
 
-SUMMARY_LENGTH = 8
+SUMMARY_LENGTH = 12
 """Results named on the first page; the table behind it has all of them."""
 
 _LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
 _NAMED = 3  # findings or components of one frame named when they are not cleared for one reason; of more, their number
 _NOT_FREE_TEXT = {"title", "kind", "method", "viewed_from", "timezone", "reference", "camera"}
+_TIME = re.compile(r"(\d{4}-\d\d-\d\d)T(\d\d:\d\d)(?::\d\d(?:\.\d+)?)?(.*)")
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 
 
 @dataclass(frozen=True, slots=True)
 class Picture:
-    """An annotated picture to stand in the page: data URI, size [px], and what it shows in words."""
+    """A picture to stand in the page: data URI, size [px], and what it shows in words."""
 
     uri: str
     width: int
@@ -41,11 +42,15 @@ class Picture:
 
 @dataclass(frozen=True, slots=True)
 class Sheet:
-    """What the page shows of one frame."""
+    """What the page shows of one frame; of very many findings, the foremost, and how many `more` there are."""
 
     frame: FrameReport
     task: FrameTask | None
+    findings: tuple[Finding, ...]
+    more: int
     picture: Picture | None
+    change: Picture | None  # what pressure changed
+    unchanged: tuple[str, ...]  # ids of findings that pressure did not change
     to_do: str  # in short: what the most urgent of its findings and components asks for
     chip: str  # how that is set
 
@@ -60,7 +65,7 @@ class Open:
 
 
 def write(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> Path:
-    """Write OUT/report.html from the records and the annotated pictures already in OUT/frames, and return its path."""
+    """Write OUT/report.html from the records and the pictures already in OUT/frames, and return its path."""
     path = out / "report.html"
     files.write_bytes(path, page(report, tasks, out).encode("utf-8", "replace"))
     return path
@@ -70,17 +75,30 @@ def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
     """The text of the page.  All text of the survey is escaped; control characters become U+FFFD."""
     by_id = {task.id: task for task in tasks}
     ranked = in_order(report)
+    sheets = [_sheet(frame, by_id.get(frame.id), out) for frame in report.frames]
+    seasons = season_table.tables(report)
     template = _environment().get_template("report.html.j2")
     rendered = template.render(
         report=report,
         title=_about(report).get("title") or "Thermographic survey",
         about={texts.about(key): text for key, text in _about(report).items() if key not in _NOT_FREE_TEXT},
-        sheets=[_sheet(frame, by_id.get(frame.id), out) for frame in report.frames],
+        sheets=sheets,
+        shown={finding.id for sheet in sheets for finding in sheet.findings},
+        frame_ids={frame.id for frame in report.frames},
+        failed=[frame for frame in report.frames if frame.status == "failed"],
+        analysed=[frame for frame in report.frames if frame.status != "failed"],
         ranked=ranked,
+        findings=[entry for entry in ranked if isinstance(entry.item, Finding)],
+        components=[entry for entry in ranked if isinstance(entry.item, ComponentReport)],
+        roof=_warm_areas(ranked, by_id),
+        conditions=condition_rows.rows(report.conditions_review),
+        seasons=seasons,
+        season_notes=season_table.notes(seasons),
+        season_costs=season_table.in_short(report),
         named={_name(entry): entry for entry in ranked},
         not_cleared=sum(1 for _ in not_cleared(report)),
         open_points=gathered(not_cleared(report)),
-        cautions=(*report.cautions, *texts.cautions(frame.kind for frame in report.frames)),
+        cautions=(*report.cautions, *texts.cautions(_kinds(report))),
     )
     return _CONTROLS.sub("\ufffd", rendered)
 
@@ -117,6 +135,33 @@ def gathered(points: Iterable[Open]) -> list[Open]:
     ]
 
 
+def _kinds(report: Report) -> Iterator[str]:
+    """What a report tells of that standing cautions are written for."""
+    for frame in report.frames:
+        yield frame.kind
+        if frame.room_air or frame.surface_at_risk:
+            yield "moisture"
+    if report.seasons:
+        yield "season"
+
+
+def _warm_areas(ranked: tuple[Ranked, ...], tasks: dict[str, FrameTask]) -> list[Ranked]:
+    """The warm findings of a survey for moisture in roofs, the largest first."""
+
+    def size(entry: Ranked) -> float:
+        return entry.item.area_m2.value if isinstance(entry.item, Finding) and entry.item.area_m2 else 0.0
+
+    methods = {id_: task.method for id_, task in tasks.items()}
+    warm = (
+        entry
+        for entry in ranked
+        if isinstance(entry.item, Finding)
+        and entry.item.sense == "hot"
+        and methods.get(entry.frame.id) == "roof-moisture"
+    )
+    return sorted(warm, key=size, reverse=True)
+
+
 def _about(report: Report) -> dict[str, str]:
     """What [survey] says in words: title, date and free texts."""
     survey = report.survey.get("survey")
@@ -148,7 +193,25 @@ def _sheet(frame: FrameReport, task: FrameTask | None, out: Path) -> Sheet:
         to_do, chip = frame.claim, "weak"
     elif not items:
         to_do, chip = ("nothing found", "") if _is_compared(frame) else ("nothing compared", "weak")
-    return Sheet(frame, task, _picture(frame, out), to_do, chip)
+    shown = foremost(frame, NUMBERED)
+    return Sheet(
+        frame,
+        task,
+        findings=shown,
+        more=len(frame.findings) - len(shown),
+        picture=_picture(frame, out, "annotated.png"),
+        change=_picture(frame, out, "change.png"),
+        unchanged=_unchanged(frame),
+        to_do=to_do,
+        chip=chip,
+    )
+
+
+def _unchanged(frame: FrameReport) -> tuple[str, ...]:
+    """Findings seen in both frames of a pair that pressure did not change."""
+    changed = {change.finding for change in frame.pair.changes} if frame.pair else set()
+    compared = (finding.id for finding in frame.findings if frame.pair and finding.pressure_change_k)
+    return tuple(id_ for id_ in compared if id_ not in changed)
 
 
 def _is_compared(frame: FrameReport) -> bool:
@@ -156,10 +219,10 @@ def _is_compared(frame: FrameReport) -> bool:
     return frame.detectable is not None and frame.detectable.min_delta_k is not None
 
 
-def _picture(frame: FrameReport, out: Path) -> Picture | None:
+def _picture(frame: FrameReport, out: Path, name: str) -> Picture | None:
     from PIL import Image
 
-    path = out / "frames" / frame.id / "annotated.png"
+    path = out / "frames" / frame.id / name
     if frame.status == "failed" or not path.is_file():
         return None
     with Image.open(path) as image:
@@ -170,6 +233,16 @@ def _picture(frame: FrameReport, out: Path) -> Picture | None:
 
 def _short(text: str, length: int = _LONG) -> str:
     return text if len(text) <= length else f"{text[: length - 1].rstrip()}…"
+
+
+def _moment(taken: str) -> str:
+    """When a frame was taken, to the minute: "2026-01-18 07:12 +01:00"; what is no such time stays as it is."""
+    match = _TIME.fullmatch(taken)
+    return " ".join(part for part in match.groups() if part) if match else taken
+
+
+def _upper_first(text: str) -> str:
+    return text[:1].upper() + text[1:]
 
 
 @cache
@@ -183,13 +256,18 @@ def _environment() -> Environment:
         trim_blocks=True,
         lstrip_blocks=True,
     )
-    environment.filters |= {"short": _short}
+    environment.filters |= {"short": _short, "moment": _moment, "upper_first": _upper_first}
     environment.globals |= {
+        "axes": strip_plot,
+        "change_mark": change_mark,
         "component_mark": component_mark,
+        "f": facts,
         "governing": governing,
         "numbered": NUMBERED,
         "n": numbers,
         "r": results,
+        "strip_mark": strip_mark,
+        "strip_plot": strip_plot.plot,
         "summary_length": SUMMARY_LENGTH,
         "t": texts,
     }

@@ -49,7 +49,8 @@ def lettering(text: str, size: int, *, dark_on_light: bool = True) -> Pixels:
     image = Image.new("L", (ceil(font.getlength(text)), 2 * size))
     ImageDraw.Draw(image).text((0, size // 2), text, fill=255, font=font)
     coverage = np.asarray(image)
-    coverage = coverage[coverage.any(axis=1)]
+    inked = np.flatnonzero(coverage.any(axis=1))
+    coverage = coverage[inked[0] : inked[-1] + 1] if inked.size else coverage[:0]  # the dot of an i stays off its stem
     step = np.rint(coverage * ((DARK - LIGHT) / 255)).astype(np.uint8)
     return LIGHT + step if dark_on_light else DARK - step
 

@@ -19,6 +19,7 @@ _SIZE = 15  # of the lettering
 _PADDING = 4  # between the lettering and the edge of its tag
 _GAPS = (7, 18, 34)  # from what is labelled to its tag, the nearest that is free
 _LATTICE = 24  # step of the places tried in a crowded picture
+_ROMAN = ((100, "c"), (90, "xc"), (50, "l"), (40, "xl"), (10, "x"), (9, "ix"), (5, "v"), (4, "iv"), (1, "i"))
 TAG_COST = 100
 """What a pixel of a tag adds to `busy`; outlines and what they enclose add 1."""
 
@@ -66,6 +67,20 @@ def component_mark(place: int) -> str:
     while place > 0:
         place, letter = divmod(place - 1, 26)
         mark = chr(ord("A") + letter) + mark
+    return mark
+
+
+def change_mark(place: int) -> str:
+    """a, b, … z, aa, ab, … for the first, second, … change between two frames."""
+    return component_mark(place).lower()
+
+
+def strip_mark(place: int) -> str:
+    """i, ii, iii, iv, … for the first, second, … strip of a frame."""
+    mark = ""
+    for value, numeral in _ROMAN:
+        count, place = divmod(place, value)
+        mark += numeral * count
     return mark
 
 

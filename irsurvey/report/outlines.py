@@ -13,6 +13,7 @@ WIDTH = 3
 
 _NEIGHBOURS = np.ones((3, 3), dtype=np.uint8)
 _DASH, _GAP = 8, 6
+_BAR = 5  # half the length of the bar at the end of a line
 
 
 def around_regions(canvas: Pixels, regions: NDArray[np.uint16]) -> None:
@@ -28,6 +29,18 @@ def along_polygon(canvas: Pixels, corners: NDArray[np.int32]) -> None:
     """Draw a solid line along a closed polygon; corners (n, 2) in pixels of the canvas."""
     cv2.polylines(canvas, [corners], isClosed=True, color=DARK, thickness=WIDTH)
     cv2.polylines(canvas, [corners], isClosed=True, color=LIGHT, thickness=1)
+
+
+def along_line(canvas: Pixels, ends: NDArray[np.int32]) -> None:
+    """Draw a straight line from one end (2, 2) to the other, with a short bar across it at either end."""
+    along = (ends[1] - ends[0]).astype(np.float64)
+    across = np.array([-along[1], along[0]]) / max(float(np.hypot(*along)), 1.0) * _BAR
+    bars = [np.rint([end - across, end + across]).astype(np.int32) for end in ends]
+    drawn = np.zeros_like(canvas)
+    for first, last in (ends, *bars):
+        cv2.line(drawn, first.tolist(), last.tolist(), color=1)
+    canvas[cv2.dilate(drawn, _NEIGHBOURS) > 0] = DARK
+    canvas[drawn > 0] = LIGHT
 
 
 def dashed(canvas: Pixels, area: NDArray[np.uint8]) -> None:

@@ -14,7 +14,8 @@ from irsurvey.model import FrameReport, Maps
 from irsurvey.numbers import decimals
 from irsurvey.report import outlines, scale
 from irsurvey.report.inks import COLORMAP, DARK, LEVELS, LIGHT, UNMEASURABLE, Pixels, palette
-from irsurvey.report.labels import Box, Label, Point, component_mark, place
+from irsurvey.report.labels import Box, Label, Point, component_mark, place, strip_mark
+from irsurvey.report.ranking import foremost
 
 if TYPE_CHECKING:
     from PIL import Image
@@ -42,9 +43,9 @@ def annotated(frame: FrameReport, maps: Maps, *, colormap: str = COLORMAP) -> Im
     temperature = maps.temperature_c
     low, high = display_range(temperature, maps.labels)
     factor = enlargement(temperature.shape)
-    plain = _enlarged(shades(temperature, low, high), factor)
+    plain = enlarged(shades(temperature, low, high), factor)
     if (plain == UNMEASURABLE).any():
-        _hatch(plain)
+        hatch(plain)
     canvas = plain.copy()
     extremes = _extremes(frame, maps)
     _draw(canvas, frame, maps, factor=factor, extremes=extremes)
@@ -52,7 +53,7 @@ def annotated(frame: FrameReport, maps: Maps, *, colormap: str = COLORMAP) -> Im
         square = slice(y * factor, (y + 1) * factor), slice(x * factor, (x + 1) * factor)
         canvas[square] = plain[square]
     beyond = bool((temperature < low).any()), bool((temperature > high).any())
-    image = _side_by_side(canvas, scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), low, high, beyond))
+    image = side_by_side(canvas, scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), low, high, beyond))
     image.putpalette(palette(colormap))
     image.info["Description"] = _in_words(frame, low, high, colormap)
     return image
@@ -103,12 +104,14 @@ def enlargement(shape: tuple[int, ...]) -> int:
 
 def _draw(canvas: Pixels, frame: FrameReport, maps: Maps, *, factor: int, extremes: list[Point]) -> None:
     """Outlines of the reference, the findings and the components, then the tags that name them."""
-    regions = _enlarged(maps.labels, factor)
-    polygons = [_corners(component.polygon, factor) for component in frame.components]
-    outlines.dashed(canvas, _enlarged(maps.reference.astype(np.uint8), factor))
+    regions = enlarged(maps.labels, factor)
+    polygons = [corners(component.polygon, factor) for component in frame.components]
+    outlines.dashed(canvas, enlarged(maps.reference.astype(np.uint8), factor))
     outlines.around_regions(canvas, regions)
     for polygon in polygons:
         outlines.along_polygon(canvas, polygon)
+    for strip in frame.strips:
+        outlines.along_line(canvas, corners((strip.from_, strip.to), factor))
 
     busy = ((regions > 0) | (canvas >= LEVELS)).astype(np.int32)
     for polygon in polygons:
@@ -120,7 +123,7 @@ def _draw(canvas: Pixels, frame: FrameReport, maps: Maps, *, factor: int, extrem
         canvas[y : y + tag.shape[0], x : x + tag.shape[1]] = tag
 
 
-def _side_by_side(canvas: Pixels, strip: Pixels) -> Image.Image:
+def side_by_side(canvas: Pixels, strip: Pixels) -> Image.Image:
     from PIL import Image
 
     rows, columns = canvas.shape
@@ -130,11 +133,11 @@ def _side_by_side(canvas: Pixels, strip: Pixels) -> Image.Image:
     return Image.frombytes("P", (sheet.shape[1], sheet.shape[0]), sheet.tobytes())
 
 
-def _enlarged(array: NDArray[Any], factor: int) -> NDArray[Any]:
+def enlarged(array: NDArray[Any], factor: int) -> NDArray[Any]:
     return array if factor == 1 else array.repeat(factor, axis=0).repeat(factor, axis=1)
 
 
-def _hatch(picture: Pixels) -> None:
+def hatch(picture: Pixels) -> None:
     """Diagonal lines over what could not be measured, so that it is not taken for a temperature."""
     rows, columns = np.nonzero(picture == UNMEASURABLE)
     lines = (rows + columns) % _HATCH == 0
@@ -142,14 +145,17 @@ def _hatch(picture: Pixels) -> None:
 
 
 def _labels(frame: FrameReport, factor: int) -> list[Label]:
-    """The foremost findings by number, dark on light; components by letter, light on dark; largest findings first."""
-    foremost = frame.findings[:NUMBERED]
-    findings = [Label(str(finding.label), _box(finding.polygon, factor), True) for finding in foremost]
+    """The foremost findings by number, dark on light; components by letter, strips by Roman number, light on dark."""
+    findings = [Label(str(finding.label), box(finding.polygon, factor), True) for finding in foremost(frame, NUMBERED)]
     components = [
-        Label(component_mark(number), _box(component.polygon, factor), False)
+        Label(component_mark(number), box(component.polygon, factor), False)
         for number, component in enumerate(frame.components, 1)
     ]
-    return components + findings
+    strips = [
+        Label(strip_mark(number), box((strip.from_, strip.to), factor), False)
+        for number, strip in enumerate(frame.strips, 1)
+    ]
+    return components + strips + findings
 
 
 def _extremes(frame: FrameReport, maps: Maps) -> list[Point]:
@@ -163,7 +169,7 @@ def _extremes(frame: FrameReport, maps: Maps) -> list[Point]:
         points.append((round(x), round(y)))
     for component in frame.components:
         inside = np.zeros_like(finite)
-        cv2.fillPoly(inside, [_corners(component.polygon, 1)], 1)
+        cv2.fillPoly(inside, [corners(component.polygon, 1)], 1)
         window, corner = _window(component.polygon, finite.shape)
         points += _ends(maps.temperature_c[window], finite[window] * inside[window], corner)
     return list(dict.fromkeys(points))
@@ -178,18 +184,18 @@ def _ends(temperature: Temperatures, where: NDArray[Any], corner: Point) -> list
 
 def _window(polygon: tuple[tuple[float, float], ...], shape: tuple[int, ...]) -> tuple[tuple[slice, slice], Point]:
     """The part of a frame around a polygon, and its left top pixel."""
-    left, top, right, bottom = _box(polygon, 1)
+    left, top, right, bottom = box(polygon, 1)
     left, top = min(max(left, 0), shape[1] - 1), min(max(top, 0), shape[0] - 1)
     return (slice(top, max(bottom, top + 1)), slice(left, max(right, left + 1))), (left, top)
 
 
-def _box(polygon: tuple[tuple[float, float], ...], factor: int) -> Box:
+def box(polygon: tuple[tuple[float, float], ...], factor: int) -> Box:
     """The pixels of an enlarged picture that a polygon and its outline reach."""
     xs, ys = [x for x, _ in polygon], [y for _, y in polygon]
     return floor(min(xs)) * factor, floor(min(ys)) * factor, (ceil(max(xs)) + 1) * factor, (ceil(max(ys)) + 1) * factor
 
 
-def _corners(polygon: tuple[tuple[float, float], ...], factor: int) -> NDArray[np.int32]:
+def corners(polygon: tuple[tuple[float, float], ...], factor: int) -> NDArray[np.int32]:
     """Corner points in pixels of the enlarged picture; pixel centres are integers in both."""
     return np.rint((np.asarray(polygon) + 0.5) * factor - 0.5).astype(np.int32)
 
@@ -201,5 +207,7 @@ def _in_words(frame: FrameReport, low: float, high: float, colormap: str) -> str
     components = ", ".join(f"{component_mark(n)} ({c.name[:40]})" for n, c in enumerate(frame.components, 1))
     drawn = [f"outlined findings: {findings}" if findings else "no findings"]
     drawn += [f"components: {components}"] if components else []
+    strips = ", ".join(f"{strip_mark(n)} ({strip.name[:40]})" for n, strip in enumerate(frame.strips, 1))
+    drawn += [f"strips: {strips}"] if strips else []
     drawn += ["dashed: reference area"] if frame.reference else []
     return f"Surface temperatures of frame {frame.id}, {scale}; " + "; ".join(drawn) + "."

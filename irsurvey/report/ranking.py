@@ -28,13 +28,23 @@ def governing(assessments: tuple[Assessment, ...]) -> Assessment | None:
 def in_order(report: Report) -> tuple[Ranked, ...]:
     """All findings and components, the most important first.
 
-    Saturated hot ones lead (their reading is only a lower bound), then urgency, then components before
-    findings, then |mean ΔT| × area of a finding or the larger |ΔT| of a component."""
+    Saturated hot ones lead (their reading is only a lower bound), then urgency, of one urgency those last whose
+    conditions were not valid, then components before findings, then |mean ΔT| × area of a finding or the larger |ΔT|
+    of a component."""
     ranked: list[Ranked] = []
     for frame in report.frames:
         ranked += (Ranked(frame, component, place) for place, component in enumerate(frame.components, 1))
         ranked += (Ranked(frame, finding, finding.label) for finding in frame.findings)
     return tuple(sorted(ranked, key=_importance))
+
+
+def foremost(frame: FrameReport, most: int) -> tuple[Finding, ...]:
+    """So many findings of a frame, the most important ones, in the order of their numbers."""
+    if len(frame.findings) <= most:
+        return frame.findings
+    ranked = sorted((Ranked(frame, finding, finding.label) for finding in frame.findings), key=_importance)
+    chosen = {entry.place for entry in ranked[:most]}
+    return tuple(finding for finding in frame.findings if finding.label in chosen)
 
 
 def is_saturated(item: Finding | ComponentReport) -> bool:
@@ -46,10 +56,11 @@ def _urgency(urgency: int | None) -> float:
     return UNCLASSED_URGENCY if urgency is None else urgency
 
 
-def _importance(ranked: Ranked) -> tuple[bool, float, bool, float]:
+def _importance(ranked: Ranked) -> tuple[bool, float, bool, bool, float]:
     item = ranked.item
     leads = is_saturated(item) and (isinstance(item, ComponentReport) or item.sense == "hot")
-    return (not leads, -_urgency(item.urgency), isinstance(item, Finding), -_weight(item))
+    is_doubtful = "conditions not valid" in item.flags
+    return (not leads, -_urgency(item.urgency), is_doubtful, isinstance(item, Finding), -_weight(item))
 
 
 def _weight(item: Finding | ComponentReport) -> float:

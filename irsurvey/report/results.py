@@ -16,6 +16,8 @@ _LEAST_SHARE = 0.005
 """Terms below half a percent of the variance are shown together; report.json has them one by one."""
 _BARS, _LEAST_BAR = 5, 0.02
 """The longest bars a chart shows, and the share from which a term gets one; the rest together get the last."""
+COLDEST = ("temperature_factor", "temperature_factor_at_0_25", "dew_point_margin_k", "mould_margin_k")
+"""Numbers of the coldest spot of a finding."""
 _NO_CHANCE = 1e-9
 _NEAR_EDGE = 0.975
 """A class less probable than that has an edge within about U of the value: Φ(2) = 0.977."""
@@ -56,24 +58,48 @@ class Change:
 def reading(item: Item, key: str, *, unit: bool = True) -> str:
     """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
     estimate: Estimate | None = getattr(item, key)
-    text = numbers.with_unit(numbers.shown(estimate), key) if unit else numbers.shown(estimate)
-    if estimate is None or text == numbers.NOTHING or not _is_bound(item, key):
+    text = numbers.measured(estimate, key, unit=unit)
+    if estimate is None or text == numbers.NOTHING or not is_bound(item, key):
         return text
     return f"{'≤' if isinstance(item, Finding) and item.sense == 'cold' else '≥'}\u00a0{text}"
 
 
 def interval(item: Item, key: str) -> str:
     """The 95 % interval of one number where it was drawn and the reading is not only a bound; else ""."""
-    return "" if _is_bound(item, key) else numbers.interval(getattr(item, key))
+    return "" if is_bound(item, key) else numbers.interval_of(getattr(item, key), key)
+
+
+def is_bound(item: Item, key: str) -> bool:
+    """Whether a reading tells only how far the truth lies at least: beyond the range, smaller than the spot."""
+    if key == "delta_similar_k" and "twin size-limited" in item.flags:
+        return False  # both are too small: which way the difference errs is not known
+    if key in ("mean_c", "mean_delta_k"):
+        return is_saturated(item)
+    if not (is_saturated(item) or "size-limited" in item.flags):
+        return False
+    if isinstance(item, Finding) and key in COLDEST:
+        return item.sense == "cold"  # the true spot is colder still; of a warm finding the coldest is not its extreme
+    return key in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k")
 
 
 def exceeds(item: Item) -> str:
     """The probability that a finding's ΔT truly exceeds the least that counts, where it is known; else "".
 
     What carries an uncertainty is never certain: a probability that rounds to 1 is still shown as above 99 %."""
-    if not isinstance(item, Finding) or item.exceeds_threshold is None:
+    return chance(item.exceeds_threshold) if isinstance(item, Finding) else ""
+
+
+def chance(probability: float | None) -> str:
+    """A probability in percent, never 0 or 100 %; "" where there is none."""
+    return "" if probability is None else numbers.percent(min(max(probability, _NO_CHANCE), 1 - _NO_CHANCE))
+
+
+def rated(item: ComponentReport) -> str:
+    """Its rise over a similar one at rated load; "" where there is none, as of the twin all are compared with."""
+    band = item.at_rated_load.delta_similar_k if item.at_rated_load else None
+    if band is None or band.low == band.high == 0:
         return ""
-    return numbers.percent(min(max(item.exceeds_threshold, _NO_CHANCE), 1 - _NO_CHANCE))
+    return f"{numbers.number(band.low, 2)} to {numbers.number(band.high, 2)}"
 
 
 def budgets(item: Item) -> tuple[Shown, ...]:
@@ -95,15 +121,6 @@ def probabilities(assessment: Assessment) -> dict[str, float]:
     """The classes that come into question where an edge is near; nothing where one class is as good as certain."""
     told = {name: p for name, p in assessment.probabilities.items() if p >= _LEAST_SHARE}
     return told if max(told.values(), default=1.0) < _NEAR_EDGE else {}
-
-
-def _is_bound(item: Item, key: str) -> bool:
-    if key == "delta_similar_k" and "twin size-limited" in item.flags:
-        return False  # both are too small: which way the difference errs is not known
-    if key in ("mean_c", "mean_delta_k"):
-        return is_saturated(item)
-    at_the_spot = key in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k")
-    return at_the_spot and (is_saturated(item) or "size-limited" in item.flags)
 
 
 def _judged(item: Item) -> str | None:

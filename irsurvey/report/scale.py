@@ -1,4 +1,4 @@
-"""The colour scale beside a picture, with its ticks in °C."""
+"""The colour scale beside a picture, with its ticks in °C or K."""
 
 from __future__ import annotations
 
@@ -20,7 +20,7 @@ _SIZE = 15  # of the lettering
 _ROOM = 24  # rows between two numbers
 
 
-def strip(height: int, low: float, high: float, beyond: tuple[bool, bool]) -> Pixels:
+def strip(height: int, low: float, high: float, beyond: tuple[bool, bool], *, unit: str = "°C") -> Pixels:
     """The scale as a block of ink numbers, `height` rows; the light ink alone where `low` and `high` are NaN.
 
     Its ends carry the display range itself, with ≤ or ≥ where the frame goes on beyond (`beyond`: below,
@@ -47,8 +47,8 @@ def strip(height: int, low: float, high: float, beyond: tuple[bool, bool]) -> Pi
     margin = (high - low) * _ROOM / rows
     for multiple in range(ceil((low + margin) / step), floor((high - margin) / step) + 1):
         mark(multiple * step, decimals(multiple * step, places))
-    unit = lettering("°C", _SIZE)
-    block[4 : 4 + unit.shape[0], _BAR.start : _BAR.start + unit.shape[1]] = unit
+    word = lettering(unit, _SIZE)
+    block[4 : 4 + word.shape[0], _BAR.start : _BAR.start + word.shape[1]] = word
     return block
 
 

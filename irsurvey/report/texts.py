@@ -12,6 +12,8 @@ from irsurvey.numbers import UNITS
 
 _OF_AREAS = ("noise", "outline")
 """Inputs that each area of a frame has of its own."""
+_PARTS = ("spot", "whole", "undisturbed")
+"""Parts of a finding, a component or a strip that are measured."""
 
 
 def flag(code: str) -> str:
@@ -50,6 +52,16 @@ def claim(kind: str) -> str:
     return _word("claim", kind)
 
 
+def overall(kind: str) -> str:
+    """What the claim of a whole survey allows."""
+    return _word("overall", kind)
+
+
+def kept(kind: str | None) -> str:
+    """The most that a requirement leaves to be claimed; "" where it takes nothing."""
+    return _word("kept", kind) if kind else ""
+
+
 def origin(source: str) -> str:
     """How well founded an input is: stated, measured or assumed."""
     return _word("origin", source)
@@ -65,6 +77,50 @@ def sense(kind: str) -> str:
     return _word("sense", kind)
 
 
+def pattern(name: str) -> str:
+    """A pattern in half a sentence: "consistent with …", or that there is none."""
+    words: str = _texts()["pattern"].get(name, f"consistent with {name}")
+    return words
+
+
+def cue(key: str) -> str:
+    """What a measured cue of a pattern is called."""
+    words: str = _texts()["cues"].get(key, inside(key))
+    return words
+
+
+def term(key: str) -> str:
+    """Where a part of a heat flux goes: "to the sky by radiation"."""
+    words: str = _texts()["terms"].get(key, inside(key))
+    return words
+
+
+def risk(kind: str) -> str:
+    """What a surface temperature is held against."""
+    words: str = _texts()["risk"].get(kind, f"Limit of {kind}")
+    return words
+
+
+def air(how: str) -> str:
+    """Where the humidity of the room air comes from."""
+    return _word("air", how)
+
+
+def asked_by(report: str) -> str:
+    """Which report asks for an item."""
+    return _word("asked_by", report)
+
+
+def season(sense: str) -> str:
+    """Heating or cooling."""
+    return _word("season", sense)
+
+
+def owner(note: str) -> str:
+    """A sentence on how to read what a season costs."""
+    return _word("owner", note)
+
+
 def about(key: str) -> str:
     """The heading of a free text of the survey."""
     return _word("about", key) if key in _texts()["about"] else _plain(key)
@@ -75,11 +131,12 @@ def name(key: str) -> str:
 
     Noise and outlines belong to an area: "noise_k:F01-1 spot" → "Pixel noise, measurement spot of F01-1"."""
     stem, _, owner = key.partition(":")
-    stem = _without_unit(stem)
-    found: str = _texts()["names"].get(stem, _plain(stem))
+    names: dict[str, str] = _texts()["names"]
+    bare = _without_unit(stem)
+    found = names.get(stem) or names.get(bare) or _plain(bare)
     if not owner:
         return found
-    return f"{found}, {_area(stem, owner) if stem in _OF_AREAS else owner}"
+    return f"{found}, {_area(bare, owner) if bare in _OF_AREAS else owner}"
 
 
 def inside(key: str) -> str:
@@ -89,7 +146,7 @@ def inside(key: str) -> str:
 
 
 def cautions(kinds: Iterable[str]) -> tuple[str, ...]:
-    """The standing cautions for these kinds of survey."""
+    """The standing cautions for these kinds of survey, and for moisture and season where a report tells of them."""
     texts = _texts()["cautions"]
     return tuple(caution for kind in ("all", *sorted(set(kinds))) for caution in texts.get(kind, ()))
 
@@ -101,7 +158,7 @@ def _area(kind: str, owner: str) -> str:
     if owner == "reference":
         return areas["reference"]
     whose, _, part = owner.rpartition(" ")
-    return areas[part].replace("{name}", whose) if kind == "noise" and part in ("spot", "whole") else owner
+    return areas[part].replace("{name}", whose) if kind == "noise" and part in _PARTS else owner
 
 
 def _without_unit(key: str) -> str:

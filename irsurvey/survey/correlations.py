@@ -14,7 +14,13 @@ from irsurvey.survey.schema import Document
 
 INPUTS = {
     "emissivity": "emissivity",
+    "total_emissivity": "total_emissivity",
     **{key: scalar.name for key, scalar in CONDITIONS.items()},
+    "cloud": "cloud",
+    "indoor_humidity_percent": "indoor_humidity",
+    "outdoor_humidity_percent": "outdoor_humidity",
+    "sky_model_k": "sky_model",
+    "u_value_w_m2k": "u_value",
     "pressure_difference_pa": "pressure_difference",
     "outdoor_24h_low_c": "outdoor_24h_low",
     "outdoor_24h_high_c": "outdoor_24h_high",
@@ -40,7 +46,12 @@ INPUTS = {
 
 Not `outline`: every outline lies where it lies, independent of any other input.
 """
-_OF_AREAS = {"emissivity": "emissivity", "reflected": "reflected_c", "temperature": "temperature_c"}
+_OF_AREAS = {
+    "emissivity": "emissivity",
+    "total_emissivity": "total_emissivity",
+    "reflected": "reflected_c",
+    "temperature": "temperature_c",
+}
 """Name in the scene of what an area has of its own → its key, before the colon and the area's name."""
 
 
@@ -85,7 +96,8 @@ def unknown_inputs(document: Document, tasks: list[FrameTask], *, with_areas: bo
 def _inputs(task: FrameTask) -> dict[str, str]:
     """Names in the scene by all keys one may call them: what an area shares with others also by the area's name."""
     areas: tuple[Surface | Component, ...] = (*task.surfaces, *task.components)
-    of_areas = {f"emissivity:{area.name}": area.emissivity for area in areas if area.emissivity != "emissivity"}
+    own = [area for area in areas if area.emissivity != "emissivity"]
+    of_areas = {f"{total}emissivity:{area.name}": total + area.emissivity for area in own for total in ("", "total_")}
     for quantity in task.scene.quantities:
         base, _, owner = quantity.name.partition(":")
         if owner:

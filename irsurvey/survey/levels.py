@@ -66,6 +66,11 @@ class Levels:
                 found = Stated(getattr(place, name), source, DEPTH[source])
         return found
 
+    def name(self, key: str) -> str | None:
+        """The key `key` of the frame, else of its group, which the survey as a whole cannot state."""
+        found = self.choice(key)
+        return None if found is None or found.source == "survey" else found.value
+
     def where(self, source: str, key: str) -> str:
         """Key path of a key at a level."""
         if source == "group" and self.group:

@@ -13,16 +13,31 @@ from irsurvey.errors import Fault, SurveyError
 from irsurvey.model import Asset, Survey
 from irsurvey.survey import places, table
 from irsurvey.survey.correlations import unknown_inputs
+from irsurvey.survey.elements import elements
 from irsurvey.survey.faults import follows_from, validated
 from irsurvey.survey.known import Known
 from irsurvey.survey.notices import notices
 from irsurvey.survey.outside import polygon_faults
 from irsurvey.survey.resolve import resolved
 from irsurvey.survey.schema import Document
+from irsurvey.survey.season import seasons
 
 __all__ = ["Known", "load", "polygon_faults", "schema"]
 
-_FREE_TEXT = ("surveyor", "qualification", "client", "site", "construction", "limitations", "notes")
+_FREE_TEXT = (
+    "surveyor",
+    "qualification",
+    "client",
+    "site",
+    "construction",
+    "limitations",
+    "standard",
+    "test_description",
+    "supplementary",
+    "influences",
+    "signed_by",
+    "notes",
+)
 
 
 def load(path: Path, *, known: Known, ahead: bool = False) -> Survey:
@@ -76,6 +91,7 @@ def _survey(content: Mapping[str, Any], folder: Path, known: Known, *, ahead: bo
     document, wrong = validated(whole)
     faults += wrong
     tasks, unresolved, noted = resolved(document, folder, known, _names(whole), ahead=ahead)
+    costs = seasons(document, folder, known, unresolved, noted, ahead=ahead)
     faults += [fault for fault in unresolved if not follows_from(fault, faults)]
     if not tasks and not faults:
         faults = [Fault("frame", "at least one frame", "nothing", "list [[frame]] or give a [[group]] a glob")]
@@ -91,6 +107,8 @@ def _survey(content: Mapping[str, Any], folder: Path, known: Known, *, ahead: bo
         timezone=about.timezone,
         about=tuple((name, text) for name in _FREE_TEXT if (text := getattr(about, name))),
         assets=tuple(Asset(**dict(asset)) for asset in document.asset),
+        elements=tuple(elements(document, known).values()),
+        seasons=costs,
         as_read=json.dumps(content, ensure_ascii=False, default=lambda moment: moment.isoformat()),
         notices=notices(document, tasks, noted),
     )
@@ -115,10 +133,10 @@ def _table_rows(content: Mapping[str, Any], folder: Path) -> tuple[list[dict[str
 
 
 def _names(content: Mapping[str, Any]) -> dict[str, Collection[str]]:
-    """Names of groups, cameras, circuits, assets and frames as written, right or wrong."""
+    """Names of groups, cameras, circuits, assets, elements and frames as written, right or wrong."""
     names: dict[str, Collection[str]] = {
         kind: {item["id"] for item in _items(content.get(kind)) if isinstance(item.get("id"), str)}
-        for kind in ("group", "circuit", "asset", "frame")
+        for kind in ("group", "circuit", "asset", "element", "frame")
     }
     cameras = content.get("cameras")
     single = {"camera"} if "camera" in content else set()

@@ -1,13 +1,13 @@
-"""A logger's time series, read at the moment a frame was taken: interpolated, never extrapolated."""
+"""A logger's time series, read at the moment a frame was taken: interpolated, never extrapolated nor over long gaps."""
 
 from __future__ import annotations
 
 import math
 from bisect import bisect_left
 from collections import Counter
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
-from datetime import datetime, tzinfo
+from datetime import UTC, datetime, tzinfo
 from pathlib import Path
 from typing import TypeGuard
 
@@ -15,18 +15,39 @@ from pydantic import ValidationError
 
 from irsurvey.errors import Fault, SurveyError
 from irsurvey.survey.faults import nearest, shown
+from irsurvey.survey.fields import NotNegative, key
+from irsurvey.survey.history import LONGEST_GAP, Series
 from irsurvey.survey.schema import Conditions
 from irsurvey.survey.table import Sheet, sheet
 from irsurvey.survey.times import instant
 
 TIME = "time"
 """Column of times: ISO 8601, local time in the survey's time zone where without an offset."""
-COLUMNS = tuple(
-    name
-    for name in Conditions.model_fields
-    if name not in ("reflected_from", "outdoor_24h_c", "convection", "surface_height_m", "log")
-)
-"""Conditions that change with time, each one number."""
+RAIN = "rain_mm"
+
+
+class _Row(Conditions):
+    """What a reading may hold."""
+
+    rain_mm: NotNegative | None = key("Rain since the reading before [mm]")
+
+
+_CONSTANT = {
+    "reflected_from",
+    "outdoor_24h_c",
+    "tilt_deg",
+    "humidity_class",
+    "sky_model",
+    "hours_difference_held",
+    "hours_steady",
+    "hours_furniture_clear",
+    "unheated_before",
+    "convection",
+    "surface_height_m",
+    "log",
+}
+COLUMNS = tuple(name for name in _Row.model_fields if name not in _CONSTANT)
+"""Conditions that change with time, each one number, and rain."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,14 +55,30 @@ class Log:
     """Values by condition as (seconds since the epoch, values), rising in time; columns that were not understood."""
 
     name: str
-    series: Mapping[str, tuple[tuple[float, ...], tuple[float, ...]]]
+    series: Mapping[str, Series]
     ignored: tuple[str, ...]
+    zone: tzinfo = UTC  # of local times
 
     def at(self, moment: datetime) -> dict[str, float]:
         """Conditions at an instant, linearly between their two neighbours; without those that were not logged then."""
         second = moment.timestamp()
-        values = {key: _between(second, *series) for key, series in self.series.items()}
+        values = {key: _between(second, *series) for key, series in self.series.items() if key != RAIN}
         return {key: value for key, value in values.items() if value is not None}
+
+    def reaches(self, key: str, moment: datetime) -> bool:
+        """Whether a column has readings before and after an instant, or at it."""
+        seconds, _ = self.series[key]
+        return seconds[0] <= moment.timestamp() <= seconds[-1]
+
+    def span(self, key: str) -> str:
+        """From when to when a column has readings, in words."""
+        seconds, _ = self.series[key]
+        return self.between(seconds[0], seconds[-1])
+
+    def between(self, start: float, end: float) -> str:
+        """Two instants [s] in words, as local times."""
+        one, other = (datetime.fromtimestamp(second, self.zone).isoformat() for second in (start, end))
+        return f"{one} to {other}"
 
 
 def read(path: Path, zone: tzinfo, where: str) -> Log:
@@ -66,7 +103,7 @@ def read(path: Path, zone: tzinfo, where: str) -> Log:
             series[column] = (tuple(time for time, _ in pairs), tuple(value for _, value in pairs))
     if faults:
         raise SurveyError(*faults)
-    return Log(path.name, series, tuple(c for c in table.columns if c not in (*known, TIME)))
+    return Log(path.name, series, tuple(c for c in table.columns if c not in (*known, TIME)), zone)
 
 
 def _times(table: Sheet, zone: tzinfo) -> tuple[dict[int, float], list[Fault]]:
@@ -85,7 +122,7 @@ def _times(table: Sheet, zone: tzinfo) -> tuple[dict[int, float], list[Fault]]:
             faults.append(Fault(where, expected, shown(cells.get(TIME)), "write ISO 8601"))
         except SurveyError as error:
             faults += error.faults
-    twice = [time for time, count in Counter(times.values()).items() if count > 1]
+    twice = {time for time, count in Counter(times.values()).items() if count > 1}
     faults += [
         Fault(f"{table.where}, line {line}", "each time once", table_time, "drop the row that does not hold")
         for line, time in times.items()
@@ -106,7 +143,7 @@ def _value_faults(column: str, values: Mapping[int, object], where: str) -> Iter
         )
     for line in {pick(numbers, key=numbers.__getitem__): None for pick in (min, max) if numbers}:
         try:
-            Conditions.model_validate({column: numbers[line]})
+            _Row.model_validate({column: numbers[line]})
         except ValidationError as error:
             expected = error.errors()[0]["msg"].removeprefix("Input should be ")
             yield Fault(f"{where}.{column}, line {line}", f"a value {expected}", shown(numbers[line]))
@@ -116,12 +153,14 @@ def _is(value: object) -> TypeGuard[float]:
     return isinstance(value, int | float) and not isinstance(value, bool) and math.isfinite(value)
 
 
-def _between(second: float, seconds: tuple[float, ...], values: tuple[float, ...]) -> float | None:
+def _between(second: float, seconds: Sequence[float], values: Sequence[float]) -> float | None:
     after = bisect_left(seconds, second)
     if after < len(seconds) and seconds[after] == second:
         return values[after]
     if after in (0, len(seconds)):
         return None
     before = after - 1
+    if seconds[after] - seconds[before] > LONGEST_GAP:
+        return None
     share = (second - seconds[before]) / (seconds[after] - seconds[before])
     return values[before] + share * (values[after] - values[before])

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from irsurvey.model import Component, Polygon, Surface
+from irsurvey.model import Component, Polygon, Strip, Surface
 from irsurvey.survey import schema
 from irsurvey.survey.known import Known
 from irsurvey.survey.levels import Levels
-from irsurvey.survey.optics import emissivity_of, own_emissivity, own_reflected, put
+from irsurvey.survey.optics import optics, own_reflected, put
 from irsurvey.survey.scene import Quantities
 from irsurvey.survey.uncertainties import Uncertainties
 from irsurvey.survey.units import si
@@ -19,7 +19,6 @@ def surfaces(levels: Levels, quantities: Quantities, uncertainties: Uncertaintie
     material = _target_material(levels)
     result = []
     for area in surface_tables(levels):
-        own = emissivity_of(area, uncertainties, known)
         temperature = None
         if area.temperature_c is not None:
             value = si("temperature_c", area.temperature_c)
@@ -29,7 +28,7 @@ def surfaces(levels: Levels, quantities: Quantities, uncertainties: Uncertaintie
             name=str(area.name),
             polygon=points(area.polygon),
             role=area.role,
-            emissivity="emissivity" if own is None else own_emissivity(area, quantities, material, own),
+            emissivity=optics(area, quantities, material, uncertainties, known),
             reflected=own_reflected(area, quantities, uncertainties),
             temperature=temperature,
             material=area.material or "",
@@ -46,7 +45,6 @@ def components(
     circuits = {circuit.id: circuit for circuit in levels.document.circuit}
     result = []
     for area in component_tables(levels):
-        own = emissivity_of(area, uncertainties, known)
         circuit = circuits.get(area.circuit or "")
         component = Component(
             name=str(area.name),
@@ -55,10 +53,20 @@ def components(
             phase=area.phase,
             load=_load(area, circuit) if area.load_a is None else area.load_a,
             rated=area.rated_a if area.rated_a is not None or circuit is None else circuit.rated_a,
-            emissivity="emissivity" if own is None else own_emissivity(area, quantities, material, own),
+            emissivity=optics(area, quantities, material, uncertainties, known),
             reflected=own_reflected(area, quantities, uncertainties),
         )
         result.append(component)
+    return tuple(result)
+
+
+def strips(frame: schema.Frame) -> tuple[Strip, ...]:
+    """Strips of a frame in order."""
+    result = []
+    for number, strip in enumerate(frame.strip, 1):
+        start, end = points([strip.start, strip.to])
+        name = strip.name or f"strip {number}"
+        result.append(Strip(name, start, end, strip.width_px, strip.undisturbed))
     return tuple(result)
 
 

@@ -16,18 +16,22 @@ _ASSUMED = {
     "view_angle": "view angle not stated: square to the surface assumed",
     "ambient": "ambient_c not stated: the air on the path assumed where the parts sit",
     "mean_radiant": "mean radiant temperature not stated: that of the air assumed",
+    "ground": "ground not recorded: the temperature of the outdoor air assumed",
+    "cloud": "cloud cover not recorded: {:.0%} assumed",
     "window_temperature": "temperature of the window not stated: that of the air assumed",
     "window_ambient": "what the window mirrors not stated: the air temperature assumed",
 }
 
 
 def notices(document: Document, tasks: list[FrameTask], noted: Iterable[tuple[str, str]]) -> tuple[str, ...]:
-    """Notices of a survey, each once, with the frames it holds for; `noted` are (frame, notice) from elsewhere."""
+    """Notices of a survey, each once, with the frames it holds for; `noted` are (frame, notice) from elsewhere.
+
+    One of no frame, "", is of the survey."""
     by_text: dict[str, list[str]] = {}
     bands = {task.id: task.camera.band for task in tasks}
     for frame, text in [*noted, *((task.id, text) for task in tasks for text in _of(task, bands))]:
         by_text.setdefault(text, []).append(frame)
-    concerning = tuple(f"{text} ({_frames(ids, tasks)})" for text, ids in by_text.items())
+    concerning = tuple(f"{text} ({_frames(ids, tasks)})" if any(ids) else text for text, ids in by_text.items())
     stated = sorted({key for _, level in every_level(document) for key in level.uncertainty.model_fields_set})
     stated = [key for key in stated if key != "correlations"]
     besides = f" besides {', '.join(stated)}" if stated else ""
@@ -35,10 +39,20 @@ def notices(document: Document, tasks: list[FrameTask], noted: Iterable[tuple[st
 
 
 def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[str]:
+    assumed = {quantity.name: quantity.value for quantity in task.scene.quantities if quantity.source == "default"}
+    if task.viewed_from == "outside" and "mean_radiant" in assumed:
+        if "sky" not in task.scene:
+            yield f"sky not recorded: its temperature is to be modelled by {task.sky_model}"
+        del assumed["mean_radiant"]  # what the face sees is told apart
     for name, text in _ASSUMED.items():
-        if name in task.scene and task.scene[name].source == "default":
-            yield text.format(task.scene[name].value)
+        if name in assumed:
+            yield text.format(assumed[name])
     if task.kind == "building":
+        if "total_emissivity" in assumed:
+            yield "total emissivity, for the exchange of heat, not stated: that in the camera's band assumed"
+        if task.humidity_class is not None and "indoor_humidity" not in task.scene:
+            needed = "" if "outdoor_humidity" in task.scene else ", once outdoor_relative_humidity_percent is recorded"
+            yield f"humidity of the room air not recorded: humidity class {task.humidity_class} assumed{needed}"
         missing = [name for name in ("indoor_air", "outdoor_air") if name not in task.scene]
         if task.method == "envelope" and missing:
             yield f"{' and '.join(f'{name}_c' for name in missing)} not recorded: no envelope claim"

@@ -1,8 +1,11 @@
-"""Emissivities and reflected temperatures of a frame: the target's, and those of drawn areas that have their own."""
+"""Emissivities and reflected temperatures of a frame: the target's, and those of drawn areas that have their own.
+
+Each emissivity, in the camera's band, has a total one of the same name for the exchange of heat.
+"""
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 from itertools import chain, count
 
@@ -17,40 +20,44 @@ from irsurvey.survey.units import si
 
 _LIMITS = (0.001, 1.0)
 """Of an emissivity: nothing emits nothing, so that a step of the uncertainty stays above 0."""
+_TARGET = "emissivity"
 
 
-def target(stated: Mapping[str, Stated], uncertainties: Uncertainties, known: Known) -> Quantity:
-    """Emissivity of what no drawn surface says otherwise about."""
+def target(stated: Mapping[str, Stated], uncertainties: Uncertainties, known: Known) -> Iterator[Quantity]:
+    """Emissivity, and total emissivity, of what no drawn surface says otherwise about."""
     own = _emissivity(stated, uncertainties, known)
-    if own is not None:
-        return own
-    value = defaults("assumed")["emissivity"].value
-    return _quantity(value, "default", uncertainties, assumed="emissivity")
+    if own is None:
+        own = _quantity(defaults("assumed")["emissivity"].value, "default", uncertainties, assumed="emissivity")
+    yield own
+    told = stated.get("emissivity_total")
+    depths = [stated[key].depth for key in ("emissivity", "material") if key in stated]
+    if told is not None and told.depth < max(depths, default=0):
+        told = None  # a lower level says that it is another surface
+    yield _total(own, told, uncertainties)
 
 
-def own_emissivity(
+def optics(
     area: schema.Surface | schema.Component,
     quantities: Quantities,
     target_material: str | None,
-    own: Quantity,
+    uncertainties: Uncertainties,
+    known: Known,
 ) -> str:
-    """Name in the scene of an area's own emissivity; adds it to `quantities` where it is new.
+    """Name in the scene of an area's emissivity; adds it, and the total one, to `quantities` where they are new.
 
     What is one thing has one name, and moves together: areas of one material, components of one group with one
-    emissivity.
+    emissivity.  An area that states a total emissivity alone has the target's in the band.
     """
+    stated = {key: Stated(value, "surface", DEPTH["surface"]) for key, value in area.stated().items()}
+    own, told = _emissivity(stated, uncertainties, known), stated.get("emissivity_total")
+    if own is None:
+        if told is None:
+            return _TARGET
+        own = replace(quantities[_TARGET], u=0.0, follows=_TARGET)
     group = area.group if isinstance(area, schema.Component) else None
     names = [f"emissivity:{label}" for label in (area.material, group, area.name) if label]
-    same = ["emissivity"] if area.material and area.material == target_material else []
-    return put(quantities, [*same, *names], own)
-
-
-def emissivity_of(
-    area: schema.Surface | schema.Component, uncertainties: Uncertainties, known: Known
-) -> Quantity | None:
-    """The emissivity an area states, or that of its material; None where it has the target's."""
-    stated = {key: Stated(value, "surface", DEPTH["surface"]) for key, value in area.stated().items()}
-    return _emissivity(stated, uncertainties, known)
+    same = [_TARGET] if area.material and area.material == target_material else []
+    return put(quantities, [*same, *names], own, _total(own, told, uncertainties))
 
 
 def own_reflected(area: schema.Surface | schema.Component, quantities: Quantities, uncertainties: Uncertainties) -> str:
@@ -62,14 +69,33 @@ def own_reflected(area: schema.Surface | schema.Component, quantities: Quantitie
     return put(quantities, [f"reflected:{area.name}"], own)
 
 
-def put(quantities: Quantities, names: Sequence[str], own: Quantity) -> str:
-    """Adds `own` under the first of `names` that is free or stands for the same value already, and says which."""
+def put(quantities: Quantities, names: Sequence[str], own: Quantity, total: Quantity | None = None) -> str:
+    """Adds `own` under the first of `names` that is free or stands for the same value already, and says which.
+
+    `total` is the total emissivity that belongs to `own`, an emissivity.
+    """
     numbered = (f"{names[-1]} ({number})" for number in count(2))
     for name in chain(names, numbered):
-        present = quantities.setdefault(name, replace(own, name=name))
-        if (present.value, present.u, present.distribution) == (own.value, own.u, own.distribution):
+        new = {name: replace(own, name=name)}
+        if total is not None:
+            follows = None if total.follows is None else name
+            new[f"total_{name}"] = replace(total, name=f"total_{name}", follows=follows)
+        if all(_is_same(quantities.setdefault(key, quantity), quantity) for key, quantity in new.items()):
             break
     return name
+
+
+def _is_same(present: Quantity, own: Quantity) -> bool:
+    """Whether two quantities of one name stand for one value, alone or moving with another."""
+    return replace(present, source=own.source, u_source=own.u_source, low=own.low, high=own.high) == own
+
+
+def _total(own: Quantity, told: Stated | None, uncertainties: Uncertainties) -> Quantity:
+    """Total hemispherical emissivity; where it is not told, that in the band, off by something of its own."""
+    name, key, (low, high) = f"total_{own.name}", "emissivity_total", _LIMITS
+    if told is not None:
+        return uncertainties.quantity(name, told.value, key, source=told.source, low=low, high=high)
+    return uncertainties.quantity(name, own.value, key, low=low, high=high, assumed=key, follows=own.name)
 
 
 def _emissivity(stated: Mapping[str, Stated], uncertainties: Uncertainties, known: Known) -> Quantity | None:

@@ -43,6 +43,8 @@ def areas(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
 
 def _drawn(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
     yield from areas(task)
+    for strip in task.strips:
+        yield f"strip[{strip.name}]", (strip.start, strip.end)
     if isinstance(task.known_scale, KnownLength):
         yield "known_length", (task.known_scale.start, task.known_scale.end)
     elif task.known_scale is not None:

@@ -27,7 +27,12 @@ def reference_faults(
 
     `named`: names of groups, cameras, circuits, assets and frames; `without_reflector`: frames that draw none.
     """
-    for kind, tables in (("group", document.group), ("circuit", document.circuit), ("asset", document.asset)):
+    for kind, tables in (
+        ("group", document.group),
+        ("circuit", document.circuit),
+        ("asset", document.asset),
+        ("element", document.element),
+    ):
         ids = [table.id for table in tables]
         for name in sorted({name for name in ids if ids.count(name) > 1}):
             yield Fault(f"{kind}[{name}].id", "each id once", f"{ids.count(name)} of it", "rename one")
@@ -35,6 +40,8 @@ def reference_faults(
         yield Fault("cameras.camera", "another name", "camera", "that is the name of the one under [camera]")
     for number, name in enumerate(document.survey.criteria, 1):
         yield from _unknown(name, known.criteria, f"survey.criteria[#{number}]", "irsurvey criteria lists")
+    for number, name in enumerate(document.survey.standards, 1):
+        yield from _unknown(name, known.standards, f"survey.standards[#{number}]", "irsurvey holds requirements of")
     yield from _unknown(document.survey.camera, named["camera"], "survey.camera", "[cameras] holds")
     circuits = {circuit.id: circuit for circuit in document.circuit}
     for where, level in every_level(document):
@@ -42,6 +49,9 @@ def reference_faults(
         if "convection" in conditions.model_fields_set:
             place = f"{where}conditions.convection"
             yield from _unknown(conditions.convection, known.convections, place, "irsurvey knows")
+        if "sky_model" in conditions.model_fields_set:
+            place = f"{where}conditions.sky_model"
+            yield from _unknown(conditions.sky_model, known.sky_models, place, "irsurvey has a sky model of")
         yield from _unknown(
             level.target.material, known.materials, f"{where}target.material", "irsurvey materials lists"
         )
@@ -52,9 +62,12 @@ def reference_faults(
             yield Fault(place, "a frame with a reflector", f"{conditions.reflected_from}, which draws none", remedy)
         if not isinstance(level, schema.Document):
             yield from _unknown(level.camera, named["camera"], f"{where}camera", "[cameras] holds")
+            yield from _unknown(level.element, named["element"], f"{where}element", "is the id of an [[element]]")
             yield from _mark_faults(level, where, circuits, named["circuit"], known)
         if isinstance(level, schema.Frame):
             yield from _unknown(level.group, named["group"], f"{where}group", "is the id of a [[group]]")
+            if level.pair is not None:
+                yield from _unknown(level.pair.frame, named["frame"], f"{where}pair.with", "is the id of a frame")
             if named["asset"]:  # without a list of assets, a frame's asset is a label of its own
                 yield from _unknown(level.asset, named["asset"], f"{where}asset", "is the id of an [[asset]]")
 
@@ -66,10 +79,12 @@ def _mark_faults(
     named: Collection[str],
     known: Known,
 ) -> Iterator[Fault]:
-    for kind, areas in (("surface", level.surface), ("component", level.component)):
-        names = [area.name for area in areas if area.name]
+    strips = level.strip if isinstance(level, schema.Frame) else []
+    for kind, drawn in (("surface", level.surface), ("component", level.component), ("strip", strips)):
+        names = [one.name for one in drawn if one.name]
         for name in sorted({name for name in names if names.count(name) > 1}):
             yield Fault(f"{where}{kind}[{name}].name", "each name once", f"{names.count(name)} of it", "rename one")
+    for kind, areas in (("surface", level.surface), ("component", level.component)):
         for number, area in enumerate(areas, 1):
             place = f"{where}{kind}[{area.name or f'#{number}'}].material"
             yield from _unknown(area.material, known.materials, place, "irsurvey materials lists")

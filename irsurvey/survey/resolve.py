@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Iterator, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from datetime import UTC, datetime, tzinfo
 from pathlib import Path
 from typing import Any
@@ -15,21 +15,25 @@ from irsurvey.model import (
     FrameTask,
     KnownLength,
     KnownRectangle,
+    Pair,
     Polygon,
     ReadOptions,
     Scene,
     Signal,
 )
-from irsurvey.survey import log, places, scene, schema
+from irsurvey.survey import log, logged, places, scene, schema
 from irsurvey.survey.cameras import cameras
+from irsurvey.survey.context import Context
 from irsurvey.survey.correlations import correlations
+from irsurvey.survey.elements import elements, material_faults
 from irsurvey.survey.entries import Entry, entries
 from irsurvey.survey.faults import nearest
 from irsurvey.survey.known import Known
-from irsurvey.survey.levels import Levels, Stated
-from irsurvey.survey.marks import components, points, surface_tables, surfaces
+from irsurvey.survey.levels import DEPTH, Levels, Stated
+from irsurvey.survey.marks import components, points, strips, surface_tables, surfaces
 from irsurvey.survey.optics import target
 from irsurvey.survey.references import every_level, reference_faults
+from irsurvey.survey.schema_building import Pair as PairTable
 from irsurvey.survey.schema_camera import Camera as CameraTable
 from irsurvey.survey.times import instant, zone_named
 from irsurvey.survey.uncertainties import Uncertainties
@@ -41,19 +45,8 @@ _NO_CAMERA = Camera("", (7.5e-6, 13e-6), Signal("apparent-temperature"))
 
 _CONVECTION = {"building": ("iso-6946", 2.5), "electrical": ("churchill-chu", 0.1)}
 """Default correlation of the film coefficient and the height it takes [m], by kind of survey."""
-
-
-@dataclass(frozen=True, slots=True)
-class Context:
-    """What all frames share, and where faults and notices (frame, text) go."""
-
-    folder: Path
-    known: Known
-    zone: tzinfo
-    cameras: Mapping[str, Camera]
-    logs: Mapping[str, log.Log | None]
-    faults: list[Fault]
-    notices: list[tuple[str, str]]
+_CEILING, _FLOOR = 150.0, 30.0
+"""Tilts [°] above and below which heat flows upward or downward, within 30° (ISO 6946 counts 30° to the horizontal)."""
 
 
 def resolved(
@@ -86,15 +79,19 @@ def resolved(
         logs = {written: series for written, series in logs.items() if series is not None}
     else:
         faults += missing
-    context = Context(folder, known, zone, cameras(document), logs, faults, notices)
+    faults += material_faults(document, known)
+    context = Context(folder, known, zone, cameras(document), elements(document, known), logs, faults, notices)
     tasks = [_task(entry, of, context) for entry, of in zip(found, levels, strict=True)]
+    changes = logged.over_the_survey(tasks, {of.id: logged.columns(of, context) for of in levels})
+    tasks = [replace(task, history=(*task.history, *changes.get(task.id, {}).items())) for task in tasks]
+    tasks = _paired(tasks, {entry.id: entry.frame.pair for entry in found}, faults)
     every = {**named, "frame": {*named["frame"], *(entry.id for entry in found)}}
     without_reflector = {task.id for task in tasks} - {task.id for task in tasks if _draws_reflector(task)}
     faults += reference_faults(document, every, without_reflector, known)
     if not every["camera"]:
         faults.append(Fault("camera", "a camera", "nothing", "describe it under [camera], or several under [cameras]"))
     if None not in logs.values():
-        faults += _missing(tasks)
+        faults += _missing(tasks, context.unlogged)
     return tasks, faults, context.notices
 
 
@@ -103,13 +100,17 @@ def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
     kind, method, viewed_from = _kind(levels, context)
     camera, fill_values = _camera(levels, context)
     taken = _taken(levels, context)
-    conditions = _conditions(levels, taken, context)
+    conditions, history = _conditions(levels, taken, context)
     uncertainties = Uncertainties(levels.stated("uncertainty"), viewed_from or "electrical")
     window = levels.choice("window")
+    element = context.elements.get(levels.name("element") or "")
+    sky_model = _value(conditions, "sky_model", schema.SKY_MODEL)
+    sky_model_u = context.known.sky_models.get(sky_model)
 
-    quantities: scene.Quantities = {"emissivity": target(levels.stated("target"), uncertainties, context.known)}
+    quantities: scene.Quantities = {q.name: q for q in target(levels.stated("target"), uncertainties, context.known)}
     quantities |= {q.name: q for q in scene.conditions(conditions, uncertainties)}
-    quantities |= {q.name: q for q in scene.surroundings(quantities, uncertainties)}
+    quantities |= {q.name: q for q in scene.surroundings(quantities, sky_model_u, uncertainties)}
+    quantities |= {q.name: q for q in scene.element(element.u_value if element else None, uncertainties)}
     if window is not None:
         air = quantities.get("air")
         quantities |= {q.name: q for q in scene.window(window.value, window.source, air, uncertainties)}
@@ -135,9 +136,16 @@ def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
         has_window=window is not None,
         known_scale=_known_scale(frame),
         detection=_detection(levels),
-        convection=_value(conditions, "convection", _CONVECTION[kind][0]),
+        convection=_value(conditions, "convection", _convection(kind, viewed_from, conditions)),
         surface_height=_value(conditions, "surface_height_m", _CONVECTION[kind][1]),
         criteria=tuple(levels.document.survey.criteria),
+        standards=tuple(levels.document.survey.standards),
+        strips=strips(frame),
+        element=element,
+        history=tuple(history.items()),
+        sky_model=sky_model,
+        humidity_class=_value(conditions, "humidity_class", None),
+        orientation=levels.name("orientation") or "",
         reflected_from=_value(conditions, "reflected_from", None),
         group=entry.group,
         label=frame.label,
@@ -224,31 +232,68 @@ def _logs(document: schema.Document, folder: Path, zone: tzinfo, faults: list[Fa
     return logs
 
 
-def _conditions(levels: Levels, taken: datetime | None, context: Context) -> dict[str, Stated]:
-    """Conditions of a frame: stated ones, and logged ones at the moment it was taken.
+def _conditions(levels: Levels, taken: datetime | None, context: Context) -> tuple[dict[str, Stated], dict[str, float]]:
+    """Conditions of a frame, stated ones and logged ones; and what logs tell of the time before, by requirement key.
 
-    A reflector drawn on the frame is the lowest level that speaks about the reflected temperature.
+    A reflector drawn on the frame is the lowest level that speaks about the reflected temperature; a pair about the
+    pressure.
     """
-    logged = {}
-    for source, table in levels.tables():
-        series = context.logs.get(table.conditions.log or "")
-        if series is None:
-            continue
-        if taken is None:
-            context.notices.append((levels.id, f"time not stated: {series.name} not used"))
-            continue
-        logged[source] = series.at(taken)
-        absent = ", ".join(key for key in series.series if key not in logged[source])
-        if absent:
-            context.notices.append(
-                (levels.id, f"{series.name} does not reach to this time: {absent} not taken from it")
-            )
-    conditions = levels.stated("conditions", logged)
+    conditions = levels.stated("conditions", logged.at(levels, taken, context))
     if any(area.role == "reflector" for area in surface_tables(levels)):
         if "reflected_c" in levels.frame.conditions.model_fields_set:
             context.notices.append((levels.id, "reflected_c not used: measured on the frame's reflector"))
         conditions = {key: stated for key, stated in conditions.items() if key not in ("reflected_c", "reflected_from")}
-    return conditions
+    pair, own = levels.frame.pair, levels.frame.conditions.pressure_pa
+    if pair is not None:
+        if own is not None and own != pair.pressure_pa:
+            where, got = f"frame[{levels.id}].pair.pressure_pa", f"{pair.pressure_pa:g}"
+            context.faults.append(Fault(where, f"the frame's own pressure_pa, {own:g}", got, "state it once"))
+        conditions["pressure_pa"] = Stated(pair.pressure_pa, "frame", DEPTH["frame"])
+    conditions, history, notices = logged.before(logged.columns(levels, context), taken, conditions)
+    context.notices.extend((levels.id, text) for text in notices)
+    return conditions, history
+
+
+def _convection(kind: str, viewed_from: str | None, conditions: Mapping[str, Stated]) -> str:
+    """Default correlation: of ISO 6946 inside buildings, that of the way the heat flows."""
+    default = _CONVECTION[kind][0]
+    if viewed_from != "inside":
+        return default
+    indoor, outdoor = (_value(conditions, key, 0.0) for key in ("indoor_air_c", "outdoor_air_c"))
+    is_known = "indoor_air_c" in conditions and "outdoor_air_c" in conditions
+    is_cooled = is_known and indoor < outdoor
+    tilt = _value(conditions, "tilt_deg", 90.0)
+    if tilt > _CEILING:
+        return "iso-6946-down" if is_cooled else "iso-6946-up"
+    if tilt < _FLOOR:
+        return "iso-6946-up" if is_cooled else "iso-6946-down"
+    return default
+
+
+def _paired(tasks: list[FrameTask], pairs: Mapping[str, PairTable | None], faults: list[Fault]) -> list[FrameTask]:
+    """The tasks, those of a pair with the whole task of their partner; adds to `faults`."""
+    by_id = {task.id: task for task in tasks}
+    result = []
+    for task in tasks:
+        pair = pairs.get(task.id)
+        partner = None if pair is None else by_id.get(pair.frame)  # an unknown one is a fault of references
+        if pair is None or partner is None:
+            result.append(task)
+            continue
+        where = f"frame[{task.id}].pair.with"
+        pressure = partner.scene.value("pressure_difference")
+        if partner.id == task.id:
+            faults.append(Fault(where, "another frame", partner.id))
+        elif pairs.get(partner.id) is not None:
+            remedy = "name the frame without pressure difference"
+            faults.append(Fault(where, "a frame that is no pair itself", partner.id, remedy))
+        elif partner.camera.name != task.camera.name:
+            faults.append(Fault(where, f"a frame of the same camera, {task.camera.name}", partner.camera.name))
+        elif pressure == pair.pressure_pa:
+            got = f"{partner.id}, at the same {pressure:g} Pa"
+            faults.append(Fault(where, "a frame at another pressure", got, "state its own conditions.pressure_pa"))
+        result.append(replace(task, pair=Pair(partner, pair.pressure_pa)))
+    return result
 
 
 def _value(conditions: Mapping[str, Stated], key: str, default: Any) -> Any:
@@ -293,8 +338,8 @@ def _draws_reflector(task: FrameTask) -> bool:
     return any(surface.role == "reflector" for surface in task.surfaces)
 
 
-def _missing(tasks: list[FrameTask]) -> Iterator[Fault]:
-    """Conditions without which nothing can be corrected, and the frames that lack them."""
+def _missing(tasks: list[FrameTask], unlogged: Mapping[tuple[str, str], str]) -> Iterator[Fault]:
+    """Conditions without which nothing can be corrected, and the frames that lack them; why no log has them."""
     lacking = {
         "air_c": [task for task in tasks if "air" not in task.scene],
         "distance_m": [task for task in tasks if "distance" not in task.scene],
@@ -310,6 +355,7 @@ def _missing(tasks: list[FrameTask]) -> Iterator[Fault]:
         is_all = len(without) == len(tasks)
         where = f"conditions.{key}" if is_all else f"frame[{without[0].id}].conditions.{key}"
         more = f" (nor for {len(without) - 1} more)" if not is_all and len(without) > 1 else ""
+        why = next((f": {unlogged[task.id, key]}" for task in without if (task.id, key) in unlogged), "")
         measured = ", or draw a reflector" if key == "reflected_c" else ""
         remedy = f"state it under conditions of the survey, the group or the frame{measured}"
-        yield Fault(where, "a value, as it is required", f"nothing{more}", remedy)
+        yield Fault(where, "a value, as it is required", f"nothing{more}{why}", remedy)

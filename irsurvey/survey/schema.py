@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import combinations
 from typing import Annotated, Any, Literal
 
 from pydantic import AfterValidator, BaseModel, Discriminator, Field, Strict, Tag, model_validator
@@ -11,7 +12,6 @@ from irsurvey.survey.fields import (
     FINITE,
     AirCelsius,
     Celsius,
-    Coordinate,
     Counted,
     Day,
     Emissivity,
@@ -30,10 +30,36 @@ from irsurvey.survey.fields import (
     required,
     wrong,
 )
+from irsurvey.survey.schema_building import Element, Pair, Pascal, Point, Season, Strip
 from irsurvey.survey.schema_camera import Camera
 
-Point = tuple[Coordinate, Coordinate]
-Polygon = Annotated[list[Point], Field(min_length=3, max_length=10_000)]
+SKY_MODEL = "berdahl-martin"
+"""The sky model that counts where none is named."""
+_MOST_CORNERS = 500
+"""Outlines of more are not searched for sides that cross: the search takes a time that grows with their square."""
+
+
+def _turn(a: Point, b: Point, c: Point) -> float:
+    """Twice the signed area of a triangle: above 0 where a, b, c turn clockwise in a picture."""
+    return (b[0] - a[0]) * (c[1] - b[1]) - (b[1] - a[1]) * (c[0] - b[0])
+
+
+def _uncrossed(corners: list[Point]) -> list[Point]:
+    """A check of an outline: none of its sides crosses another, as what lies inside would then be open to doubt."""
+    if len(corners) > _MOST_CORNERS:
+        return corners
+    sides = list(zip(corners, [*corners[1:], corners[0]], strict=True))
+    for (one, (a, b)), (other, (c, d)) in combinations(enumerate(sides, 1), 2):
+        if _turn(a, b, c) * _turn(a, b, d) < 0 and _turn(c, d, a) * _turn(c, d, b) < 0:
+            raise wrong(
+                "an outline that does not cross itself",
+                f"side {one} from ({a[0]:g}, {a[1]:g}) across side {other} from ({c[0]:g}, {c[1]:g})",
+                "list its corners one after the other around it",
+            )
+    return corners
+
+
+Polygon = Annotated[list[Point], Field(min_length=3, max_length=10_000), AfterValidator(_uncrossed)]
 Kind = Literal["building", "electrical"]
 Side = Literal["inside", "outside"]
 Method = Literal["envelope", "air-leakage", "roof-moisture", "contact", "voltage-driven", "pv"]
@@ -81,6 +107,9 @@ def _uncertainty(of: str, name: str = "") -> Any:
 
 class Uncertainty(Table):
     emissivity: Uncertain | None = _uncertainty("emissivities that are stated as numbers", "emissivity")
+    emissivity_total: Uncertain | None = _uncertainty(
+        "total emissivities; where none is stated, of its difference from that in the band (0.02)", "emissivity_total"
+    )
     reflected_k: Uncertain | None = _uncertainty("the reflected apparent temperature [K], ±5 outside", "reflected_k")
     air_k: Uncertain | None = _uncertainty("the air on the path [K]", "air_k")
     relative_humidity_percent: Uncertain | None = _uncertainty("humidity [points]", "relative_humidity_percent")
@@ -99,6 +128,16 @@ class Uncertainty(Table):
     mean_radiant_k: Uncertain | None = _uncertainty("the mean radiant temperature [K]", "mean_radiant_k")
     ground_k: Uncertain | None = _uncertainty("the ground [K]", "ground_k")
     sky_k: Uncertain | None = _uncertainty("the sky [K]", "sky_k")
+    sky_model_k: Uncertain | None = _uncertainty("a sky that is modelled [K]; default: the model's own")
+    cloud_fraction: Uncertain | None = _uncertainty("the cloud cover, of the whole sky", "cloud_fraction")
+    tilt_deg: Uncertain | None = _uncertainty("the surface's tilt [°]", "tilt_deg")
+    indoor_relative_humidity_percent: Uncertain | None = _uncertainty(
+        "the humidity of the room air [points]", "indoor_relative_humidity_percent"
+    )
+    outdoor_relative_humidity_percent: Uncertain | None = _uncertainty(
+        "the humidity of the outdoor air [points]", "outdoor_relative_humidity_percent"
+    )
+    u_value_fraction: Uncertain | None = _uncertainty("U-values of elements, relative", "u_value_fraction")
     wind_m_s: Uncertain | None = _uncertainty("the wind speed [m/s]; or wind_fraction")
     wind_fraction: Uncertain | None = _uncertainty("the wind speed, relative to it", "wind_fraction")
     irradiance_fraction: Uncertain | None = _uncertainty("the irradiance, relative to it", "irradiance_fraction")
@@ -149,10 +188,18 @@ class Conditions(Table):
     view_angle_deg: Annotated[float, Strict(), FINITE, Field(ge=0, le=85)] | None = key(
         "Angle between line of sight and the surface's normal [°]", defaults("assumed")["view_angle_deg"].value
     )
+    tilt_deg: Annotated[float, Strict(), FINITE, Field(ge=0, le=180)] | None = key(
+        "Which way the surface faces [°]: 0 up, 90 a wall, 180 down", defaults("assumed")["tilt_deg"].value
+    )
     indoor_air_c: AirCelsius | None = key("Indoor air [°C]; building, required for envelope claims")
     outdoor_air_c: AirCelsius | None = key("Outdoor air [°C]; building, required for envelope claims")
     outdoor_24h_c: Annotated[tuple[AirCelsius, AirCelsius], AfterValidator(ascending)] | None = key(
         "Lowest and highest outdoor air of the last 24 h [°C]"
+    )
+    indoor_relative_humidity_percent: Percent | None = key("Relative humidity of the room air [%]")
+    outdoor_relative_humidity_percent: Percent | None = key("Relative humidity of the outdoor air [%]")
+    humidity_class: Annotated[int, Strict(), Field(ge=1, le=5)] | None = key(
+        "Humidity class of the rooms (ISO 13788), 1 to 5, where the room air was not measured"
     )
     wind_m_s: Annotated[float, Strict(), FINITE, Field(ge=0, le=100)] | None = key(
         "Wind speed [m/s]; absent means not recorded, never 0"
@@ -160,20 +207,32 @@ class Conditions(Table):
     ambient_c: AirCelsius | None = key("Electrical: air where the part sits [°C]; default: air_c")
     mean_radiant_c: Celsius | None = key("Mean radiant temperature of what the surface faces [°C]; default: the air")
     ground_c: Celsius | None = key("Ground in front of the surface, broadband [°C]")
-    sky_c: Celsius | None = key("Sky, broadband [°C]")
-    hours_since_sun: NotNegative | None = key("Hours since the sun last shone on the surface")
-    hours_since_rain: NotNegative | None = key("Hours since rain last wetted the surface")
-    irradiance_w_m2: NotNegative | None = key("Irradiance on the surface [W/m²]")
-    pressure_pa: Annotated[float, Strict(), FINITE, Field(ge=-1e5, le=1e5)] | None = key(
-        "Pressure inside minus outside [Pa]"
+    sky_c: Celsius | None = key("Sky, broadband [°C]; default outside: modelled")
+    sky_model: Name | None = key("Model of a sky that was not measured, by name", SKY_MODEL)
+    cloud_fraction: Fraction | None = key(
+        "Share of the sky under cloud; the default counts where the sky is modelled",
+        defaults("assumed")["cloud_fraction"].value,
     )
+    hours_since_sun: NotNegative | None = key("Hours since the sun last shone on the surface; default: the log's")
+    hours_since_rain: NotNegative | None = key("Hours since rain last wetted the surface; default: the log's")
+    hours_difference_held: NotNegative | None = key(
+        "Hours that indoor and outdoor air have been at least 10 K apart; default: the log's"
+    )
+    hours_steady: NotNegative | None = key("Hours that the outdoor air has been steady; default: the log's")
+    hours_furniture_clear: NotNegative | None = key("Hours since furniture was moved away from the surface")
+    unheated_before: Annotated[bool, Strict()] | None = key("Whether the building was unheated before the survey")
+    irradiance_w_m2: NotNegative | None = key("Irradiance on the surface [W/m²]")
+    pressure_pa: Pascal | None = key("Pressure inside minus outside [Pa]; default of a pair: the pair's")
     convection: Name | None = key(
-        "Correlation of the film coefficient, by name; default: iso-6946 (buildings), churchill-chu (electrical)"
+        "Correlation of the film coefficient, by name; default of buildings: iso-6946, for ceilings and floors "
+        "seen from inside iso-6946-up or -down by the way the heat flows; electrical: churchill-chu"
     )
     surface_height_m: Positive | None = key(
         "Height of the surface, for correlations that need it [m]; default: 2.5 (buildings), 0.1 (electrical)"
     )
-    log: Name | None = key("CSV time series: a column `time` and columns named as these keys")
+    log: Name | None = key(
+        "CSV time series: a column `time` and columns named as these keys, or rain_mm (since the reading before)"
+    )
 
     @model_validator(mode="after")
     def _one_source_of_reflected(self) -> Conditions:
@@ -185,6 +244,9 @@ class Conditions(Table):
 class Target(Table):
     emissivity: Emissivity | None = key("Emissivity in the camera's band", defaults("assumed")["emissivity"].value)
     material: Name | None = key("A name from the table of materials; beside emissivity it only describes")
+    emissivity_total: Emissivity | None = key(
+        "Total hemispherical emissivity, for the exchange of heat; default: that in the band"
+    )
 
 
 class Detection(Table):
@@ -216,6 +278,7 @@ class Drawn(Table):
     name: Name | None = key("Name, unique in the frame; default: numbered")
     polygon: Polygon = required("Corners [[x, y], …] in pixels, x right, y down, at least 3")
     emissivity: Emissivity | None = key("Its own emissivity; default: the target's")
+    emissivity_total: Emissivity | None = key("Its own total emissivity, for the exchange of heat; default: the band's")
     material: Name | None = key("A name from the table of materials; beside emissivity it only describes")
     reflected_c: Celsius | None = key("What it mirrors [°C]; default: the frame's")
 
@@ -283,11 +346,6 @@ class KnownRectangle(Table):
         return self
 
 
-def _turn(a: Point, b: Point, c: Point) -> float:
-    """Twice the signed area of a triangle: above 0 where a, b, c turn clockwise in a picture."""
-    return (b[0] - a[0]) * (c[1] - b[1]) - (b[1] - a[1]) * (c[0] - b[0])
-
-
 class Level(Table):
     """What a group and a frame may both say; a frame overrides its group, a group the survey."""
 
@@ -295,6 +353,8 @@ class Level(Table):
     viewed_from: Side | None = key("Building: inside or outside; default: the level above")
     method: Method | None = key("Method; default: the level above")
     camera: Name | None = key("Name of the camera; default: the only one")
+    element: Name | None = key("Id of the building element it shows")
+    orientation: Text | None = key("Which way that faces, such as north")
     reference: Reference | None = key("Reference area or automatic; default: the level above")
     conditions: Conditions = key("Conditions that differ from the level above", Conditions())
     target: Target = key("Emissivity or material, where it differs from the level above", Target())
@@ -333,6 +393,8 @@ class Frame(Level):
     taken: Moment | None = key("Date and time; without an offset it is local time in survey.timezone")
     known_length: KnownLength | None = key("A length in the picture: scale instead of distance × IFOV")
     known_rectangle: KnownRectangle | None = key("A rectangle in the picture: scale by rectification")
+    strip: list[Strip] = key("Lines across thermal bridges", [])
+    pair: Pair | None = key("The frame of the same view without pressure difference, to be compared with")
 
     @model_validator(mode="after")
     def _has_one_scale(self) -> Frame:
@@ -374,6 +436,7 @@ class About(Table):
     date: Day | None = key("Date of the survey")
     timezone: Name | None = key("Time zone of local times, such as Europe/Vienna; without one they are read as UTC")
     criteria: list[Name] = key("Names of criteria; default: those of the kind and method", [])
+    standards: list[Name] = key("Standards whose requirements on the conditions count; default: the method's", [])
     frame_table: Name | None = key("CSV of frames, as at the top of the file")
     surveyor: Text = key("Who surveyed", "")
     qualification: Text = key("The surveyor's qualification", "")
@@ -381,6 +444,11 @@ class About(Table):
     site: Text = key("Where", "")
     construction: Text = key("How it is built", "")
     limitations: Text = key("What could not be seen or done", "")
+    standard: Text = key("The standard the survey follows, and departures from it", "")
+    test_description: Text = key("How the survey was done", "")
+    supplementary: Text = key("Measurements beside thermography", "")
+    influences: Text = key("What may have influenced the result", "")
+    signed_by: Text = key("Who signs the report", "")
     notes: Text = key("Notes", "")
 
 
@@ -399,5 +467,7 @@ class Document(Table):
     group: list[Group] = key("Groups of frames: a room, an elevation, a panel", [])
     frame: list[Frame] = key("Frames", [])
     frame_table: Name | None = key("CSV with one frame a row, columns named as its keys (conditions.distance_m)")
+    element: list[Element] = key("Building elements: an outer wall, a roof", [])
+    season: Season = key("What heating and cooling seasons are worth", Season())
     circuit: list[Circuit] = key("Circuits and their loads", [])
     asset: list[Asset] = key("Assets of the round", [])

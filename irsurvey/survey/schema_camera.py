@@ -143,7 +143,9 @@ class Camera(Table):
         "Instantaneous field of view of a pixel [mrad]; required for areas and spot sizes"
     )
     spot_pixels: Annotated[int, Strict(), Field(ge=1, le=100)] = key("Measurement spot, pixels across", 3)
-    noise_k: Positive | None = key("Noise (NETD) at 30 °C [K]; without it, estimated from the frame")
+    noise_k: Annotated[float, Strict(), FINITE, Field(gt=0, le=5)] | None = key(
+        "Noise (NETD) at 30 °C [K]; without it, estimated from the frame"
+    )
     accuracy_k: NotNegative = key("Accuracy, half-width, rectangular [K]", 2.0)
     accuracy_fraction: Fraction = key("Accuracy, half-width, of |°C|; the larger of both counts", 0.02)
     range_c: Annotated[tuple[Number, Number], AfterValidator(ascending)] | None = key(

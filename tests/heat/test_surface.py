@@ -13,7 +13,7 @@ from scipy import constants, optimize
 from irsurvey.constants import STEFAN_BOLTZMANN, ZERO_CELSIUS
 from irsurvey.heat.convection import film_coefficient
 from irsurvey.heat.radiation import radiative_coefficient, radiative_flux
-from irsurvey.heat.surface import outward_sign, surface_flux, surface_resistance
+from irsurvey.heat.surface import mean_radiant, outward_sign, surface_flux, surface_resistance
 
 KELVIN_273 = 0.15 / 273
 """Textbooks take 0 °C as 273 K; a difference of fourth powers then moves by about three times this, relative."""
@@ -140,6 +140,33 @@ def test_a_cooled_building_reverses_the_sign_on_both_sides_and_a_component_never
     assert outward_sign(None, np.nan, np.nan) == 1
     assert outward_sign("inside", np.nan, warm) == -1
     np.testing.assert_array_equal(outward_sign("inside", np.array([290.0, 300.0]), 295.0), [1, -1])
+
+
+@given(st.floats(250, 320), st.lists(st.tuples(st.floats(0.01, 1), st.floats(230, 320)), min_size=1, max_size=4))
+def test_the_flux_to_the_mean_radiant_temperature_is_the_sum_over_everything_faced(
+    t_surface: float, seen: list[tuple[float, float]]
+) -> None:
+    """Radiation adds up in fourth powers: exact, but for rounding of powers of 1e9 (1e-16 · 500 W/m²)."""
+    whole = sum(share for share, _ in seen)
+    parts = [(share / whole, t) for share, t in seen]
+    together = surface_flux(t_surface, 280.0, mean_radiant(parts), 0.9, 2.5)
+    singly = 2.5 * (t_surface - 280.0) + sum(share * radiative_flux(t_surface, t, 0.9) for share, t in parts)
+    assert together == pytest.approx(singly, rel=1e-9, abs=1e-9)
+
+
+def test_a_wall_between_ground_and_clear_sky_faces_a_mean_of_fourth_powers() -> None:
+    """Half ground at 0 °C, half sky at −23.95 °C: by hand ½(5.567e9 + 3.857e9) = 4.712e9, whose fourth root is
+    262.0 K [C], where the arithmetic mean would be 261.2."""
+    assert mean_radiant([(0.5, 273.15), (0.5, 249.20)]) == pytest.approx(262.0, abs=0.05)
+    scenes = mean_radiant([(0.5, np.array([273.15, 280.0])), (0.5, 249.20)])
+    assert [*np.atleast_1d(scenes)] == [mean_radiant([(0.5, t), (0.5, 249.20)]) for t in (273.15, 280.0)]
+
+
+def test_half_a_kelvin_of_mean_radiant_temperature_moves_the_flux_by_2_6_watts() -> None:
+    """A room at 20 °C, ε 0.9 [C], printed to 0.1 W/m²."""
+    room = ZERO_CELSIUS + 20
+    moved = surface_flux(room, room, room, 0.9, 2.5) - surface_flux(room, room, room + 0.5, 0.9, 2.5)
+    assert abs(moved) == pytest.approx(2.6, abs=0.05)
 
 
 def test_flux_of_arrays_is_that_of_numbers_and_nan_stays_nan() -> None:

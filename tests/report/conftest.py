@@ -5,6 +5,7 @@ from __future__ import annotations
 import cv2
 import numpy as np
 import pytest
+from report.buildings import envelope, rectangle, seasons
 
 from irsurvey.model import (
     Assessment,
@@ -12,6 +13,7 @@ from irsurvey.model import (
     Band,
     BudgetTerm,
     Camera,
+    ChecklistItem,
     ComponentReport,
     ConditionCheck,
     Detectable,
@@ -38,10 +40,6 @@ from irsurvey.model import (
 SHA = "5f2b" * 16
 
 
-def rectangle(left: int, top: int, right: int, bottom: int) -> tuple[tuple[int, int], ...]:
-    return ((left, top), (right, top), (right, bottom), (left, bottom))
-
-
 def budget(*rows: tuple[str, float, float], of: float) -> tuple[BudgetTerm, ...]:
     """Terms of a number with standard uncertainty `of`, from (input, its u, sensitivity) and uncorrelated."""
     return tuple(BudgetTerm(name, u, slope, abs(slope * u), (slope * u / of) ** 2) for name, u, slope in rows)
@@ -65,7 +63,21 @@ def finding(frame: str, label: int, box: tuple[int, int, int, int], **fields: ob
         "reference_heat_flux_w_m2": Estimate(17.9, 4.1),
         "excess_heat_w_m2": Estimate(20.31, 1.6),
         "excess_heat_w": Estimate(8.505, 0.83),
+        "excess_heat_w_k": Estimate(0.4252, 0.0415),
+        "heat_flux_terms_w_m2": {"convection": Estimate(14.12, 2.1), "radiation:mean_radiant": Estimate(24.09, 3.3)},
+        "u_value_w_m2k": Estimate(1.912, 0.23),
+        "u_value_increase_w_m2k": Estimate(1.016, 0.081),
+        "u_value_from_contrast_w_m2k": None,
         "temperature_factor": Estimate(0.721, 0.031),
+        "temperature_factor_at_0_25": Estimate(0.573, 0.041),
+        "dew_point_margin_k": Estimate(5.412, 0.71),
+        "mould_margin_k": Estimate(1.871, 0.74),
+        "condensation_probability": 0.0,
+        "mould_probability": 0.0131,
+        "pressure_change_k": None,
+        "refusals": {
+            "u_value_from_contrast_w_m2k": "no U-value is stated for the element: state u_value_w_m2k and run again"
+        },
         "shape": Shape(2.4, 0.31, ((left + right) / 2, (top + bottom) / 2), (left + 3.0, top + 3.0)),
         "assessments": (
             Assessment(
@@ -107,7 +119,14 @@ def finding(frame: str, label: int, box: tuple[int, int, int, int], **fields: ob
         },
         "indication": Indication(
             "missing or displaced insulation",
-            {"edge_sharpness_per_pixel": 0.31, "elongation": 2.4},
+            "Consistent with missing or displaced insulation; verify by borescope or opening up at one point.",
+            {
+                "edge_sharpness_per_pixel": 0.31,
+                "elongation": 2.4,
+                "changed_with_pressure": 0.0,
+                "plateau_share": 0.83,
+                "gap_to_opening_px": float("nan"),
+            },
             "borescope or opening up at one point",
         ),
         "flags": (),
@@ -198,11 +217,20 @@ def frame(id_: str, **fields: object) -> FrameReport:
             12000,
             0.31,
             Estimate(17.93, 4.1),
+            {"convection": Estimate(6.125, 1.9), "radiation:mean_radiant": Estimate(11.81, 2.9)},
+            Estimate(0.1308, 0.0124),
             Estimate(0.8965, 0.21),
+            Estimate(0.9423, 0.34),
+            {},
             rectangle(15, 20, 90, 220),
         ),
         "findings": (),
         "components": (),
+        "element": None,
+        "room_air": None,
+        "surface_at_risk": (),
+        "strips": (),
+        "pair": None,
         "flags": (),
     }
     return FrameReport(**(values | fields))  # type: ignore[arg-type]
@@ -214,7 +242,7 @@ def report() -> Report:
     wall = frame(
         "F01",
         findings=(
-            finding("F01", 1, (150, 60, 209, 119)),
+            finding("F01", 1, (150, 60, 209, 119), pressure_change_k=Estimate(0.051, 0.11)),
             finding(
                 "F01",
                 2,
@@ -227,9 +255,11 @@ def report() -> Report:
                     Flip("relative_humidity_percent", 9.1, "severe deviation"),
                 ),
                 indication=None,
+                pressure_change_k=Estimate(-1.62, 0.11),
             ),
         ),
         flags=("corner shading",),
+        **envelope(),
     )
     clean = frame("F02", label="Living room, east wall", asset=None, notes="", reference=wall.reference)
     lost = frame(
@@ -311,7 +341,17 @@ def report() -> Report:
                 delta_k=None,
                 mean_delta_k=Estimate(47.2, None),
                 heat_flux_w_m2=None,
+                heat_flux_terms_w_m2={},
+                u_value_w_m2k=None,
+                u_value_increase_w_m2k=None,
                 temperature_factor=None,
+                temperature_factor_at_0_25=None,
+                dew_point_margin_k=None,
+                mould_margin_k=None,
+                condensation_probability=None,
+                mould_probability=None,
+                excess_heat_w_k=None,
+                refusals={},
                 flags=("saturated", "size-limited"),
                 exceeds_threshold=None,
                 budgets={},
@@ -335,11 +375,14 @@ def report() -> Report:
                 "limitations": "North side of the roof was not reached.",
             },
             "camera": {"band_um": [7.5, 13.0]},
+            "element": [{"id": "north-wall", "description": "North wall, solid brick"}],
         },
+        claim="not valid",
+        claim_reason="the frame F03 could not be read",
         conditions_review=(
             ConditionCheck("living-room", "indoor–outdoor air", "≥ 10 K", 20.0, "met", "invented for this test"),
             ConditionCheck("living-room", "wind", "≤ 5 m/s", None, "not recorded", "invented for this test"),
-            ConditionCheck("switch room", "load", "≥ 40 %", 31.0, "not met", "invented for this test"),
+            ConditionCheck("switch room", "load", "≥ 40 %", 31.0, "not met", "invented for this test", "qualitative"),
         ),
         next_visit=(
             NextMeasurement(
@@ -354,6 +397,11 @@ def report() -> Report:
             AssetReport("FB-3", "Feeder board 3", "Switch room", 1, False, "blocked by scaffolding", ()),
         ),
         frames=(wall, clean, lost, board),
+        seasons=seasons(),
+        checklist=(
+            ChecklistItem("client", "simplified report", False, "survey.client"),
+            ChecklistItem("equipment, its make and serial number", "full report", True, "sheets of the frames"),
+        ),
         cautions=("One invented caution.",),
     )
 
@@ -372,7 +420,9 @@ def wall_maps() -> Maps:
     drop = cv2.GaussianBlur((labels == 1) * np.float32(-3) + (labels == 2) * np.float32(-1.6), (0, 0), 1.5)
     reference = np.zeros((240, 320), bool)
     reference[20:221, 15:91] = True
-    return Maps(temperature + drop, labels, reference)
+    change = smooth_noise((240, 320), 0.0, 0.05) + cv2.GaussianBlur((labels == 2) * np.float32(-1.6), (0, 0), 1.5)
+    change[:, :4] = np.nan  # not seen in the other frame
+    return Maps(temperature + drop, labels, reference, change)
 
 
 @pytest.fixture

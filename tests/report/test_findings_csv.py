@@ -86,6 +86,36 @@ def test_how_sure_a_decision_is_stands_beside_it(report: Report, tmp_path: Path)
     assert [rows["S01-1"][name] for name in ("verdict", "outcome")] == ["", "act"]  # no assessment, yet an outcome
 
 
+def test_probabilities_and_the_indication_stand_in_columns_of_their_own(report: Report, tmp_path: Path) -> None:
+    rows = {row["id"] or row["name"]: row for row in written(report, tmp_path)}
+    columns = ("condensation_probability", "mould_probability", "indication")
+    assert [rows["F01-1"][name] for name in columns] == ["0.0", "0.0131", "missing or displaced insulation"]
+    assert [rows["F01-2"][name] for name in columns] == ["0.0", "0.0131", ""]
+    assert [rows["phase 1 lug"][name] for name in columns] == ["", "", ""]
+
+
+def test_a_pattern_that_would_run_is_shown_instead(report: Report, tmp_path: Path) -> None:
+    wall = report.frames[0]
+    assert wall.findings[0].indication
+    attack = replace(wall.findings[0], indication=replace(wall.findings[0].indication, pattern="=1+1"))
+    assert written(replace(report, frames=(replace(wall, findings=(attack,)),)), tmp_path)[0]["indication"] == "'=1+1"
+
+
+def test_every_new_number_of_an_envelope_has_its_columns_and_dicts_have_none() -> None:
+    for name in (
+        "excess_heat_w_k",
+        "u_value_w_m2k",
+        "u_value_increase_w_m2k",
+        "u_value_from_contrast_w_m2k",
+        "temperature_factor_at_0_25",
+        "dew_point_margin_k",
+        "mould_margin_k",
+        "pressure_change_k",
+    ):
+        assert {name, f"u_{name}"} <= set(COLUMNS)
+    assert not {"heat_flux_terms_w_m2", "refusals", "budgets"} & set(COLUMNS)
+
+
 def test_the_columns_are_those_of_the_specification() -> None:
     assert COLUMNS[:6] == ("frame", "id", "key", "kind", "name", "sense")
     assert COLUMNS[-6:] == ("criterion", "class", "urgency", "verdict", "outcome", "flags")

@@ -46,7 +46,8 @@ def test_three_programs_read_the_same_maps(report: Report, board_maps: Maps, tmp
 
 
 def test_exactly_the_named_files_are_written(report: Report, board_maps: Maps, tmp_path: Path) -> None:
-    maps = replace(board_maps, heat_flux=board_maps.temperature_c, u_temperature=board_maps.temperature_c)
+    some = board_maps.temperature_c
+    maps = replace(board_maps, heat_flux=some, u_temperature=some, change=some - np.float32(26))
     folder = frame_files.write(report.frames[3], maps, tmp_path)
     assert sorted(path.name for path in folder.iterdir()) == sorted(frame_files.NAMES)
 
@@ -57,6 +58,13 @@ def test_a_map_of_an_earlier_run_does_not_stay(report: Report, board_maps: Maps,
     assert (folder / f"{kind}.tif").exists()
     frame_files.write(report.frames[3], board_maps, tmp_path)
     assert not (folder / f"{kind}.tif").exists()
+
+
+def test_a_picture_of_changes_of_an_earlier_run_does_not_stay(report: Report, wall_maps: Maps, tmp_path: Path) -> None:
+    folder = frame_files.write(report.frames[0], wall_maps, tmp_path)
+    assert (folder / "change.png").exists()
+    frame_files.write(report.frames[0], replace(wall_maps, change=None), tmp_path)
+    assert not (folder / "change.png").exists()
 
 
 def test_a_picture_that_fails_leaves_nothing_half_written(
@@ -83,4 +91,4 @@ def test_another_colormap_changes_the_picture_alone(report: Report, wall_maps: M
     first = frame_files.write(report.frames[0], wall_maps, tmp_path / "a")
     second = frame_files.write(report.frames[0], wall_maps, tmp_path / "b", colormap="viridis")
     same = [path.name for path in first.iterdir() if path.read_bytes() == (second / path.name).read_bytes()]
-    assert sorted(same) == ["findings.tif", "temperature.tif"]
+    assert sorted(same) == ["change.png", "findings.tif", "temperature.tif"]

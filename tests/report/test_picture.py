@@ -14,8 +14,8 @@ import pytest
 from PIL import Image
 
 from irsurvey.model import FrameReport, Maps, Report
-from irsurvey.report.inks import DARK, LEVELS, LIGHT, UNMEASURABLE, palette
-from irsurvey.report.labels import Label, component_mark, place
+from irsurvey.report.inks import DARK, LEVELS, LIGHT, UNMEASURABLE, lettering, palette
+from irsurvey.report.labels import Label, component_mark, place, strip_mark
 from irsurvey.report.outlines import WIDTH
 from irsurvey.report.picture import (
     MINIMUM_SPAN_K,
@@ -210,6 +210,29 @@ def test_components_are_named_by_letters() -> None:
     ]
 
 
+def test_strips_are_named_by_small_roman_numbers() -> None:
+    assert [strip_mark(n) for n in (1, 2, 3, 4, 5, 9, 14, 40, 99)] == [
+        *("i", "ii", "iii", "iv", "v", "ix", "xiv", "xl", "xcix")
+    ]
+
+
+def test_the_dot_of_a_letter_stays_off_its_stem() -> None:
+    rows = (lettering("i", 15) > LIGHT + 3).any(axis=1)
+    assert rows[0]
+    assert rows[-1]
+    assert not rows.all()
+
+
+def test_a_strip_is_a_line_with_a_bar_at_either_end(wall: FrameReport, wall_maps: Maps) -> None:
+    picture = np.asarray(annotated(replace(wall, findings=()), wall_maps))
+    y = 2 * 150 + 1  # the strip runs along row 150; a pixel is drawn as two, its centre rounded to even
+    along = picture[y - 3 : y + 4, 2 * 110 : 2 * 210]
+    assert (np.sort((along == LIGHT).sum(axis=0)) == 1).all()
+    assert ((along == DARK).sum(axis=0) == 2).all()
+    assert all((picture[y - 5 : y + 3, x - 1 : x + 3] == LIGHT).any(axis=1).all() for x in (2 * 100, 2 * 220))
+    assert has_tag(picture, Label("i", (0, 0, 0, 0), False))
+
+
 def test_the_range_covers_findings_that_percentiles_would_miss() -> None:
     temperature = np.full((480, 640), 20.0, np.float32)
     labels = np.zeros((480, 640), np.uint16)
@@ -287,6 +310,10 @@ def test_the_picture_says_in_words_what_it_shows(board: FrameReport, board_maps:
         "Surface temperatures of frame S01, colour scale 25.9 to 71.1 °C (cividis); outlined findings: 1 (hot); "
         "components: A (phase 1 lug), B (phase 2 lug), C (phase 3 bare bar)."
     )
+
+
+def test_the_picture_names_its_strips_in_words(wall: FrameReport, wall_maps: Maps) -> None:
+    assert "; strips: i (ceiling edge); dashed: reference area." in annotated(wall, wall_maps).info["Description"]
 
 
 def test_another_program_reads_the_same_colours(wall: FrameReport, wall_maps: Maps, tmp_path: Path) -> None:

@@ -51,7 +51,8 @@ def test_a_written_report_is_valid_under_the_schema(
 def test_the_keys_are_those_of_the_records_without_trailing_underscore(report: Report) -> None:
     contents = plain(report)
     assert list(contents) == [
-        *("format", "tool", "survey", "conditions_review", "next_visit", "assets", "frames", "cautions")
+        *("format", "tool", "survey", "claim", "claim_reason", "conditions_review", "next_visit", "assets"),
+        *("frames", "seasons", "checklist", "cautions"),
     ]
     assert contents["frames"][0]["inputs"]["emissivity"] == {
         "value": 0.92,
@@ -73,6 +74,12 @@ def test_the_keys_are_those_of_the_records_without_trailing_underscore(report: R
         (lambda contents: first(contents).update(outcome="cleared"), "'cleared' is not one of"),  # a finding never is
         (lambda contents: first(contents)["assessments"][0].update(verdict="met"), "'met' is not one of"),
         (lambda contents: contents["conditions_review"][0].update(verdict="pass"), "'pass' is not one of"),
+        (lambda contents: contents["conditions_review"][0].update(limits_to="nothing"), "'nothing' is not one of"),
+        (lambda contents: contents.update(claim="fine"), "'fine' is not one of"),
+        (lambda contents: contents["seasons"][0].update(sense="winter"), "'winter' is not one of"),
+        (lambda contents: contents["checklist"][0].update(asked_by="me"), "'me' is not one of"),
+        (lambda contents: contents["frames"][0]["strips"][0].pop("profile"), "'profile' is a required property"),
+        (lambda contents: contents["frames"][0]["pair"].pop("with"), "is not valid under any"),
         (lambda contents: first(contents)["budgets"]["delta_k"][0].pop("share"), "'share' is a required property"),
         (lambda contents: contents["frames"][0]["findings"][0].update(delta_k=3.1), "3.1 is not valid"),
         (lambda contents: contents["frames"][0]["inputs"]["emissivity"].update(value=None), "None is not of type"),
@@ -91,6 +98,13 @@ def test_the_schema_says_units_and_meanings() -> None:
     assert definitions["Finding"]["properties"]["heat_flux_w_m2"]["description"] == "in W/m²"
     assert "per unit of the input" in definitions["BudgetTerm"]["properties"]["sensitivity"]["description"]
     assert "beyond" not in definitions["ConditionCheck"]["properties"]["verdict"].get("description", "")
+    strip, risk = (definitions[name]["properties"] for name in ("StripReport", "SurfaceAtRisk"))
+    assert strip["from"]["description"] == "start of the strip: x, y [px]"
+    assert "inspected" in risk["share"]["description"]
+    assert "variance" in definitions["BudgetTerm"]["properties"]["share"]["description"]
+    assert "without the pressure" in definitions["PairReport"]["properties"]["with"]["description"]
+    for record in ("Finding", "ReferenceReport", "StripReport"):
+        assert "would make it possible" in definitions[record]["properties"]["refusals"]["description"]
     assert definitions["Estimate"]["description"].startswith("A measured number and its standard uncertainty")
 
 
@@ -192,7 +206,7 @@ def test_an_estimate_and_an_input_stand_on_one_line(report: Report) -> None:
     )
 )
 def test_however_lines_are_broken_the_contents_are_the_same(contents: Any) -> None:
-    report = Report(1, {}, {"survey": contents}, (), (), (), (), ())
+    report = Report(1, {}, {"survey": contents}, "not valid", "", (), (), (), (), (), (), ())
     assert json.loads(text(report))["survey"]["survey"] == contents
 
 

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import re
 import tomllib
+from dataclasses import fields
 from importlib.resources import files
 
 import pytest
 
 from irsurvey.analysis.inputs import shown
+from irsurvey.anomalies.cues import Cues
 from irsurvey.assess.conformity import FOUR_WAY, OUTCOMES
 from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.severity import BLOCKERS
@@ -59,8 +61,51 @@ def test_every_input_of_a_budget_has_plain_words(name: str) -> None:
     assert "_" not in words
 
 
+@pytest.mark.parametrize("cue", [field.name for field in fields(Cues)])
+def test_every_cue_of_a_pattern_has_plain_words(cue: str) -> None:
+    assert "_" not in texts.cue(cue)
+    assert cue in TEXTS["cues"]
+
+
+@pytest.mark.parametrize("faced", ["air", "ambient", "indoor_air", "mean_radiant", "outdoor_air", "sky", "ground"])
+def test_whatever_takes_heat_has_plain_words(faced: str) -> None:
+    # what `irsurvey.analysis.exchange` may name: the air on this side, all a surface faces, or sky, haze and ground
+    assert texts.term(f"radiation:{faced}").startswith("to ")
+    assert "by radiation" in texts.term(f"radiation:{faced}")
+
+
+@pytest.mark.parametrize(
+    "flag",
+    ["sunlit", "sky modelled", "sky warmer than air", "humidity by class", "ends still have a gradient"],
+)
+def test_flags_of_an_envelope_are_explained(flag: str) -> None:
+    assert texts.flag(flag) != flag
+
+
+def test_numbers_that_share_their_stem_have_names_of_their_own() -> None:
+    keys = ("u_value_w_m2k", "u_value_simple_w_m2k", "u_value_increase_w_m2k", "u_value_from_contrast_w_m2k")
+    keys += ("excess_heat_w", "excess_heat_w_k", "temperature_factor", "temperature_factor_at_0_25")
+    assert len({texts.name(key) for key in keys}) == len(keys)
+
+
+@pytest.mark.parametrize("key", ["convection_factor", "size_of_source", "selection"])
+def test_a_number_without_unit_says_what_it_is(key: str) -> None:
+    assert re.search(r"factor of|share of", texts.name(key))
+
+
+def test_cautions_about_moisture_and_money_come_where_they_are_told_of() -> None:
+    for told in ("moisture", "season"):
+        (caution,) = set(texts.cautions([told])) - set(texts.cautions([]))
+        assert caution not in texts.cautions(["building"])
+
+
 def test_claims_and_senses_have_words() -> None:
-    assert set(TEXTS["claim"]) == {"quantitative", "qualitative", "not valid"}
+    assert (
+        set(TEXTS["claim"])
+        == set(TEXTS["overall"])
+        == set(TEXTS["kept"])
+        == {"quantitative", "qualitative", "not valid"}
+    )
     assert set(TEXTS["sense"]) == {"hot", "cold"}
 
 

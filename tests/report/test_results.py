@@ -62,12 +62,12 @@ def test_of_a_component_no_such_probability_is_told(report: Report) -> None:
 
 def test_the_number_that_is_judged_comes_first_then_other_differences(wall_finding: Finding) -> None:
     terms = wall_finding.budgets["delta_k"]
-    keys = ("extreme_c", "temperature_factor", "delta_k")
+    keys = ("extreme_c", "temperature_factor_at_0_25", "delta_k")
     finding = replace(wall_finding, budgets=dict.fromkeys(keys, terms))
-    assert [shown.key for shown in budgets(finding)] == ["delta_k", "extreme_c", "temperature_factor"]
+    assert [shown.key for shown in budgets(finding)] == ["delta_k", "extreme_c", "temperature_factor_at_0_25"]
     by_factor = replace(wall_finding.assessments[1], criterion="temperature-factor-de", governs=True)
     finding = replace(finding, assessments=(by_factor,))
-    assert [shown.key for shown in budgets(finding)] == ["temperature_factor", "delta_k", "extreme_c"]
+    assert [shown.key for shown in budgets(finding)] == ["temperature_factor_at_0_25", "delta_k", "extreme_c"]
 
 
 def test_a_number_without_uncertainty_has_no_budget(report: Report) -> None:
@@ -81,7 +81,12 @@ def test_a_line_of_a_budget_has_the_units_of_input_and_number(wall_finding: Find
     # hand-worked from the record: |slope · u| is the contribution, its square over u² = 4.4² the share
     lines = {line.name: line for shown in budgets(wall_finding) for line in shown.lines if shown.key != "delta_k"}
     offset, radiant, factor = (
-        lines[name] for name in ("Camera offset", "Mean radiant temperature", "Film coefficient, factor")
+        lines[name]
+        for name in (
+            "Camera offset",
+            "Mean radiant temperature",
+            "Film coefficient, as a factor of the one calculated",
+        )
     )
     spaces = "\u00a0"
     assert (offset.u, offset.sensitivity, offset.contribution) == (f"0.58{spaces}K", f"6.4{spaces}W/m² per K", "3.7")

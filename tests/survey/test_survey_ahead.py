@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from irsurvey.errors import SurveyError
-from irsurvey.run import load_survey
+from irsurvey.survey.load import Known, load
 
 SURVEY = """
 format = 1
@@ -32,10 +32,17 @@ conditions = { distance_m = 4.0 }
 """
 
 
+KNOWN = Known(criteria=(), convections=(), materials={})
+
+
 def survey(tmp_path, text):
     path = tmp_path / "survey.toml"
     path.write_text(text, "utf-8")
     return path
+
+
+def load_survey(path, *, ahead=False):
+    return load(path, known=KNOWN, ahead=ahead)
 
 
 def test_one_frame_stands_for_each_group_without_any(tmp_path):

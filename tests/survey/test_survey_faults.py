@@ -17,6 +17,9 @@ Faults = Callable[..., tuple[Fault, ...]]
 
 SURFACE = '[[frame.surface]]\nname = "cover plate"\npolygon = [[0, 0], [9, 0], [9, 9]]\n'
 COMPONENT = '[[frame.component]]\nname = "lug"\npolygon = [[0, 0], [9, 0], [9, 9]]\n'
+WALL = '[[element]]\nid = "wall"\n'
+SECOND = '[[frame]]\nid = "F02"\nfile = "f02.tif"\n'
+THIRD = '[[frame]]\nid = "F03"\nfile = "f03.tif"\n'
 GROUP = '[[group]]\nid = "north"\n'
 PLATE = "frame[F01].surface[cover plate]"
 
@@ -150,6 +153,123 @@ APPENDED = {
         "frame[F01].known_rectangle.corners",
         "corners that are not, or three in line",
     ),
+    "outline that crosses itself": (
+        "reference = { polygon = [[0, 0], [10, 10], [10, 0], [0, 10]] }",
+        "frame[F01].reference.polygon",
+        "side 1 from (0, 0) across side 3 from (10, 0)",
+    ),
+    "surface that crosses itself": (
+        '[[frame.surface]]\nname = "x"\npolygon = [[0, 0], [8, 0], [8, 8], [4, -0.4], [0, 8]]',
+        "frame[F01].surface[x].polygon",
+        "side 1 from (0, 0) across side 3 from (8, 8)",
+    ),
+    "unknown element": ('element = "wal"\n' + WALL, "frame[F01].element", "'wal'"),
+    "unknown element of a group": ('[[group]]\nid = "g"\nelement = "wal"\n' + WALL, "group[g].element", "'wal'"),
+    "two elements of one id": (WALL + WALL, "element[wall].id", "2 of it"),
+    "unknown building material": (
+        WALL + 'layers = [{ material = "brik", thickness_m = 0.2 }]',
+        "element[wall].layers[#1].material",
+        "'brik'",
+    ),
+    "layer without thickness": (
+        WALL + 'layers = [{ resistance_m2k_w = 0.1 }, { material = "brick" }]',
+        "element[wall].layers[#2].thickness_m",
+        "nothing",
+    ),
+    "layer of nothing": (
+        WALL + "layers = [{ thickness_m = 0.1, conductivity_w_mk = 1, density_kg_m3 = 1 }]",
+        "element[wall].layers[#1].specific_heat_j_kgk",
+        "nothing",
+    ),
+    "air layer with a thickness": (
+        WALL + "layers = [{ thickness_m = 0.1, resistance_m2k_w = 0.18 }]",
+        "element[wall].layers[#1]",
+        "thickness_m beside it",
+    ),
+    "layers and a mass": (
+        WALL + 'mass = "light"\nlayers = [{ material = "brick", thickness_m = 0.2 }]',
+        "element[wall].mass",
+        "both",
+    ),
+    "a U-value in another unit": (WALL + "u_value_w_m2k = 320", "element[wall].u_value_w_m2k", "320"),
+    "unknown sky model": ('conditions = { sky_model = "swimbank" }', "frame[F01].conditions.sky_model", "'swimbank'"),
+    "humidity class 6": ("conditions = { humidity_class = 6 }", "frame[F01].conditions.humidity_class", "6"),
+    "tilt beyond down": ("conditions = { tilt_deg = 181 }", "frame[F01].conditions.tilt_deg", "181"),
+    "cloud in eighths": ("conditions = { cloud_fraction = 4 }", "frame[F01].conditions.cloud_fraction", "4"),
+    "unheated in a word": (
+        'conditions = { unheated_before = "yes" }',
+        "frame[F01].conditions.unheated_before",
+        '"yes"',
+    ),
+    "strip of one point": (
+        '[[frame.strip]]\nname = "s"\nfrom = [1, 1]\nto = [1, 1]',
+        "frame[F01].strip[s].to",
+        "one point twice",
+    ),
+    "strip of even width": (
+        '[[frame.strip]]\nname = "s"\nfrom = [1, 1]\nto = [1, 9]\nwidth_px = 4',
+        "frame[F01].strip[s].width_px",
+        "4",
+    ),
+    "strip undisturbed nowhere": (
+        '[[frame.strip]]\nname = "s"\nfrom = [1, 1]\nto = [1, 9]\nundisturbed = "none"',
+        "frame[F01].strip[s].undisturbed",
+        '"none"',
+    ),
+    "two strips of one name": (
+        '[[frame.strip]]\nname = "s"\nfrom = [1, 1]\nto = [1, 9]\n' * 2,
+        "frame[F01].strip[s].name",
+        "2 of it",
+    ),
+    "pair with nobody": ('pair = { with = "F1", pressure_pa = 5 }', "frame[F01].pair.with", "'F1'"),
+    "pair with itself": ('pair = { with = "F01", pressure_pa = 5 }', "frame[F01].pair.with", "F01"),
+    "pair without pressure": (
+        f'pair = {{ with = "F02", pressure_pa = 0 }}\n{SECOND}',
+        "frame[F01].pair.pressure_pa",
+        "0",
+    ),
+    "pair whose pressure is not said": (
+        f'pair = {{ with = "F02" }}\n{SECOND}',
+        "frame[F01].pair.pressure_pa",
+        "nothing",
+    ),
+    "pair of two pairs": (
+        f'pair = {{ with = "F02", pressure_pa = 5 }}\n{SECOND}pair = {{ with = "F03", pressure_pa = 9 }}\n{THIRD}',
+        "frame[F01].pair.with",
+        "F02",
+    ),
+    "pair at one pressure": (
+        f'pair = {{ with = "F02", pressure_pa = 5 }}\n{SECOND}conditions = {{ pressure_pa = 5 }}',
+        "frame[F01].pair.with",
+        "F02, at the same 5 Pa",
+    ),
+    "two pressures at once": (
+        f'pair = {{ with = "F02", pressure_pa = 5 }}\nconditions = {{ pressure_pa = 6 }}\n{SECOND}',
+        "frame[F01].pair.pressure_pa",
+        "5",
+    ),
+    "season without degree days": ("[season]\nheating = { efficiency = 0.9 }", "season.heating", "neither"),
+    "season of two origins": (
+        '[season]\nheating = { degree_days_kd = 1, temperatures = "y.csv", base_c = 1 }',
+        "season.heating",
+        "both",
+    ),
+    "temperatures without a base": (
+        '[season]\ncooling = { temperatures = "y.csv" }',
+        "season.cooling.base_c",
+        "nothing",
+    ),
+    "price without a currency": (
+        "[season]\nheating = { degree_days_kd = 1, price_per_kwh = 0.1 }",
+        "season.heating.currency",
+        "nothing",
+    ),
+    "year out of the folder": (
+        '[season]\nheating = { base_c = 15, temperatures = "../y.csv" }',
+        "season.heating.temperatures",
+        "'../y.csv'",
+    ),
+    "season in the wrong place": ("[season]\nefficiency = 0.9", "season.efficiency", "the unknown key efficiency"),
     "raw type nobody stores": ('dtype = "uint24"', "frame[F01].dtype", '"uint24"'),
 }
 REPLACED = {
@@ -163,6 +283,12 @@ REPLACED = {
         "'Europe/Wien'",
     ),
     "a folder as time zone": ('kind = "building"', 'kind = "building"\ntimezone = "Europe"', "survey.timezone", None),
+    "unknown standard": (
+        'kind = "building"',
+        'kind = "building"\nstandards = ["en13187"]',
+        "survey.standards[#1]",
+        None,
+    ),
     "unknown criterion": ('kind = "building"', 'kind = "building"\ncriteria = ["dt"]', "survey.criteria[#1]", "'dt'"),
     "no camera": (
         '[camera]\nband_um = [7.5, 13]\nsignal = { quantity = "apparent-temperature", unit = "K" }\n',
@@ -181,6 +307,7 @@ REPLACED = {
         "nothing",
     ),
     "no unit": (', unit = "K"', "", "camera.signal.unit", "nothing"),
+    "noise that is none": ("[7.5, 13]", "[7.5, 13]\nnoise_k = 50", "camera.noise_k", "50"),
     "no quantity": ('quantity = "apparent-temperature", ', "", "camera.signal.quantity", "nothing"),
     "unknown quantity": ("apparent-temp", "apparant-temp", "camera.signal.quantity", '"apparant-temperature"'),
     "unknown unit": ('unit = "K"', 'unit = "k"', "camera.signal.unit", '"k"'),
@@ -319,6 +446,9 @@ def test_an_unknown_key_names_the_nearest_known_one(
         ("reflected_c = 3", "frame[F01].reflected_c", "conditions"),
         ("min_pixels = 3", "frame[F01].min_pixels", "detection"),
         ("metres = 3", "frame[F01].metres", "known_length"),
+        ("tilt_deg = 3", "frame[F01].tilt_deg", "conditions"),
+        ("pressure_pa = 3", "frame[F01].pressure_pa", "conditions"),
+        ("[season]\nefficiency = 0.9", "season.efficiency", "heating"),
         ("window = { transmittance = 0.9, air_c = 2 }", "frame[F01].window.air_c", "conditions"),
         ('[[group]]\nid = "g"\ndistance_m = 8', "group[g].distance_m", "conditions"),
     ],
@@ -339,6 +469,10 @@ def test_a_key_at_the_wrong_place_is_told_where_it_belongs(
         ('conditions = { convection = "iso6946" }', "iso-6946"),
         ('viewed_from = "outsde"', "outside"),
         ('conditions = { reflected_from = "F1" }', "F01"),
+        ('conditions = { sky_model = "swimbank" }', "swinbank"),
+        ('element = "wal"\n' + WALL, "wall"),
+        (WALL + 'layers = [{ material = "brik", thickness_m = 0.2 }]', "brick"),
+        ('pair = { with = "F1", pressure_pa = 5 }', "F01"),
     ],
 )
 def test_an_unknown_name_names_the_nearest_known_one(text: str, nearest: str, minimal: str, faults_of: Faults) -> None:
@@ -388,6 +522,35 @@ def test_a_fault_causes_no_second_one(minimal: str, faults_of: Faults) -> None:
         + 'group = "north"\ncamera = "camera"\n[[group]]\nid = "north"\nframes = 3\n'
     )
     assert {fault.where for fault in faults_of(text)} == {"camera.band_um", "group[north].frames"}
+
+
+def test_a_fault_of_an_element_is_not_also_an_unknown_element(minimal: str, faults_of: Faults) -> None:
+    text = minimal + 'element = "wall"\n[[element]]\nid = "wall"\nmass = "massive"\n'
+    assert [fault.where for fault in faults_of(text)] == ["element[wall].mass"]
+    strip = minimal + '[[frame.strip]]\nname = "s"\nfrom = [1, 1]\n'
+    assert [fault.where for fault in faults_of(strip)] == ["frame[F01].strip[s].to"]
+
+
+def test_an_outline_that_only_touches_itself_or_goes_round_either_way_is_sound(minimal: str, load_text: Load) -> None:
+    for corners in (
+        "[[0, 0], [9, 0], [9, 9], [0, 9]]",
+        "[[0, 9], [9, 9], [9, 0], [0, 0]]",
+        "[[0, 0], [9, 0], [9, 9], [0, 9], [0, 0]]",  # closed by its first corner
+        "[[0, 0], [9, 0], [9, 9], [5, 0], [0, 9]]",  # a corner on another side
+        "[[0, 0], [9, 0], [9, 9], [5, 5], [1, 9]]",  # a corner that points inward
+    ):
+        assert load_text(f"{minimal}inspect = {{ polygon = {corners} }}\n").tasks[0].inspect is not None
+
+
+def test_only_an_outline_of_up_to_500_corners_is_searched_for_crossings(
+    minimal: str, load_text: Load, faults_of: Faults
+) -> None:
+    crossed = [[0, 0], [10, 10], [10, 0]]
+    around = [[0, 10 + step / 100] for step in range(498)]
+    text = f"{minimal}inspect = "
+    faults = faults_of(f"{text}{{ polygon = {crossed + around[1:]} }}\n")
+    assert [fault.where for fault in faults] == ["frame[F01].inspect.polygon"]
+    assert len(load_text(f"{text}{{ polygon = {crossed + around} }}\n").tasks[0].inspect or ()) == 501
 
 
 def test_an_unknown_key_hides_no_other_fault(minimal: str, faults_of: Faults) -> None:

@@ -30,6 +30,7 @@ EVERYTHING = Path(__file__).with_name("everything.toml").read_text("utf-8")
 FILES = {
     "tables/frames.csv": "file,conditions.distance_m\nframes/t1.tif,3.5\n",
     "tables/logger.csv": "time,air_c,battery\n2026-01-18T07:00,20,3.1\n2026-01-18T08:00,26,3.0\n",
+    "tables/year.csv": "time,outdoor_air_c\n2025-01-01,20\n2025-07-01,16\n2026-01-01,20\n",
     "north/f10.tif": "",
     "north/f02.tif": "",
     "north/f03.tif": "",
@@ -65,7 +66,7 @@ def test_the_example_states_every_key_that_the_schema_knows() -> None:
 
 
 def test_frames_are_listed_ones_then_table_rows_then_globbed_ones_sorted(survey: Survey) -> None:
-    assert [task.id for task in survey.tasks] == ["F01", "F03", "P01", "t1", "f02", "f10"]
+    assert [task.id for task in survey.tasks] == ["F01", "F04", "F03", "P01", "t1", "f02", "f10"]
 
 
 def test_a_listed_frame_whose_file_a_glob_finds_is_that_group_s_and_not_a_second_one(survey: Survey) -> None:
@@ -80,6 +81,14 @@ def test_the_survey_carries_its_texts_and_assets(survey: Survey) -> None:
         "Europe/Vienna",
     )
     assert dict(survey.about)["notes"] == "<b>windy</b> & cold"
+    texts = ("standard", "test_description", "supplementary", "influences", "signed_by")
+    assert [dict(survey.about)[name] for name in texts] == [
+        "EN 13187, simplified",
+        "from inside, room by room",
+        "moisture meter behind the sink",
+        "sun in the afternoon before",
+        "B. Signatory",
+    ]
     assert survey.assets == (
         Asset("W-N-01", "North wall", "Living room", 2),
         Asset("W-N-02", not_inspected="blocked by scaffolding"),
@@ -109,6 +118,14 @@ def test_conditions_are_si_with_stated_uncertainty_and_source(survey: Survey) ->
         ("outdoor_24h_high", 277.15, 1.0),
         ("wind", 2.0, 0.2),
         ("ambient", 295.15, 0.6),
+        ("tilt", radians(80), radians(2)),
+        ("indoor_humidity", 0.5, 0.02),
+        ("outdoor_humidity", 0.75, 0.03),
+        ("cloud", 0.25, 0.1),
+        ("total_emissivity", 0.9, 0.03),
+        ("hours_difference_held", 86_400.0, 1800 / sqrt(3)),
+        ("hours_steady", 21_600.0, 1800 / sqrt(3)),
+        ("hours_furniture_clear", 7_200.0, 1800 / sqrt(3)),
         ("mean_radiant", 293.15, 0.8),
         ("ground", 276.15, 2.0),
         ("sky", 248.15, 4.0),
@@ -161,6 +178,7 @@ def test_a_group_overrides_the_survey_and_says_so(survey: Survey) -> None:
     assert task.detection == Detection(1.0, 25, 0.01)
     assert task.scene["emissivity"] == Quantity("emissivity", 0.93, 0.02, "material table", 0.001, 1.0, "rectangular")
     assert [surface.name for surface in task.surfaces] == ["pane"]
+    assert (task.element.id, task.orientation) == ("north-wall", "north")
     assert task.reference == ((10.0, 10.0), (60.0, 10.0), (60.0, 60.0))
 
 
@@ -296,7 +314,7 @@ def test_what_is_assumed_is_listed_with_the_frames_it_concerns(survey: Survey) -
     notices = "\n".join(survey.notices)
     assert "temperature of the window not stated: that of the air assumed (group north)" in notices
     assert "load not recorded: nothing can be cleared for bare bar (group panel)" in notices
-    assert "raw file missing: the frame will fail (F01, P01, t1)" in notices
+    assert "raw file missing: the frame will fail (F01, F04, P01, t1)" in notices
     assert "photograph missing (F01)" in notices
     assert "ifov_mrad of tele not stated: no spot size, no area (group north)" in notices
     assert "emissivity not stated" not in notices

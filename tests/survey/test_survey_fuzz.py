@@ -18,10 +18,21 @@ from irsurvey.model import Survey
 from irsurvey.survey.load import Known, load, schema
 
 EVERYTHING = Path(__file__).with_name("everything.toml").read_text("utf-8")
+
+
+def summed(*readings: Any) -> float:
+    """Any number will do for degree days."""
+    return float(abs(readings[1] - readings[2]).sum())
+
+
 KNOWN = Known(
     ("building-delta-t", "temperature-factor"),
     ("iso-6946", "churchill-chu"),
     dict.fromkeys(("plaster", "brick", "glass", "steel", "copper"), (0.9, 0.02)),
+    ("en-13187", "astm-c1060"),
+    dict.fromkeys(("berdahl-martin", "swinbank"), 5.0),
+    dict.fromkeys(("brick", "gypsum plaster"), (1.0, 1000.0, 1000.0)),
+    summed,
 )
 KEYS = sorted({key for table in [schema(), *schema()["$defs"].values()] for key in table.get("properties", {})})
 
@@ -87,7 +98,11 @@ def outcome(data: bytes, csv: bytes = b"") -> Survey | SurveyError:
         (Path(name) / "north" / "f03.tif").touch()
         (Path(name) / "tables").mkdir()
         (Path(name) / "tables" / "frames.csv").write_text("file,conditions.distance_m\nt.tif,3\n")
-        (Path(name) / "tables" / "logger.csv").write_text("time,air_c\n2026-01-18T07:00,3\n2026-01-18T08:00,4\n")
+        (Path(name) / "tables" / "logger.csv").write_text(
+            "time,air_c,indoor_air_c,outdoor_air_c,irradiance_w_m2,rain_mm\n"
+            "2026-01-17T07:00,3,20,1,200,0.4\n2026-01-18T07:00,3,21,1,0,0\n2026-01-18T08:00,4,21,1,0,0\n"
+        )
+        (Path(name) / "tables" / "year.csv").write_text("time,outdoor_air_c\n2025-01-01,3\n2025-12-31,4\n")
         try:
             found: Survey | SurveyError = load(path, known=KNOWN)
         except SurveyError as error:
@@ -145,7 +160,15 @@ def test_any_bytes_at_all(data: bytes) -> None:
 
 @settings(max_examples=120, deadline=None)
 @given(
-    header=st.lists(st.one_of(st.sampled_from(["file", "time", "air_c", "surface", "taken"]), text), max_size=5),
+    header=st.lists(
+        st.one_of(
+            st.sampled_from(
+                ["file", "time", "air_c", "outdoor_air_c", "rain_mm", "surface", "strip", "pair.with", "taken"]
+            ),
+            text,
+        ),
+        max_size=5,
+    ),
     body=text,
 )
 def test_any_table_and_log(header: list[str], body: str) -> None:
@@ -154,5 +177,6 @@ def test_any_table_and_log(header: list[str], body: str) -> None:
         'frame_table = "t.csv"\n[survey]\ntitle = "T"\nkind = "building"\n[camera]\nband_um = [8, 14]\n'
         'signal = { quantity = "counts", gain = 1 }\n'
         '[conditions]\nlog = "t.csv"\nair_c = 1\nreflected_c = 1\ndistance_m = 1\n'
+        '[season]\nheating = { base_c = 15, temperatures = "t.csv" }\n'
     )
     outcome(head.encode("utf-8"), csv)

@@ -19,7 +19,7 @@ from irsurvey.survey.load import Known, load
 
 LEVELS = ("survey", "group", "frame")
 CAMERA = 'camera = { band_um = [8, 14], signal = { quantity = "apparent-temperature", unit = "C" } }\n'
-KNOWN = Known((), ("iso-6946",), {"brick": (0.93, 0.02), "copper": (0.1, 0.05)})
+KNOWN = Known((), ("iso-6946",), {"brick": (0.93, 0.02), "copper": (0.1, 0.05)}, sky_models={"swinbank": 6.0})
 
 Load = Callable[..., Survey]
 
@@ -141,6 +141,57 @@ def test_surfaces_of_the_target_s_material_move_with_the_target(minimal: str, lo
     assert names == ["emissivity", "emissivity:copper", "emissivity:copper"]
 
 
+TOTAL = "total_emissivity"
+
+
+@pytest.mark.parametrize(
+    ("survey", "frame", "expected"),
+    [
+        ("emissivity = 0.9", "", (0.9, "emissivity", "default")),
+        ("emissivity = 0.9\nemissivity_total = 0.84", "", (0.84, None, "survey")),
+        ("emissivity = 0.9\nemissivity_total = 0.84", "emissivity_total = 0.8", (0.8, None, "frame")),
+        # what a level above says of the total is not true of another surface
+        ("emissivity = 0.9\nemissivity_total = 0.84", "emissivity = 0.3", (0.3, "emissivity", "default")),
+        ("emissivity = 0.9\nemissivity_total = 0.84", 'material = "brick"', (0.93, "emissivity", "default")),
+        ("emissivity_total = 0.84", "", (0.84, None, "survey")),
+    ],
+)
+def test_the_total_emissivity_is_that_of_the_band_unless_stated_where_that_is(
+    survey: str, frame: str, expected: tuple[float, str | None, str], minimal: str, load_text: Load
+) -> None:
+    scene = scene_of(load_text, f"{minimal}target = {{ {frame} }}\n[target]\n{survey}\n")
+    assert (scene[TOTAL].value, scene[TOTAL].follows, scene[TOTAL].source) == expected
+    assert scene[TOTAL].u == pytest.approx(0.02 if expected[1] else 0.05 / sqrt(3), rel=1e-12)  # defaults.toml
+
+
+def test_every_emissivity_has_a_total_one_of_its_name(minimal: str, load_text: Load) -> None:
+    area = "polygon = [[0, 0], [1, 0], [1, 1]]\n"
+    stated = {
+        "a": 'material = "copper"',
+        "b": 'material = "copper"\nemissivity_total = 0.2',
+        "c": "emissivity_total = 0.84",
+        "d": "emissivity = 0.5",
+        "e": "",
+    }
+    text = "".join(f'[[frame.surface]]\nname = "{name}"\n{own}\n{area}' for name, own in stated.items())
+    task = load_text(minimal + text).tasks[0]
+    names = [surface.emissivity for surface in task.surfaces]
+    assert names == ["emissivity:copper", "emissivity:b", "emissivity:c", "emissivity:d", "emissivity"]
+    total = [(task.scene[f"total_{name}"].value, task.scene[f"total_{name}"].follows) for name in names]
+    assert total == [
+        (0.1, "emissivity:copper"),
+        (0.2, None),
+        (0.84, None),
+        (0.5, "emissivity:d"),
+        (0.93, "emissivity"),
+    ]
+    # stated is only the total one: in the band the surface is as the target, and goes with it
+    band = task.scene["emissivity:c"]
+    assert (band.value, band.u, band.follows) == (0.93, 0.0, "emissivity")
+    in_band = {name for name in task.scene.values() if name.partition(":")[0] == "emissivity"}
+    assert {f"total_{name}" for name in in_band} == {n for n in task.scene.values() if n.startswith("total_")}
+
+
 def test_different_emissivities_never_share_a_name(minimal: str, load_text: Load) -> None:
     part = '[[frame.component]]\nname = "{}"\ngroup = "lugs"\nemissivity = {}\npolygon = [[0, 0], [1, 0], [1, 1]]\n'
     text = minimal + part.format("a", 0.9) + part.format("b", 0.8) + part.format("lugs", 0.7)
@@ -239,7 +290,8 @@ def test_every_key_of_uncertainty_has_a_default_or_one_in_another_unit() -> None
 
     in_fractions = {"distance_m": "distance_fraction", "wind_m_s": "wind_fraction"}
     in_fractions |= {"known_length_m": "known_length_fraction"}
-    keys = {in_fractions.get(key, key) for key in Uncertainty.model_fields if key != "correlations"}
+    without = {"correlations", "sky_model_k"}  # a sky model has its own
+    keys = {in_fractions.get(key, key) for key in Uncertainty.model_fields if key not in without}
     assert keys <= set(defaults("stated"))
 
 
@@ -249,15 +301,21 @@ def test_no_stated_uncertainty_key_is_without_effect(minimal: str, load_text: Lo
     rich = minimal.replace(
         "air_c = 20",
         "air_c = 20\nindoor_air_c = 1\noutdoor_air_c = 1\noutdoor_24h_c = [0, 1]\nwind_m_s = 2\nambient_c = 3\n"
-        "mean_radiant_c = 3\nground_c = 1\nsky_c = 1\nirradiance_w_m2 = 100\npressure_pa = 4\nlog = 'log.csv'",
+        "mean_radiant_c = 3\nground_c = 1\nsky_c = 1\nirradiance_w_m2 = 100\npressure_pa = 4\nlog = 'log.csv'\n"
+        "indoor_relative_humidity_percent = 1\noutdoor_relative_humidity_percent = 1\ncloud_fraction = 0",
     ).replace("[camera]", "[camera]\nifov_mrad = 1") + (
         "window = { transmittance = 0.8, reflectance = 0.1, temperature_c = 20, ambient_c = 20 }\n"
         "known_length = { from = [0, 0], to = [1, 1], metres = 2 }\n"
+        'element = "wall"\n'
         '[[frame.surface]]\nrole = "known-temperature"\ntemperature_c = 20\npolygon = [[0, 0], [1, 0], [1, 1]]\n'
+        '[[frame]]\nid = "out"\nfile = "b.tif"\nviewed_from = "outside"\nconditions = { sky_model = "swinbank" }\n'
+        '[[element]]\nid = "wall"\nu_value_w_m2k = 0.3\n'
     )
     files = {"log.csv": "time,sky_c\n2026-01-01T00:00,0\n"}
-    before = load_text(rich, files).tasks[0].scene
+    unstated = rich.replace("mean_radiant_c = 3\n", "").replace("sky_c = 1\n", "")  # so that the sky is modelled
     for key in Uncertainty.model_fields.keys() - {"correlations"}:  # not one number; it has tests of its own
-        after = load_text(f"{rich}[uncertainty]\n{key} = 0.0123\n", files).tasks[0].scene
+        text, number = (unstated, 1) if key == "sky_model_k" else (rich, 0)
+        before = load_text(text, files).tasks[number].scene
+        after = load_text(f"{text}[uncertainty]\n{key} = 0.0123\n", files).tasks[number].scene
         assert before.values() == after.values(), key
         assert before != after, key

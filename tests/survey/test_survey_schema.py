@@ -46,6 +46,7 @@ def places(value: Any, place: tuple[Any, ...] = ()) -> Iterator[tuple[Any, ...]]
             yield from places(inner, (*place, index))
 
 
+OF_A_SEASON = ("degree_days", "efficiency", "price")
 FREE = {("cameras",), ("circuit", 0, "load_a")}
 """Tables whose keys are names: of cameras, of phases."""
 
@@ -73,6 +74,17 @@ def test_the_schema_rejects_an_unknown_key_in_every_table(place: tuple[Any, ...]
         (("frame", 0, "reference"), "manual"),
         (("cameras", "wide", "signal", "quantity"), "radiance"),
         (("uncertainty", "air_k"), {"half_width": -1}),
+        (("cameras", "wide", "noise_k"), 5.1),
+        (("conditions", "tilt_deg"), 181),
+        (("conditions", "cloud_fraction"), 1.1),
+        (("conditions", "humidity_class"), 6),
+        (("conditions", "unheated_before"), 1),
+        (("element", 0, "mass"), "massive"),
+        (("element", 0, "u_value_w_m2k"), 0),
+        (("element", 0, "layers", 0, "thickness_m"), 0),
+        (("frame", 0, "strip", 0, "undisturbed"), "none"),
+        (("frame", 0, "pair", "pressure_pa"), None),
+        (("season", "heating", "degree_days_kd"), -1),
         (("uncertainty", "correlations", 0, "coefficient"), 1.01),
         (("uncertainty", "correlations", 0, "between"), ["air_c", "air_c"]),
         (("uncertainty", "correlations", 0, "between"), ["air_c"]),
@@ -107,5 +119,10 @@ def test_known_defaults_are_listed() -> None:
     assert definitions["Uncertainty"]["properties"]["size_of_source_fraction"]["default"] == {"half_width": 1.0}
     assert definitions["Uncertainty"]["properties"]["correlations"]["default"] == []
     assert definitions["Detection"]["properties"]["min_pixels"]["default"] == 25
+    assert definitions["Conditions"]["properties"]["tilt_deg"]["default"] == 90
+    assert definitions["Conditions"]["properties"]["sky_model"]["default"] == "berdahl-martin"
+    assert definitions["Strip"]["properties"]["width_px"]["default"] == 5
+    shares = [definitions["OneSeason"]["properties"][f"{of}_fraction"]["default"] for of in OF_A_SEASON]
+    assert shares == [0.10, 0.05, 0.10]
     assert schema()["required"] == ["survey"]
     assert definitions["About"]["required"] == ["title"]

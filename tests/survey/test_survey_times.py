@@ -96,11 +96,14 @@ def test_outside_its_span_a_log_is_not_extrapolated(minimal: str, load_text: Loa
     files = {"log.csv": "time,air_c,wind_m_s\n2026-01-18T07:00,10,1\n2026-01-18T08:00,12,2\n"}
     late = logged(minimal, "2026-01-18T08:00:01")
     fault = faults_of(late, files)[0]
-    assert (fault.where, fault.got) == ("conditions.air_c", "nothing")
+    span = "2026-01-18T07:00:00+01:00 to 2026-01-18T08:00:00+01:00"
+    got = f"nothing: log.csv, {span}, does not reach to 2026-01-18T08:00:01+01:00"
+    assert (fault.where, fault.got) == ("conditions.air_c", got)
     survey = load_text(late.replace("reflected_c", "air_c = 20\nreflected_c"), files)
     assert survey.tasks[0].scene["air"].source == "survey"
     assert "wind" not in survey.tasks[0].scene
-    assert any("log.csv does not reach to this time: air_c, wind_m_s" in notice for notice in survey.notices)
+    told = f"log.csv does not reach to this time: air_c, wind_m_s not taken from it, {span} (all frames)"
+    assert told in survey.notices
 
 
 def test_a_gap_in_one_column_is_bridged_by_that_column_s_own_rows(minimal: str, load_text: Load) -> None:
@@ -108,6 +111,41 @@ def test_a_gap_in_one_column_is_bridged_by_that_column_s_own_rows(minimal: str, 
     scene = load_text(logged(minimal, "2026-01-18T08:00:00"), {"log.csv": rows}).tasks[0].scene
     assert scene["air"].value == pytest.approx(285.15, abs=1e-9)  # rounding at 300 K
     assert scene["wind"].value == 2.5  # a decimal comma where cells are separated by semicolons
+
+
+def test_a_required_condition_that_a_frame_without_a_time_cannot_have_from_its_log_says_so(
+    minimal: str, faults_of: Faults
+) -> None:
+    text = minimal.replace("air_c = 20", 'log = "log.csv"')
+    (fault,) = faults_of(text, {"log.csv": "time,air_c\n2026-01-18T07:00,10\n"})
+    assert fault.where == "conditions.air_c"
+    assert fault.got == "nothing: log.csv is not used, as the frame states no time"
+
+
+@pytest.mark.parametrize(
+    ("hours", "value", "told"),
+    [
+        # the frame is in the middle between two readings, 10 and 20 °C; one hour apart is continuous (house rule)
+        (1.0, 15.0, None),
+        (1.1, 15.0, "straight lines assumed"),
+        (6.0, 15.0, "straight lines assumed"),
+        (6.1, None, "air_c not taken from it"),
+    ],
+)
+def test_a_gap_over_an_hour_is_told_and_one_over_six_is_not_bridged(
+    hours: float, value: float | None, told: str | None, minimal: str, load_text: Load
+) -> None:
+    middle = datetime(2026, 1, 18, 12, tzinfo=UTC)
+    before, after = (middle + timedelta(hours=sign * hours / 2) for sign in (-1, 1))
+    rows = f"time,air_c\n{before.isoformat()},10\n{after.isoformat()},20\n"
+    text = f'{minimal}taken = {middle.isoformat()}\nconditions = {{ log = "log.csv" }}\n'
+    survey = load_text(text.replace("air_c = 20", "air_c = 5"), {"log.csv": rows})
+    expected = 5.0 if value is None else value
+    # 1e-9 K: rounding at 300 K
+    assert survey.tasks[0].scene["air"].value == pytest.approx(273.15 + expected, abs=1e-9)
+    notices = [notice for notice in survey.notices if "log.csv" in notice]
+    gap = f"log.csv has no air_c from {before.isoformat()} to {after.isoformat()}: {told} (all frames)"
+    assert notices == ([gap] if told else [])
 
 
 def test_without_a_time_zone_local_times_are_utc_and_that_is_listed(minimal: str, load_text: Load) -> None:

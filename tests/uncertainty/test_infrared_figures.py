@@ -94,9 +94,12 @@ def test_first_order_and_monte_carlo_agree_on_every_number_of_an_ordinary_frame(
     budget, drawn = propagate(model, plan.scene), monte_carlo(model, plan.scene, seed=1, draws_at_most=20_000)
     assert len(plan.anomalies) == 5
     assert budget.values == pytest.approx(drawn.values, rel=1e-12)
-    # 1.5 % are three sd of u at 20,000 draws; the rest is the curvature of an area, square of 2 ± 0.05 m.
-    assert drawn.u == pytest.approx(budget.u, rel=0.02)
-    assert not differ(budget, drawn).any()
+    # 1.5 % are three sd of u at 20,000 draws; the rest is the curvature of an area, square of 2 ± 0.05 m.  A convective
+    # term is a film of ± 25 % times a difference that is as uncertain: √(1 + 0.25²) is 3 % more than first order.
+    is_product = np.array([name == "flux:convection" for _, name in names(plan.plan, plan.scene)])
+    assert drawn.u[~is_product] == pytest.approx(budget.u[~is_product], rel=0.02)
+    assert drawn.u[is_product] == pytest.approx(budget.u[is_product], rel=0.045)
+    assert not differ(budget, drawn)[~is_product].any()
     assert (drawn.missing == 0).all()
 
 

@@ -1,0 +1,68 @@
+"""The picture of what pressure changed: differences of two frames in colour, the changes outlined in one ink."""
+
+from __future__ import annotations
+
+from math import ceil
+from typing import TYPE_CHECKING
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from irsurvey.model import FrameReport
+from irsurvey.numbers import decimals
+from irsurvey.report import outlines, picture, scale
+from irsurvey.report.inks import UNMEASURABLE, palette
+from irsurvey.report.labels import Label, change_mark, place
+
+if TYPE_CHECKING:
+    from PIL import Image
+
+COLORMAP = "PuOr_r"
+"""Diverging, its middle almost white: no change; told apart by colour-blind readers (Brewer & Harrower, 2003)."""
+LEAST_SPAN_K = 1.0
+"""Either end of a scale is at least this far from nought, so that noise does not look like a change."""
+
+
+def changed(frame: FrameReport, change: NDArray[np.float32]) -> Image.Image:
+    """Differences with pressure minus without [K], NaN where the frames do not overlap, as a palette image."""
+    end = display_end(change)
+    factor = picture.enlargement(change.shape)
+    canvas = picture.enlarged(picture.shades(change, -end, end), factor)
+    if (canvas == UNMEASURABLE).any():
+        picture.hatch(canvas)
+    changes = frame.pair.changes if frame.pair else ()
+    busy = np.zeros(canvas.shape, dtype=np.int32)
+    for one in changes:
+        corners = picture.corners(one.polygon, factor)
+        cv2.fillPoly(busy, [corners], 1)
+        outlines.along_polygon(canvas, corners)
+    labels = [
+        Label(change_mark(number), picture.box(one.polygon, factor), True)
+        for number, one in enumerate(changes[: picture.NUMBERED], 1)
+    ]
+    for tag, (x, y) in place(labels, busy):
+        canvas[y : y + tag.shape[0], x : x + tag.shape[1]] = tag
+    beyond = bool((change < -end).any()), bool((change > end).any())
+    strip = scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), -end, end, beyond, unit="K")
+    image = picture.side_by_side(canvas, strip)
+    image.putpalette(palette(COLORMAP))
+    image.info["Description"] = _in_words(frame, end)
+    return image
+
+
+def display_end(change: NDArray[np.float32]) -> float:
+    """Either end of the scale [K] from nought: the 99.5th percentile of |change|, rounded up to 0.1 K."""
+    finite = np.abs(change[np.isfinite(change)])
+    most = float(np.percentile(finite, 99.5)) if finite.size else 0.0
+    return max(LEAST_SPAN_K, ceil(most * 10) / 10)
+
+
+def _in_words(frame: FrameReport, end: float) -> str:
+    """What the picture shows, for those who cannot see it."""
+    with_ = frame.pair.with_ if frame.pair else ""
+    changes = frame.pair.changes if frame.pair else ()
+    listed = ", ".join(f"{change_mark(n)} ({one.sense})" for n, one in enumerate(changes, 1))
+    ends = f"colour scale {decimals(-end, 1)} to {decimals(end, 1)} K ({COLORMAP})"
+    drawn = f"outlined changes: {listed}" if listed else "no changes"
+    return f"Change of surface temperature from frame {with_} to frame {frame.id}, {ends}; {drawn}."

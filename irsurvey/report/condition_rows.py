@@ -1,0 +1,57 @@
+"""The conditions of a survey as rows of a table: what was recorded, what it leaves to be claimed, what to record."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+from irsurvey import numbers
+from irsurvey.assess.conditions import requirement_sets
+from irsurvey.model import ConditionCheck
+from irsurvey.report import texts
+
+_ASSUMED = " (assumed)"
+"""What a check ends in that is asked under circumstances nobody recorded."""
+_WORST_FIRST = ("not met", "not recorded", "met")
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """One requirement and all groups that it found alike: what was recorded there, what to write down next time."""
+
+    check: ConditionCheck
+    groups: str
+    recorded: str
+    to_record: str
+    leaves: str
+
+
+def rows(review: tuple[ConditionCheck, ...]) -> tuple[Row, ...]:
+    """The rows of a review, what is not met first; groups that fared alike share one."""
+    alike: dict[ConditionCheck, list[ConditionCheck]] = {}
+    for check in review:
+        alike.setdefault(replace(check, group="", value=None), []).append(check)
+    groups = {check.group for check in review}
+    ordered = sorted(alike.values(), key=lambda same: _WORST_FIRST.index(same[0].verdict))
+    return tuple(_row(same, len(groups)) for same in ordered)
+
+
+def _row(same: list[ConditionCheck], groups: int) -> Row:
+    check = same[0]
+    known = {one.check: one for group in requirement_sets() for one in group.requirements}
+    requirement = known.get(check.check.removesuffix(_ASSUMED))
+    values = sorted(one.value for one in same if one.value is not None)
+    ends = dict.fromkeys(numbers.number(value, 3) for value in (values[:1] + values[-1:]))
+    return Row(
+        check,
+        groups=_listed([one.group for one in same], groups),
+        recorded=numbers.with_symbol(" to ".join(ends) or numbers.NOTHING, requirement.unit if requirement else ""),
+        to_record=((requirement and requirement.stated_by) or check.check) if check.verdict == "not recorded" else "",
+        leaves=texts.kept(check.limits_to),
+    )
+
+
+def _listed(named: list[str], groups: int) -> str:
+    """Groups by name, "all" where it is all of several; a frame outside every group has none."""
+    if len(set(named)) == groups > 1:
+        return "all"
+    return ", ".join(name for name in dict.fromkeys(named) if name)

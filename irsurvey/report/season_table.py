@@ -1,0 +1,187 @@
+"""What it costs: energy and money of a season as a table an owner can read."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
+
+from irsurvey import numbers
+from irsurvey.model import Estimate, Finding, Report, SeasonReport, SeasonRow
+from irsurvey.report import texts
+
+_SMALL_KWH = 1.0
+"""Several findings that surely take less a season share one line."""
+_NOT_MEASURED = "not measured: its U-value as stated"
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """One row in words; `finding` and `frame` are the ids it links to, where it has any."""
+
+    what: str
+    note: str
+    where: str
+    energy: str
+    cost: str
+    finding: str | None = None
+    frame: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Part:
+    """Rows of one kind with their total."""
+
+    heading: str
+    first: str  # headings of the first two columns
+    second: str
+    lines: tuple[Line, ...]
+    total: Line | None
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """One season."""
+
+    sense: str
+    heading: str
+    basis: str
+    has_cost: bool
+    parts: tuple[Part, ...]
+
+
+def tables(report: Report) -> tuple[Table, ...]:
+    """A table for each season that was estimated."""
+    return tuple(_table(report, season) for season in report.seasons if season.findings or season.elements)
+
+
+def notes(shown: tuple[Table, ...]) -> tuple[str, ...]:
+    """How to read these tables, in sentences."""
+    told = [table.sense for table in shown] + ["estimate", "plus_minus", "twice"]
+    told += ["both"] if any(len(table.parts) > 1 for table in shown) else []
+    told += ["price"] if any(table.has_cost for table in shown) else []
+    return tuple(texts.owner(note) for note in told)
+
+
+def in_short(report: Report) -> dict[str, str]:
+    """Finding id → what it costs in half a sentence, in the season in which it takes most."""
+    rows = [(row, season) for season in report.seasons for row in season.findings if _energy(row) != numbers.NOTHING]
+    rows.sort(key=lambda entry: entry[0].energy_kwh.value if entry[0].energy_kwh else 0.0)
+    told = {}
+    for row, season in rows:
+        cost = _cost(row, season)
+        price = f" ({cost})" if cost != numbers.NOTHING else ""
+        told[row.of] = f"in a {texts.season(season.sense).lower()} season {_energy(row)}{price}"
+    return told
+
+
+def _table(report: Report, season: SeasonReport) -> Table:
+    findings = {finding.id: finding for frame in report.frames for finding in frame.findings}
+    labels = {frame.id: frame.label for frame in report.frames}
+    described = _descriptions(report.survey.get("element"))
+    small = [row for row in season.findings if _is_small(row)]
+    kept = season.findings if len(small) < 2 else [row for row in season.findings if not _is_small(row)]
+    lines = [_of_finding(row, season, findings.get(row.of), labels.get(row.frame or "", "")) for row in kept]
+    if len(small) > 1:
+        lines.append(_gathered(small, season))
+    whole = tuple(
+        _line(row, season, described.get(row.of, row.of), where=labels.get(row.frame or "", _NOT_MEASURED))
+        for row in season.elements
+    )
+    return Table(
+        sense=season.sense,
+        heading=f"{texts.season(season.sense)} season",
+        basis=_basis(season),
+        has_cost=season.price is not None,
+        parts=tuple(
+            part
+            for part in (
+                Part(
+                    *("Extra heat of single places", "Place", "Where"),
+                    tuple(lines),
+                    _total(season.findings_total, season),
+                ),
+                Part(
+                    *("All heat through parts of the building", "Part", "Measured at"),
+                    whole,
+                    _total(season.elements_total, season),
+                ),
+            )
+            if part.lines
+        ),
+    )
+
+
+def _line(row: SeasonRow, season: SeasonReport, what: str, where: str = "") -> Line:
+    return Line(what, "", where, _energy(row), _cost(row, season), frame=row.frame)
+
+
+def _of_finding(row: SeasonRow, season: SeasonReport, finding: Finding | None, where: str) -> Line:
+    """A finding in an owner's words: a colder patch, and what it is consistent with."""
+    line = _line(row, season, row.of, where)
+    if finding is None:
+        return line
+    note = texts.pattern(finding.indication.pattern) if finding.indication else ""
+    return replace(line, what=f"{texts.sense(finding.sense).capitalize()} patch {row.of}", note=note, finding=row.of)
+
+
+def _is_small(row: SeasonRow) -> bool:
+    """Whether a row is surely too small for an owner to care."""
+    energy = row.energy_kwh
+    return bool(energy and energy.u is not None and energy.value + numbers.COVERAGE_FACTOR * energy.u < _SMALL_KWH)
+
+
+def _gathered(small: list[SeasonRow], season: SeasonReport) -> Line:
+    """All rows that are too small to stand alone; their sum without ±, which only the total has."""
+    energy, cost = (
+        sum(estimate.value for row in small if (estimate := getattr(row, name))) for name in ("energy_kwh", "cost")
+    )
+    return Line(
+        f"{len(small)} places that take less than {numbers.number(_SMALL_KWH)} kWh each",
+        "",
+        "",
+        f"about {numbers.with_symbol(numbers.number(energy, 2), 'kWh')}",
+        f"about {numbers.with_symbol(numbers.number(cost, 2), season.currency)}",
+    )
+
+
+def _total(row: SeasonRow | None, season: SeasonReport) -> Line | None:
+    return _line(row, season, "Together") if row else None
+
+
+def _energy(row: SeasonRow) -> str:
+    return _amount(row.energy_kwh, row, "kWh")
+
+
+def _cost(row: SeasonRow, season: SeasonReport) -> str:
+    return _amount(row.cost, row, season.currency)
+
+
+def _amount(estimate: Estimate | None, row: SeasonRow, symbol: str) -> str:
+    told = numbers.magnitude(estimate) if row.order_of_magnitude else numbers.shown(estimate)
+    return numbers.with_symbol(told, symbol)
+
+
+def _descriptions(elements: object) -> dict[str, str]:
+    """Element id → its description, as the survey file has it."""
+    listed: Iterable[object] = elements if isinstance(elements, list) else ()
+    return {
+        str(element["id"]): str(element["description"])
+        for element in listed
+        if isinstance(element, dict) and element.get("id") and element.get("description")
+    }
+
+
+def _basis(season: SeasonReport) -> str:
+    """What the estimate rests on, in a sentence or two."""
+    days = numbers.shown(season.degree_days_kd)
+    performance = (
+        f"{numbers.percent(season.efficiency)} efficiency of the heating"
+        if season.sense == "heating"
+        else f"a performance factor of {numbers.number(season.efficiency, 2)} of the cooling"
+    )
+    price = (
+        f", {numbers.with_symbol(numbers.number(season.price, 3), season.currency)} per kWh"
+        if season.price is not None
+        else ""
+    )
+    return f"It rests on {days} degree days ({season.how}), {performance}{price}."
