@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from irsurvey.analysis.claims import limited
+from irsurvey.analysis.components import component_twins
 from irsurvey.analysis.conditions import claimed_by
 from irsurvey.analysis.correction import correct, reflected_by_reflector
 from irsurvey.analysis.evidence import Evidence
-from irsurvey.analysis.findings import component_twins
+from irsurvey.analysis.found import with_found
 from irsurvey.analysis.frame_report import failed, frame_report
 from irsurvey.analysis.inputs import inputs
 from irsurvey.analysis.maps import MAPS, maps_of
@@ -14,10 +15,19 @@ from irsurvey.analysis.pairs import compared
 from irsurvey.analysis.planning import planned, with_twins
 from irsurvey.analysis.propagation import FIRST_ORDER, UNCERTAINTIES, propagated
 from irsurvey.analysis.regions import screen
+from irsurvey.analysis.window import window_by_frames
 from irsurvey.assess.criteria import chosen
 from irsurvey.model import Frame, FrameReport, FrameTask, Maps
 
-__all__ = ["FIRST_ORDER", "MAPS", "UNCERTAINTIES", "analyse", "failed", "reflected_by_reflector"]
+__all__ = [
+    "FIRST_ORDER",
+    "MAPS",
+    "UNCERTAINTIES",
+    "analyse",
+    "failed",
+    "reflected_by_reflector",
+    "window_by_frames",
+]
 
 
 def analyse(
@@ -34,8 +44,9 @@ def analyse(
     those of `MAPS`; `uncertainty` is one of `UNCERTAINTIES`.  Raises FrameError where nothing in the frame can be
     measured.
     """
-    criteria = chosen(task.criteria, task.kind, task.method)
+    criteria = chosen(task.criteria, task.kind, task.method, task.own_criteria)
     corrected = correct(frame, task)  # stored numbers → object temperatures
+    task = with_found(task, corrected)  # warm parts that nobody drew, where they are asked for
     screened = screen(corrected, task)  # → reference area and regions that deviate from it
     measured = planned(corrected, screened, task)  # → what is measured, as one function of the scene
     twins = component_twins(task, corrected, measured, criteria)

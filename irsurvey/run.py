@@ -11,10 +11,13 @@ from irsurvey import __version__, pipeline
 from irsurvey.analysis.checklist import present_in
 from irsurvey.analysis.conditions import reviewed
 from irsurvey.analysis.decisions import next_measurements
+from irsurvey.analysis.repairs import repair_list
 from irsurvey.analysis.seasons import seasons_of
+from irsurvey.analysis.trends import populations, trend_of
 from irsurvey.assess.checklist import checklist
 from irsurvey.assess.conditions import overall, requirement_sets
-from irsurvey.assess.criteria import criteria
+from irsurvey.assess.criteria import criteria, criterion_faults
+from irsurvey.assess.limits import limits
 from irsurvey.batch import execute
 from irsurvey.errors import Fault, FrameError, OutputError, SurveyError, UsageError
 from irsurvey.files import PART, write_text
@@ -26,13 +29,13 @@ from irsurvey.heat.sky import SKY_MODELS
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
-from irsurvey.report import WRITERS, frame_files
+from irsurvey.report import WRITERS, frame_files, texts
 from irsurvey.survey.load import Known, load
 from irsurvey.survey.outside import areas, is_drawn_on, polygon_faults
 from irsurvey.survey.places import OUTPUT_MARKER
 
 _MARKER_TEXT = "irsurvey wrote this folder; its next run writes over it. Keep nothing of your own in it.\n"
-_ALWAYS = ("json", "csv")
+_ALWAYS = ("json", "csv", "repairs")
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,8 +125,12 @@ def load_survey(survey_path: Path, *, ahead: bool = False) -> Survey:
             for name, material in building_materials().items()
         },
         degree_days=degree_days,
+        limits=tuple(limits()),
+        criterion_faults=criterion_faults,
     )
-    return load(survey_path, known=known, ahead=ahead)
+    survey = load(survey_path, known=known, ahead=ahead)
+    criteria(own_criteria(survey))  # two files of one name, or one of a built-in's, are told before anything runs
+    return survey
 
 
 def analyse_file(job: Job) -> FrameReport:
@@ -131,6 +138,8 @@ def analyse_file(job: Job) -> FrameReport:
     task = job.task
     try:
         frame = read(Path(task.path), task.read)
+        if task.window_frames:
+            task = _with_window(task)
         partner = read(Path(task.pair.partner.path), task.pair.partner.read) if task.pair else None
         report, maps = pipeline.analyse(frame, task, partner=partner, maps=job.maps, uncertainty=job.uncertainty)
         frame_files.write(report, maps, Path(job.out))
@@ -160,6 +169,30 @@ def _resolved(survey: Survey) -> list[FrameTask]:
         return replace(task, pair=replace(task.pair, partner=served(task.pair.partner))) if task.pair else task
 
     return [served(task) for task in survey.tasks]
+
+
+def _with_window(task: FrameTask) -> FrameTask:
+    """The task with the transmittance of its window as two frames of a reference measure it.  Raises FrameError."""
+    frames = task.window_frames
+    assert frames is not None
+    without, through = (read(Path(one.path), one.read) for one in (frames.without, frames.through))
+    return replace(task, scene=task.scene.with_(pipeline.window_by_frames(task, without, through)))
+
+
+def own_criteria(survey: Survey) -> tuple[tuple[str, str], ...]:
+    """The criteria files of a survey's own, as (name, text)."""
+    return tuple(dict.fromkeys(own for task in survey.tasks for own in task.own_criteria))
+
+
+def _with_trends(survey: Survey, frames: Iterable[FrameReport]) -> Iterator[FrameReport]:
+    """Frames whose components are held against their own past."""
+    taken = {task.id: task.taken for task in survey.tasks}
+    for frame in frames:
+        held = (
+            replace(component, trend=trend_of(component, frame, survey.history, taken[frame.id]))
+            for component in frame.components
+        )
+        yield replace(frame, components=tuple(held)) if survey.history else frame
 
 
 def _judge_pixels(tasks: Iterable[FrameTask]) -> tuple[list[Fault], tuple[tuple[str, str], ...]]:
@@ -205,8 +238,12 @@ def _claim_folder(out: Path, ids: set[str]) -> None:
 
 def _concluded(survey: Survey, frames: tuple[FrameReport, ...]) -> Report:
     """The statements about the survey as a whole."""
+    known = criteria(own_criteria(survey))
+    frames = tuple(_with_trends(survey, frames))
+    assets = tuple(_assets(survey, frames))
     analysed = [frame for frame in frames if frame.status == "analysed"]
     level, reason = overall((frame.id, frame.claim, frame.claim_reason) for frame in analysed)
+    seasons = seasons_of(survey.seasons, frames, survey.elements)
     is_building = any(task.kind == "building" for task in survey.tasks)
     return Report(
         format=1,
@@ -215,12 +252,14 @@ def _concluded(survey: Survey, frames: tuple[FrameReport, ...]) -> Report:
         claim=level,
         claim_reason=reason,
         conditions_review=reviewed(survey.tasks),
-        next_visit=next_measurements(frames),
-        assets=tuple(_assets(survey, frames)),
+        next_visit=next_measurements(frames, known),
+        assets=assets,
         frames=frames,
-        seasons=seasons_of(survey.seasons, frames, survey.elements),
+        repairs=repair_list(frames, assets, known),
+        populations=populations(frames),
+        seasons=seasons,
         checklist=checklist(present_in(survey, frames)) if is_building else (),
-        cautions=(),
+        cautions=texts.cautions_for(frames, has_season=bool(seasons)),
     )
 
 

@@ -129,6 +129,12 @@ def hall_floor() -> Shot:
     return Shot("hall-floor", "hall-floor.tif", WIDE, Air(20, 50, 2.0), subject, True)
 
 
+def attic_wall() -> Shot:
+    """A sound wall of the attic room; nobody wrote down when it was taken."""
+    subject = Subject(room_wall("attic-wall", [52, 130, 208, 286]), PLASTER, ROOM_REFLECTED_C)
+    return Shot("attic-wall", "attic-wall.tif", WIDE, Air(20, 50, 2.5), subject, True)
+
+
 def bathroom_corner() -> Shot:
     """The outer corner of a bathroom with 70 % humidity: cold enough for mould, and for dew at its foot."""
     x, y = grid(WIDE.shape)
@@ -371,4 +377,5 @@ SHOTS: tuple[Callable[[], Shot], ...] = (
     porch_glass,
     flat_roof,
     east_wall_sun,
+    attic_wall,
 )

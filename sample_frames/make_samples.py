@@ -12,19 +12,25 @@ from pathlib import Path
 from typing import Any
 
 import camera_model
+import electrical_truth
 import house_detail_frames
 import house_frames
 import house_weather
 import numpy as np
 import pump_station_frames
+import pump_station_logs
+import pump_station_round
 import tifffile
 from painting import Field, Mask, inside
 from PIL import Image
 from scipy.ndimage import binary_dilation, binary_erosion, gaussian_filter, uniform_filter
 from shot import Shot
 
-SURVEYS = {"house": house_frames.SHOTS + house_detail_frames.SHOTS, "pump_station": pump_station_frames.SHOTS}
-LOGS = {"house": house_weather.LOGS, "pump_station": {}}
+SURVEYS = {
+    "house": house_frames.SHOTS + house_detail_frames.SHOTS,
+    "pump_station": pump_station_frames.SHOTS + pump_station_round.SHOTS,
+}
+LOGS = {"house": house_weather.LOGS, "pump_station": pump_station_logs.LOGS}
 PATTERNS = {  # what a finding is consistent with, by what it truly is; the rest: no pattern of a building
     "plateau": "missing or displaced insulation",
     "bridge": "thermal bridge",
@@ -113,6 +119,13 @@ def facts(shot: Shot, truth_c: Field, over_range: Mask) -> dict[str, Any]:
     subject, camera, air = shot.subject, shot.camera, shot.air
     pixel_m = camera.ifov_mrad * 1e-3 * air.distance_m
     label_image = labels(shot)
+    components = [
+        {"name": part.name, "emissivity": part.emissivity, "polygon": part.corners}
+        | component_temperatures(truth_c, inside(part.corners, camera.shape))
+        for part in subject.parts
+    ]
+    parts = list(zip(electrical_truth.components(shot, components), subject.parts, strict=True))
+    more = electrical(shot, [one for one, part in parts if not part.is_drawn]) | shot.more
     area_m2 = np.full(camera.shape, pixel_m**2) if shot.pixel_area_m2 is None else shot.pixel_area_m2
     return {
         "file": f"frames/{shot.file}",
@@ -154,17 +167,22 @@ def facts(shot: Shot, truth_c: Field, over_range: Mask) -> dict[str, Any]:
             | defect.more
             for k, defect in enumerate(subject.defects, start=1)
         ],
-        "components": [
-            {"name": part.name, "emissivity": part.emissivity, "polygon": part.corners}
-            | component_temperatures(truth_c, inside(part.corners, camera.shape))
-            for part in subject.parts
-        ],
+        "components": [one for one, part in parts if part.is_drawn],
         "mirages": [
             {"kind": mirage.kind, "pattern": PATTERNS.get(mirage.kind), "mirrored_c": mirage.mirrored_c}
             | {"pixels": int(mirage.mask.sum()), "extent": extent(mirage.mask)}
             for mirage in subject.mirages
         ],
-    } | shot.more
+    } | more
+
+
+def electrical(shot: Shot, to_be_found: list[dict[str, Any]]) -> dict[str, Any]:
+    """Conditions that electrical parts are judged by, and the parts that the survey leaves to be found."""
+    names = ("ambient_c", "mean_radiant_c", "wind_m_s", "irradiance_w_m2")
+    facts = {name: getattr(shot, name) for name in names if getattr(shot, name) is not None}
+    if shot.method != "contact":
+        facts["method"] = shot.method
+    return facts | ({"to_be_found": to_be_found} if to_be_found else {})
 
 
 def extent(mask: Mask) -> list[int]:

@@ -30,11 +30,18 @@ class Patch:
 
 @dataclass(frozen=True)
 class Part:
-    """An electrical component: its name, its corners and its emissivity."""
+    """An electrical component: its name, its corners, its emissivity, and what the survey says of it."""
 
     name: str
     corners: Corners
     emissivity: float
+    group: str | None = None
+    load_a: float | None = None
+    rated_a: float | None = None
+    joint: dict[str, Any] | None = None  # what its heat is estimated as, in the words of the survey file
+    limit: tuple[float, float] | None = None  # highest temperature [°C], rise at rated load [K]
+    pattern: str | None = None  # of a PV module that is not healthy
+    is_drawn: bool = True  # in the survey file; otherwise it is there to be found
 
 
 @dataclass(frozen=True)

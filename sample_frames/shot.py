@@ -23,4 +23,9 @@ class Shot:
     offset_k: float = 0.0
     window: Window | None = None
     pixel_area_m2: Field | None = None  # of each pixel, where it is not (IFOV × distance)²
+    method: str = "contact"  # of an electrical frame
+    ambient_c: float | None = None  # air where the electrical parts sit
+    mean_radiant_c: float | None = None  # of what they face; as warm as that air where not given
+    wind_m_s: float | None = None  # outdoors
+    irradiance_w_m2: float | None = None
     more: dict[str, Any] = field(default_factory=dict)  # what else is true about it, by its name in truth.json

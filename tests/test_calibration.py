@@ -97,7 +97,11 @@ def reality(task, air, generator):
         radiant = emissivity * SIGMA * (surface**4 - true["mean_radiant"] ** 4)
         return -(film * (surface - true["indoor_air"]) + radiant)
 
-    u_value = flux(WALL) / (true["indoor_air"] - true["outdoor_air"])
+    # What drives it is the environmental temperature inside: air and surroundings, weighed by their coefficients.
+    radiative = emissivity * SIGMA * (WALL + true["mean_radiant"]) * (WALL**2 + true["mean_radiant"] ** 2)
+    film = 2.5 * true["convection"]
+    environment = (film * true["indoor_air"] + radiative * true["mean_radiant"]) / (film + radiative)
+    u_value = flux(WALL) / (environment - true["outdoor_air"])
     return frame, {"T": COLD - 273.15, "ΔT": COLD - WALL, "flux": flux(COLD), "U": u_value}
 
 

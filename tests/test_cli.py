@@ -212,7 +212,7 @@ def test_a_plan_of_a_faulty_survey_tells_its_faults(lodge: Path) -> None:
         (["bogus"], "No such command 'bogus'; see irsurvey --help"),
         (["run"], "Missing argument 'SURVEY'; see irsurvey run --help"),
         (["run", ".", "--jobs", "0"], "'--jobs'"),
-        (["run", ".", "--documents", "html,scroll"], "documents: expected some of json, csv, html"),
+        (["run", ".", "--documents", "html,scroll"], "documents: expected some of json, csv, repairs, html"),
         (["run", ".", "--maps", "flux"], "maps: expected some of heat-flux, uncertainty, got flux"),
         (["run", ".", "--uncertainty", "guess"], "'guess' is not one of 'first-order', 'monte-carlo'"),
         (["readings", "in.csv", "-o", "out.csv", "--uncertainty", "guess"], "'guess' is not one of 'first-order'"),

@@ -158,7 +158,7 @@ def test_ci_is_executable() -> None:
     assert os.access(ROOT / ".ci" / "run", os.X_OK)
 
 
-@pytest.mark.parametrize("text", blocks(README, "toml"), ids=["in short", "a building"])
+@pytest.mark.parametrize("text", blocks(README, "toml"), ids=["in short", "a building", "an electrical round"])
 def test_the_survey_files_of_the_readme_are_some(text: str, tmp_path: Path) -> None:
     (tmp_path / "survey.toml").write_text(text, encoding="utf-8")
     stored = np.random.default_rng(0).normal(7300, 2, (480, 640)).astype(np.uint16)

@@ -65,7 +65,7 @@ def transmittances(
     if task.kind != "building":
         return dict.fromkeys(found), {}
     if task.method != "envelope" or task.pair is not None:
-        return dict.fromkeys(found), {"u_value_w_m2k": _NOT_ENVELOPE}
+        return dict.fromkeys(found), {key: _NOT_ENVELOPE for key, number in found.items() if number is not None}
     if evidence.planned.plan.air is None:
         return dict.fromkeys(found), {"u_value_w_m2k": _NEEDS_AIR}
     for flag in (*flags, *((AUTOMATIC_REFERENCE,) if task.reference is None else ())):
@@ -99,7 +99,7 @@ def envelope_of_finding(evidence: Evidence, name: str, sense: str, flags: Collec
     }
     return {
         **heat,
-        "heat_flux_terms_w_m2": flux_terms(evidence, name),
+        "heat_flux_terms_w_m2": {} if MIRRORS in flags else flux_terms(evidence, name),
         **numbers,
         **margins,
         "condensation_probability": _below(margins["dew_point_margin_k"]),
@@ -127,8 +127,9 @@ def _heat(
     if MIRRORS in flags:
         return dict.fromkeys(found), refusals | dict.fromkeys(found, _AGAINST[MIRRORS])
     heat, told = withheld(evidence, found, {}, unless="qualitative")
-    if increase is None:
+    if increase is None and heat["excess_heat_w_k"] is not None:
         heat["excess_heat_w_k"] = None
+        told["excess_heat_w_k"] = refusals.get(INCREASE, _NEEDS_AIR)
     return heat, refusals | told
 
 

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
+from functools import cache
 from typing import Final
 
 from irsurvey.assess.conditions import LEVELS, claim, review, suited
@@ -15,6 +16,8 @@ _VERDICTS = ("met", "not recorded", "not met")
 
 HELD_DIFFERENCE: Final = 10.0
 """Least difference [K] between indoor and outdoor air that counts as held, and as heating (EN 13187 as applied [S])."""
+
+OUTDOOR_WIND: Final = "outdoor-wind"
 
 _HOURS = ("hours_difference_held", "hours_steady", "hours_since_sun", "hours_since_rain", "hours_furniture_clear")
 
@@ -56,9 +59,11 @@ def recorded(task: FrameTask) -> dict[str, float | None]:
 
 def claimed_by(task: FrameTask) -> tuple[str, str]:
     """What the conditions of a frame allow to claim, and why."""
-    return claim(task.standards, task.kind, task.method, recorded(task))
+    known = recorded(task)
+    return claim(_standards(task, known), task.kind, task.method, known)
 
 
+@cache
 def element_time_constant(element: Element | None) -> float | None:
     """Slowest time constant [s] of an element from its layers, else from its mass; None where neither is known."""
     if element is None:
@@ -76,15 +81,25 @@ def reviewed(tasks: Iterable[FrameTask]) -> tuple[ConditionCheck, ...]:
     A group that shows two elements is asked two bounds where these depend on the element."""
     rows: dict[tuple[str, str, str, str], ConditionCheck] = {}
     for task in tasks:
-        standards = suited(task.standards, task.kind, task.method)
-        for row in review(standards, recorded(task), task.group or ""):
+        known = recorded(task)
+        for row in review(_standards(task, known), known, task.group or ""):
             key = row.group, row.check, row.source, row.requirement
             rows[key] = max(rows.get(key, row), row, key=_badness)
     return tuple(rows.values())
 
 
-def _badness(row: ConditionCheck) -> tuple[int, int]:
-    return _VERDICTS.index(row.verdict), -LEVELS.index(row.limits_to or LEVELS[-1])
+def _standards(task: FrameTask, known: Mapping[str, float | None]) -> tuple[str, ...]:
+    """Whose requirements are asked; of electrical parts those on wind only outdoors, where it was recorded."""
+    named = suited(task.standards, task.kind, task.method)
+    is_outdoors = task.kind == "electrical" and known["wind_m_s"] is not None
+    return (*named, OUTDOOR_WIND) if is_outdoors and OUTDOOR_WIND not in named else named
+
+
+def _badness(row: ConditionCheck) -> tuple[int, int, float]:
+    """By verdict, by what it leaves to be claimed, and of equals by how near the value comes to its bound."""
+    value = 0.0 if row.value is None else row.value
+    nearer = -value if row.requirement.startswith("≥") else value
+    return _VERDICTS.index(row.verdict), -LEVELS.index(row.limits_to or LEVELS[-1]), nearer
 
 
 def _storing(layer: Layer) -> tuple[float, float] | None:

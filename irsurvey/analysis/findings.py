@@ -1,4 +1,4 @@
-"""From measured numbers to the records of a report: findings and components of one frame."""
+"""From measured numbers to the records of a report: the findings of one frame."""
 
 from __future__ import annotations
 
@@ -9,41 +9,30 @@ import numpy as np
 
 from irsurvey.analysis.budgets import flips, on_axis
 from irsurvey.analysis.building import envelope_of_finding
-from irsurvey.analysis.correction import Corrected
 from irsurvey.analysis.evidence import Evidence, celsius
 from irsurvey.analysis.indications import indication_of, is_mirror
 from irsurvey.analysis.planning import Measured, Planned
-from irsurvey.analysis.regions import Screened, near
-from irsurvey.anomalies.patch import Patch, cropped
+from irsurvey.analysis.regions import Screened
+from irsurvey.anomalies.patch import Patch
 from irsurvey.anomalies.shape import edge_sharpness, elongation
 from irsurvey.assess.building import assess_finding
 from irsurvey.assess.conformity import exceeds
-from irsurvey.assess.criteria import Criterion, criteria
-from irsurvey.assess.electrical import Member, TwinPlan, assess_component, load_ratio, rated_band, twins
 from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.severity import (
     AUTOMATIC_REFERENCE,
     CONDITIONS,
-    HOTTER_BESIDE,
     LEAST_EMISSIVITY,
     MIRRORS,
-    NO_SOLUTION,
     SATURATED,
     SIZE_LIMITED,
     Verdict,
 )
-from irsurvey.geometry.polygons import mask, outline
+from irsurvey.geometry.polygons import outline
 from irsurvey.model import (
-    Band,
     BudgetTerm,
-    Component,
-    ComponentReport,
     Estimate,
     Finding,
     Flip,
-    FrameTask,
-    Input,
-    RatedLoad,
     Shape,
 )
 
@@ -53,15 +42,6 @@ TOUCHES_EDGE = "touches frame edge"
 REFLECTIVE = "reflective"
 
 
-def component_twins(
-    task: FrameTask, corrected: Corrected, planned: Planned, chosen: tuple[Criterion, ...]
-) -> dict[str, TwinPlan]:
-    """Which twin each component is compared with, from the nominal spot temperatures."""
-    members = [_member(component, corrected, planned) for component in task.components]
-    ambient = planned.scene[planned.plan.ambient].value
-    return dict(zip((member.name for member in members), twins(members, ambient, chosen), strict=True))
-
-
 def findings(evidence: Evidence) -> Iterator[Finding]:
     """The findings of a frame in the order of their labels."""
     task, screened, results = evidence.task, evidence.screened, evidence.numbers.results
@@ -69,7 +49,8 @@ def findings(evidence: Evidence) -> Iterator[Finding]:
     against = reference_emissivity(evidence)  # a ΔT is no better than what it is taken against
     for label, (found, measured) in enumerate(zip(screened.regions, evidence.planned.anomalies, strict=True), start=1):
         name = measured.region.name
-        emissivity = _lowest_emissivity(measured, evidence.planned)
+        emissivity = lowest_emissivity(measured, evidence.planned)
+        mirrors = is_mirror(task, measured.patch, screened.t.shape, emissivity)
         flags = (
             (SATURATED, found.is_saturated),
             (SIZE_LIMITED, not measured.spot.is_full),
@@ -77,10 +58,10 @@ def findings(evidence: Evidence) -> Iterator[Finding]:
             (TOUCHES_EDGE, measured.patch.touches_edge(screened.t.shape)),
             (AUTOMATIC_REFERENCE, task.reference is None and screened.reference is not None),
             (CONDITIONS, not evidence.is_valid),
-            (MIRRORS, is_mirror(task, measured.patch, screened.t.shape, emissivity)),
+            (MIRRORS, mirrors),
         )
         factor, factor_at_limit = (
-            results.get((name, number)) if evidence.is_valid else None
+            results.get((name, number)) if evidence.is_valid and not mirrors else None
             for number in ("temperature_factor", "temperature_factor_at_limit")
         )
         numbers = {
@@ -100,7 +81,7 @@ def findings(evidence: Evidence) -> Iterator[Finding]:
             viewed_from=task.viewed_from,
         )
         budgets = evidence.numbers.budgets_of(name)
-        changes = _flips(verdict, numbers, budgets, evidence.inputs)
+        changes = class_flips(verdict, numbers, budgets, evidence)
         key = _key(task.id, measured)
         keys[key] += 1
         yield Finding(
@@ -131,60 +112,19 @@ def findings(evidence: Evidence) -> Iterator[Finding]:
         )
 
 
-def components(evidence: Evidence, plans: Mapping[str, TwinPlan]) -> Iterator[ComponentReport]:
-    """The components of a frame in the order of the survey."""
-    task, corrected, results = evidence.task, evidence.corrected, evidence.numbers.results
-    for component in task.components:
-        name = component.name
-        drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
-        member = _member(component, corrected, evidence.planned, is_valid=evidence.is_valid)
-        plan = plans[name]
-        numbers = {
-            "max_c": celsius(results.get((name, "max"))),
-            "delta_similar_k": results.get((name, "delta_similar")),
-            "delta_ambient_k": results.get((name, "delta_ambient")),
-        }
-        verdict = assess_component(member, plan, numbers, evidence.criteria)
-        budgets = evidence.numbers.budgets_of(name)
-        changes = _flips(verdict, numbers, budgets, evidence.inputs)
-        yield ComponentReport(
-            name=name,
-            key=f"{task.id}:component:{name}",
-            group=component.group,
-            phase=component.phase,
-            load_a=component.load,
-            rated_a=component.rated,
-            polygon=component.polygon,
-            pixels=int(np.count_nonzero(drawn)),
-            max_c=numbers["max_c"],
-            mean_c=celsius(results.get((name, "mean"))),
-            delta_similar_k=numbers["delta_similar_k"],
-            similar_to=None if plan.is_coolest else plan.name,
-            delta_ambient_k=numbers["delta_ambient_k"],
-            heat_flux_w_m2=results.get((name, "flux")),
-            at_rated_load=_at_rated(member, numbers),
-            assessments=verdict.assessments,
-            urgency=verdict.urgency,
-            cleared=verdict.cleared,
-            outcome=verdict.outcome,
-            flips=changes,
-            budgets=budgets,
-            flags=(*verdict.flags, *((FRAGILE,) if changes else ())),
-        )
-
-
-def _flips(
+def class_flips(
     verdict: Verdict,
     numbers: Mapping[str, Estimate | None],
     budgets: Mapping[str, tuple[BudgetTerm, ...]],
-    inputs: Mapping[str, Input],
+    evidence: Evidence,
 ) -> tuple[Flip, ...]:
     """What would change the governing class; nothing where no class was given."""
+    known = {criterion.name: criterion for criterion in evidence.criteria}
     for assessment in verdict.assessments:
-        criterion = criteria()[assessment.criterion]
-        estimate = numbers.get(criterion.quantity)
+        estimate = numbers.get(assessment.quantity)
         if assessment.governs and assessment.class_ is not None and estimate is not None:
-            return flips(on_axis(criterion, estimate, budgets.get(criterion.quantity, ()), inputs))
+            terms = budgets.get(assessment.quantity, ())
+            return flips(on_axis(known[assessment.criterion], estimate, terms, evidence.inputs))
     return ()
 
 
@@ -192,33 +132,6 @@ def _exceeds(delta: Estimate | None, threshold: float, sense: str) -> float | No
     if delta is None or delta.u is None:
         return None
     return float(exceeds(delta.value, delta.u, threshold, sense))
-
-
-def _member(component: Component, corrected: Corrected, planned: Planned, *, is_valid: bool = True) -> Member:
-    """A component as its group sees it."""
-    measured = planned.components.get(component.name)
-    drawn = mask(component.polygon, (corrected.t.shape[0], corrected.t.shape[1]))
-    patch = cropped(drawn)
-    saturated = drawn & corrected.saturated_hot
-    place = near(component, (drawn.shape[0], drawn.shape[1]))
-    flags = (
-        (SATURATED, bool(saturated.any())),
-        (SIZE_LIMITED, measured is not None and (measured.has_narrow_core or not measured.spot.is_full)),
-        (NO_SOLUTION, measured is None or bool((drawn & np.isnan(corrected.t) & ~saturated).any())),
-        (TOUCHES_EDGE, patch is not None and patch.touches_edge(drawn.shape)),
-        (CONDITIONS, not is_valid),
-        (HOTTER_BESIDE, any(one.sense == "hot" and one.patch.of(place).any() for one in planned.anomalies)),
-    )
-    own = planned.scene[component.emissivity].value
-    return Member(
-        name=component.name,
-        t_spot=float("nan") if measured is None else measured.t_spot,
-        emissivity=own if measured is None else _lowest_emissivity(measured, planned),
-        group=component.group,
-        load=component.load,
-        rated=component.rated,
-        flags=tuple(flag for flag, applies in flags if applies),
-    )
 
 
 def reference_emissivity(evidence: Evidence) -> float:
@@ -230,7 +143,7 @@ def reference_emissivity(evidence: Evidence) -> float:
     return corrected.scene[corrected.optics_names[int(pixels.argmax())][0]].value
 
 
-def _lowest_emissivity(measured: Measured, planned: Planned) -> float:
+def lowest_emissivity(measured: Measured, planned: Planned) -> float:
     """The lowest that its pixels were corrected with: a part may lie on a surface with optics of its own."""
     return min(planned.scene[part.optics[0]].value for part in measured.region.whole.parts)
 
@@ -249,18 +162,3 @@ def _key(frame: str, measured: Measured) -> str:
 
 def _outline(patch: Patch) -> tuple[tuple[int, int], ...]:
     return tuple((int(x) + patch.left, int(y) + patch.top) for x, y in outline(patch.mask))
-
-
-def _at_rated(member: Member, numbers: Mapping[str, Estimate | None]) -> RatedLoad | None:
-    """Both rises at rated load; None where load or rating is not known."""
-    ratio = load_ratio(member)
-    if not ratio > 0:
-        return None
-
-    def band(estimate: Estimate | None) -> Band | None:
-        if estimate is None:
-            return None
-        low, high = rated_band(estimate.value, ratio)
-        return Band(float(low), float(high))
-
-    return RatedLoad(band(numbers["delta_similar_k"]), band(numbers["delta_ambient_k"]))

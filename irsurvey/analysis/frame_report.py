@@ -8,9 +8,10 @@ from math import ceil
 import numpy as np
 
 from irsurvey.analysis.building import reference_heat, room_air, strip_reports, transmittances
+from irsurvey.analysis.components import components
 from irsurvey.analysis.correction import Corrected
 from irsurvey.analysis.evidence import Evidence
-from irsurvey.analysis.findings import components, findings, reference_emissivity
+from irsurvey.analysis.findings import findings, reference_emissivity
 from irsurvey.analysis.regions import ENOUGH_REFERENCE, SMALL_REFERENCE, Screened, has_small_reference, stretch_of
 from irsurvey.analysis.risk import surfaces_at_risk
 from irsurvey.analysis.surroundings import surroundings_flags
@@ -208,6 +209,8 @@ def _flags(evidence: Evidence) -> Iterator[str]:
         yield f"errors of the reading are amplified {stretch:.1f} times"
     if "wind" in scene and scene["wind"].source == "default":
         yield "wind not recorded, assumed"
+    if task.has_window and scene["window_temperature"].source == "default":
+        yield "window temperature assumed"
     yield from surroundings_flags(task, evidence.planned.scene)
     if corrected.quantised_to > _COARSE:
         yield f"numbers read in steps of {corrected.quantised_to:.3f} K: a far-off one stretches their range"

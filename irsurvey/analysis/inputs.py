@@ -58,6 +58,7 @@ _SHOWN: dict[str, tuple[str, float, float]] = {
     "known_height": _METRES,
     "temperature": _CELSIUS,
     "load_exponent": _PLAIN,
+    "wind_factor": _PLAIN,
     "shading": _KELVIN,
     "shading_x": _KELVIN,
     "shading_y": _KELVIN,

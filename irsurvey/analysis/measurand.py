@@ -12,8 +12,9 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from irsurvey.analysis import envelope
+from irsurvey.analysis import electrical, envelope
 from irsurvey.analysis.correction import Corrected, Optics, air_path
+from irsurvey.analysis.electrical import PartFacts
 from irsurvey.analysis.envelope import Air, Humidity
 from irsurvey.analysis.exchange import Columns, Surroundings, flux_of, terms_of
 from irsurvey.assess.electrical import load_factor, similar_rise
@@ -111,6 +112,8 @@ class Plan:
     regions: tuple[Region, ...] = ()
     components: tuple[Region, ...] = ()
     twins: Mapping[str, Twin] = field(default_factory=dict)
+    facts: Mapping[str, PartFacts] = field(default_factory=dict)  # of components, by name
+    is_windy: bool = False  # components stand in more wind than rises are brought to
     ambient: str = "air"
     bridges: tuple[Bridge, ...] = ()
     air: Air | None = None  # on both sides of an envelope, where both are recorded
@@ -336,17 +339,30 @@ def _component(
     spots: Mapping[str, NDArray[np.float64]],
 ) -> Numbers:
     hottest, ambient = spots[region.name], values[plan.ambient][:, 0]
+    mean = temperatures.functionals(region.whole)[:, 0]
+    rises = {"delta_ambient": hottest - ambient}
     results = {
         "max": hottest,
-        "mean": temperatures.functionals(region.whole)[:, 0],
-        "delta_ambient": hottest - ambient,
+        "mean": mean,
         "flux": np.asarray(sum(_mean_terms(region.whole, plan, values, temperatures).values())),
     }
-    twin = plan.twins.get(region.name)
+    facts, twin, t_twin = plan.facts.get(region.name, PartFacts()), plan.twins.get(region.name), None
     if twin is not None:
         factor = load_factor(twin.load_ratio, values["load_exponent"][:, 0]) if twin.load_ratio != 1 else 1.0
-        results["delta_similar"] = similar_rise(hottest, spots[twin.name], ambient, factor)
-    return {(region.name, name): number for name, number in results.items()}
+        rises["delta_similar"] = similar_rise(hottest, spots[twin.name], ambient, factor)
+        results["relative_difference"] = electrical.relative_difference(rises["delta_similar"], rises["delta_ambient"])
+        if twin.name != region.name:
+            (other,) = [one for one in plan.components if one.name == twin.name]
+            t_twin = temperatures.functionals(other.whole)[:, 0]
+    results |= rises | electrical.beside(facts, hottest, ambient, values)
+    if plan.is_windy:
+        results |= electrical.in_calm(rises, values)
+    if facts.neighbours:
+        others = [spots[name] for name in facts.neighbours]
+        results["delta_neighbours"] = electrical.over_neighbours(hottest, others, values)
+    around = (plan.ambient, plan.surroundings.radiant[0])
+    results |= electrical.heat_of(facts, mean, t_twin, region.whole.parts[0].optics[0], around, values)
+    return _named(region.name, results)
 
 
 def _reference_at(

@@ -10,6 +10,7 @@ import numpy as np
 
 from irsurvey.analysis import imperfections
 from irsurvey.analysis.correction import Corrected
+from irsurvey.analysis.electrical import LEAST_WIND, PartFacts
 from irsurvey.analysis.measurand import Area, Plan, Region, Twin, area
 from irsurvey.analysis.regions import Screened, stretch_of
 from irsurvey.analysis.strips import Drawn, drawn_strips
@@ -17,9 +18,12 @@ from irsurvey.analysis.surroundings import air_of, humidity_of, surroundings
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import Spot, extreme_spot
 from irsurvey.assess.electrical import LOAD_EXPONENT, LOAD_EXPONENT_U, TwinPlan
+from irsurvey.assess.limits import lowest
+from irsurvey.assess.pv import LEAST_NEIGHBOURS, neighbours, sound
 from irsurvey.geometry.polygons import mask
 from irsurvey.geometry.rectify import pixel_areas
-from irsurvey.model import FrameTask, KnownLength, KnownRectangle, Quantity, Scene
+from irsurvey.heat.wind import WIND_FACTOR_U
+from irsurvey.model import Component, FrameTask, KnownLength, KnownRectangle, Quantity, Scene
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -67,6 +71,12 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
     strips = tuple(drawn_strips(corrected, screened, task)) if air else ()
     own = (*own, *(quantity for strip in strips for quantity in strip.own))
     scene = corrected.scene.with_(imperfections.SELECTION, *own)
+    is_windy = task.kind == "electrical" and (scene.value("wind") or 0.0) > LEAST_WIND
+    if is_windy:
+        scene = scene.with_(Quantity("wind_factor", 1.0, WIND_FACTOR_U, "default", low=0.0))
+    facts = {component.name: _facts(component, task) for component in task.components}
+    if any(one.limit is not None and one.load_ratio is not None for one in facts.values()):
+        scene = scene.with_(Quantity("load_exponent", LOAD_EXPONENT, LOAD_EXPONENT_U, "default"))
     plan = Plan(
         band=task.camera.band,
         pivot=corrected.pivot,
@@ -78,6 +88,8 @@ def planned(corrected: Corrected, screened: Screened, task: FrameTask) -> Planne
         regions=tuple(measured.region for measured in anomalies),
         components=tuple(measured.region for measured in components.values()),
         ambient=_ambient(scene),
+        facts={name: _measurable(one, components) for name, one in facts.items()},
+        is_windy=is_windy,
         bridges=tuple(strip.bridge for strip in strips),
         air=air,
         humidity=humidity_of(task, scene),
@@ -92,6 +104,35 @@ def with_twins(planned: Planned, plans: Mapping[str, TwinPlan]) -> Planned:
     if any(twin.load_ratio != 1 for twin in twins.values()):
         scene = scene.with_(Quantity("load_exponent", LOAD_EXPONENT, LOAD_EXPONENT_U, "default"))
     return replace(planned, plan=replace(planned.plan, twins=twins), scene=scene)
+
+
+def _facts(component: Component, task: FrameTask) -> PartFacts:
+    """What is known of a component besides its pixels."""
+    return PartFacts(
+        limit=lowest(component.limits) if component.limits else None,
+        load=component.load,
+        load_ratio=component.load / component.rated if component.load is not None and component.rated else None,
+        shape=component.shape,
+        neighbours=_neighbours(component, task),
+    )
+
+
+def _neighbours(component: Component, task: FrameTask) -> tuple[str, ...]:
+    """PV: the modules of its group that a module is held against."""
+    if task.method != "pv" or component.group is None:
+        return ()
+    group = [one for one in task.components if one.group == component.group]
+    centres = [np.mean(one.polygon, axis=0) for one in group]
+    return tuple(group[index].name for index in neighbours(group.index(component), centres))
+
+
+def _measurable(facts: PartFacts, components: Mapping[str, Measured]) -> PartFacts:
+    """With those of its neighbours that can be measured and are sound; without any where these are too few."""
+    near = [name for name in facts.neighbours if name in components]
+    kept = tuple(
+        name for name, is_sound in zip(near, sound([components[name].t_spot for name in near]), strict=True) if is_sound
+    )
+    return replace(facts, neighbours=kept if len(kept) >= LEAST_NEIGHBOURS else ())
 
 
 def _measured(

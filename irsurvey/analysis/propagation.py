@@ -29,6 +29,12 @@ BUDGETED = {
     "delta_similar": "delta_similar_k",
     "delta_ambient": "delta_ambient_k",
     "max": "max_c",
+    "above_limit": "above_limit_k",
+    "above_allowed": "above_allowed_k",
+    "delta_similar_in_calm": "delta_similar_in_calm_k",
+    "delta_ambient_in_calm": "delta_ambient_in_calm_k",
+    "relative_difference": "relative_difference_percent",
+    "delta_neighbours": "delta_neighbours_k",
 }
 """Numbers of the measurand whose budgets are reported → their keys."""
 

@@ -23,7 +23,7 @@ DEFAULTS: Final[Mapping[tuple[str, str], tuple[str, ...]]] = {
     ("building", "roof-moisture"): ("astm-c1153",),
     ("electrical", "contact"): ("nfpa-70b",),
     ("electrical", "voltage-driven"): (),
-    ("electrical", "pv"): (),
+    ("electrical", "pv"): ("pv-inspection",),
 }
 """Sets of requirements that count where a survey names none that suits its kind and method."""
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 import tomllib
 from collections.abc import Callable, Iterator, Mapping
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from difflib import get_close_matches
 from functools import cache
 from importlib.resources import files
@@ -43,15 +43,23 @@ METHODS: Final[Mapping[str, tuple[str, ...]]] = {
     "electrical": ("contact", "voltage-driven", "pv"),
 }
 
+ALWAYS: Final = ("absolute-limit", "absolute-limit-at-load")
+"""Criteria that count wherever they suit, named or not: who states the limit of a part wants the part held against it.
+A part without a stated limit is not judged by them."""
+
 DEFAULTS: Final[Mapping[tuple[str, str], tuple[str, ...]]] = {
     ("building", "envelope"): ("building-contrast", "temperature-factor-ie"),  # the stricter of the two limits
     ("building", "air-leakage"): ("building-contrast",),
     ("building", "roof-moisture"): ("roof-moisture",),
-    ("electrical", "contact"): ("neta-similar", "neta-ambient", "electrical-contrast"),
-    ("electrical", "voltage-driven"): (),  # tenths of a kelvin matter there: no table for contacts may be borrowed
-    ("electrical", "pv"): (),
+    ("electrical", "contact"): ("neta-similar", "neta-ambient", "electrical-contrast", *ALWAYS),
+    # tenths of a kelvin matter there: no table for contacts may be borrowed
+    ("electrical", "voltage-driven"): ("voltage-driven", "absolute-limit"),
+    ("electrical", "pv"): ("pv-modules", "absolute-limit"),
 }
 """Criteria used where a survey names none that suits its kind and method."""
+
+Own = tuple[tuple[str, str], ...]
+"""Criteria files of a survey's own: (name of the file, its text) each."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -84,6 +92,11 @@ class Criterion:
     notes: str
     classes: tuple[SeverityClass, ...]
     viewed_from: str | None = None  # "inside" | "outside"; None: from anywhere
+    classed_from: tuple[str, float] | None = None  # of a component: classed only where this number is at least that
+
+    def suits(self, kind: str, method: str) -> bool:
+        """Whether it judges surveys of this kind and method."""
+        return self.kind == kind and method in self.methods
 
     @property
     def edges(self) -> tuple[float, ...]:
@@ -112,27 +125,50 @@ def class_of(value: float, criterion: Criterion) -> SeverityClass | None:
     return None if index < 0 else criterion.classes[index]
 
 
-def criteria() -> dict[str, Criterion]:
-    """All built-in criteria by name."""
-    return {criterion.name: criterion for criterion in _built_in()}
+def criteria(own: Own = ()) -> dict[str, Criterion]:
+    """All built-in criteria by name, and those of `own` files behind them.
 
-
-def chosen(names: tuple[str, ...], kind: str, method: str) -> tuple[Criterion, ...]:
-    """The criteria among `names` for this kind and method of survey, or the default ones where none suits.
-
-    A survey may name criteria for all its groups at once, building and electrical.
-    Raises `SurveyError` for a name that does not exist.
+    Raises `SurveyError` for an own file that is malformed or takes a name that is taken.
     """
-    known = criteria()
+    found = {criterion.name: criterion for criterion in _built_in()}
+    for file, text in own:
+        criterion = load_criterion(text, file)
+        if criterion.name in found:
+            raise SurveyError(_taken(criterion.name, f"{file}: name"))
+        found[criterion.name] = criterion
+    return found
+
+
+def chosen(names: tuple[str, ...], kind: str, method: str, own: Own = ()) -> tuple[Criterion, ...]:
+    """The criteria among `names` and `own` for this kind and method of survey, or the default ones where none suits.
+
+    A survey may name criteria for all its groups at once, building and electrical.  An own one may be named by its file
+    or by its name, and counts in any case: it was given to be used.  So do those of `ALWAYS`.
+    Raises `SurveyError` for a name that does not exist, and as `criteria` does.
+    """
+    known = criteria(own)
+    by_file = dict(zip((file for file, _ in own), list(known)[len(known) - len(own) :], strict=True))
     faults = [
         Fault("criteria", "the name of a criterion", repr(name), _nearest(name, known, "see `irsurvey criteria`"))
         for name in names
-        if name not in known
+        if name not in known and name not in by_file
     ]
     if faults:
         raise SurveyError(*faults)
-    suited = tuple(known[name] for name in names if known[name].kind == kind and method in known[name].methods)
-    return suited or tuple(known[name] for name in DEFAULTS.get((kind, method), ()))
+    named = [*(by_file.get(name, name) for name in names), *by_file.values()]
+    suited = [name for name in named if name not in ALWAYS and known[name].suits(kind, method)]
+    suited = suited or list(DEFAULTS.get((kind, method), ()))
+    always = [name for name in ALWAYS if known[name].suits(kind, method)]
+    return tuple(known[name] for name in dict.fromkeys([*suited, *always]))
+
+
+def criterion_faults(text: str) -> list[Fault]:
+    """What is wrong with the text of a criteria file of a survey's own, `where` being the key in it; empty: nothing."""
+    try:
+        criterion = load_criterion(text, "")
+    except SurveyError as error:
+        return [replace(fault, where=fault.where.removeprefix(": ")) for fault in error.faults]
+    return [_taken(criterion.name, "name")] if criterion.name in criteria() else []
 
 
 def load_criterion(text: str, where: str) -> Criterion:
@@ -160,6 +196,8 @@ def load_criterion(text: str, where: str) -> Criterion:
     if faults:
         raise SurveyError(*faults)
     table["methods"] = tuple(table["methods"])
+    if "classed_from" in table:
+        table["classed_from"] = (table["classed_from"]["quantity"], float(table["classed_from"]["at_least"]))
     return Criterion(**table, classes=classes)
 
 
@@ -184,6 +222,14 @@ def _is_number(value: object) -> bool:
 
 _TEXT: Final[Check] = (lambda value: isinstance(value, str) and bool(value.strip())), "a text"
 _NUMBER: Final[Check] = _is_number, "a number"
+_CONDITION: Final[Check] = (
+    (
+        lambda value: (
+            isinstance(value, dict) and value.keys() == {"quantity", "at_least"} and _is_number(value["at_least"])
+        )
+    ),
+    "{ quantity = the key of a component's number, at_least = a number }",
+)
 _NAME: Final[Check] = (
     (lambda value: isinstance(value, str) and re.fullmatch(r"[a-z0-9][a-z0-9.-]{0,63}", value) is not None),
     "small letters, digits, dots and hyphens",
@@ -209,6 +255,7 @@ _FIELDS: Final[Mapping[str, Check]] = {
 }
 _OPTIONAL: Final[Mapping[str, Check]] = {
     "viewed_from": _one_of("inside", "outside"),
+    "classed_from": _CONDITION,
 }
 _ROW: Final[Mapping[str, Check]] = {"name": _TEXT, "statement": _TEXT, "urgency": _URGENCY}
 _BOUNDS: Final[Mapping[str, Check]] = dict.fromkeys(("at_least", "above", "at_most", "below"), _NUMBER)
@@ -218,6 +265,10 @@ QUANTITIES: Final[Mapping[str, tuple[str, ...]]] = {
     for applies_to, record in (("finding", Finding), ("component", ComponentReport))
 }
 """What a criterion may judge: every measured number that a finding or a component has in report.json."""
+
+
+def _taken(name: str, where: str) -> Fault:
+    return Fault(where, "a name that no other criterion has", repr(name), "give it a name of its own")
 
 
 def _nearest(name: str, known: Mapping[str, object], otherwise: str) -> str:
@@ -247,6 +298,11 @@ def _meaning_faults(table: dict[str, Any], where: str) -> Iterator[Fault]:
     quantities = QUANTITIES[table["applies_to"]]
     if table["quantity"] not in quantities:
         yield Fault(f"{where}: quantity", "one of " + ", ".join(quantities), repr(table["quantity"]))
+    condition = table.get("classed_from", {}).get("quantity")
+    if condition is not None and table["applies_to"] != "component":
+        yield Fault(f"{where}: classed_from", "a criterion for components", table["applies_to"], "remove it")
+    elif condition is not None and condition not in quantities:
+        yield Fault(f"{where}: classed_from.quantity", "one of " + ", ".join(quantities), repr(condition))
 
 
 def _row_faults(row: dict[str, Any], where: str) -> Iterator[Fault]:

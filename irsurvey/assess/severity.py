@@ -29,6 +29,11 @@ NO_SOLUTION: Final = "no physical solution"
 LOW_LOAD: Final = "low load"
 LOAD_UNKNOWN: Final = "load unknown"
 LOAD_ABOVE_RATING: Final = "load above rating"
+UNSTEADY: Final = "load not steady"
+WINDY: Final = "windy"
+LOW_SUN: Final = "low irradiance"
+SUN_UNKNOWN: Final = "irradiance unknown"
+FEW_NEIGHBOURS: Final = "few neighbours"
 BELOW_AIR: Final = "colder than its air"
 CONDITIONS: Final = "conditions not valid"
 AUTOMATIC_REFERENCE: Final = "automatic reference"
@@ -46,6 +51,11 @@ BLOCKERS: Final[Mapping[str, str]] = {
     LOW_LOAD: "look again at load, 40 % of its rating or more",
     LOAD_UNKNOWN: "look again with its load measured and its rating noted; a mild reading proves nothing",
     LOAD_ABOVE_RATING: "look again with its load brought down to its rating, both checked first",
+    UNSTEADY: "look again when its load has been steady for three of its thermal time constants",
+    WINDY: "look again in 5 m/s of wind or less",
+    LOW_SUN: "look again at 600 W/m² or more in the plane of the modules",
+    SUN_UNKNOWN: "look again with the irradiance in the plane of the modules measured",
+    FEW_NEIGHBOURS: "look again with six or more modules of its kind around it in the frame",
     BELOW_AIR: "look again after checking ambient air, emissivity and reflected temperature: a part gives off heat",
     CONDITIONS: "look again under conditions that allow the claim",
     AUTOMATIC_REFERENCE: "confirm the reference area and run again",
@@ -92,16 +102,17 @@ def assess(
     blocked: Collection[str],
     *,
     bounding: Collection[str] = BOUNDING,
+    quantity: str = "",
 ) -> Assessment:
     """One criterion applied to one number, in the unit the criterion's quantity ends in.
 
+    `quantity` is the key of the number where it stands in for the criterion's own (a rise brought to calm).
     `words` say what the number is ("above ambient air"), `bounding` which of the blockers make it a bound.
     No blocker changes the urgency: a bound is classed by its value and may be worse; a reflective surface
     keeps the urgency of its number but gets no class.  The one exception is a wall, pane or roof that mirrors: what it
     shows is elsewhere, so that it gets neither, and is not cleared.  Where anything blocks, no number is said to pass.
     """
-    source = f"{criterion.source}, {criterion.edition} [{criterion.mark}]"
-    blank = Assessment(criterion.name, None, None, "", {}, source)
+    blank = unclassed(criterion, "", quantity=quantity)
     kind = None if estimate is None else class_of(estimate.value, criterion)
     if estimate is None or kind is None:
         return replace(blank, statement=f"No value {words}: it could not be measured here.")
@@ -114,15 +125,20 @@ def assess(
         statement = f"{measured}: the surface is {REFLECTIVE}, no class is given."
         return replace(blank, urgency=kind.urgency, statement=statement)
     probabilities = {} if bound else _probabilities(estimate, criterion)
-    return Assessment(
-        criterion=criterion.name,
+    return replace(
+        blank,
         class_=kind.name,
         urgency=kind.urgency,
         statement=f"{measured}: {kind.statement}.",
         probabilities=probabilities,
-        source=source,
         verdict=_verdict(estimate, criterion, blocked),
     )
+
+
+def unclassed(criterion: Criterion, statement: str, *, quantity: str = "") -> Assessment:
+    """An assessment that gives neither class nor urgency, and says why."""
+    source = f"{criterion.source}, {criterion.edition} [{criterion.mark}]"
+    return Assessment(criterion.name, None, None, statement, {}, source, quantity=quantity or criterion.quantity)
 
 
 def clears(criterion: Criterion, estimate: Estimate | None) -> bool:

@@ -96,6 +96,7 @@ class Assessment:
     source: str
     governs: bool = False
     verdict: str | None = None
+    quantity: str = ""  # key of the number it judges
 
 
 @dataclass(frozen=True, slots=True)
@@ -207,6 +208,42 @@ class RatedLoad:
 
 
 @dataclass(frozen=True, slots=True)
+class LimitReport:
+    """The absolute limit of a part: of the materials and insulation that meet in it, the lowest."""
+
+    name: str
+    max_c: float
+    rise_k: float | None  # allowed above ambient air at rated load
+    allowed_now_c: Band | None  # at this load and ambient, for load exponents 1.6 to 2.0
+    source: str
+
+
+@dataclass(frozen=True, slots=True)
+class JointHeat:
+    """Heat of a joint: always an estimate; what flows off along the conductor is not in it."""
+
+    form: str
+    film_coefficient_w_m2k: Estimate | None
+    power_w: Estimate | None
+    excess_power_w: Estimate | None  # over its twin
+    excess_resistance_uohm: Estimate | None  # at least this much
+    voltage_drop_mv: Estimate | None  # over the excess resistance, at this load
+    yearly_loss_kwh: Estimate | None  # of the excess, at this load all year
+
+
+@dataclass(frozen=True, slots=True)
+class TrendReport:
+    """A component's rise over the surveys, brought to rated load and one ambient."""
+
+    points: tuple[tuple[str, float], ...]  # ISO 8601 date, rise at rated load [K]
+    slope_k_per_year: Estimate | None  # Theil–Sen
+    slope_low_k_per_year: float | None  # 95 % interval
+    slope_high_k_per_year: float | None
+    change_k: Estimate | None  # since the last survey
+    is_significant: bool | None
+
+
+@dataclass(frozen=True, slots=True)
 class ComponentReport:
     """One electrical component of one frame, measured and assessed."""
 
@@ -223,7 +260,18 @@ class ComponentReport:
     delta_similar_k: Estimate | None
     similar_to: str | None  # the twin it was compared with; None for the coolest itself, whose difference is 0
     delta_ambient_k: Estimate | None
+    delta_similar_in_calm_k: Estimate | None  # brought to 1 m/s of wind; None where there is none to correct
+    delta_ambient_in_calm_k: Estimate | None
+    relative_difference_percent: Estimate | None  # of the rises of this part and its twin
+    above_limit_k: Estimate | None  # spot maximum minus its absolute limit
+    above_allowed_k: Estimate | None  # minus what is allowed at this load and ambient, n = 1.8 ± 0.2
+    delta_neighbours_k: Estimate | None  # PV: over the median of its neighbours, brought to 1000 W/m²
     heat_flux_w_m2: Estimate | None
+    is_found: bool
+    limit: LimitReport | None
+    joint: JointHeat | None
+    trend: TrendReport | None
+    indication: Indication | None
     at_rated_load: RatedLoad | None
     assessments: tuple[Assessment, ...]
     urgency: int | None
@@ -407,6 +455,38 @@ class AssetReport:
 
 
 @dataclass(frozen=True, slots=True)
+class RepairItem:
+    """One line of the repair list, the most urgent and surest first."""
+
+    rank: int
+    key: str  # of the finding or component
+    frame: str
+    what: str
+    asset: str | None
+    location: str
+    urgency: int | None
+    class_: str | None
+    confidence: float | None  # probability of that urgency or a higher one
+    delta_k: Estimate | None
+    delta_basis: str  # "similar" | "ambient" | "reference"
+    load_a: float | None
+    rated_a: float | None
+    action: str
+    inspect_again: str
+
+
+@dataclass(frozen=True, slots=True)
+class PopulationAlarm:
+    """Components of one group over all frames, held against what is usual among them."""
+
+    group: str
+    count: int
+    how: str  # "median" | "mean", by their number
+    alarm_k: float  # rise above which one stands out
+    exceeding: tuple[str, ...]  # keys
+
+
+@dataclass(frozen=True, slots=True)
 class Report:
     """A whole report: what report.json holds."""
 
@@ -419,6 +499,8 @@ class Report:
     next_visit: tuple[NextMeasurement, ...]
     assets: tuple[AssetReport, ...]
     frames: tuple[FrameReport, ...]
+    repairs: tuple[RepairItem, ...]
+    populations: tuple[PopulationAlarm, ...]
     seasons: tuple[SeasonReport, ...]
     checklist: tuple[ChecklistItem, ...]
     cautions: tuple[str, ...]

@@ -97,8 +97,19 @@ class Surface:
 
 
 @dataclass(frozen=True, slots=True)
+class JointShape:
+    """What a joint is taken for when its heat is estimated; lengths [m], area [m²]."""
+
+    form: str  # "cylinder" | "plate" | "sphere" | "area"
+    diameter: float | None = None  # cylinder, sphere
+    length: float | None = None  # cylinder; plate: its height
+    width: float | None = None  # plate; both faces give off heat
+    area: float | None = None  # of anything else, or instead of what the form gives
+
+
+@dataclass(frozen=True, slots=True)
 class Component:
-    """A part of an electrical installation drawn on a frame; currents [A]."""
+    """A part of an electrical installation, drawn on a frame or found in it; currents [A]."""
 
     name: str
     polygon: Polygon
@@ -108,6 +119,11 @@ class Component:
     rated: float | None = None
     emissivity: str = "emissivity"
     reflected: str = "reflected"
+    limits: tuple[str, ...] = ()  # names of absolute limits; of several the lower counts
+    shape: JointShape | None = None
+    steady: float | None = None  # how long its load has been steady [s], from a log
+    time_constant: float | None = None  # [s]
+    is_found: bool = False  # by the program, not drawn
 
 
 @dataclass(frozen=True, slots=True)
@@ -188,6 +204,15 @@ class Detection:
 
 
 @dataclass(frozen=True, slots=True)
+class WindowFrames:
+    """Two frames of one warm or cold reference, without and through the infrared window: they measure its τ."""
+
+    without: FrameTask
+    through: FrameTask
+    polygon: Polygon  # of the reference, in both
+
+
+@dataclass(frozen=True, slots=True)
 class Pair:
     """The frame of the same view without the pressure difference that this one was taken with."""
 
@@ -224,6 +249,9 @@ class FrameTask:
     element: Element | None = None
     history: tuple[tuple[str, float], ...] = ()  # what logs tell of the time before, by requirement key
     sky_model: str = "berdahl-martin"
+    own_criteria: tuple[tuple[str, str], ...] = ()  # (name, text) of criteria files of the survey's own
+    find_components: bool = False  # segment warm parts where none are drawn
+    window_frames: WindowFrames | None = None
     humidity_class: int | None = None  # ISO 13788, 1…5, where the room air was not measured
     orientation: str = ""
     reflected_from: str | None = None  # id of the frame whose reflector serves this one
@@ -248,6 +276,20 @@ class Asset:
 
 
 @dataclass(frozen=True, slots=True)
+class Earlier:
+    """One earlier value of a component, from a history file; temperatures differences [K], currents [A]."""
+
+    when: datetime
+    asset: str
+    component: str
+    delta_ambient: float | None = None
+    delta_similar: float | None = None
+    load: float | None = None
+    rated: float | None = None
+    u: float | None = None  # standard uncertainty of the differences
+
+
+@dataclass(frozen=True, slots=True)
 class Survey:
     """A whole survey, ready to run."""
 
@@ -260,5 +302,6 @@ class Survey:
     assets: tuple[Asset, ...] = ()
     elements: tuple[Element, ...] = ()
     seasons: tuple[Season, ...] = ()
+    history: tuple[Earlier, ...] = ()
     as_read: str = "{}"  # the survey file as JSON text, for the report
     notices: tuple[str, ...] = ()  # what `check` lists beside faults

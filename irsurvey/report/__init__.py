@@ -1,4 +1,4 @@
-"""Reports for people and machines: each document has a writer; json and csv are always written."""
+"""Reports for people and machines: each document has a writer; json, csv and repairs are always written."""
 
 from __future__ import annotations
 
@@ -6,10 +6,16 @@ from collections.abc import Callable
 from pathlib import Path
 
 from irsurvey.model import FrameTask, Report
-from irsurvey.report import findings_csv, html, json
+from irsurvey.report import findings_csv, html, json, repairs_csv
 
-Writer = Callable[[Report, tuple[FrameTask, ...], Path], Path]
-"""Writes one document into the output folder, whole or not at all, and returns its path."""
+Writer = Callable[[Report, tuple[FrameTask, ...], Path], Path | None]
+"""Writes one document into the output folder, whole or not at all, and returns its path; None: there is none to
+write of this report."""
 
-WRITERS: dict[str, Writer] = {"json": json.write, "csv": findings_csv.write, "html": html.write}
+WRITERS: dict[str, Writer] = {
+    "json": json.write,
+    "csv": findings_csv.write,
+    "repairs": repairs_csv.write,
+    "html": html.write,
+}
 """Document → its writer."""

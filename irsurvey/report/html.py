@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from base64 import b64encode
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 from functools import cache
@@ -12,9 +11,22 @@ from typing import TYPE_CHECKING
 
 from irsurvey import files, numbers
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
-from irsurvey.report import condition_rows, facts, results, season_table, strip_plot, texts
+from irsurvey.report import (
+    axes,
+    component_facts,
+    condition_rows,
+    facts,
+    pictures,
+    repair_list,
+    results,
+    season_table,
+    strip_plot,
+    texts,
+    trend_plot,
+)
 from irsurvey.report.labels import change_mark, component_mark, strip_mark
 from irsurvey.report.picture import NUMBERED
+from irsurvey.report.pictures import Picture
 from irsurvey.report.ranking import Ranked, foremost, governing, in_order
 
 if TYPE_CHECKING:
@@ -31,16 +43,6 @@ _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 
 
 @dataclass(frozen=True, slots=True)
-class Picture:
-    """A picture to stand in the page: data URI, size [px], and what it shows in words."""
-
-    uri: str
-    width: int
-    height: int
-    words: str
-
-
-@dataclass(frozen=True, slots=True)
 class Sheet:
     """What the page shows of one frame; of very many findings, the foremost, and how many `more` there are."""
 
@@ -49,6 +51,7 @@ class Sheet:
     findings: tuple[Finding, ...]
     more: int
     picture: Picture | None
+    photo: Picture | None
     change: Picture | None  # what pressure changed
     unchanged: tuple[str, ...]  # ids of findings that pressure did not change
     to_do: str  # in short: what the most urgent of its findings and components asks for
@@ -77,6 +80,8 @@ def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
     ranked = in_order(report)
     sheets = [_sheet(frame, by_id.get(frame.id), out) for frame in report.frames]
     seasons = season_table.tables(report)
+    listed = {(item.frame, item.key) for item in report.repairs}
+    standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
     template = _environment().get_template("report.html.j2")
     rendered = template.render(
         report=report,
@@ -98,7 +103,9 @@ def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
         named={_name(entry): entry for entry in ranked},
         not_cleared=sum(1 for _ in not_cleared(report)),
         open_points=gathered(not_cleared(report)),
-        cautions=(*report.cautions, *texts.cautions(_kinds(report))),
+        repairs=repair_list.shown(report, ranked, by_id, out),
+        notable=[entry for entry in ranked if entry.item.urgency != 0 and _place(entry) not in listed],
+        cautions=tuple(dict.fromkeys((*report.cautions, *standing))),
     )
     return _CONTROLS.sub("\ufffd", rendered)
 
@@ -135,16 +142,6 @@ def gathered(points: Iterable[Open]) -> list[Open]:
     ]
 
 
-def _kinds(report: Report) -> Iterator[str]:
-    """What a report tells of that standing cautions are written for."""
-    for frame in report.frames:
-        yield frame.kind
-        if frame.room_air or frame.surface_at_risk:
-            yield "moisture"
-    if report.seasons:
-        yield "season"
-
-
 def _warm_areas(ranked: tuple[Ranked, ...], tasks: dict[str, FrameTask]) -> list[Ranked]:
     """The warm findings of a survey for moisture in roofs, the largest first."""
 
@@ -173,6 +170,11 @@ def _name(entry: Ranked) -> str:
     return entry.item.id if isinstance(entry.item, Finding) else entry.item.key
 
 
+def _place(entry: Ranked) -> tuple[str, str]:
+    """What the repair list calls a finding or component."""
+    return entry.frame.id, entry.item.key
+
+
 def _why(item: Finding | ComponentReport) -> str:
     """Why something is not cleared: what its governing assessment says, else what its flags mean."""
     assessment = governing(item.assessments)
@@ -199,8 +201,9 @@ def _sheet(frame: FrameReport, task: FrameTask | None, out: Path) -> Sheet:
         task,
         findings=shown,
         more=len(frame.findings) - len(shown),
-        picture=_picture(frame, out, "annotated.png"),
-        change=_picture(frame, out, "change.png"),
+        picture=pictures.stored(frame, out, "annotated.png"),
+        photo=pictures.photograph(task, pictures.PHOTOGRAPH_SIDE) if task and frame.status != "failed" else None,
+        change=pictures.stored(frame, out, "change.png"),
         unchanged=_unchanged(frame),
         to_do=to_do,
         chip=chip,
@@ -217,18 +220,6 @@ def _unchanged(frame: FrameReport) -> tuple[str, ...]:
 def _is_compared(frame: FrameReport) -> bool:
     """Whether a frame has a reference area to hold its pixels against."""
     return frame.detectable is not None and frame.detectable.min_delta_k is not None
-
-
-def _picture(frame: FrameReport, out: Path, name: str) -> Picture | None:
-    from PIL import Image
-
-    path = out / "frames" / frame.id / name
-    if frame.status == "failed" or not path.is_file():
-        return None
-    with Image.open(path) as image:
-        words = str(image.info.get("Description", ""))
-        width, height = image.size
-    return Picture(f"data:image/png;base64,{b64encode(path.read_bytes()).decode()}", width, height, words)
 
 
 def _short(text: str, length: int = _LONG) -> str:
@@ -258,7 +249,8 @@ def _environment() -> Environment:
     )
     environment.filters |= {"short": _short, "moment": _moment, "upper_first": _upper_first}
     environment.globals |= {
-        "axes": strip_plot,
+        "axes": axes,
+        "c": component_facts,
         "change_mark": change_mark,
         "component_mark": component_mark,
         "f": facts,
@@ -270,6 +262,7 @@ def _environment() -> Environment:
         "strip_plot": strip_plot.plot,
         "summary_length": SUMMARY_LENGTH,
         "t": texts,
+        "trend_plot": trend_plot.plot,
     }
     environment.tests |= {"component": lambda ranked: isinstance(ranked.item, ComponentReport)}
     return environment

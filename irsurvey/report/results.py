@@ -5,7 +5,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from irsurvey import numbers
-from irsurvey.assess.criteria import criteria
 from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
 from irsurvey.report import texts
 from irsurvey.report.ranking import governing, is_saturated
@@ -18,6 +17,13 @@ _BARS, _LEAST_BAR = 5, 0.02
 """The longest bars a chart shows, and the share from which a term gets one; the rest together get the last."""
 COLDEST = ("temperature_factor", "temperature_factor_at_0_25", "dew_point_margin_k", "mould_margin_k")
 """Numbers of the coldest spot of a finding."""
+_OF_TWINS = ("delta_similar_k", "delta_similar_in_calm_k", "relative_difference_percent")
+"""Numbers of a component and its twin: where both are too small, which way they err is not known."""
+_OF_SPOT = (
+    *("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_ambient_in_calm_k", *_OF_TWINS),
+    *("delta_neighbours_k", "above_limit_k", "above_allowed_k"),
+)
+"""Numbers that a spot too small, or beyond the range, makes a bound."""
 _NO_CHANCE = 1e-9
 _NEAR_EDGE = 0.975
 """A class less probable than that has an edge within about U of the value: Φ(2) = 0.977."""
@@ -59,7 +65,12 @@ def reading(item: Item, key: str, *, unit: bool = True) -> str:
     """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
     estimate: Estimate | None = getattr(item, key)
     text = numbers.measured(estimate, key, unit=unit)
-    if estimate is None or text == numbers.NOTHING or not is_bound(item, key):
+    return text if estimate is None or text == numbers.NOTHING else bounded(item, key, text)
+
+
+def bounded(item: Item, key: str, text: str) -> str:
+    """A number of a finding or component in words, with ≥ or ≤ before it where it is only a bound."""
+    if not is_bound(item, key):
         return text
     return f"{'≤' if isinstance(item, Finding) and item.sense == 'cold' else '≥'}\u00a0{text}"
 
@@ -71,15 +82,15 @@ def interval(item: Item, key: str) -> str:
 
 def is_bound(item: Item, key: str) -> bool:
     """Whether a reading tells only how far the truth lies at least: beyond the range, smaller than the spot."""
-    if key == "delta_similar_k" and "twin size-limited" in item.flags:
-        return False  # both are too small: which way the difference errs is not known
+    if key in _OF_TWINS and "twin size-limited" in item.flags:
+        return False
     if key in ("mean_c", "mean_delta_k"):
         return is_saturated(item)
     if not (is_saturated(item) or "size-limited" in item.flags):
         return False
     if isinstance(item, Finding) and key in COLDEST:
         return item.sense == "cold"  # the true spot is colder still; of a warm finding the coldest is not its extreme
-    return key in ("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_similar_k")
+    return key in _OF_SPOT
 
 
 def exceeds(item: Item) -> str:
@@ -100,6 +111,18 @@ def rated(item: ComponentReport) -> str:
     if band is None or band.low == band.high == 0:
         return ""
     return f"{numbers.number(band.low, 2)} to {numbers.number(band.high, 2)}"
+
+
+def load(item: Item | None, load_a: float | None, rated_a: float | None) -> str:
+    """The load of a part and what it is of: "200 A of 400 A rated (50 %)"; "" where load is not what heats it."""
+    if load_a is None and rated_a is None and item and "load unknown" not in item.flags:
+        return ""
+    stated, rating = (numbers.with_symbol(numbers.number(current), "A") for current in (load_a, rated_a))
+    if load_a is None:
+        return "not recorded" if rated_a is None else f"not recorded; rated {rating}"
+    if not rated_a:
+        return f"{stated}, rating not recorded"
+    return f"{stated} of {rating} rated ({numbers.percent(load_a / rated_a)})"
 
 
 def budgets(item: Item) -> tuple[Shown, ...]:
@@ -126,8 +149,7 @@ def probabilities(assessment: Assessment) -> dict[str, float]:
 def _judged(item: Item) -> str | None:
     """Key of the number that the governing assessment judges."""
     assessment = governing(item.assessments)
-    criterion = criteria().get(assessment.criterion) if assessment else None
-    return criterion.quantity if criterion else None
+    return assessment.quantity if assessment else None
 
 
 def _shown(item: Item, key: str, terms: tuple[BudgetTerm, ...]) -> Shown:

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import tomllib
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from functools import cache
 from importlib.resources import files
 from typing import Any
 
+from irsurvey.model import FrameReport
 from irsurvey.numbers import UNITS
 
 _OF_AREAS = ("noise", "outline")
@@ -121,6 +122,32 @@ def owner(note: str) -> str:
     return _word("owner", note)
 
 
+def basis(kind: str) -> str:
+    """What a difference was taken against: "above ambient air"."""
+    return _word("basis", kind)
+
+
+def form(kind: str) -> str:
+    """What a joint is taken for when its heat is estimated."""
+    return _word("form", kind)
+
+
+def remark(kind: str) -> str:
+    """What must be known with a number of a component; "" where nothing must."""
+    words: str = _texts()["remark"].get(kind, "")
+    return words
+
+
+def repairs(note: str) -> str:
+    """A sentence beside the repair list."""
+    return _word("repairs", note)
+
+
+def usual(how: str) -> str:
+    """How what is usual among many components was found."""
+    return _word("usual", how)
+
+
 def about(key: str) -> str:
     """The heading of a free text of the survey."""
     return _word("about", key) if key in _texts()["about"] else _plain(key)
@@ -146,9 +173,25 @@ def inside(key: str) -> str:
 
 
 def cautions(kinds: Iterable[str]) -> tuple[str, ...]:
-    """The standing cautions for these kinds of survey, and for moisture and season where a report tells of them."""
+    """The standing cautions for these kinds of survey, and for moisture, joints, trends and seasons told of."""
     texts = _texts()["cautions"]
     return tuple(caution for kind in ("all", *sorted(set(kinds))) for caution in texts.get(kind, ()))
+
+
+def cautions_for(frames: Iterable[FrameReport], *, has_season: bool) -> tuple[str, ...]:
+    """The standing cautions that a report of these frames, and of a season's cost, has to carry."""
+    return cautions((*(kind for frame in frames for kind in _told_of(frame)), *(["season"] if has_season else [])))
+
+
+def _told_of(frame: FrameReport) -> Iterator[str]:
+    """What a frame tells of that standing cautions are written for."""
+    yield frame.kind
+    if frame.room_air or frame.surface_at_risk:
+        yield "moisture"
+    if any(component.joint for component in frame.components):
+        yield "joint"
+    if any(component.trend for component in frame.components):
+        yield "trend"
 
 
 def _area(kind: str, owner: str) -> str:

@@ -15,7 +15,7 @@ from irsurvey.survey.log import Log
 
 @dataclass(frozen=True, slots=True)
 class Context:
-    """What all frames share, and where faults and notices (frame, text) go.
+    """What all frames share, and where faults and notices (frame, text) go.  `loads`: load logs by circuit.
 
     `unlogged`: why a condition of a frame, (id, key), could not be taken from a log that holds it.
     """
@@ -26,6 +26,8 @@ class Context:
     cameras: Mapping[str, Camera]
     elements: Mapping[str, Element]
     logs: Mapping[str, Log | None]
+    loads: Mapping[str, Log | None]
     faults: list[Fault]
     notices: list[tuple[str, str]]
+    is_ahead: bool = False
     unlogged: dict[tuple[str, str], str] = field(default_factory=dict)

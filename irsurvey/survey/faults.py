@@ -35,6 +35,8 @@ _EXPECTED = {
     "model_type": "a table",
 }
 _BOUNDS = ("gt", "ge", "le")
+_INSTEAD = {"transmittance": "window_from"}
+"""Key that may be missing → the one that stands for it."""
 _KNOWN_KEY = "a known key"
 _TAG = re.compile(r"<[a-z-]+>")
 _GONE = object()
@@ -58,8 +60,10 @@ def validated(content: Mapping[str, Any]) -> tuple[Document, list[Fault]]:
 
 def follows_from(fault: Fault, earlier: Iterable[Fault]) -> bool:
     """Whether something is missing, or a name unknown, only because of a fault found earlier."""
+    name = fault.where.split(".")[-1]
     return _lies_over(fault.where, earlier) or any(
-        fault.got.startswith("nothing") and other.where.split(".")[-1] == fault.where.split(".")[-1]
+        fault.got.startswith("nothing")
+        and (other.where.split(".")[-1] == name or f".{_INSTEAD.get(name)}" in other.where)
         for other in earlier
     )
 

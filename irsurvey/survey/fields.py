@@ -39,6 +39,11 @@ class Table(BaseModel):
         return {name: getattr(self, name) for name in type(self).model_fields if name in self.model_fields_set}
 
 
+def table_or_word(value: object) -> str:
+    """The tag, in a union, of what may be a table or one word or number."""
+    return "<table>" if isinstance(value, dict | BaseModel) else "<word>"
+
+
 def ascending(limits: tuple[float, float]) -> tuple[float, float]:
     """A check of two limits: the first below the second."""
     if limits[0] >= limits[1]:

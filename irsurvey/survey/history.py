@@ -41,12 +41,12 @@ class Held:
 NEVER_READ: Final = Held(nan, False)
 
 
-def unbroken_since(seconds: Sequence[float], moment: float) -> float:
-    """The earliest reading [s] from which they reach to `moment` without a long gap; NaN where none do."""
+def unbroken_since(seconds: Sequence[float], moment: float, longest_gap: float = LONGEST_GAP) -> float:
+    """The earliest reading [s] from which they reach to `moment` without a longer gap; NaN where none do."""
     after = bisect_left(seconds, moment)
     if after == len(seconds) or (after == 0 and seconds[0] != moment):
         return nan
-    breaks = np.flatnonzero(np.diff(seconds[: after + 1]) > LONGEST_GAP)
+    breaks = np.flatnonzero(np.diff(seconds[: after + 1]) > longest_gap)
     first = seconds[int(breaks[-1]) + 1 if breaks.size else 0]
     return first if first <= moment else nan
 
@@ -86,9 +86,9 @@ def difference_held(indoor: Series, outdoor: Series, moment: float, least: float
     return _held(nodes, side * difference - least)
 
 
-def steady(series: Series, moment: float, limit: float) -> Held:
+def steady(series: Series, moment: float, limit: float, longest_gap: float = LONGEST_GAP) -> Held:
     """How long a series stayed within `limit` of its value at `moment`, until then."""
-    start = unbroken_since(series[0], moment)
+    start = unbroken_since(series[0], moment, longest_gap)
     if not start <= moment:
         return NEVER_READ
     nodes = _nodes(series[0], start, moment)

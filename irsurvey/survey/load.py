@@ -13,6 +13,7 @@ from irsurvey.errors import Fault, SurveyError
 from irsurvey.model import Asset, Survey
 from irsurvey.survey import places, table
 from irsurvey.survey.correlations import unknown_inputs
+from irsurvey.survey.earlier import earlier
 from irsurvey.survey.elements import elements
 from irsurvey.survey.faults import follows_from, validated
 from irsurvey.survey.known import Known
@@ -92,6 +93,7 @@ def _survey(content: Mapping[str, Any], folder: Path, known: Known, *, ahead: bo
     faults += wrong
     tasks, unresolved, noted = resolved(document, folder, known, _names(whole), ahead=ahead)
     costs = seasons(document, folder, known, unresolved, noted, ahead=ahead)
+    history = earlier(document, folder, tasks, unresolved, noted, ahead=ahead)
     faults += [fault for fault in unresolved if not follows_from(fault, faults)]
     if not tasks and not faults:
         faults = [Fault("frame", "at least one frame", "nothing", "list [[frame]] or give a [[group]] a glob")]
@@ -109,6 +111,7 @@ def _survey(content: Mapping[str, Any], folder: Path, known: Known, *, ahead: bo
         assets=tuple(Asset(**dict(asset)) for asset in document.asset),
         elements=tuple(elements(document, known).values()),
         seasons=costs,
+        history=history,
         as_read=json.dumps(content, ensure_ascii=False, default=lambda moment: moment.isoformat()),
         notices=notices(document, tasks, noted),
     )

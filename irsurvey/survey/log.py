@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from bisect import bisect_left
 from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
@@ -15,7 +16,7 @@ from pydantic import ValidationError
 
 from irsurvey.errors import Fault, SurveyError
 from irsurvey.survey.faults import nearest, shown
-from irsurvey.survey.fields import NotNegative, key
+from irsurvey.survey.fields import NotNegative, Table, key
 from irsurvey.survey.history import LONGEST_GAP, Series
 from irsurvey.survey.schema import Conditions
 from irsurvey.survey.table import Sheet, sheet
@@ -30,6 +31,12 @@ class _Row(Conditions):
     """What a reading may hold."""
 
     rain_mm: NotNegative | None = key("Rain since the reading before [mm]")
+
+
+class _Load(Table):
+    """What a reading of a load may hold."""
+
+    load_a: NotNegative | None = key("Current [A]")
 
 
 _CONSTANT = {
@@ -84,7 +91,7 @@ class Log:
 def read(path: Path, zone: tzinfo, where: str) -> Log:
     """The log in a CSV file with a column `time` and columns named as conditions.  Raises SurveyError."""
     table = sheet(path, where)
-    known = [column for column in table.columns if column in COLUMNS]
+    known = {column: (_Row, column) for column in table.columns if column in COLUMNS}
     if TIME not in table.columns or not known:
         expected = f"a column {TIME} and columns named as conditions"
         if TIME not in table.columns:
@@ -93,11 +100,26 @@ def read(path: Path, zone: tzinfo, where: str) -> Log:
             near = {column: nearest(column, COLUMNS) for column in table.columns if column != TIME}
             remedy = "; ".join(f"{column}: {remedy}" for column, remedy in list(near.items())[:3])
         raise SurveyError(Fault(table.where, expected, ", ".join(table.columns), remedy))
+    return _log(path, table, known, zone)
+
+
+def read_loads(path: Path, zone: tzinfo, where: str) -> Log:
+    """The log in a CSV file with a column `time` and columns load_a or load_a_<phase>.  Raises SurveyError."""
+    table = sheet(path, where)
+    known = {column: (_Load, "load_a") for column in table.columns if re.fullmatch("load_a(_.+)?", column)}
+    if TIME not in table.columns or not known:
+        expected, got = f"columns {TIME} and load_a, or load_a_1 for phase 1", ", ".join(table.columns)
+        raise SurveyError(Fault(table.where, expected, got, "name the columns so"))
+    return _log(path, table, known, zone)
+
+
+def _log(path: Path, table: Sheet, known: Mapping[str, tuple[type[Table], str]], zone: tzinfo) -> Log:
+    """The log of the `known` columns, each by the table and key that say what it may hold.  Raises SurveyError."""
     times, faults = _times(table, zone)
     series = {}
-    for column in known:
+    for column, kind in known.items():
         values = {line: table.value(cells[column]) for line, cells in table.rows if column in cells}
-        faults += _value_faults(column, values, table.where)
+        faults += _value_faults(values, f"{table.where}.{column}", *kind)
         pairs = sorted((times[line], float(value)) for line, value in values.items() if line in times and _is(value))
         if pairs:
             series[column] = (tuple(time for time, _ in pairs), tuple(value for _, value in pairs))
@@ -131,22 +153,20 @@ def _times(table: Sheet, zone: tzinfo) -> tuple[dict[int, float], list[Fault]]:
     return times, faults
 
 
-def _value_faults(column: str, values: Mapping[int, object], where: str) -> Iterator[Fault]:
+def _value_faults(values: Mapping[int, object], where: str, table: type[Table], key: str) -> Iterator[Fault]:
     """Cells that are no numbers, and numbers that cannot be this condition: each kind once, with its line."""
     numbers = {line: float(value) for line, value in values.items() if _is(value)}
     wrong = [line for line in values if line not in numbers]
     if wrong:
         more = f" and {len(wrong) - 1} more" if len(wrong) > 1 else ""
         got = f"{shown(values[wrong[0]])}{more}"
-        yield Fault(
-            f"{where}.{column}, line {wrong[0]}", "a number", got, "leave the cell empty where nothing was logged"
-        )
+        yield Fault(f"{where}, line {wrong[0]}", "a number", got, "leave the cell empty where nothing was logged")
     for line in {pick(numbers, key=numbers.__getitem__): None for pick in (min, max) if numbers}:
         try:
-            _Row.model_validate({column: numbers[line]})
+            table.model_validate({key: numbers[line]})
         except ValidationError as error:
             expected = error.errors()[0]["msg"].removeprefix("Input should be ")
-            yield Fault(f"{where}.{column}, line {line}", f"a value {expected}", shown(numbers[line]))
+            yield Fault(f"{where}, line {line}", f"a value {expected}", shown(numbers[line]))
 
 
 def _is(value: object) -> TypeGuard[float]:

@@ -3,13 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from datetime import datetime
 
-from irsurvey.model import Component, Polygon, Strip, Surface
+from irsurvey.model import Component, JointShape, Polygon, Strip, Surface
 from irsurvey.survey import schema
+from irsurvey.survey.context import Context
 from irsurvey.survey.known import Known
 from irsurvey.survey.levels import Levels
+from irsurvey.survey.loads import STEADY, Load, by_circuit, load_at
 from irsurvey.survey.optics import optics, own_reflected, put
 from irsurvey.survey.scene import Quantities
+from irsurvey.survey.schema_drawn import Surface as SurfaceTable
+from irsurvey.survey.schema_electrical import Circuit
+from irsurvey.survey.schema_electrical import Component as ComponentTable
 from irsurvey.survey.uncertainties import Uncertainties
 from irsurvey.survey.units import si
 
@@ -38,23 +44,30 @@ def surfaces(levels: Levels, quantities: Quantities, uncertainties: Uncertaintie
 
 
 def components(
-    levels: Levels, quantities: Quantities, uncertainties: Uncertainties, known: Known
+    levels: Levels, taken: datetime | None, quantities: Quantities, uncertainties: Uncertainties, context: Context
 ) -> tuple[Component, ...]:
     """Components in order, the group's first, with the loads of their circuits; adds to `quantities`."""
     material = _target_material(levels)
-    circuits = {circuit.id: circuit for circuit in levels.document.circuit}
+    circuits = by_circuit(levels.document)
     result = []
     for area in component_tables(levels):
         circuit = circuits.get(area.circuit or "")
+        load, steady = _load(area, circuit, levels.id, taken, context)
+        own = area if area.time_constant_min is not None else circuit
+        minutes = None if own is None else own.time_constant_min
         component = Component(
             name=str(area.name),
             polygon=points(area.polygon),
             group=area.group,
             phase=area.phase,
-            load=_load(area, circuit) if area.load_a is None else area.load_a,
+            load=load,
             rated=area.rated_a if area.rated_a is not None or circuit is None else circuit.rated_a,
-            emissivity=optics(area, quantities, material, uncertainties, known),
+            emissivity=optics(area, quantities, material, uncertainties, context.known),
             reflected=own_reflected(area, quantities, uncertainties),
+            limits=tuple(dict.fromkeys(area.limits)),
+            shape=_shape(area),
+            steady=steady,
+            time_constant=None if minutes is None else si("time_constant_min", minutes),
         )
         result.append(component)
     return tuple(result)
@@ -70,7 +83,7 @@ def strips(frame: schema.Frame) -> tuple[Strip, ...]:
     return tuple(result)
 
 
-def surface_tables(levels: Levels) -> list[schema.Surface]:
+def surface_tables(levels: Levels) -> list[SurfaceTable]:
     """Surfaces of a frame, named; one of its own takes the place of its group's of the same name."""
     own = levels.frame.surface
     names = {area.name for area in own if area.name}
@@ -81,7 +94,7 @@ def surface_tables(levels: Levels) -> list[schema.Surface]:
     ]
 
 
-def component_tables(levels: Levels) -> list[schema.Component]:
+def component_tables(levels: Levels) -> list[ComponentTable]:
     """Components of a frame, named; one of its own takes the place of its group's of the same name."""
     own = levels.frame.component
     names = {area.name for area in own if area.name}
@@ -97,9 +110,33 @@ def points(polygon: Sequence[tuple[float, float]]) -> Polygon:
     return tuple((float(x), float(y)) for x, y in polygon)
 
 
-def _load(area: schema.Component, circuit: schema.Circuit | None) -> float | None:
-    loads = circuit.load_a if circuit else None
-    return loads.get(area.phase or "") if isinstance(loads, dict) else loads
+def _load(
+    area: ComponentTable, circuit: Circuit | None, frame: str, taken: datetime | None, context: Context
+) -> tuple[float | None, float | None]:
+    """The load of a component [A], its own before its circuit's, and how long it has been steady [s], by the log."""
+    if circuit is None:
+        return area.load_a, None
+    series = context.loads.get(circuit.id)
+    told = Load() if series is None else load_at(circuit.id, series, area.phase, taken)
+    if told.notice:
+        context.notices.append((frame, told.notice))
+    own, logged = area.load_a, told.amperes
+    if own is not None and logged is not None and abs(own - logged) > STEADY * logged:
+        text = f"load_a of {area.name} stated as {own:g}, by the log {logged:.4g}: what is stated counts"
+        context.notices.append((frame, text))
+    loads = circuit.load_a
+    stated_load = loads.get(area.phase or "") if isinstance(loads, dict) else loads
+    return next((load for load in (own, logged, stated_load) if load is not None), None), told.steady
+
+
+def _shape(area: ComponentTable) -> JointShape | None:
+    if area.cylinder is not None:
+        return JointShape("cylinder", diameter=area.cylinder.diameter_m, length=area.cylinder.length_m)
+    if area.plate is not None:
+        return JointShape("plate", length=area.plate.height_m, width=area.plate.width_m)
+    if area.sphere is not None:
+        return JointShape("sphere", diameter=area.sphere.diameter_m)
+    return None if area.area_m2 is None else JointShape("area", area=area.area_m2)
 
 
 def _target_material(levels: Levels) -> str | None:

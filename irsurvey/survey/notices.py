@@ -18,9 +18,16 @@ _ASSUMED = {
     "mean_radiant": "mean radiant temperature not stated: that of the air assumed",
     "ground": "ground not recorded: the temperature of the outdoor air assumed",
     "cloud": "cloud cover not recorded: {:.0%} assumed",
-    "window_temperature": "temperature of the window not stated: that of the air assumed",
+    "window_transmittance": "transmittance of the window not measured yet: {:.2f} assumed",
+    "window_temperature": (
+        "warning: temperature of the window not stated: that of the air assumed, and what it is off by goes into "
+        "every part behind it"
+    ),
     "window_ambient": "what the window mirrors not stated: the air temperature assumed",
 }
+
+_WITHOUT_LOAD = ("voltage-driven", "pv")
+"""Methods for what is warm by its voltage or by the sun: no load law holds, and a load clears nothing."""
 
 
 def notices(document: Document, tasks: list[FrameTask], noted: Iterable[tuple[str, str]]) -> tuple[str, ...]:
@@ -60,6 +67,8 @@ def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[s
             yield "wind not recorded"
         if task.reference is None:
             yield "no reference area drawn: an automatic one is a suggestion, without severity until confirmed"
+    else:
+        yield from _of_electrical(task, assumed)
     if task.reflected_from is not None and bands[task.reflected_from] != task.camera.band:
         yield f"reflected_from {task.reflected_from}, which was taken in another band"
     if task.camera.ifov is None:
@@ -67,7 +76,7 @@ def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[s
     if task.camera.noise is None:
         yield f"noise_k of {task.camera.name} not stated: estimated from the frame"
     unknown = ", ".join(component.name for component in task.components if component.load is None)
-    if unknown:
+    if unknown and task.method not in _WITHOUT_LOAD:
         yield f"load not recorded: nothing can be cleared for {unknown}"
     if task.taken is None:
         yield "time not stated"
@@ -75,6 +84,22 @@ def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[s
         yield "raw file missing: the frame will fail"
     if task.photo_path is not None and not _exists(task.photo_path):
         yield "photograph missing"
+
+
+def _of_electrical(task: FrameTask, assumed: Mapping[str, float]) -> Iterator[str]:
+    if task.find_components and task.method not in _WITHOUT_LOAD:
+        yield "find_components: of parts that are found no load is known: nothing can be cleared for them"
+    if task.find_components:
+        if "ambient" in assumed:
+            yield "find_components without ambient_c: parts that are found are held against the air on the path"
+        if task.reference is None:
+            yield "find_components without a reference area: parts are looked for against an automatic one"
+    if task.method == "pv" and "irradiance" not in task.scene:
+        yield "irradiance_w_m2 not recorded: differences of modules cannot be brought to 1000 W/m²"
+    unsettled = [part.name for part in task.components if part.steady is not None and part.time_constant is None]
+    if unsettled:
+        names = ", ".join(unsettled)
+        yield f"time_constant_min not stated: whether the logged load was steady for long enough stays open for {names}"
 
 
 def _exists(path: str) -> bool:

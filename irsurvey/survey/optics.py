@@ -10,11 +10,12 @@ from dataclasses import replace
 from itertools import chain, count
 
 from irsurvey.model import Quantity
-from irsurvey.survey import schema
 from irsurvey.survey.defaults import defaults
 from irsurvey.survey.known import Known
 from irsurvey.survey.levels import DEPTH, Stated
 from irsurvey.survey.scene import Quantities
+from irsurvey.survey.schema_drawn import Surface
+from irsurvey.survey.schema_electrical import Component
 from irsurvey.survey.uncertainties import Uncertainties
 from irsurvey.survey.units import si
 
@@ -37,7 +38,7 @@ def target(stated: Mapping[str, Stated], uncertainties: Uncertainties, known: Kn
 
 
 def optics(
-    area: schema.Surface | schema.Component,
+    area: Surface | Component,
     quantities: Quantities,
     target_material: str | None,
     uncertainties: Uncertainties,
@@ -54,13 +55,13 @@ def optics(
         if told is None:
             return _TARGET
         own = replace(quantities[_TARGET], u=0.0, follows=_TARGET)
-    group = area.group if isinstance(area, schema.Component) else None
+    group = area.group if isinstance(area, Component) else None
     names = [f"emissivity:{label}" for label in (area.material, group, area.name) if label]
     same = [_TARGET] if area.material and area.material == target_material else []
     return put(quantities, [*same, *names], own, _total(own, told, uncertainties))
 
 
-def own_reflected(area: schema.Surface | schema.Component, quantities: Quantities, uncertainties: Uncertainties) -> str:
+def own_reflected(area: Surface | Component, quantities: Quantities, uncertainties: Uncertainties) -> str:
     """Name in the scene of what an area mirrors; adds it to `quantities` where the area states its own."""
     if area.reflected_c is None:
         return "reflected"

@@ -39,6 +39,8 @@ def areas(task: FrameTask) -> Iterator[tuple[str, Polygon]]:
         yield f"surface[{surface.name}].polygon", surface.polygon
     for component in task.components:
         yield f"component[{component.name}].polygon", component.polygon
+    if task.window_frames is not None:  # frames of one camera are of one size
+        yield "window_from.polygon", task.window_frames.polygon
 
 
 def _drawn(task: FrameTask) -> Iterator[tuple[str, Polygon]]:

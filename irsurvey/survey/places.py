@@ -17,12 +17,17 @@ def inside(folder: Path, written: str, where: str) -> str:
 
     `folder` is resolved; a path may leave it neither by its text nor through a symbolic link: SurveyError.
     """
-    path = PurePosixPath(written.replace("\\", "/"))
+    path = PurePosixPath(plain(written))
     if path.is_absolute() or PureWindowsPath(written).anchor or "\0" in written:
         raise SurveyError(Fault(where, "a path relative to the survey file", repr(written), _REMEDY))
     if _climbs_out(path) or not _resolves_inside(folder, path):
         raise SurveyError(Fault(where, "a path inside the survey's folder", repr(written), _REMEDY))
     return str(path)
+
+
+def plain(written: str) -> str:
+    """A path as written, with forward slashes and nothing idle in it."""
+    return str(PurePosixPath(written.replace("\\", "/")))
 
 
 def matches(folder: Path, pattern: str, where: str) -> list[str]:

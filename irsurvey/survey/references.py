@@ -9,6 +9,9 @@ from irsurvey.survey import schema
 from irsurvey.survey.entries import frame_name
 from irsurvey.survey.faults import nearest
 from irsurvey.survey.known import Known
+from irsurvey.survey.loads import by_circuit, phases
+from irsurvey.survey.log import Log
+from irsurvey.survey.own_criteria import is_file
 
 
 def every_level(document: schema.Document) -> Iterator[tuple[str, schema.Document | schema.Group | schema.Frame]]:
@@ -21,11 +24,16 @@ def every_level(document: schema.Document) -> Iterator[tuple[str, schema.Documen
 
 
 def reference_faults(
-    document: schema.Document, named: Mapping[str, Collection[str]], without_reflector: Collection[str], known: Known
+    document: schema.Document,
+    named: Mapping[str, Collection[str]],
+    without_reflector: Collection[str],
+    loads: Mapping[str, Log | None],
+    known: Known,
 ) -> Iterator[Fault]:
     """Names that are the name of nothing, or of two things.
 
-    `named`: names of groups, cameras, circuits, assets and frames; `without_reflector`: frames that draw none.
+    `named`: names of groups, cameras, circuits, assets and frames; `without_reflector`: frames that draw none;
+    `loads`: load logs by circuit.
     """
     for kind, tables in (
         ("group", document.group),
@@ -39,11 +47,16 @@ def reference_faults(
     if document.camera is not None and "camera" in document.cameras:
         yield Fault("cameras.camera", "another name", "camera", "that is the name of the one under [camera]")
     for number, name in enumerate(document.survey.criteria, 1):
-        yield from _unknown(name, known.criteria, f"survey.criteria[#{number}]", "irsurvey criteria lists")
+        if not is_file(name):
+            yield from _unknown(name, known.criteria, f"survey.criteria[#{number}]", "irsurvey criteria lists")
     for number, name in enumerate(document.survey.standards, 1):
         yield from _unknown(name, known.standards, f"survey.standards[#{number}]", "irsurvey holds requirements of")
     yield from _unknown(document.survey.camera, named["camera"], "survey.camera", "[cameras] holds")
-    circuits = {circuit.id: circuit for circuit in document.circuit}
+    known_phases = {
+        name: phases(one, loads.get(name))
+        for name, one in by_circuit(document).items()
+        if name not in loads or loads[name] is not None  # one whose log is at fault may have any phase
+    }
     for where, level in every_level(document):
         conditions = level.conditions
         if "convection" in conditions.model_fields_set:
@@ -63,7 +76,10 @@ def reference_faults(
         if not isinstance(level, schema.Document):
             yield from _unknown(level.camera, named["camera"], f"{where}camera", "[cameras] holds")
             yield from _unknown(level.element, named["element"], f"{where}element", "is the id of an [[element]]")
-            yield from _mark_faults(level, where, circuits, named["circuit"], known)
+            yield from _mark_faults(level, where, known_phases, named["circuit"], known)
+            for key in ("without", "through") if level.window_from else ():
+                place = f"{where}window_from.{key}"
+                yield from _unknown(getattr(level.window_from, key), named["frame"], place, "is the id of a frame")
         if isinstance(level, schema.Frame):
             yield from _unknown(level.group, named["group"], f"{where}group", "is the id of a [[group]]")
             if level.pair is not None:
@@ -75,7 +91,7 @@ def reference_faults(
 def _mark_faults(
     level: schema.Group | schema.Frame,
     where: str,
-    circuits: Mapping[str, schema.Circuit],
+    known_phases: Mapping[str, Collection[str] | None],
     named: Collection[str],
     known: Known,
 ) -> Iterator[Fault]:
@@ -91,10 +107,11 @@ def _mark_faults(
     for number, part in enumerate(level.component, 1):
         place = f"{where}component[{part.name or f'#{number}'}]"
         yield from _unknown(part.circuit, named, f"{place}.circuit", "is the id of a [[circuit]]")
-        circuit = circuits.get(part.circuit or "")
-        loads = circuit.load_a if circuit else None
-        if isinstance(loads, dict):
-            yield from _unknown(part.phase, loads, f"{place}.phase", f"circuit {part.circuit} has")
+        of_circuit = known_phases.get(part.circuit or "")
+        if of_circuit is not None:
+            yield from _unknown(part.phase, of_circuit, f"{place}.phase", f"circuit {part.circuit} has")
+        for one, name in enumerate(part.limits, 1):
+            yield from _unknown(name, known.limits, f"{place}.limits[#{one}]", "irsurvey has a limit of")
 
 
 def _unknown(name: str | None, names: Collection[str], where: str, such: str) -> Iterator[Fault]:

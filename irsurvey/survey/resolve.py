@@ -21,7 +21,7 @@ from irsurvey.model import (
     Scene,
     Signal,
 )
-from irsurvey.survey import log, logged, places, scene, schema
+from irsurvey.survey import loads, log, logged, places, scene, schema, windows
 from irsurvey.survey.cameras import cameras
 from irsurvey.survey.context import Context
 from irsurvey.survey.correlations import correlations
@@ -32,9 +32,11 @@ from irsurvey.survey.known import Known
 from irsurvey.survey.levels import DEPTH, Levels, Stated
 from irsurvey.survey.marks import components, points, strips, surface_tables, surfaces
 from irsurvey.survey.optics import target
+from irsurvey.survey.own_criteria import names, own_criteria
 from irsurvey.survey.references import every_level, reference_faults
 from irsurvey.survey.schema_building import Pair as PairTable
 from irsurvey.survey.schema_camera import Camera as CameraTable
+from irsurvey.survey.schema_drawn import Area
 from irsurvey.survey.times import instant, zone_named
 from irsurvey.survey.uncertainties import Uncertainties
 
@@ -74,20 +76,31 @@ def resolved(
     levels = [Levels(document, groups.get(entry.group or ""), entry.frame, entry.id) for entry in found]
     missing: list[Fault] = []
     logs = _logs(document, folder, zone, missing)
+    of_circuits = loads.logs(document, folder, zone, missing)
     notices = [("", f"{fault.where}: {fault.got}, not used") for fault in missing] if ahead else []
     if ahead:
         logs = {written: series for written, series in logs.items() if series is not None}
+        of_circuits = {circuit: series for circuit, series in of_circuits.items() if series is not None}
     else:
         faults += missing
     faults += material_faults(document, known)
-    context = Context(folder, known, zone, cameras(document), elements(document, known), logs, faults, notices)
-    tasks = [_task(entry, of, context) for entry, of in zip(found, levels, strict=True)]
+    context = Context(
+        folder, known, zone, cameras(document), elements(document, known), logs, of_circuits, faults, notices, ahead
+    )
+    seen = {of.id: windows.window_of(of, faults, notices) for of in levels}
+    own = own_criteria(document, folder, known, faults)
+    tasks = [
+        replace(_task(entry, of, seen[of.id], context), own_criteria=own)
+        for entry, of in zip(found, levels, strict=True)
+    ]
+    tasks = windows.with_window_frames(tasks, seen, faults)
     changes = logged.over_the_survey(tasks, {of.id: logged.columns(of, context) for of in levels})
     tasks = [replace(task, history=(*task.history, *changes.get(task.id, {}).items())) for task in tasks]
-    tasks = _paired(tasks, {entry.id: entry.frame.pair for entry in found}, faults)
+    buildings = {task.id for task in tasks if task.kind == "building"}
+    tasks = _paired(tasks, {entry.id: entry.frame.pair for entry in found if entry.id in buildings}, faults)
     every = {**named, "frame": {*named["frame"], *(entry.id for entry in found)}}
     without_reflector = {task.id for task in tasks} - {task.id for task in tasks if _draws_reflector(task)}
-    faults += reference_faults(document, every, without_reflector, known)
+    faults += reference_faults(document, every, without_reflector, of_circuits, known)
     if not every["camera"]:
         faults.append(Fault("camera", "a camera", "nothing", "describe it under [camera], or several under [cameras]"))
     if None not in logs.values():
@@ -95,29 +108,35 @@ def resolved(
     return tasks, faults, context.notices
 
 
-def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
+def _task(entry: Entry, levels: Levels, seen: windows.Seen | None, context: Context) -> FrameTask:
     frame = entry.frame
     kind, method, viewed_from = _kind(levels, context)
+    is_building, is_roof = kind == "building", (method, viewed_from) == ("roof-moisture", "outside")
+    _without_effect(levels, kind, context)
     camera, fill_values = _camera(levels, context)
     taken = _taken(levels, context)
     conditions, history = _conditions(levels, taken, context)
     uncertainties = Uncertainties(levels.stated("uncertainty"), viewed_from or "electrical")
-    window = levels.choice("window")
-    element = context.elements.get(levels.name("element") or "")
+    element = context.elements.get(levels.name("element") or "") if is_building else None
+    if is_roof and "tilt_deg" not in conditions:
+        context.notices.append((levels.id, "tilt_deg not stated: a level roof assumed"))
     sky_model = _value(conditions, "sky_model", schema.SKY_MODEL)
     sky_model_u = context.known.sky_models.get(sky_model)
 
     quantities: scene.Quantities = {q.name: q for q in target(levels.stated("target"), uncertainties, context.known)}
-    quantities |= {q.name: q for q in scene.conditions(conditions, uncertainties)}
+    quantities |= {q.name: q for q in scene.conditions(conditions, uncertainties, is_roof=is_roof)}
     quantities |= {q.name: q for q in scene.surroundings(quantities, sky_model_u, uncertainties)}
     quantities |= {q.name: q for q in scene.element(element.u_value if element else None, uncertainties)}
-    if window is not None:
-        air = quantities.get("air")
-        quantities |= {q.name: q for q in scene.window(window.value, window.source, air, uncertainties)}
+    if seen is not None:
+        through = scene.window(
+            seen.window, seen.source, quantities.get("air"), uncertainties, is_ahead=context.is_ahead
+        )
+        quantities |= {q.name: q for q in through}
     quantities |= {q.name: q for q in scene.scale(frame, camera, uncertainties)}
     quantities |= {q.name: q for q in scene.imperfections(uncertainties)}
-    seen = surfaces(levels, quantities, uncertainties, context.known)  # these add what is their own
-    parts = components(levels, quantities, uncertainties, context.known)
+    areas = surfaces(levels, quantities, uncertainties, context.known)  # these add what is their own
+    parts = components(levels, taken, quantities, uncertainties, context)
+    searched = None if is_building else levels.choice("find_components")
 
     task = FrameTask(
         id=entry.id,
@@ -129,21 +148,22 @@ def _task(entry: Entry, levels: Levels, context: Context) -> FrameTask:
         scene=Scene(tuple(quantities.values())),
         viewed_from=viewed_from,
         read=_read(levels, fill_values),
-        surfaces=seen,
+        surfaces=areas,
         components=parts,
         reference=_area(levels.choice("reference")),
         inspect=_area(levels.choice("inspect")),
-        has_window=window is not None,
+        has_window=seen is not None,
         known_scale=_known_scale(frame),
         detection=_detection(levels),
         convection=_value(conditions, "convection", _convection(kind, viewed_from, conditions)),
         surface_height=_value(conditions, "surface_height_m", _CONVECTION[kind][1]),
-        criteria=tuple(levels.document.survey.criteria),
+        criteria=names(levels.document),
         standards=tuple(levels.document.survey.standards),
-        strips=strips(frame),
+        strips=strips(frame) if is_building else (),
         element=element,
         history=tuple(history.items()),
         sky_model=sky_model,
+        find_components=searched is not None and searched.value,
         humidity_class=_value(conditions, "humidity_class", None),
         orientation=levels.name("orientation") or "",
         reflected_from=_value(conditions, "reflected_from", None),
@@ -184,10 +204,25 @@ def _kind(levels: Levels, context: Context) -> tuple[str, str, str | None]:
         context.faults.append(fault)
     if kind == "electrical":
         return kind, method.value if method else METHODS[kind][0], None
-    side = levels.choice("viewed_from")
+    side, how = levels.choice("viewed_from"), method.value if method else METHODS[kind][0]
+    assumed = "outside" if how == "roof-moisture" else "inside"
     if side is None:
-        context.notices.append((levels.id, "viewed_from not stated: inside assumed"))
-    return kind, method.value if method else METHODS[kind][0], side.value if side else "inside"
+        context.notices.append((levels.id, f"viewed_from not stated: {assumed} assumed"))
+    return kind, how, side.value if side else assumed
+
+
+def _without_effect(levels: Levels, kind: str, context: Context) -> None:
+    """Tells of what stands on a frame or its group, and is for the other kind of survey alone."""
+    searched = levels.choice("find_components")
+    for key, of, is_stated in (
+        ("pair", "building", levels.frame.pair is not None),
+        ("strip", "building", bool(levels.frame.strip)),
+        ("element", "building", levels.name("element") is not None),
+        ("find_components", "electrical", searched is not None and searched.value),
+    ):
+        if is_stated and kind != of:
+            where = "an electrical" if kind == "electrical" else "a building"
+            context.notices.append((levels.id, f"{key} has no effect in {where} survey"))
 
 
 def _camera(levels: Levels, context: Context) -> tuple[Camera, list[float]]:
@@ -308,7 +343,7 @@ def _read(levels: Levels, fill_values: list[float]) -> ReadOptions:
 
 
 def _area(choice: Stated | None) -> Polygon | None:
-    return points(choice.value.polygon) if choice and isinstance(choice.value, schema.Area) else None
+    return points(choice.value.polygon) if choice and isinstance(choice.value, Area) else None
 
 
 def _known_scale(frame: schema.Frame) -> KnownLength | KnownRectangle | None:

@@ -10,6 +10,7 @@ from irsurvey.model import Camera, Quantity
 from irsurvey.survey import schema
 from irsurvey.survey.defaults import defaults
 from irsurvey.survey.levels import Stated
+from irsurvey.survey.schema_electrical import Window
 from irsurvey.survey.uncertainties import Uncertainties
 from irsurvey.survey.units import si
 
@@ -68,14 +69,20 @@ IMPERFECTIONS = {
 """What the camera adds to every picture → its key of [uncertainty]."""
 
 
-def conditions(stated: Mapping[str, Stated], uncertainties: Uncertainties) -> Iterator[Quantity]:
-    """Quantities of [conditions], and of those among them that nobody stated but every measurement needs."""
+def conditions(
+    stated: Mapping[str, Stated], uncertainties: Uncertainties, *, is_roof: bool = False
+) -> Iterator[Quantity]:
+    """Quantities of [conditions], and of those among them that nobody stated but every measurement needs.
+
+    `is_roof`: what is seen is looked down on, and level unless stated.
+    """
     needed = _ASSUMED if uncertainties.surroundings == "electrical" else (*_ASSUMED, *_OF_BUILDINGS)
     for key, scalar in CONDITIONS.items():
         if key in stated:
             value, source, assumed = stated[key].value, stated[key].source, ""
         elif key in needed:
-            value, source, assumed = defaults("assumed")[key].value, "default", key
+            assumed = "roof_tilt_deg" if key == "tilt_deg" and is_roof else key
+            value, source = defaults("assumed")[assumed].value, "default"
         else:
             continue
         yield uncertainties.quantity(
@@ -116,16 +123,20 @@ def surroundings(scene: Quantities, sky_model_u: float | None, uncertainties: Un
 
 
 def window(
-    stated: schema.Window, source: str, air: Quantity | None, uncertainties: Uncertainties
+    stated: Window, source: str, air: Quantity | None, uncertainties: Uncertainties, *, is_ahead: bool = False
 ) -> Iterator[Quantity]:
-    """An infrared window in the path."""
-    tau, rho = stated.transmittance, stated.reflectance
-    is_stated = "reflectance" in stated.model_fields_set
-    for name, value, other, of, low in (
-        ("window_transmittance", tau, rho, source, 0.001),
-        ("window_reflectance", rho, tau, source if is_stated else "default", 0.0),
-    ):
-        yield uncertainties.quantity(name, value, name, source=of, low=low, high=max(1.0 - other, value))
+    """An infrared window in the path; without its transmittance where frames are to measure that.
+
+    `is_ahead`: before they are taken, when one is assumed.
+    """
+    tau, rho, key = stated.transmittance, stated.reflectance, "window_transmittance"
+    if tau is not None:
+        yield uncertainties.quantity(key, tau, key, source=source, low=0.001, high=max(1.0 - rho, tau))
+    elif is_ahead:
+        tau = max(min(defaults("assumed")[key].value, 1.0 - rho), 0.001)
+        yield uncertainties.quantity(key, tau, key, low=0.001, high=max(1.0 - rho, tau), assumed=key)
+    of, key = source if "reflectance" in stated.model_fields_set else "default", "window_reflectance"
+    yield uncertainties.quantity(key, rho, key, source=of, low=0.0, high=max(1.0 - (tau or 0.0), rho))
     for name, key, celsius in (
         ("window_temperature", "window_k", stated.temperature_c),
         ("window_ambient", "window_ambient_k", stated.ambient_c),

@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-from itertools import combinations
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, BaseModel, Discriminator, Field, Strict, Tag, model_validator
+from pydantic import AfterValidator, Discriminator, Field, Strict, Tag, model_validator
 
 from irsurvey.survey.defaults import defaults
 from irsurvey.survey.fields import (
@@ -28,53 +27,21 @@ from irsurvey.survey.fields import (
     ascending,
     key,
     required,
+    table_or_word,
     wrong,
 )
-from irsurvey.survey.schema_building import Element, Pair, Pascal, Point, Season, Strip
+from irsurvey.survey.schema_building import Element, Pair, Pascal, Season, Strip
 from irsurvey.survey.schema_camera import Camera
+from irsurvey.survey.schema_drawn import Area, KnownLength, KnownRectangle, Surface
+from irsurvey.survey.schema_electrical import Asset, Circuit, Component, Window, WindowFrom
 
 SKY_MODEL = "berdahl-martin"
 """The sky model that counts where none is named."""
-_MOST_CORNERS = 500
-"""Outlines of more are not searched for sides that cross: the search takes a time that grows with their square."""
-
-
-def _turn(a: Point, b: Point, c: Point) -> float:
-    """Twice the signed area of a triangle: above 0 where a, b, c turn clockwise in a picture."""
-    return (b[0] - a[0]) * (c[1] - b[1]) - (b[1] - a[1]) * (c[0] - b[0])
-
-
-def _uncrossed(corners: list[Point]) -> list[Point]:
-    """A check of an outline: none of its sides crosses another, as what lies inside would then be open to doubt."""
-    if len(corners) > _MOST_CORNERS:
-        return corners
-    sides = list(zip(corners, [*corners[1:], corners[0]], strict=True))
-    for (one, (a, b)), (other, (c, d)) in combinations(enumerate(sides, 1), 2):
-        if _turn(a, b, c) * _turn(a, b, d) < 0 and _turn(c, d, a) * _turn(c, d, b) < 0:
-            raise wrong(
-                "an outline that does not cross itself",
-                f"side {one} from ({a[0]:g}, {a[1]:g}) across side {other} from ({c[0]:g}, {c[1]:g})",
-                "list its corners one after the other around it",
-            )
-    return corners
-
-
-Polygon = Annotated[list[Point], Field(min_length=3, max_length=10_000), AfterValidator(_uncrossed)]
 Kind = Literal["building", "electrical"]
 Side = Literal["inside", "outside"]
 Method = Literal["envelope", "air-leakage", "roof-moisture", "contact", "voltage-driven", "pv"]
-
-
-def _table_or_word(value: object) -> str:
-    return "<table>" if isinstance(value, dict | BaseModel) else "<word>"
-
-
-class Area(Table):
-    polygon: Polygon = required("Corners [[x, y], …] in pixels, x right, y down, at least 3")
-
-
 Reference = Annotated[
-    Annotated[Literal["automatic"], Tag("<word>")] | Annotated[Area, Tag("<table>")], Discriminator(_table_or_word)
+    Annotated[Literal["automatic"], Tag("<word>")] | Annotated[Area, Tag("<table>")], Discriminator(table_or_word)
 ]
 
 
@@ -83,7 +50,7 @@ class HalfWidth(Table):
 
 
 Uncertain = Annotated[
-    Annotated[NotNegative, Tag("<word>")] | Annotated[HalfWidth, Tag("<table>")], Discriminator(_table_or_word)
+    Annotated[NotNegative, Tag("<word>")] | Annotated[HalfWidth, Tag("<table>")], Discriminator(table_or_word)
 ]
 
 
@@ -189,7 +156,8 @@ class Conditions(Table):
         "Angle between line of sight and the surface's normal [°]", defaults("assumed")["view_angle_deg"].value
     )
     tilt_deg: Annotated[float, Strict(), FINITE, Field(ge=0, le=180)] | None = key(
-        "Which way the surface faces [°]: 0 up, 90 a wall, 180 down", defaults("assumed")["tilt_deg"].value
+        "Which way the surface faces [°]: 0 up, 90 a wall, 180 down; default of method roof-moisture outside: 0",
+        defaults("assumed")["tilt_deg"].value,
     )
     indoor_air_c: AirCelsius | None = key("Indoor air [°C]; building, required for envelope claims")
     outdoor_air_c: AirCelsius | None = key("Outdoor air [°C]; building, required for envelope claims")
@@ -258,94 +226,6 @@ class Detection(Table):
     min_area_m2: Positive | None = key("Smallest region [m²]; counts instead of min_pixels")
 
 
-class Window(Table):
-    transmittance: Emissivity = required("Transmittance of the infrared window in the camera's band")
-    reflectance: Fraction = key("Its reflectance", 0.0)
-    temperature_c: Celsius | None = key("Its temperature [°C]; default: the air")
-    ambient_c: Celsius | None = key("What it mirrors towards the camera [°C]; default: the air")
-
-    @model_validator(mode="after")
-    def _is_possible(self) -> Window:
-        total = self.transmittance + self.reflectance
-        if total > 1 + 1e-9:  # decimal fractions that add up to 1 may exceed it by rounding
-            raise wrong("transmittance + reflectance of at most 1", f"{total:g}", "the rest of 1 is its emissivity")
-        return self
-
-
-class Drawn(Table):
-    """An area drawn on a frame, with optics of its own where it states some."""
-
-    name: Name | None = key("Name, unique in the frame; default: numbered")
-    polygon: Polygon = required("Corners [[x, y], …] in pixels, x right, y down, at least 3")
-    emissivity: Emissivity | None = key("Its own emissivity; default: the target's")
-    emissivity_total: Emissivity | None = key("Its own total emissivity, for the exchange of heat; default: the band's")
-    material: Name | None = key("A name from the table of materials; beside emissivity it only describes")
-    reflected_c: Celsius | None = key("What it mirrors [°C]; default: the frame's")
-
-
-class Surface(Drawn):
-    role: Literal["inspect", "ignore", "reflector", "known-temperature"] = key(
-        "inspect; ignore: no finding, no reference pixel; reflector: crumpled foil, measures reflected_c; "
-        "known-temperature: fixes the frame's offset",
-        "inspect",
-    )
-    temperature_c: Celsius | None = key("Its temperature [°C]; with role known-temperature, required")
-
-    @model_validator(mode="after")
-    def _temperature_goes_with_role(self) -> Surface:
-        is_known = self.role == "known-temperature"
-        if is_known and self.temperature_c is None:
-            raise wrong(
-                "temperature_c with role known-temperature",
-                "nothing",
-                "state it in °C",
-                key="temperature_c",
-                of=("role",),
-            )
-        if not is_known and self.temperature_c is not None:
-            remedy = 'write role = "known-temperature" or drop it'
-            got = f"{self.temperature_c:g}"
-            raise wrong("no temperature_c with this role", got, remedy, key="temperature_c", of=("role",))
-        return self
-
-
-class Component(Drawn):
-    group: Name | None = key("Components alike, compared with each other")
-    phase: Name | None = key("Phase")
-    load_a: NotNegative | None = key("Current at the time [A]; default: the circuit's")
-    rated_a: Positive | None = key("Rated current [A]; default: the circuit's")
-    circuit: Name | None = key("Id of the circuit it belongs to")
-
-
-class KnownLength(Table):
-    start: Point = required("One end [x, y] in pixels", alias="from")
-    to: Point = required("Other end [x, y] in pixels")
-    metres: Positive = required("Length between them [m]")
-
-    @model_validator(mode="after")
-    def _has_length(self) -> KnownLength:
-        if self.start == self.to:
-            raise wrong("two points", "one point twice", key="to")
-        return self
-
-
-class KnownRectangle(Table):
-    corners: Annotated[list[Point], Field(min_length=4, max_length=4)] = required(
-        "Its corners [[x, y], …] in pixels, clockwise from top left"
-    )
-    width_m: Positive = required("Top side [m]")
-    height_m: Positive = required("Left side [m]")
-
-    @model_validator(mode="after")
-    def _could_be_one(self) -> KnownRectangle:
-        a, b, c, d = self.corners
-        turns = [_turn(*three) for three in ((a, b, c), (b, c, d), (c, d, a), (d, a, b))]
-        if not (min(turns) > 0 or max(turns) < 0):
-            expected = "corners one after the other around it"
-            raise wrong(expected, "corners that are not, or three in line", "start at the top left", key="corners")
-        return self
-
-
 class Level(Table):
     """What a group and a frame may both say; a frame overrides its group, a group the survey."""
 
@@ -362,8 +242,12 @@ class Level(Table):
     uncertainty: Uncertainty = key("Uncertainties that differ from the level above", Uncertainty())
     inspect: Area | None = key("Inspect only inside this area; default: everywhere")
     window: Window | None = key("Infrared window in the path; default: none")
+    window_from: WindowFrom | None = key("Two frames of one reference that measure the window's transmittance")
     surface: list[Surface] = key("Areas with optics or a role of their own", [])
     component: list[Component] = key("Electrical components", [])
+    find_components: Annotated[bool, Strict()] = key(
+        "Electrical: whether warm parts are looked for where no component is drawn", False
+    )
     page: Whole | None = key("TIFF: page, from 0; needed where several could be the frame")
     array: Name | None = key("NPZ: name of the array; needed where it holds several")
     shape: tuple[Counted, Counted] | None = key("Raw binary: rows and columns")
@@ -403,30 +287,10 @@ class Frame(Level):
         return self
 
 
-class Asset(Table):
-    id: Name = required("Name of the asset, unique")
-    description: Text = key("What it is", "")
-    location: Text = key("Where it is", "")
-    criticality: Whole | None = key("Importance, as the owner ranks it")
-    not_inspected: Name | None = key("Why it was not inspected; absent: it was")
-
-
-class Circuit(Table):
-    id: Name = required("Name of the circuit, unique")
-    load_a: (
-        Annotated[
-            Annotated[NotNegative, Tag("<word>")] | Annotated[dict[Name, NotNegative], Tag("<table>")],
-            Discriminator(_table_or_word),
-        ]
-        | None
-    ) = key('Current at the time [A], one number or by phase: { "1" = 200, "2" = 195 }')
-    rated_a: Positive | None = key("Rated current [A]")
-
-
 class About(Table):
     title: Name = required("Title of the survey")
     kind: Kind | None = key("building or electrical; required here or in every group")
-    viewed_from: Side = key("Building: inside or outside", "inside")
+    viewed_from: Side = key("Building: inside or outside; default of method roof-moisture: outside", "inside")
     method: Method | None = key(
         "Building: envelope, air-leakage or roof-moisture, default envelope; "
         "electrical: contact, voltage-driven or pv, default contact"
@@ -435,9 +299,12 @@ class About(Table):
     reference: Reference | None = key("Reference area or automatic, as at the top of the file", "automatic")
     date: Day | None = key("Date of the survey")
     timezone: Name | None = key("Time zone of local times, such as Europe/Vienna; without one they are read as UTC")
-    criteria: list[Name] = key("Names of criteria; default: those of the kind and method", [])
+    criteria: list[Name] = key(
+        "Names of criteria, or a file of the site's own such as site.toml; default: those of the kind and method", []
+    )
     standards: list[Name] = key("Standards whose requirements on the conditions count; default: the method's", [])
     frame_table: Name | None = key("CSV of frames, as at the top of the file")
+    history: Name | None = key("CSV of earlier values, as at the top of the file")
     surveyor: Text = key("Who surveyed", "")
     qualification: Text = key("The surveyor's qualification", "")
     client: Text = key("For whom", "")
@@ -467,6 +334,7 @@ class Document(Table):
     group: list[Group] = key("Groups of frames: a room, an elevation, a panel", [])
     frame: list[Frame] = key("Frames", [])
     frame_table: Name | None = key("CSV with one frame a row, columns named as its keys (conditions.distance_m)")
+    history: Name | None = key("CSV of earlier values: columns date, asset, component, delta_ambient_k …")
     element: list[Element] = key("Building elements: an outer wall, a roof", [])
     season: Season = key("What heating and cooling seasons are worth", Season())
     circuit: list[Circuit] = key("Circuits and their loads", [])

@@ -10,7 +10,6 @@ from irsurvey.survey.defaults import defaults
 from irsurvey.survey.fields import (
     FINITE,
     AirCelsius,
-    Coordinate,
     Fraction,
     Name,
     NotNegative,
@@ -21,8 +20,8 @@ from irsurvey.survey.fields import (
     required,
     wrong,
 )
+from irsurvey.survey.schema_drawn import Point
 
-Point = tuple[Coordinate, Coordinate]
 Pascal = Annotated[float, Strict(), FINITE, Field(ge=-1e5, le=1e5)]
 UValue = Annotated[float, Strict(), FINITE, Field(gt=0, le=20)]  # a bare metal sheet has 1/(0.13 + 0.04) = 5.9
 _THERMAL = ("conductivity_w_mk", "density_kg_m3", "specific_heat_j_kgk")

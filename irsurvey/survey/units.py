@@ -16,6 +16,7 @@ CONVERSIONS: Final[dict[str, Callable[[float], float]]] = {
     "_um": lambda micrometre: micrometre / 1e6,
     "_mrad": lambda milliradian: milliradian / 1e3,
     "_deg": radians,
+    "_min": lambda minutes: minutes * 60,
 }
 """Ending of a key → its conversion; `_um_k` stands before the `_k` of a difference, which is kelvin already."""
 

@@ -60,6 +60,8 @@ GOOD = {
     C1153: ROOF,
     E1186: LEAK,
     ("nfpa-70b",): {"load_ratio": 0.8},
+    ("outdoor-wind",): {"wind_m_s": 2.0},
+    ("pv-inspection",): {"irradiance_w_m2": 800.0},
 }
 
 
@@ -90,7 +92,7 @@ def test_a_survey_by_itself_falls_under_the_standard_of_its_method() -> None:
     assert standards_of("building", "roof-moisture") == C1153
     assert standards_of("building", "air-leakage") == E1186
     assert standards_of("electrical", "contact") == ("nfpa-70b",)
-    assert standards_of("electrical", "pv") == ()
+    assert standards_of("electrical", "pv") == ("pv-inspection",)
 
 
 # EN 13187 as applied in practice, as quoted by secondary texts [S]: 10 K held 24 h, 72 h where unheated before; no sun
@@ -198,6 +200,30 @@ def test_each_requirement_on_an_air_leakage_scan_has_its_limit(key: str, meets: 
 def test_the_load_of_a_contact_survey(load: float | None, verdict: str, level: str) -> None:
     assert verdicts(("nfpa-70b",), {"load_ratio": load}) == [verdict]
     assert claim((), "electrical", "contact", {"load_ratio": load})[0] == level
+
+
+# Common practice outdoors [CP]: above 5 m/s differences of temperature are doubtful, above 10 m/s nothing corrects
+# them.  PV modules: 600 W/m² or more, as quoted [S].
+@pytest.mark.parametrize(
+    ("standard", "key", "value", "level"),
+    [
+        ("outdoor-wind", "wind_m_s", 5.0, "quantitative"),
+        ("outdoor-wind", "wind_m_s", 5.01, "qualitative"),
+        ("outdoor-wind", "wind_m_s", 10.0, "qualitative"),
+        ("outdoor-wind", "wind_m_s", 10.01, "not valid"),
+        ("pv-inspection", "irradiance_w_m2", 600.0, "quantitative"),
+        ("pv-inspection", "irradiance_w_m2", 599.0, "qualitative"),
+        ("pv-inspection", "irradiance_w_m2", None, "qualitative"),
+    ],
+)
+def test_wind_and_sun_outdoors(standard: str, key: str, value: float | None, level: str) -> None:
+    assert claim((standard,), "electrical", "pv", {key: value})[0] == level
+
+
+def test_an_inspection_indoors_is_not_asked_about_wind() -> None:
+    assert all("wind" not in row.check for row in review(("nfpa-70b",), {"load_ratio": 0.8}))
+    both = claim(("nfpa-70b", "outdoor-wind"), "electrical", "contact", {"load_ratio": 0.8, "wind_m_s": 11.0})
+    assert both[0] == "not valid"
 
 
 # Relative error of U [%] from ±0.5 K on Ti − Tsi at R_si 0.13, for ΔT 10/15/20/30 K, computed before and apart [C].
@@ -336,7 +362,7 @@ def test_of_the_standards_a_survey_names_those_count_that_suit_its_method() -> N
     assert suited(named, "building", "roof-moisture") == C1153
     assert suited(named, "building", "air-leakage") == E1186  # none named suits: the default
     assert suited((), "building", "envelope") == EN
-    assert suited(named, "electrical", "pv") == ()
+    assert suited(named, "electrical", "voltage-driven") == ()
 
 
 def test_an_unknown_standard_is_a_fault_that_names_the_nearest() -> None:
@@ -345,9 +371,9 @@ def test_an_unknown_standard_is_a_fault_that_names_the_nearest() -> None:
 
 
 def test_a_method_without_requirements_is_qualitative_and_says_why() -> None:
-    level, reason = claim((), "electrical", "pv", {})
+    level, reason = claim((), "electrical", "voltage-driven", {})
     assert level == "qualitative"
-    assert "pv" in reason
+    assert "voltage-driven" in reason
     assert review((), {}) == ()
 
 

@@ -11,6 +11,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from irsurvey.assess.criteria import (
+    ALWAYS,
     DEFAULTS,
     MARKS,
     METHODS,
@@ -20,6 +21,7 @@ from irsurvey.assess.criteria import (
     class_index,
     class_of,
     criteria,
+    criterion_faults,
     load_criterion,
 )
 from irsurvey.errors import SurveyError
@@ -84,6 +86,64 @@ def urgency(name: str, value: float) -> int:
 def test_the_neta_edges_are_half_open_and_nothing_is_rounded(value: float, similar: int, ambient: int) -> None:
     assert urgency("neta-similar", value) == similar
     assert urgency("neta-ambient", value) == ambient
+
+
+# Older naval scheme: 10–25, 25–40, 40–70, 70 K or more, as quoted [S].  Of voltage-driven parts 0.5 to 3 K may be
+# serious; the edges within that, and those for PV modules, are house rules.
+@pytest.mark.parametrize(
+    ("value", "naval", "voltage", "pv"),
+    [
+        (-3.0, 0, 0, 0),
+        (0.4999, 0, 0, 0),
+        (0.5, 0, 2, 0),
+        (0.9999, 0, 2, 0),
+        (1.0, 0, 3, 0),
+        (1.9999, 0, 3, 0),
+        (2.0, 0, 3, 1),
+        (3.0, 0, 3, 1),
+        (3.0001, 0, 4, 1),
+        (3.5, 0, 4, 1),
+        (4.0, 0, 4, 1),
+        (9.9999, 0, 4, 1),
+        (10.0, 2, 4, 2),
+        (10.4, 2, 4, 2),
+        (15.0, 2, 4, 2),
+        (15.4, 2, 4, 2),
+        (18.6, 2, 4, 2),  # 16 K at 860 W/m² brought to 1000 W/m², specification
+        (19.9999, 2, 4, 2),
+        (20.0, 2, 4, 3),
+        (20.7, 2, 4, 3),
+        (24.9999, 2, 4, 3),
+        (25.0, 2, 4, 3),
+        (39.9999, 2, 4, 3),
+        (40.0, 3, 4, 4),
+        (40.1, 3, 4, 4),
+        (69.9999, 3, 4, 4),
+        (70.0, 4, 4, 4),
+        (inf, 4, 4, 4),
+    ],
+)
+def test_the_edges_of_the_naval_scheme_of_voltage_driven_parts_and_of_pv_modules(
+    value: float, naval: int, voltage: int, pv: int
+) -> None:
+    assert [urgency(name, value) for name in ("naval", "voltage-driven", "pv-modules")] == [naval, voltage, pv]
+
+
+def test_the_two_middle_grades_of_the_naval_scheme_are_told_apart() -> None:
+    found = [class_of(value, BUILT_IN["naval"]) for value in (24.9999, 25.0)]
+    assert [kind.name for kind in found if kind] == ["first grade", "second grade"]
+
+
+# Relative difference, devices in general: 35/80/95 %, not classed below a rise of 10 K, as quoted [S].
+def test_the_edges_of_the_relative_difference() -> None:
+    values = (-20.0, 0.0, 34.9999, 35.0, 79.9999, 80.0, 94.9999, 95.0, 100.0)
+    assert [urgency("relative-difference", value) for value in values] == [0, 0, 0, 2, 2, 3, 3, 4, 4]
+    assert BUILT_IN["relative-difference"].classed_from == ("delta_ambient_k", 10.0)
+
+
+@pytest.mark.parametrize(("name", "beyond"), [("absolute-limit", 4), ("absolute-limit-at-load", 2)])
+def test_a_part_at_its_limit_keeps_it(name: str, beyond: int) -> None:
+    assert [urgency(name, value) for value in (-40.0, 0.0, np.nextafter(0, 1), 40.0)] == [0, 0, beyond, beyond]
 
 
 # DIN 4108-2: at least 0.70; Irish Technical Guidance Document L 2011: 0.75 or better (Dáil written answer 788, 2015).
@@ -167,9 +227,59 @@ def test_every_kind_and_method_has_defaults_and_they_exist() -> None:
 
 def test_named_criteria_count_where_they_suit_and_defaults_elsewhere() -> None:
     named = ("neta-ambient",)
-    assert [one.name for one in chosen(named, "electrical", "contact")] == ["neta-ambient"]
+    assert [one.name for one in chosen(named, "electrical", "contact")] == ["neta-ambient", *ALWAYS]
     assert tuple(one.name for one in chosen(named, "building", "envelope")) == DEFAULTS["building", "envelope"]
-    assert chosen(named, "electrical", "voltage-driven") == ()  # no table for contacts is borrowed
+    voltage = [one.name for one in chosen(named, "electrical", "voltage-driven")]
+    assert voltage == ["voltage-driven", "absolute-limit"]  # no table for contacts is borrowed
+
+
+def test_limits_stated_for_a_part_count_whatever_criteria_are_named() -> None:
+    assert [one.name for one in chosen(("naval",), "electrical", "contact")] == ["naval", *ALWAYS]
+    assert chosen(ALWAYS, "electrical", "contact") == chosen((), "electrical", "contact")  # they take no default away
+    assert not set(ALWAYS) & {one.name for one in chosen(("naval",), "building", "envelope")}
+
+
+OWN = (("schemes/site.toml", SITE),)
+
+
+def test_a_scheme_of_the_site_counts_beside_built_in_ones_named_by_its_file_or_its_name() -> None:
+    for names in (("neta-ambient",), ("neta-ambient", "schemes/site.toml"), ("neta-ambient", "site-lugs")):
+        found = [one.name for one in chosen(names, "electrical", "contact", OWN)]
+        assert found == ["neta-ambient", "site-lugs", *ALWAYS]
+    assert [one.name for one in chosen((), "electrical", "contact", OWN)] == ["site-lugs", *ALWAYS]
+    assert "site-lugs" not in [one.name for one in chosen((), "electrical", "pv", OWN)]  # does not suit
+    assert list(criteria(OWN)) == [*BUILT_IN, "site-lugs"]
+    assert criteria(OWN)["site-lugs"] == load_criterion(SITE, "site.toml")
+
+
+def test_a_scheme_of_the_site_may_judge_any_number_of_a_component() -> None:
+    for quantity in ("delta_similar_in_calm_k", "relative_difference_percent", "above_allowed_k", "delta_neighbours_k"):
+        assert criterion_faults(SITE.replace("delta_similar_k", quantity)) == []
+
+
+def test_faults_of_a_scheme_of_the_site_name_the_key() -> None:
+    assert criterion_faults(SITE) == []
+    text = SITE.replace('mark = "house"', 'mark = "Q"').replace("urgency = 3", "urgency = 9")
+    assert [fault.where for fault in criterion_faults(text)] == ["mark", "classes[2].urgency"]
+    assert [fault.where for fault in criterion_faults("name = ")] == [""]
+
+
+def test_a_scheme_of_the_site_may_not_pass_for_a_built_in_one() -> None:
+    posing = SITE.replace("site-lugs", "neta-similar")
+    (fault,) = criterion_faults(posing)
+    assert (fault.where, fault.got) == ("name", "'neta-similar'")
+    with pytest.raises(SurveyError, match=re.escape("posing.toml: name")):
+        chosen((), "electrical", "contact", (("posing.toml", posing),))
+    with pytest.raises(SurveyError, match=re.escape("second.toml: name")):
+        criteria((("first.toml", SITE), ("second.toml", SITE)))
+
+
+def test_a_criterion_may_ask_for_a_rise_before_it_classes_anything() -> None:
+    text = SITE.replace(
+        'notes = "none"', 'notes = "none"\nclassed_from = { quantity = "delta_ambient_k", at_least = 5 }'
+    )
+    assert load_criterion(text, "site.toml").classed_from == ("delta_ambient_k", 5.0)
+    assert load_criterion(SITE, "site.toml").classed_from is None
 
 
 def test_an_unknown_criterion_is_a_fault_that_names_the_nearest() -> None:
@@ -206,6 +316,15 @@ def test_classes_may_stand_in_any_order() -> None:
         ('name = "site-lugs"', 'name = "Site lugs!"', "name"),
         ('notes = "none"', 'notes = "none"\nnote = "twice"', "note"),
         ('notes = "none"', 'notes = "none"\nfilm_resistance = 0.25', "film_resistance"),
+        ('notes = "none"', 'notes = "none"\nclassed_from = 10', "classed_from"),
+        ('notes = "none"', 'notes = "none"\nclassed_from = { quantity = "delta_ambient_k" }', "classed_from"),
+        ('notes = "none"', 'notes = "none"\nclassed_from = { quantity = "x", at_least = "1" }', "classed_from"),
+        ('notes = "none"', 'notes = "none"\nclassed_from = { quantity = "x", at_least = 1 }', "classed_from.quantity"),
+        (
+            'applies_to = "component"\nquantity = "delta_similar_k"',
+            'applies_to = "finding"\nquantity = "delta_k"\nclassed_from = { quantity = "delta_k", at_least = 1 }',
+            "classed_from",
+        ),
         ("urgency = 3", "urgency = 5", "classes[2].urgency"),
         ("urgency = 3", "urgency = true", "classes[2].urgency"),
         ("urgency = 3", "", "classes[2].urgency"),

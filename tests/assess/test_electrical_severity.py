@@ -10,12 +10,13 @@ import pytest
 from hypothesis import example, given
 from hypothesis import strategies as st
 
-from irsurvey.assess.criteria import Criterion, class_of, criteria, load_criterion
+from irsurvey.assess.criteria import Criterion, chosen, class_of, criteria, load_criterion
 from irsurvey.assess.electrical import (
     ALL_HOT,
     NO_TWIN,
     NORMALISED,
     TWIN_SIZE_LIMITED,
+    UNBALANCED,
     Member,
     TwinPlan,
     assess_component,
@@ -25,10 +26,15 @@ from irsurvey.assess.electrical import (
     similar_rise,
     twins,
 )
+from irsurvey.assess.limits import allowed_now, limits
 from irsurvey.assess.severity import (
     BLOCKERS,
+    CONDITIONS,
+    FEW_NEIGHBOURS,
+    LOAD_ABOVE_RATING,
     LOAD_UNKNOWN,
     LOW_LOAD,
+    LOW_SUN,
     MIRRORS,
     NO_CRITERION,
     NO_SOLUTION,
@@ -36,6 +42,9 @@ from irsurvey.assess.severity import (
     REFLECTIVE,
     SATURATED,
     SIZE_LIMITED,
+    SUN_UNKNOWN,
+    UNSTEADY,
+    WINDY,
     Verdict,
 )
 from irsurvey.model.quantities import Estimate
@@ -150,7 +159,7 @@ def test_loads_within_a_tenth_are_compared_as_they_are() -> None:
     plans = twins(members, AIR)
     assert rises(members, plans) == pytest.approx([0.0, 4.0], abs=1e-9)
     assert [plan.load_ratio for plan in plans] == [1.0, 1.0]
-    assert all(NORMALISED not in plan.flags for plan in plans)
+    assert all(plan.flags == () for plan in plans)
 
 
 def test_unlike_loads_are_first_brought_to_one_load_and_that_is_said() -> None:
@@ -159,7 +168,8 @@ def test_unlike_loads_are_first_brought_to_one_load_and_that_is_said() -> None:
     plans = twins(members, AIR)
     assert rises(members, plans) == pytest.approx([0.0, 5.0], abs=1e-9)
     assert plans[1].load_ratio == 2.0
-    assert plans[1].flags == (NORMALISED,)
+    assert plans[1].flags == (UNBALANCED, NORMALISED)
+    assert plans[0].flags == (UNBALANCED,)
     assert "brought to 2.00 times its load" in judged(members)["2"].assessments[0].statement
 
 
@@ -562,3 +572,414 @@ def test_without_load_or_rating_there_is_no_load_ratio_and_nothing_is_cleared() 
         assert verdict.urgency == 0
         assert not verdict.cleared
         assert LOAD_UNKNOWN in verdict.flags
+
+
+# --- several criteria at once ----------------------------------------------------------------------------------------
+
+NAVAL, RELATIVE = criteria()["naval"], criteria()["relative-difference"]
+AT_ONCE = criteria()["absolute-limit"]
+AT_LOAD = criteria()["absolute-limit-at-load"]
+CONTACT = chosen((), "electrical", "contact")
+VOLTAGE = chosen((), "electrical", "voltage-driven")
+PV = chosen((), "electrical", "pv")
+TWIN = TwinPlan(0, "phase 3")
+ALONE = TwinPlan(flags=(NO_TWIN,))
+
+
+def of(u: float | None = 0.1, **numbers: float | None) -> dict[str, Estimate | None]:
+    """Measured numbers by their key, all with the same u; None: not measured."""
+    return {key: None if value is None else Estimate(value, u) for key, value in numbers.items()}
+
+
+def classes(verdict: Verdict) -> dict[str, str | None]:
+    return {one.criterion: one.class_ for one in verdict.assessments}
+
+
+def test_all_criteria_are_shown_and_of_those_that_compare_twins_the_highest_governs() -> None:
+    values = of(delta_similar_k=30.0, delta_ambient_k=80.0, relative_difference_percent=37.5)
+    verdict = assess_component(lug("1", 80.0), TWIN, values, (NAVAL, RELATIVE, SIMILAR, AMBIENT))
+    urgencies = {one.criterion: one.urgency for one in verdict.assessments}
+    assert urgencies == {"naval": 2, "relative-difference": 2, "neta-similar": 4, "neta-ambient": 4}
+    assert governing(verdict) == ["neta-similar"]
+    milder = assess_component(lug("1", 80.0), TWIN, values, (NAVAL, RELATIVE, AMBIENT))
+    assert (milder.urgency, governing(milder)) == (2, ["naval"])  # ambient air does not decide between joints
+
+
+def test_every_assessment_names_the_number_it_judges() -> None:
+    values = of(delta_similar_k=2.0, delta_ambient_k=12.0, relative_difference_percent=17.0, above_limit_k=-50.0)
+    member = lug("1", 12.0, limits=("iec-60694/bolted-bare",))
+    for ways in ((), (SATURATED,), (MIRRORS,)):
+        for emissivity in (0.9, 0.2):
+            known = replace(member, flags=ways, emissivity=emissivity)
+            verdict = assess_component(known, TWIN, values, (*CONTACT, NAVAL, RELATIVE))
+            judged_by = {one.criterion: one.quantity for one in verdict.assessments}
+            assert judged_by == {name: criteria()[name].quantity for name in judged_by}
+            assert len(judged_by) == 6  # all but the one for findings
+
+
+def test_a_scheme_of_the_site_is_shown_beside_the_built_in_ones_and_governs_where_it_is_higher() -> None:
+    text = """name = "site"\ntitle = "Site"\nedition = "1"\nkind = "electrical"\nmethods = ["contact"]
+applies_to = "component"\nquantity = "delta_similar_k"\nsense = "hot"\nsource = "site"\nmark = "house"\nnotes = "x"
+classes = [{ name = "a", below = 2, urgency = 0, statement = "a" },
+{ name = "b", at_least = 2, urgency = 3, statement = "call the site" }]"""
+    used = chosen(("neta-similar", "site.toml"), "electrical", "contact", (("site.toml", text),))
+    verdict = assess_component(lug("1", 5.0), TWIN, of(delta_similar_k=2.5, delta_ambient_k=5.0), used)
+    assert {one.criterion: one.urgency for one in verdict.assessments} == {"neta-similar": 1, "site": 3}
+    assert (verdict.urgency, governing(verdict)) == (3, ["site"])
+    assert "call the site" in verdict.assessments[1].statement
+
+
+# --- relative difference: not classed below a rise of 10 K [S] ------------------------------------------------------
+
+
+def test_the_relative_difference_is_not_classed_below_a_rise_of_ten_kelvin() -> None:
+    for rise, class_ in ((9.99, None), (10.0, "wholly own rise")):
+        values = of(delta_similar_k=0.5, delta_ambient_k=rise, relative_difference_percent=96.0)
+        verdict = assess_component(lug("1", rise), TWIN, values, (RELATIVE,))
+        assert classes(verdict) == {"relative-difference": class_}
+        assert verdict.urgency == (4 if class_ else None)
+        assert not verdict.cleared
+    values = of(delta_similar_k=0.5, delta_ambient_k=5.0, relative_difference_percent=10.0)
+    told = assess_component(lug("1", 5.0), TWIN, values, (RELATIVE,)).assessments[0].statement
+    assert told.startswith("Not classed by this scheme, which grades from 10\u00a0K above ambient air on.")
+
+
+def test_a_scheme_that_does_not_grade_a_part_neither_clears_it_nor_keeps_others_from_clearing_it() -> None:
+    values = of(delta_similar_k=0.5, delta_ambient_k=5.0, relative_difference_percent=10.0)
+    assert assess_component(lug("1", 5.0), TWIN, values, (SIMILAR, RELATIVE)).cleared
+    assert not assess_component(lug("1", 5.0), TWIN, values, (RELATIVE,)).cleared
+
+
+def test_a_scheme_that_does_not_grade_a_part_does_not_put_its_rise_over_the_air_aside() -> None:
+    values = of(delta_similar_k=6.0, delta_ambient_k=9.0, relative_difference_percent=66.0)
+    verdict = assess_component(lug("1", 9.0), TWIN, values, (RELATIVE, AMBIENT))
+    assert (verdict.urgency, governing(verdict)) == (1, ["neta-ambient"])
+
+
+# --- absolute limits -------------------------------------------------------------------------------------------------
+
+BARE = ("iec-60694/bolted-bare",)  # 90 °C, 50 K
+
+
+def against_limit(t: float, air: float, ratio: float | None, u: float = 0.1) -> dict[str, Estimate | None]:
+    """Numbers of a bare bolted joint without a twin, temperatures [°C]: worked out apart from the program."""
+    allowed = None if ratio is None else min(90.0, air + 50.0 * min(ratio, 1.0) ** 1.6)
+    above = None if allowed is None else t - allowed
+    return of(u, delta_ambient_k=t - air, above_limit_k=t - 90.0, above_allowed_k=above)
+
+
+def test_a_part_without_a_stated_limit_is_not_held_against_one() -> None:
+    values = of(delta_similar_k=0.2, delta_ambient_k=5.0)
+    assert set(classes(assess_component(lug("1", 5.0), TWIN, values, CONTACT))) == {"neta-similar", "neta-ambient"}
+    bearing = lug("1", 5.0, limits=("bearing/sleeve",))  # its limit does not grow with load
+    values |= of(above_limit_k=-55.0)
+    assert set(classes(assess_component(bearing, TWIN, values, CONTACT))) == {
+        "neta-similar",
+        "neta-ambient",
+        "absolute-limit",
+    }
+
+
+def test_the_example_of_a_joint_at_45_percent_load_exceeds_what_it_is_allowed_and_tells_its_full_load_rise() -> None:
+    # Specification: bare bolted copper, 62 °C at 22 °C, 45 % load, allowed 35.9 °C at most, full-load rise 144 to 197 K
+    member = Member("1", 62 + 273.15, 0.9, "lugs", 45.0, 100.0, limits=BARE)
+    verdict = assess_component(member, TWIN, against_limit(62.0, 22.0, 0.45, 0.5) | of(delta_similar_k=0.3), CONTACT)
+    assert (verdict.urgency, governing(verdict)) == (2, ["absolute-limit-at-load"])
+    (told,) = [one for one in verdict.assessments if one.governs]
+    assert told.statement.startswith("26.1\u00a0±\u00a01.0\u00a0K")  # 62 − 35.9
+    assert "(50 K at rated load, iec-60694/bolted-bare)" in told.statement
+    assert "At rated load it would be 144 to 198 K" in told.statement  # 197.53, printed as 197 in the specification
+    assert told.source.startswith("IEC 60694, Table 3, 1996 [P]; ")
+
+
+def test_beyond_its_limit_a_part_is_at_once_whatever_its_twins_say() -> None:
+    values = of(delta_similar_k=0.2, delta_ambient_k=66.0, above_limit_k=0.01, above_allowed_k=16.0)
+    verdict = assess_component(lug("1", 66.0, limits=BARE), TWIN, values, CONTACT)
+    assert (verdict.urgency, governing(verdict)) == (4, ["absolute-limit"])
+    (told,) = [one.statement for one in verdict.assessments if one.governs]
+    assert "against its limit of 90 °C (iec-60694/bolted-bare)" in told
+
+
+def test_a_limit_exceeded_holds_at_low_and_at_unknown_load() -> None:
+    for known in ({"load": None}, {"load": 20.0}):
+        values = against_limit(95.0, 25.0, None) | of(delta_similar_k=0.1)
+        verdict = assess_component(lug("1", 70.0, limits=BARE, **known), TWIN, values, CONTACT)
+        assert verdict.urgency == 4
+        assert not verdict.cleared
+
+
+def test_keeping_an_absolute_limit_alone_clears_nothing() -> None:
+    bearing = lug("1", 5.0, limits=("bearing/sleeve",))
+    verdict = assess_component(bearing, ALONE, of(delta_ambient_k=5.0, above_limit_k=-55.0), (AT_ONCE, AT_LOAD))
+    assert verdict.urgency == 0
+    assert not verdict.cleared
+
+
+def test_what_is_allowed_at_a_load_is_accepted_by_the_strictest_exponent_only() -> None:
+    # at 60 % load 50 K allow 18.0 K for n = 2 and 22.1 K for n = 1.6: 20 K are within the one and beyond the other
+    for rise, cleared in ((17.5, True), (20.0, False)):
+        values = against_limit(25.0 + rise, 25.0, 0.6)
+        verdict = assess_component(lug("1", rise, limits=BARE), ALONE, values, (AT_ONCE, AT_LOAD))
+        assert verdict.urgency == 0
+        assert verdict.cleared == cleared
+
+
+def test_a_skin_known_to_within_ten_kelvin_is_kept_below_the_lower_end_and_exceeded_above_the_upper() -> None:
+    motor = lug("1", 5.0, limits=("nema-mg-1/skin-F",))  # 125 to 135 °C
+    for above, urgency, cleared in ((-10.5, 0, True), (-5.0, 0, False), (0.5, 4, False)):
+        values = of(delta_similar_k=0.1, delta_ambient_k=5.0, above_limit_k=above)
+        verdict = assess_component(motor, TWIN, values, CONTACT)
+        assert (verdict.urgency, verdict.cleared) == (urgency, cleared)
+
+
+@given(st.floats(-20, 60), st.floats(0, 150), st.floats(0.01, 1.5), st.floats(0.01, 1.5))
+def test_the_same_rise_at_less_load_is_never_a_milder_case(air: float, rise: float, one: float, other: float) -> None:
+    # the two exponents and the cap by the packaged table; what is allowed was checked apart in test_limits
+    limit = limits()[BARE[0]]
+    found = []
+    for ratio in sorted((one, other)):
+        allowed = float(allowed_now(limit, air + 273.15, ratio)[1]) - 273.15
+        values = against_limit(air + rise, air, None) | of(above_allowed_k=air + rise - allowed)
+        member = lug("1", rise, limits=BARE, load=400.0 * ratio)
+        found.append(assess_component(member, ALONE, values, CONTACT))
+    less, more = found
+    assert (less.urgency or 0) >= (more.urgency or 0)
+    assert more.cleared or not less.cleared or one > 1.05 or other > 1.05  # above rating nothing is cleared at all
+
+
+# --- wind: a correction may raise a class, never lower it (specification) --------------------------------------------
+
+
+def test_of_a_rise_as_it_reads_and_in_calm_the_worse_counts_and_is_named() -> None:
+    values = of(
+        delta_similar_k=8.0, delta_ambient_k=10.0, delta_similar_in_calm_k=16.5, delta_ambient_in_calm_k=20.6
+    )  # 2.06 at 5 m/s, specification
+    verdict = assess_component(lug("1", 10.0, wind=5.0), TWIN, values, BOTH)
+    similar, ambient = verdict.assessments
+    assert (similar.urgency, similar.quantity) == (4, "delta_similar_in_calm_k")
+    assert (ambient.urgency, ambient.quantity) == (3, "delta_ambient_in_calm_k")
+    assert "16.50\u00a0±\u00a00.20\u00a0K (k = 2) above “phase 3”" in similar.statement
+    assert "when brought to 1 m/s of wind" in similar.statement
+    mild = of(delta_similar_k=4.0, delta_ambient_k=6.0, delta_similar_in_calm_k=5.4, delta_ambient_in_calm_k=8.2)
+    assert assess_component(lug("1", 6.0, wind=2.0), TWIN, mild, BOTH).assessments[0].quantity == "delta_similar_k"
+
+
+def test_a_part_that_is_mild_only_because_of_the_wind_is_not_cleared() -> None:
+    known = {"delta_similar_k": 0.5, "delta_ambient_k": 5.0}
+    assert assess_component(lug("1", 5.0, wind=3.0), TWIN, of(**known), BOTH).cleared
+    for calm in ({"delta_similar_in_calm_k": 0.9}, {"delta_ambient_in_calm_k": 10.1}):
+        assert not assess_component(lug("1", 5.0, wind=3.0), TWIN, of(**known, **calm), BOTH).cleared
+    limited = lug("1", 5.0, limits=BARE, wind=3.0)
+    within = of(**known, above_limit_k=-60.0, above_allowed_k=-17.0)  # at 60 % load, 4.1 K of it by the exponent
+    assert assess_component(limited, TWIN, within, CONTACT).cleared
+    shared = within | of(delta_ambient_in_calm_k=9.0)  # 4 K more in calm, below the 10 K of a warm part
+    assert assess_component(limited, TWIN, shared, CONTACT).cleared
+    near = shared | of(above_allowed_k=-6.0)
+    assert not assess_component(limited, TWIN, near, CONTACT).cleared
+
+
+# --- load, wind and sun as flags: they keep from clearing and never lower -------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("known", "flag", "blocked"),
+    [
+        ({"steady": 3599.0, "time_constant": 1200.0}, UNSTEADY, True),  # three time constants [S] are 3600 s
+        ({"steady": 3600.0, "time_constant": 1200.0}, UNSTEADY, False),
+        ({"steady": None, "time_constant": 1200.0}, UNSTEADY, False),  # nobody logged the load
+        ({"steady": 0.0, "time_constant": None}, UNSTEADY, False),
+        ({"wind": 5.0}, WINDY, False),
+        ({"wind": 5.01}, WINDY, True),
+        ({"wind": 10.0}, CONDITIONS, False),
+        ({"wind": 10.01}, CONDITIONS, True),
+        ({"wind": None}, WINDY, False),
+        ({"load": 420.0}, LOAD_ABOVE_RATING, False),
+        ({"load": 421.0}, LOAD_ABOVE_RATING, True),
+    ],
+)
+def test_circumstances_that_make_a_mild_reading_prove_nothing(
+    known: dict[str, float | None], flag: str, blocked: bool
+) -> None:
+    verdict = assess_component(lug("1", 5.0, **known), TWIN, of(delta_similar_k=0.5, delta_ambient_k=5.0), BOTH)
+    assert (flag in verdict.flags) == blocked
+    assert verdict.urgency == 0
+    if blocked:
+        assert not verdict.cleared
+        assert f"{flag}, look again" in verdict.assessments[0].statement
+    elif flag in (UNSTEADY, LOAD_ABOVE_RATING) or known.get("wind") != 10.0:
+        assert verdict.cleared
+
+
+MEASURED = st.one_of(st.none(), st.floats(-20, 120), st.sampled_from([0.0, 0.5, 1.0, 3.0, 10.0, 15.0, 20.0, 40.0]))
+KEYS = ("delta_similar_k", "delta_ambient_k", "relative_difference_percent", "above_limit_k", "above_allowed_k")
+NUMBERS = st.fixed_dictionaries(dict.fromkeys(KEYS, MEASURED))
+ALL_CONTACT = (SIMILAR, AMBIENT, NAVAL, RELATIVE, AT_ONCE, AT_LOAD)
+SOME = st.lists(st.sampled_from(ALL_CONTACT), min_size=1, unique=True)
+STATED = st.sampled_from([(), BARE, ("insulation/F", "nec-110.14/75"), ("nema-mg-1/skin-F",)])
+
+
+@given(NUMBERS, uncertainties, plans, SOME, STATED, st.floats(1, 2.5), st.sets(st.sampled_from(["similar", "ambient"])))
+def test_a_correction_for_wind_never_lowers_an_urgency_and_never_clears(
+    numbers_: dict[str, float | None],
+    u: float | None,
+    plan: TwinPlan,
+    chosen_: list[Criterion],
+    stated: tuple[str, ...],
+    factor: float,
+    corrected: set[str],
+) -> None:
+    member = lug("1", numbers_["delta_ambient_k"] or 0.0, limits=stated, wind=2.0)
+    as_read = of(u, **numbers_)
+    rises = {which: numbers_[f"delta_{which}_k"] for which in corrected}
+    calm = {f"delta_{which}_in_calm_k": None if rise is None else rise * factor for which, rise in rises.items()}
+    before = assess_component(member, plan, as_read, chosen_)
+    after = assess_component(member, plan, as_read | of(u, **calm), chosen_)
+    assert (after.urgency or 0) >= (before.urgency or 0)
+    assert (after.urgency is None) <= (before.urgency is None)
+    assert before.cleared or not after.cleared
+    for one, other in zip(after.assessments, before.assessments, strict=True):
+        assert (one.urgency or 0) >= (other.urgency or 0)
+
+
+WORSE_LOADS = st.sampled_from(
+    [
+        {"load": None},
+        {"rated": None},
+        {"load": 100.0},
+        {"load": 0.0},
+        {"load": 900.0},
+        {"steady": 60.0, "time_constant": 900.0},
+        {"wind": 6.0},
+        {"wind": 20.0},
+        {"flags": (SIZE_LIMITED,)},
+        {"flags": (CONDITIONS,)},
+    ]
+)
+
+
+@given(NUMBERS, uncertainties, plans, SOME, STATED, WORSE_LOADS)
+def test_no_circumstance_clears_or_lowers_whatever_the_criteria(
+    numbers_: dict[str, float | None],
+    u: float | None,
+    plan: TwinPlan,
+    chosen_: list[Criterion],
+    stated: tuple[str, ...],
+    worse: dict[str, object],
+) -> None:
+    member = lug("1", numbers_["delta_ambient_k"] or 0.0, limits=stated)
+    values = of(u, **numbers_)
+    free = assess_component(member, plan, values, chosen_)
+    blocked = assess_component(replace(member, **worse), plan, values, chosen_)  # type: ignore[arg-type]
+    assert blocked.urgency == free.urgency
+    assert not blocked.cleared
+    assert [one.urgency for one in blocked.assessments] == [one.urgency for one in free.assessments]
+
+
+# --- voltage-driven parts: no load law, tenths of a kelvin ----------------------------------------------------------
+
+
+def test_parts_heated_by_voltage_are_compared_as_they_read_whatever_their_load() -> None:
+    arresters = (lug("1", 3.0, load=100.0), lug("2", 3.2, load=400.0), lug("3", 4.5, load=None))
+    members = tuple(replace(one, method="voltage-driven") for one in arresters)
+    plans = twins(members, AIR, VOLTAGE)
+    assert rises(members, plans) == pytest.approx([0.0, 0.2, 1.5], abs=1e-9)
+    assert all(plan.load_ratio == 1.0 and plan.flags == () for plan in plans)
+    verdicts = judged(members, u=0.05, chosen=VOLTAGE)
+    assert [verdict.urgency for verdict in verdicts.values()] == [0, 0, 3]
+    assert [verdict.cleared for verdict in verdicts.values()] == [True, True, False]
+    assert all(verdict.flags == () for verdict in verdicts.values())
+    assert "At rated load" not in verdicts["3"].assessments[0].statement
+
+
+def test_a_part_heated_by_voltage_without_a_twin_is_not_classed_and_not_cleared() -> None:
+    member = lug("1", 0.1, method="voltage-driven", group="arresters")
+    plan = twins((member,), AIR, VOLTAGE)[0]
+    verdict = assess_component(member, plan, of(delta_similar_k=None, delta_ambient_k=0.1), VOLTAGE)
+    assert (verdict.urgency, verdict.cleared) == (None, False)
+    assert "the only one of its group “arresters”" in verdict.assessments[0].statement
+    assert "load" not in verdict.assessments[0].statement
+
+
+def test_warm_parts_heated_by_voltage_share_sun_or_soiling_and_no_load() -> None:
+    members = tuple(lug(str(k), 12.0 + 0.1 * k, method="voltage-driven") for k in range(3))
+    for verdict in judged(members, chosen=VOLTAGE).values():
+        assert ALL_HOT in verdict.flags
+        assert not verdict.cleared
+        assert "sun, soiling, or ageing" in verdict.assessments[0].statement
+
+
+# --- PV modules ------------------------------------------------------------------------------------------------------
+
+
+def module(**known: object) -> Member:
+    return lug("m", 20.0, **{"method": "pv", "irradiance": 860.0, "neighbours": 8, "load": None, **known})
+
+
+def test_a_module_is_held_against_its_neighbours_and_load_is_not_asked_for() -> None:
+    # Specification: 16 K at 860 W/m² are 18.6 K at 1000 W/m²
+    verdict = assess_component(module(), ALONE, of(delta_neighbours_k=18.6, delta_ambient_k=40.0), PV)
+    assert (verdict.urgency, classes(verdict)) == (2, {"pv-modules": "hot spot"})
+    assert "above the median of its 8 neighbours, at 1000 W/m²" in verdict.assessments[0].statement
+    assert LOAD_UNKNOWN not in verdict.flags
+    assert assess_component(module(), ALONE, of(delta_neighbours_k=0.5, delta_ambient_k=30.0), PV).cleared
+
+
+@pytest.mark.parametrize(
+    ("known", "flag"),
+    [
+        ({"irradiance": 599.0}, LOW_SUN),
+        ({"irradiance": None}, SUN_UNKNOWN),
+        ({"irradiance": nan}, SUN_UNKNOWN),
+        ({"neighbours": 5}, FEW_NEIGHBOURS),
+        ({"wind": 6.0}, WINDY),
+    ],
+)
+def test_a_module_seen_in_little_sun_or_company_is_raised_and_never_cleared(
+    known: dict[str, object], flag: str
+) -> None:
+    for value, urgency in ((0.5, 0), (25.0, 3)):
+        verdict = assess_component(module(**known), ALONE, of(delta_neighbours_k=value, delta_ambient_k=30.0), PV)
+        assert (verdict.urgency, verdict.cleared) == (urgency, False)
+        assert flag in verdict.flags
+    enough = assess_component(
+        module(irradiance=600.0, neighbours=6), ALONE, of(delta_neighbours_k=0.5, delta_ambient_k=30.0), PV
+    )
+    assert enough.cleared
+
+
+def test_modules_warmed_by_the_sun_are_not_a_warm_group() -> None:
+    members = tuple(replace(module(), name=str(k)) for k in range(3))
+    assert all(plan.flags == () for plan in twins(members, AIR, PV))
+
+
+# --- what is said of a group ----------------------------------------------------------------------------------------
+
+
+def told(verdict: Verdict) -> str:
+    return " ".join(one.statement for one in verdict.assessments)
+
+
+def test_a_part_by_itself_a_group_of_one_and_one_among_incomparable_ones_are_told_apart() -> None:
+    alone = judged((lug("1", 15.0, group=None), lug("2", 15.0)))
+    assert "With no twin to compare with this may be its load or the ambient air" in told(alone["1"])
+    assert "As the only one of its group “feeder lugs”" in told(alone["2"])
+    bare = judged((lug("1", 15.0), lug("2", 15.0, emissivity=0.2)))["1"]
+    assert "As no other of its group “feeder lugs” can be compared with it" in told(bare)
+    for verdict in (*alone.values(), bare):
+        assert (verdict.urgency, governing(verdict)) == (2, ["neta-ambient"])
+
+
+def test_an_unbalanced_group_is_told_so_and_compared_at_one_load() -> None:
+    verdicts = judged((lug("1", 4.0, load=200.0), lug("2", 4.0 * 2**1.8, load=400.0)))
+    for verdict in verdicts.values():
+        assert UNBALANCED in verdict.flags
+        assert "The loads of its group differ" in told(verdict)
+        assert verdict.urgency == 0
+
+
+def test_a_balanced_hot_group_is_no_matter_of_one_joint_and_an_overload_is_named() -> None:
+    hot = told(judged((lug("1", 31.0), lug("2", 31.4)))["2"])
+    assert "not the matter of one joint: check load, harmonics and ambient air before the joints" in hot
+    assert "of its rating" not in hot.split("check load")[0]
+    over = told(judged((lug("1", 31.0, load=480.0), lug("2", 31.4, load=480.0)))["2"])
+    assert "at 120% of its rating, which is not the matter of one joint" in over

@@ -12,7 +12,18 @@ from hypothesis import strategies as st
 from irsurvey.assess.criteria import MARKS, criteria
 from irsurvey.assess.judged import Judged, Sensitivity
 from irsurvey.assess.next_visit import Decision, is_open, measurements, next_visit, remaining_u
-from irsurvey.assess.severity import AUTOMATIC_REFERENCE, BLOCKERS, LOAD_UNKNOWN, LOW_LOAD, SIZE_LIMITED
+from irsurvey.assess.severity import (
+    AUTOMATIC_REFERENCE,
+    BLOCKERS,
+    FEW_NEIGHBOURS,
+    LOAD_UNKNOWN,
+    LOW_LOAD,
+    LOW_SUN,
+    SIZE_LIMITED,
+    SUN_UNKNOWN,
+    UNSTEADY,
+    WINDY,
+)
 from irsurvey.model.quantities import Scene
 from irsurvey.model.report import NextMeasurement
 
@@ -98,6 +109,14 @@ def test_every_number_that_governs_must_be_settled() -> None:
 
 def test_every_blocker_has_a_measurement_that_lifts_it() -> None:
     assert {flag for one in measurements() for flag in one.lifts} == set(BLOCKERS)
+
+
+@pytest.mark.parametrize("flag", [UNSTEADY, WINDY, LOW_SUN, SUN_UNKNOWN, FEW_NEIGHBOURS])
+def test_a_mild_part_seen_under_poor_circumstances_is_settled_by_coming_back_under_better_ones(flag: str) -> None:
+    decision = Decision("lug", (number(0.1, ("camera_offset", 0.05, 1.0)),), (flag,), 0)
+    (line,) = next_visit([decision])
+    assert (line.measurement, line.settles) == (BY_LIFTED[flag].how, ("lug",))
+    assert f"lifts “{flag}”" in line.why
 
 
 def test_every_measurement_names_inputs_of_a_scene_and_where_its_figure_comes_from() -> None:

@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import cv2
 import numpy as np
 import pytest
 from report.buildings import envelope, rectangle, seasons
+from report.switch_room import limit, lug, populations, repairs
 
 from irsurvey.model import (
     Assessment,
@@ -150,7 +153,18 @@ def component(name: str, box: tuple[int, int, int, int], **fields: object) -> Co
         "delta_similar_k": Estimate(0.0, 0.0),
         "similar_to": None,
         "delta_ambient_k": Estimate(9.12, 1.3),
+        "delta_similar_in_calm_k": None,
+        "delta_ambient_in_calm_k": None,
+        "relative_difference_percent": None,
+        "above_limit_k": None,
+        "above_allowed_k": None,
+        "delta_neighbours_k": None,
         "heat_flux_w_m2": Estimate(96.1, 15.0),
+        "is_found": False,
+        "limit": None,
+        "joint": None,
+        "trend": None,
+        "indication": None,
         "at_rated_load": None,
         "assessments": (
             Assessment(
@@ -397,12 +411,37 @@ def report() -> Report:
             AssetReport("FB-3", "Feeder board 3", "Switch room", 1, False, "blocked by scaffolding", ()),
         ),
         frames=(wall, clean, lost, board),
+        repairs=(),
+        populations=(),
         seasons=seasons(),
         checklist=(
             ChecklistItem("client", "simplified report", False, "survey.client"),
             ChecklistItem("equipment, its make and serial number", "full report", True, "sheets of the frames"),
         ),
         cautions=("One invented caution.",),
+    )
+
+
+@pytest.fixture
+def switch_room(report: Report) -> Report:
+    """The electrical frame alone, with all that a maintenance crew is told: repairs, limits, joints, trends."""
+    board = report.frames[3]
+    first, second, third = board.components
+    second = replace(second, **lug())
+    third = replace(third, is_found=True, limit=limit(), flags=(*third.flags, "found, not drawn"))
+    board = replace(board, components=(first, second, third), claim="quantitative", claim_reason="")
+    return replace(
+        report,
+        claim="quantitative",
+        claim_reason="",
+        frames=(board,),
+        repairs=repairs(),
+        populations=populations(),
+        seasons=(),
+        checklist=(),
+        next_visit=report.next_visit[1:],
+        conditions_review=report.conditions_review[2:],
+        cautions=(),
     )
 
 

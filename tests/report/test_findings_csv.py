@@ -10,7 +10,8 @@ from typing import Any
 import pytest
 
 from irsurvey.model import FrameTask, Report
-from irsurvey.report.findings_csv import COLUMNS, as_text, write
+from irsurvey.report.csv_table import as_text
+from irsurvey.report.findings_csv import COLUMNS, write
 from irsurvey.report.json import plain
 
 Rows = list[dict[str, str]]
@@ -61,6 +62,27 @@ def test_the_rise_at_rated_load_is_a_band(report: Report, tmp_path: Path) -> Non
     row = next(row for row in written(report, tmp_path) if row["name"] == "phase 2 lug")
     assert (row["at_rated_load_delta_similar_k_low"], row["at_rated_load_delta_similar_k_high"]) == ("110.3", "145.5")
     assert (row["at_rated_load_delta_ambient_k_low"], row["at_rated_load_delta_ambient_k_high"]) == ("137.9", "182.0")
+
+
+def test_limit_joint_and_trend_of_a_component_have_columns_of_their_own(switch_room: Report, tmp_path: Path) -> None:
+    row = next(row for row in written(switch_room, tmp_path) if row["name"] == "phase 2 lug")
+    told = {
+        "limit_name": "invented/bolted-bare",
+        "limit_max_c": "90.0",
+        "limit_rise_k": "50.0",
+        "limit_allowed_now_c_low": "32.13",
+        "limit_allowed_now_c_high": "35.94",
+        "joint_excess_resistance_uohm": "42.25",
+        "u_joint_excess_resistance_uohm": "6.3",
+        "trend_slope_k_per_year": "24.6",
+        "trend_slope_low_k_per_year": "17.1",
+        "trend_slope_high_k_per_year": "33.2",
+        "above_allowed_k": "35.56",
+        "relative_difference_percent": "79.95",
+        "delta_ambient_in_calm_k": "74.6",
+        "indication": "hot joint",
+    }
+    assert {name: row[name] for name in told} == told
 
 
 def test_the_governing_assessment_and_the_flags_are_named(report: Report, tmp_path: Path) -> None:

@@ -204,7 +204,10 @@ def test_an_accepted_pair_tells_what_changed_and_what_did_not(report: Report, sh
     text = Page(show(report)).text
     assert "the pressure inside was 50 Pa below that outside" in text
     assert "correlation 0.97 (1: alike)" in text
-    assert "3.2 px across, −1.1 px down, turned by 0.41°" in text
+    assert (
+        "Where the middle of this picture lies in the other 3.2 px to the right of its middle and 1.1 px above it, "
+        "turned by 0.41°" in text
+    )
     assert "Smallest change that counts 0.35 K" in text
     assert "consistent with air leakage; verify with smoke" in text
     assert "a colder −1.62 ± 0.22 0.310 ± 0.040 F01-2" in text

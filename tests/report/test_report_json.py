@@ -52,7 +52,7 @@ def test_the_keys_are_those_of_the_records_without_trailing_underscore(report: R
     contents = plain(report)
     assert list(contents) == [
         *("format", "tool", "survey", "claim", "claim_reason", "conditions_review", "next_visit", "assets"),
-        *("frames", "seasons", "checklist", "cautions"),
+        *("frames", "repairs", "populations", "seasons", "checklist", "cautions"),
     ]
     assert contents["frames"][0]["inputs"]["emissivity"] == {
         "value": 0.92,
@@ -206,7 +206,7 @@ def test_an_estimate_and_an_input_stand_on_one_line(report: Report) -> None:
     )
 )
 def test_however_lines_are_broken_the_contents_are_the_same(contents: Any) -> None:
-    report = Report(1, {}, {"survey": contents}, "not valid", "", (), (), (), (), (), (), ())
+    report = Report(1, {}, {"survey": contents}, "not valid", "", (), (), (), (), (), (), (), (), ())
     assert json.loads(text(report))["survey"]["survey"] == contents
 
 

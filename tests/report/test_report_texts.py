@@ -14,7 +14,7 @@ from irsurvey.anomalies.cues import Cues
 from irsurvey.assess.conformity import FOUR_WAY, OUTCOMES
 from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.severity import BLOCKERS
-from irsurvey.model import Scene
+from irsurvey.model import ComponentReport, JointHeat, Scene
 from irsurvey.report import WRITERS, texts
 
 TEXTS = tomllib.loads((files("irsurvey.report") / "texts.toml").read_text(encoding="utf-8"))
@@ -80,6 +80,26 @@ def test_whatever_takes_heat_has_plain_words(faced: str) -> None:
 )
 def test_flags_of_an_envelope_are_explained(flag: str) -> None:
     assert texts.flag(flag) != flag
+
+
+@pytest.mark.parametrize(
+    "flag", ["load not steady", "windy", "load above rating", "found, not drawn", "window temperature assumed"]
+)
+def test_flags_of_electrical_parts_are_explained(flag: str) -> None:
+    assert texts.flag(flag) != flag
+
+
+@pytest.mark.parametrize("record", [ComponentReport, JointHeat])
+def test_every_number_of_a_component_and_its_joint_has_a_name_of_its_own(record: type) -> None:
+    keys = [field.name for field in fields(record) if str(field.type) == "Estimate | None"]
+    assert len({texts.name(key) for key in keys}) == len(keys) > 5
+    assert all(texts.name(key) in TEXTS["names"].values() for key in keys)
+
+
+def test_bases_and_shapes_have_words() -> None:
+    assert set(TEXTS["basis"]) == {"similar", "ambient", "reference"}
+    assert set(TEXTS["form"]) == {"cylinder", "plate", "sphere", "area"}
+    assert set(TEXTS["usual"]) == {"median", "mean"}
 
 
 def test_numbers_that_share_their_stem_have_names_of_their_own() -> None:
@@ -169,5 +189,5 @@ def test_no_text_hides_a_flag_that_blocks_clearing() -> None:
         assert code in TEXTS["flags"]
 
 
-def test_the_documents_are_json_csv_and_html() -> None:
-    assert list(WRITERS) == ["json", "csv", "html"]
+def test_the_documents_are_json_both_tables_and_html() -> None:
+    assert list(WRITERS) == ["json", "csv", "repairs", "html"]

@@ -65,7 +65,9 @@ def test_the_number_that_is_judged_comes_first_then_other_differences(wall_findi
     keys = ("extreme_c", "temperature_factor_at_0_25", "delta_k")
     finding = replace(wall_finding, budgets=dict.fromkeys(keys, terms))
     assert [shown.key for shown in budgets(finding)] == ["delta_k", "extreme_c", "temperature_factor_at_0_25"]
-    by_factor = replace(wall_finding.assessments[1], criterion="temperature-factor-de", governs=True)
+    by_factor = replace(
+        wall_finding.assessments[1], criterion="own.toml", quantity="temperature_factor_at_0_25", governs=True
+    )
     finding = replace(finding, assessments=(by_factor,))
     assert [shown.key for shown in budgets(finding)] == ["temperature_factor_at_0_25", "delta_k", "extreme_c"]
 

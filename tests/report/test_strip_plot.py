@@ -7,7 +7,8 @@ from dataclasses import replace
 import pytest
 
 from irsurvey.model import Estimate, Report, StripReport
-from irsurvey.report.strip_plot import BOTTOM, LEFT, RIGHT, TOP, plot
+from irsurvey.report.axes import BOTTOM, LEFT, RIGHT, TOP
+from irsurvey.report.strip_plot import plot
 
 
 @pytest.fixture

@@ -20,6 +20,12 @@ def kelvin_days(seconds: NDArray[np.float64], t_outdoor: NDArray[np.float64], t_
     return float(np.sum(np.diff(seconds) / 86_400 * np.maximum(sign * (t_base - t_outdoor), 0)[:-1]))
 
 
+def criterion_faults(text: str) -> list[Fault]:
+    """One fault for each line "key = bad", and one without a key for a text of nothing: a rule of the tests alone."""
+    bad = [line.split(" = ")[0] for line in text.splitlines() if line.endswith(" = bad")]
+    return [Fault("", "a criterion", "nothing")] if not text.strip() else [Fault(key, "good", "bad") for key in bad]
+
+
 KNOWN = Known(
     criteria=("building-delta-t", "temperature-factor"),
     convections=("iso-6946", "churchill-chu"),
@@ -34,6 +40,8 @@ KNOWN = Known(
     sky_models={"berdahl-martin": 5.0, "swinbank": 6.0},
     building_materials={"brick": (0.77, 1700.0, 800.0), "gypsum plaster": (0.4, 1000.0, 1000.0)},
     degree_days=kelvin_days,
+    limits=("iec-60694/bolted-bare", "iec-60694/bolted-tin", "insulation/F"),
+    criterion_faults=criterion_faults,
 )
 HEAD = """
 [survey]

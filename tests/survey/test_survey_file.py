@@ -17,6 +17,7 @@ from irsurvey.model import (
     Component,
     Detection,
     InCameraCorrection,
+    JointShape,
     KnownLength,
     KnownRectangle,
     Quantity,
@@ -31,6 +32,9 @@ FILES = {
     "tables/frames.csv": "file,conditions.distance_m\nframes/t1.tif,3.5\n",
     "tables/logger.csv": "time,air_c,battery\n2026-01-18T07:00,20,3.1\n2026-01-18T08:00,26,3.0\n",
     "tables/year.csv": "time,outdoor_air_c\n2025-01-01,20\n2025-07-01,16\n2026-01-01,20\n",
+    "tables/load.csv": "time,load_a_1,load_a_2\n2026-01-18T06:00,180,180\n2026-01-18T07:00,200,210\n",
+    "tables/history.csv": "date,asset,component,delta_ambient_k\n2025-01-18,,phase 1 lug,4.5\n",
+    "site.toml": 'name = "site"\n',
     "north/f10.tif": "",
     "north/f02.tif": "",
     "north/f03.tif": "",
@@ -66,7 +70,7 @@ def test_the_example_states_every_key_that_the_schema_knows() -> None:
 
 
 def test_frames_are_listed_ones_then_table_rows_then_globbed_ones_sorted(survey: Survey) -> None:
-    assert [task.id for task in survey.tasks] == ["F01", "F04", "F03", "P01", "t1", "f02", "f10"]
+    assert [task.id for task in survey.tasks] == ["F01", "F04", "F03", "P01", "P02", "P03", "t1", "f02", "f10"]
 
 
 def test_a_listed_frame_whose_file_a_glob_finds_is_that_group_s_and_not_a_second_one(survey: Survey) -> None:
@@ -93,7 +97,7 @@ def test_the_survey_carries_its_texts_and_assets(survey: Survey) -> None:
         Asset("W-N-01", "North wall", "Living room", 2),
         Asset("W-N-02", not_inspected="blocked by scaffolding"),
     )
-    assert frame(survey, "F01").criteria == ("building-delta-t", "temperature-factor")
+    assert frame(survey, "F01").criteria == ("building-delta-t", "temperature-factor", "site.toml")
 
 
 def test_the_file_as_read_is_kept_as_json_with_iso_dates(survey: Survey) -> None:
@@ -230,6 +234,9 @@ def test_components_of_one_group_and_emissivity_share_a_name_and_take_loads_of_t
             190.0,
             400.0,
             "emissivity:feeder lugs",
+            limits=("iec-60694/bolted-bare", "insulation/F"),
+            shape=JointShape("cylinder", diameter=0.03, length=0.12),
+            time_constant=1200.0,
         ),
         Component(
             "phase 2 lug",
@@ -239,13 +246,16 @@ def test_components_of_one_group_and_emissivity_share_a_name_and_take_loads_of_t
             200.0,
             400.0,
             "emissivity:feeder lugs",
+            shape=JointShape("plate", length=0.1, width=0.05),
         ),
         Component(
             "bare bar",
             ((31.0, 1.0), (39.0, 1.0), (39.0, 9.0)),
             "feeder lugs",
             emissivity="emissivity:copper",
+            shape=JointShape("sphere", diameter=0.05),
         ),
+        Component("clamp", ((41.0, 1.0), (49.0, 1.0), (49.0, 9.0)), shape=JointShape("area", area=0.02)),
     )
     assert (task.kind, task.method, task.viewed_from) == ("electrical", "contact", None)
     copper = task.scene["emissivity:copper"]
@@ -312,9 +322,10 @@ def test_loading_twice_gives_the_same_survey(load_text: Callable[..., Survey], s
 
 def test_what_is_assumed_is_listed_with_the_frames_it_concerns(survey: Survey) -> None:
     notices = "\n".join(survey.notices)
-    assert "temperature of the window not stated: that of the air assumed (group north)" in notices
-    assert "load not recorded: nothing can be cleared for bare bar (group panel)" in notices
-    assert "raw file missing: the frame will fail (F01, F04, P01, t1)" in notices
+    window = [notice for notice in survey.notices if "temperature of the window not stated" in notice]
+    assert [(notice.split(":")[0], notice[-19:]) for notice in window] == [("warning", "F03, P02, f02, f10)")]
+    assert "load not recorded: nothing can be cleared for bare bar, clamp (P01)" in notices
+    assert "raw file missing: the frame will fail (F01, F04, P01, P02 and 2 more)" in notices
     assert "photograph missing (F01)" in notices
     assert "ifov_mrad of tele not stated: no spot size, no area (group north)" in notices
     assert "emissivity not stated" not in notices
@@ -332,4 +343,8 @@ def test_drawn_things_outside_the_frame_are_faults_once_its_size_is_known(survey
     assert [fault.where for fault in polygon_faults(task, (480, 640 - 10))] == ["frame[F01].inspect.polygon"]
     assert "frame[F01].known_length" in [fault.where for fault in polygon_faults(task, (480, 100))]
     panel = [fault.where for fault in polygon_faults(frame(survey, "P01"), (30, 35))]
-    assert panel == ["frame[P01].component[bare bar].polygon", "frame[P01].known_rectangle.corners"]
+    assert panel == [
+        "frame[P01].component[bare bar].polygon",
+        "frame[P01].component[clamp].polygon",
+        "frame[P01].known_rectangle.corners",
+    ]

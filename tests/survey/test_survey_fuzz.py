@@ -13,7 +13,7 @@ from typing import Any
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from irsurvey.errors import SurveyError
+from irsurvey.errors import Fault, SurveyError
 from irsurvey.model import Survey
 from irsurvey.survey.load import Known, load, schema
 
@@ -33,7 +33,11 @@ KNOWN = Known(
     dict.fromkeys(("berdahl-martin", "swinbank"), 5.0),
     dict.fromkeys(("brick", "gypsum plaster"), (1.0, 1000.0, 1000.0)),
     summed,
+    ("iec-60694/bolted-bare", "insulation/F"),
+    lambda text: [Fault("name", "a name", "another")] if "name" in text else [],
 )
+COLUMNS = ["file", "time", "air_c", "outdoor_air_c", "rain_mm", "surface", "strip", "pair.with", "taken"]
+COLUMNS += ["load_a", "load_a_1", "date", "asset", "component", "delta_ambient_k", "u_k", "window_from.without"]
 KEYS = sorted({key for table in [schema(), *schema()["$defs"].values()] for key in table.get("properties", {})})
 
 text = st.text(st.characters(codec="utf-8", exclude_characters="\x7f"), max_size=12)
@@ -102,6 +106,9 @@ def outcome(data: bytes, csv: bytes = b"") -> Survey | SurveyError:
             "time,air_c,indoor_air_c,outdoor_air_c,irradiance_w_m2,rain_mm\n"
             "2026-01-17T07:00,3,20,1,200,0.4\n2026-01-18T07:00,3,21,1,0,0\n2026-01-18T08:00,4,21,1,0,0\n"
         )
+        (Path(name) / "tables" / "load.csv").write_text("time,load_a_1,load_a_2\n2026-01-18T07:00,200,210\n")
+        (Path(name) / "tables" / "history.csv").write_text("date,component,delta_ambient_k\n2025-01-18,lug,4\n")
+        (Path(name) / "site.toml").write_text("")
         (Path(name) / "tables" / "year.csv").write_text("time,outdoor_air_c\n2025-01-01,3\n2025-12-31,4\n")
         try:
             found: Survey | SurveyError = load(path, known=KNOWN)
@@ -162,9 +169,7 @@ def test_any_bytes_at_all(data: bytes) -> None:
 @given(
     header=st.lists(
         st.one_of(
-            st.sampled_from(
-                ["file", "time", "air_c", "outdoor_air_c", "rain_mm", "surface", "strip", "pair.with", "taken"]
-            ),
+            st.sampled_from(COLUMNS),
             text,
         ),
         max_size=5,
@@ -174,9 +179,10 @@ def test_any_bytes_at_all(data: bytes) -> None:
 def test_any_table_and_log(header: list[str], body: str) -> None:
     csv = (",".join(header) + "\n" + body).encode("utf-8")
     head = (
-        'frame_table = "t.csv"\n[survey]\ntitle = "T"\nkind = "building"\n[camera]\nband_um = [8, 14]\n'
-        'signal = { quantity = "counts", gain = 1 }\n'
+        'frame_table = "t.csv"\nhistory = "t.csv"\n[survey]\ntitle = "T"\nkind = "building"\n'
+        '[camera]\nband_um = [8, 14]\nsignal = { quantity = "counts", gain = 1 }\n'
         '[conditions]\nlog = "t.csv"\nair_c = 1\nreflected_c = 1\ndistance_m = 1\n'
         '[season]\nheating = { base_c = 15, temperatures = "t.csv" }\n'
+        '[[circuit]]\nid = "C"\nlog = "t.csv"\n'
     )
     outcome(head.encode("utf-8"), csv)

@@ -1,0 +1,92 @@
+"""The repair list as people work through it: what, where, how urgent and how sure, with both pictures."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+from irsurvey import numbers
+from irsurvey.model import ComponentReport, FrameTask, RepairItem, Report
+from irsurvey.report import pictures, results, texts
+from irsurvey.report.labels import component_mark
+from irsurvey.report.pictures import Picture
+from irsurvey.report.ranking import Ranked
+
+_JUDGED = {"similar": "delta_similar_k", "ambient": "delta_ambient_k", "reference": "delta_k"}
+"""Basis of a difference → the number of a component or finding that it is."""
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """One item in words; `entry` is the finding or component it names, `mark` its letter or number on the picture."""
+
+    item: RepairItem
+    entry: Ranked | None
+    mark: str
+    spot: str
+    sure: str
+    delta: str
+    basis: str
+    load: str
+    thermal: Picture | None = None
+    photo: Picture | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Shown:
+    """The list in two parts: what asks for something, and what is only not cleared, in tables without pictures."""
+
+    repair: tuple[Line, ...]
+    again: tuple[Line, ...]
+
+
+def shown(report: Report, ranked: Iterable[Ranked], tasks: Mapping[str, FrameTask], out: Path) -> Shown:
+    """The list of a report, both parts in its order."""
+    entries = {(entry.frame.id, entry.item.key): entry for entry in ranked}
+    frames = {item.frame for item in report.repairs if item.urgency} & tasks.keys()
+    photos = {id_: pictures.photograph(tasks[id_], pictures.THUMBNAIL_SIDE) for id_ in sorted(frames)}
+    listed = [(item, _line(item, entries.get((item.frame, item.key)))) for item in report.repairs]
+    return Shown(
+        repair=tuple(_pictured(line, photos.get(item.frame), out) for item, line in listed if item.urgency),
+        again=tuple(line for item, line in listed if not item.urgency),
+    )
+
+
+def _line(item: RepairItem, entry: Ranked | None) -> Line:
+    mark, spot = "", ""
+    if entry:
+        spot = results.reading(entry.item, "max_c" if isinstance(entry.item, ComponentReport) else "extreme_c")
+        mark = component_mark(entry.place) if isinstance(entry.item, ComponentReport) else str(entry.place)
+    return Line(
+        item,
+        entry,
+        mark,
+        spot=spot.strip(numbers.NOTHING),
+        sure=results.chance(item.confidence),
+        delta=_delta(item, entry),
+        basis=_basis(item, entry),
+        load=results.load(entry.item if entry else None, item.load_a, item.rated_a),
+    )
+
+
+def _pictured(line: Line, photo: Picture | None, out: Path) -> Line:
+    if line.entry is None:
+        return replace(line, photo=photo)
+    words = f"Thermal picture of {line.item.what[:80]}, marked {line.mark}, in frame {line.item.frame}"
+    thermal = pictures.around(line.entry.frame, line.entry.item.polygon, words, out)
+    return replace(line, thermal=thermal, photo=photo)
+
+
+def _delta(item: RepairItem, entry: Ranked | None) -> str:
+    """The difference with its unit, and with ≥ or ≤ where the reading is only a bound; "" where there is none."""
+    text = numbers.measured(item.delta_k, "delta_k")
+    if text == numbers.NOTHING:
+        return ""
+    return results.bounded(entry.item, _JUDGED.get(item.delta_basis, ""), text) if entry else text
+
+
+def _basis(item: RepairItem, entry: Ranked | None) -> str:
+    twin = entry.item.similar_to if entry and isinstance(entry.item, ComponentReport) else None
+    words = texts.basis(item.delta_basis)
+    return f"{words}, {twin}" if twin and item.delta_basis == "similar" else words
