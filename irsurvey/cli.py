@@ -157,14 +157,16 @@ def plan(survey: Path, contrast_k: float | None, size_mm: float) -> int:
 @click.argument("survey", type=Path)
 @click.option("-o", "--out", type=Path, help="Folder to write to; default: report, beside the survey file.")
 @click.option("--jobs", type=click.IntRange(min=1), default=1, show_default=True, help="Frames worked on at once.")
-@click.option("--documents", default="html", show_default=True, help="Documents to make, joined by commas.")
+@click.option("--documents", default="html,pdf", show_default=True, help="Documents to make, joined by commas.")
+@click.option("--csv-bom", is_flag=True, help="Begin the CSV tables with a byte order mark, as some spreadsheets ask.")
 @click.option("--maps", default="", help="Further maps for each frame, joined by commas: heat-flux, uncertainty.")
 @UNCERTAINTY
-def run(survey: Path, out: Path | None, jobs: int, documents: str, maps: str, uncertainty: str) -> int:
+def run(survey: Path, out: Path | None, jobs: int, documents: str, csv_bom: bool, maps: str, uncertainty: str) -> int:
     """Analyse every frame of SURVEY (the survey file or its folder) and write the report."""
     from irsurvey.run import run as run_survey
 
-    chosen = {"documents": _names(documents), "maps": _names(maps)}
+    marked = ("csv-bom",) if csv_bom else ()
+    chosen = {"documents": (*_names(documents), *marked), "maps": _names(maps)}
     path = _survey_file(survey)
     out = out or path.parent / "report"
     with _progress() as on_frame:
@@ -196,6 +198,35 @@ def readings(source: Path, out: Path, uncertainty: str) -> int:
     return SOME_FAILED if done.failed else ALL_DONE
 
 
+@main.group()
+def review() -> None:
+    """What a reviewer decided about a report."""
+
+
+@review.command("apply")
+@click.argument("out", type=Path)
+@click.argument("decisions", type=Path, metavar="DECISIONS.json")
+def apply_review(out: Path, decisions: Path) -> int:
+    """Put the decisions of DECISIONS.json into the report in OUT and list what is still open.
+
+    The page of the report exports that file.  What was measured stays as it was; report.json says beside it who
+    decided what, when and why, and the documents there are made again.
+    """
+    from irsurvey.report.review.words import InWords
+    from irsurvey.review import apply
+
+    done = apply(out, decisions)
+    told = InWords(done.report)
+    for status in done.gone:
+        _tell(f"{status.frame} {status.id}: no longer in the report; the decision on {status.key} is kept")
+    if done.open:
+        _print_table(("frame", "still open", "why"), ((one.frame, one.id, told.how_open(one)) for one in done.open))
+    said = f"{len(done.review.decisions)} of {done.review.reviewer}, {done.review.date}"
+    _tell(f"decisions: {said}{'' if done.is_new else '; they were in the report already'}")
+    _tell(f"{out}: {len(done.open)} still open of {len(done.report.review_status) - len(done.gone)}")
+    return ALL_DONE
+
+
 @main.command()
 def materials() -> int:
     """List the built-in emissivities with their sources."""
@@ -210,13 +241,16 @@ def materials() -> int:
 
 
 @main.command()
-def criteria() -> int:
-    """List the built-in criteria with their classes, urgencies and sources."""
-    from irsurvey.assess.criteria import criteria as built_in
+@click.argument("survey", required=False, type=click.Path(path_type=Path))
+def criteria(survey: Path | None) -> int:
+    """List the built-in criteria with their classes, urgencies and sources, and those of SURVEY's own."""
+    from irsurvey.assess.criteria import criteria as known
+    from irsurvey.run import load_survey, own_criteria
 
+    own = own_criteria(load_survey(_survey_file(survey))) if survey is not None else ()
     rows = (
         (name, entry.quantity, "\n".join(map(_interval, entry.classes)), f"{entry.source} ({entry.mark})")
-        for name, entry in built_in().items()
+        for name, entry in known(own).items()
     )
     _print_table(("criterion", "judges", "class: interval, urgency", "source"), rows)
     return ALL_DONE

@@ -2,10 +2,35 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from decimal import ROUND_CEILING, ROUND_HALF_EVEN, Context, Decimal
 from math import copysign, isfinite, log10
+from typing import Final
 
 from irsurvey.model import Estimate, Input
+
+
+@dataclass(frozen=True, slots=True)
+class Style:
+    """How numbers and days are written for people; never for machines: reports and tables of data stay as they are."""
+
+    units: str = "si"  # "si" | "us"
+    decimal_comma: bool = False
+    date_format: str = "%Y-%m-%d"
+
+
+SI: Final = Style()
+"""Metric units, a decimal point, ISO 8601 days: what counts where a survey asks for nothing else."""
+
+
+@dataclass(frozen=True, slots=True)
+class Scale:
+    """A unit: what it is called, and how a number of the SI unit becomes one of it: factor · value + shift."""
+
+    symbol: str
+    factor: float = 1.0
+    shift: float = 0.0
+
 
 COVERAGE_FACTOR = 2.0
 """U = k·u with k = 2: about 95 % coverage where the result is nearly normal (JCGM 100:2008, 6.3.3)."""
@@ -47,75 +72,130 @@ UNITS = {
 }
 """The ending of a key → the unit as people write it; longer endings first."""
 
+_FOOT, _INCH, _MILE = 0.3048, 0.0254, 1609.344  # m, exact (NIST SP 811, 2008, B.8)
+_BTU = 1055.05585262 / 3600  # W of 1 Btu/h, International Table (NIST SP 811, B.8)
+_GRAIN = 0.06479891  # g, exact
+_INCH_OF_MERCURY = 33.86389  # hPa, conventional (NIST SP 811, B.8)
+
+_US: Final = {
+    "°C": Scale("°F", 1.8, 32.0),
+    "K": Scale("°F", 1.8),
+    "K·d": Scale("°F·d", 1.8),
+    "K/m": Scale("°F/ft", 1.8 * _FOOT),
+    "K/px": Scale("°F/px", 1.8),
+    "K/year": Scale("°F/year", 1.8),
+    "m": Scale("ft", 1 / _FOOT),
+    "m²": Scale("ft²", 1 / _FOOT**2),
+    "cm²": Scale("in²", 1e-4 / _INCH**2),
+    "m/s": Scale("mph", 3600 / _MILE),
+    "hPa": Scale("inHg", 1 / _INCH_OF_MERCURY),
+    "g/m³": Scale("gr/ft³", _FOOT**3 / _GRAIN),
+    "W": Scale("Btu/h", 1 / _BTU),
+    "W/K": Scale("Btu/(h·°F)", 1 / (1.8 * _BTU)),
+    "W/m²": Scale("Btu/(h·ft²)", _FOOT**2 / _BTU),
+    "W/(m·K)": Scale("Btu/(h·ft·°F)", _FOOT / (1.8 * _BTU)),
+    "W/(m²·K)": Scale("Btu/(h·ft²·°F)", _FOOT**2 / (1.8 * _BTU)),
+    "m²·K/W": Scale("h·ft²·°F/Btu", 1.8 * _BTU / _FOOT**2),
+}
+"""Unit of the SI → what stands for it in the United States; what is not here is the same there."""
+_SAME_EVERYWHERE = ("irradiance_w_m2", "power_w")
+"""Endings of keys that keep their unit: what a solar trade and an electrician read in watts there as well."""
 
 SMALL_AREA_M2 = 0.01
-"""Areas below it are shown in cm²."""
+"""Areas below it are shown in cm², or square inches."""
 
 _OF_A_DIFFERENCE = {"°C": "K", "%": "points"}
 """Units in which a change is not told as the number itself is: 45 % and 50 % are 5 points apart, or 11 %."""
 
 
-def unit(key: str) -> str:
+def expressed(symbol: str, style: Style = SI) -> Scale:
+    """How a number with a unit of the SI is shown in a style."""
+    return _US.get(symbol, Scale(symbol)) if style.units == "us" else Scale(symbol)
+
+
+def scale(key: str, style: Style = SI) -> Scale:
+    """How the number of a key is shown in a style."""
+    stem = key.partition(":")[0]
+    return Scale(_symbol(stem)) if stem.endswith(_SAME_EVERYWHERE) else expressed(_symbol(stem), style)
+
+
+def difference_scale(key: str, style: Style = SI) -> Scale:
+    """How a change of that number, or its uncertainty, is shown: "air_c" as K, or °F."""
+    symbol = _symbol(key.partition(":")[0])
+    return expressed(_OF_A_DIFFERENCE.get(symbol, symbol), style) if symbol in _OF_A_DIFFERENCE else scale(key, style)
+
+
+def unit(key: str, *, style: Style = SI) -> str:
     """The unit that the ending of a key stands for: "delta_k" → "K"; "" where the number has none.
 
     What follows a colon names whose number it is: "temperature_c:plate" → "°C"."""
-    stem = key.partition(":")[0]
-    return next((symbol for ending, symbol in UNITS.items() if stem.endswith(f"_{ending}")), "")
+    return scale(key, style).symbol
 
 
-def difference_unit(key: str) -> str:
+def difference_unit(key: str, *, style: Style = SI) -> str:
     """The unit of a change of that number, and of its uncertainty: "air_c" → "K"."""
-    return _OF_A_DIFFERENCE.get(unit(key), unit(key))
+    return difference_scale(key, style).symbol
 
 
-def plus_minus(value: float, expanded: float) -> str:
+def converted(value: float, key: str, *, style: Style = SI) -> float:
+    """The number of a key in the unit that a style shows it in."""
+    to = scale(key, style)
+    return to.factor * value + to.shift
+
+
+def plus_minus(value: float, expanded: float, *, style: Style = SI) -> str:
     """A value and its expanded uncertainty U: "3.14 ± 0.28".
 
     The one rule used everywhere: U keeps two significant digits, rounded to the nearest, and the value is
     rounded to the same decimal place.  JCGM 100:2008, 7.2.6: at most two digits in U, the estimate consistent
     with it.  To the nearest rather than up: the usual rules of rounding, as ILAC-P14:01/2013, 6.3 b asks."""
     place = _place(expanded, 2)
-    return f"{_rounded(value, place)}\u00a0±\u00a0{_rounded(expanded, place)}"
+    return f"{_rounded(value, place, style)}\u00a0±\u00a0{_rounded(expanded, place, style)}"
 
 
-def shown(estimate: Estimate | None) -> str:
+def shown(estimate: Estimate | None, *, style: Style = SI) -> str:
     """A result for people: value ± U (k = 2), the value alone where U is not known, "–" where there is none."""
     if estimate is None or not isfinite(estimate.value):
         return NOTHING
     if estimate.u is None or not isfinite(estimate.u) or estimate.u <= 0:
-        return number(estimate.value)
-    return plus_minus(estimate.value, COVERAGE_FACTOR * estimate.u)
+        return number(estimate.value, style=style)
+    return plus_minus(estimate.value, COVERAGE_FACTOR * estimate.u, style=style)
 
 
-def measured(estimate: Estimate | None, key: str, *, unit: bool = True) -> str:
+def measured(estimate: Estimate | None, key: str, *, unit: bool = True, style: Style = SI) -> str:
     """A result for people with the unit its key ends in; small areas in cm², named even in a column of m²."""
     if estimate is not None and _is_small_area(estimate.value, key):
-        return with_symbol(shown(_scaled(estimate, 1e4)), "cm²")
-    return with_unit(shown(estimate), key) if unit else shown(estimate)
+        small = expressed("cm²", style)
+        return with_symbol(shown(_scaled(estimate, Scale("", 1e4 * small.factor)), style=style), small.symbol)
+    to = scale(key, style)
+    text = shown(estimate and _scaled(estimate, to), style=style)
+    return with_symbol(text, to.symbol) if unit else text
 
 
-def interval_of(estimate: Estimate | None, key: str) -> str:
+def interval_of(estimate: Estimate | None, key: str, *, style: Style = SI) -> str:
     """The 95 % interval beside what `measured` shows, in the same unit; "" where ± U tells it."""
-    if estimate is not None and _is_small_area(estimate.value, key):
-        return interval(_scaled(estimate, 1e4))
-    return interval(estimate)
+    if estimate is None:
+        return ""
+    if _is_small_area(estimate.value, key):
+        return interval(_scaled(estimate, Scale("", 1e4 * expressed("cm²", style).factor)), style=style)
+    return interval(_scaled(estimate, scale(key, style)), style=style)
 
 
-def magnitude(estimate: Estimate | None) -> str:
+def magnitude(estimate: Estimate | None, *, style: Style = SI) -> str:
     """A result too uncertain for its digits: "of the order of 100", its nearest power of ten; "at most about 500",
     its upper end rounded up, where its standard uncertainty exceeds it, so that it may be nothing; "–" for none."""
     if estimate is None or estimate.u is None or not (isfinite(estimate.value) and isfinite(estimate.u)):
         return NOTHING
     if estimate.u < abs(estimate.value):
         power = Decimal(1).scaleb(round(log10(abs(estimate.value))))
-        return f"of the order of {_rounded(copysign(float(power), estimate.value), min(power.adjusted(), 0))}"
+        return f"of the order of {_rounded(copysign(float(power), estimate.value), min(power.adjusted(), 0), style)}"
     most = estimate.value + COVERAGE_FACTOR * estimate.u
     if most <= 0:
         return NOTHING
-    return f"at most about {Context(prec=1, rounding=ROUND_CEILING).create_decimal(repr(most)):f}"
+    return f"at most about {_upwards(most, 1, style)}"
 
 
-def interval(estimate: Estimate | None) -> str:
+def interval(estimate: Estimate | None, *, style: Style = SI) -> str:
     """The 95 % interval of a result, to the place of its U, where ± U does not tell it: "15.1 to 16.6 (95 %)"; else "".
 
     ± U tells it where both arms are alike and no longer than U: first order, a rectangular input dominating.
@@ -130,27 +210,45 @@ def interval(estimate: Estimate | None) -> str:
     if estimate.u and abs(arms[0] - arms[1]) <= 1e-3 * expanded and max(arms) <= expanded:
         return ""
     place = _place(expanded, 2)
-    return f"{_rounded(low, place)} to {_rounded(high, place)} (95\u00a0%)"
+    return f"{_rounded(low, place, style)} to {_rounded(high, place, style)} (95\u00a0%)"
 
 
-def signed(value: float, digits: int = 2) -> str:
+def signed(value: float, digits: int = 2, *, style: Style = SI) -> str:
     """A change, to so many significant digits and with its sign: "+0.5", "−1.3"."""
-    return f"+{number(value, digits)}" if value > 0 else number(value, digits)
+    return f"+{number(value, digits, style=style)}" if value > 0 else number(value, digits, style=style)
 
 
-def stated(entry: Input) -> str:
+def stated(entry: Input, key: str = "", *, style: Style = SI) -> str:
     """An input for people: value ± U (k = 2), or the value as it was stated where it carries no uncertainty."""
-    return number(entry.value, 6) if entry.u <= 0 else shown(Estimate(entry.value, entry.u))
+    to = scale(key, style)
+    if entry.u > 0:
+        return shown(_scaled(Estimate(entry.value, entry.u), to), style=style)
+    return number(to.factor * entry.value + to.shift, 6 if to.factor == 1 else 4, style=style)
 
 
-def number(value: float | None, digits: int = 4) -> str:
+def given(value: float, u: float, key: str, *, style: Style = SI) -> str:
+    """The number of a key and its standard uncertainty as value ± U (k = 2), with its unit."""
+    return measured(Estimate(value, u), key, style=style)
+
+
+def told(value: float | None, key: str, digits: int = 4, *, style: Style = SI) -> str:
+    """The number of a key without a known uncertainty, to so many significant digits, with its unit; "–" for none."""
+    return NOTHING if value is None else in_symbol(value, scale(key, style), digits, style=style)
+
+
+def in_symbol(value: float, to: Scale, digits: int = 4, *, style: Style = SI) -> str:
+    """A number of the SI in a unit of a style, to so many significant digits, with that unit; "–" for none."""
+    return with_symbol(number(to.factor * value + to.shift, digits, style=style), to.symbol)
+
+
+def number(value: float | None, digits: int = 4, *, style: Style = SI) -> str:
     """A number without a known uncertainty, to so many significant digits and no trailing zeros; "–" for none."""
     if value is None or not isfinite(value):
         return NOTHING
     if value == 0:
         return "0"
     text = _rounded(value, _place(value, digits))
-    return text.rstrip("0").rstrip(".") if "." in text else text
+    return _pointed(text.rstrip("0").rstrip(".") if "." in text else text, style)
 
 
 def grouped(count: int) -> str:
@@ -158,30 +256,39 @@ def grouped(count: int) -> str:
     return f"{count:,}".replace(",", "\u202f")
 
 
-def rounded_up(value: float | None) -> str:
+def rounded_up(value: float | None, *, style: Style = SI) -> str:
     """A smallest size or deviation, two significant digits and upwards, so that no more is promised than was seen."""
     if value is None or not isfinite(value) or value <= 0:
         return NOTHING
-    return f"{Context(prec=2, rounding=ROUND_CEILING).create_decimal(repr(float(value))):f}"
+    return _upwards(float(value), 2, style)
 
 
-def least_area(square_metres: float) -> str:
+def least(value: float | None, key: str, *, style: Style = SI) -> str:
+    """The same of a key, with its unit."""
+    to = scale(key, style)
+    return with_symbol(rounded_up(None if value is None else _tidy(to.factor * value), style=style), to.symbol)
+
+
+def least_area(square_metres: float, *, style: Style = SI) -> str:
     """A smallest area, rounded up, with its unit."""
     if square_metres < SMALL_AREA_M2:
-        return with_symbol(rounded_up(float(f"{square_metres * 1e4:.9g}")), "cm²")  # 0.0011 m² are 11 cm², not 12
-    return with_symbol(rounded_up(square_metres), "m²")
+        to = expressed("cm²", style)
+        return with_symbol(rounded_up(_tidy(square_metres * 1e4 * to.factor), style=style), to.symbol)
+    return least(square_metres, "area_m2", style=style)
 
 
-def area_range(value: float, low: float, high: float) -> str:
+def area_range(value: float, low: float, high: float, *, style: Style = SI) -> str:
     """An area and what it may be, in one unit: "0.35 m² (0.12 to 0.9 m²)"."""
-    factor, symbol = (1e4, "cm²") if max(value, low, high) < SMALL_AREA_M2 else (1.0, "m²")
-    middle, least, most = (number(area * factor, 2) for area in (value, low, high))
-    return f"{with_symbol(middle, symbol)} ({least} to {with_symbol(most, symbol)})"
+    is_small = max(value, low, high) < SMALL_AREA_M2
+    to = expressed("cm²" if is_small else "m²", style)
+    factor = to.factor * (1e4 if is_small else 1.0)
+    middle, lowest, most = (number(area * factor, 2, style=style) for area in (value, low, high))
+    return f"{with_symbol(middle, to.symbol)} ({lowest} to {with_symbol(most, to.symbol)})"
 
 
-def decimals(value: float | None, places: int) -> str:
+def decimals(value: float | None, places: int, *, style: Style = SI) -> str:
     """A number to so many decimal places, for columns and scales; "–" for none."""
-    return NOTHING if value is None or not isfinite(value) else _rounded(value, -places)
+    return NOTHING if value is None or not isfinite(value) else _rounded(value, -places, style)
 
 
 def percent(fraction: float | None) -> str:
@@ -195,9 +302,9 @@ def percent(fraction: float | None) -> str:
     return f"{_rounded(100 * fraction, 0)}\u00a0%"
 
 
-def with_unit(text: str, key: str) -> str:
+def with_unit(text: str, key: str, *, style: Style = SI) -> str:
     """The number, a space that does not break, and the unit its key ends in."""
-    return with_symbol(text, unit(key))
+    return with_symbol(text, unit(key, style=style))
 
 
 def with_symbol(text: str, symbol: str) -> str:
@@ -206,13 +313,19 @@ def with_symbol(text: str, symbol: str) -> str:
     return f"{text}{space}{symbol}" if symbol and text != NOTHING else text
 
 
-def _scaled(estimate: Estimate, factor: float) -> Estimate:
-    """A result in a unit that is 1/factor of its own."""
+def _symbol(stem: str) -> str:
+    return next((symbol for ending, symbol in UNITS.items() if stem.endswith(f"_{ending}")), "")
+
+
+def _scaled(estimate: Estimate, to: Scale) -> Estimate:
+    """A result in another unit."""
+    if to.factor == 1 and to.shift == 0:
+        return estimate
     drawn = estimate.interval_95
     return Estimate(
-        estimate.value * factor,
-        None if estimate.u is None else estimate.u * factor,
-        drawn and (drawn[0] * factor, drawn[1] * factor),
+        to.factor * estimate.value + to.shift,
+        None if estimate.u is None else to.factor * estimate.u,
+        drawn and (to.factor * drawn[0] + to.shift, to.factor * drawn[1] + to.shift),
     )
 
 
@@ -227,7 +340,21 @@ def _place(value: float, digits: int) -> int:
     return place
 
 
-def _rounded(value: float, place: int) -> str:
+def _rounded(value: float, place: int, style: Style = SI) -> str:
     """`value` to the decimal place 10^place, halves to even, positional, with a true minus sign and no minus zero."""
     rounded = Decimal(repr(float(value))).quantize(Decimal(1).scaleb(place), context=_ANY_SIZE)
-    return f"{abs(rounded) if rounded == 0 else rounded:f}".replace("-", "\u2212")
+    return _pointed(f"{abs(rounded) if rounded == 0 else rounded:f}".replace("-", "\u2212"), style)
+
+
+def _upwards(value: float, digits: int, style: Style) -> str:
+    """A positive number to so many significant digits, never below it."""
+    return _pointed(f"{Context(prec=digits, rounding=ROUND_CEILING).create_decimal(repr(value)):f}", style)
+
+
+def _tidy(value: float) -> float:
+    """Without the last digits that a conversion leaves: 0.0011 m² are 11 cm², not 12."""
+    return float(f"{value:.9g}")
+
+
+def _pointed(text: str, style: Style) -> str:
+    return text.replace(".", ",") if style.decimal_comma else text

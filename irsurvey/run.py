@@ -29,7 +29,9 @@ from irsurvey.heat.sky import SKY_MODELS
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
-from irsurvey.report import WRITERS, frame_files, texts
+from irsurvey.report import WRITERS, frame_files, kept, texts
+from irsurvey.report.review.standing import with_reviews
+from irsurvey.report.review.stored import stored
 from irsurvey.survey.load import Known, load
 from irsurvey.survey.outside import areas, is_drawn_on, polygon_faults
 from irsurvey.survey.places import OUTPUT_MARKER
@@ -61,7 +63,7 @@ def run(
     survey_path: Path,
     out: Path | None = None,
     *,
-    documents: tuple[str, ...] = ("html",),
+    documents: tuple[str, ...] = ("html", "pdf"),
     jobs: int = 1,
     maps: tuple[str, ...] = (),
     uncertainty: str = pipeline.FIRST_ORDER,
@@ -72,8 +74,9 @@ def run(
     `out` defaults to `report` beside the survey; `documents` names the documents to make beside report.json and
     findings.csv; `maps` may hold "heat-flux" and "uncertainty"; `uncertainty` is "first-order" or "monte-carlo";
     `on_frame` is told each finished frame and the number of all.
-    Raises SurveyError, nothing run, where the survey is wrong; UsageError where there is no such document, map or
-    uncertainty; OutputError where `out` belongs to something else.
+    Reviews that an earlier run's report in `out` was given are carried over.  Raises SurveyError, nothing run, where
+    the survey is wrong; UsageError where there is no such document, map or uncertainty; OutputError where `out` belongs
+    to something else, or its reviews are damaged.
     """
     for option, names, known in (
         ("documents", documents, WRITERS),
@@ -88,15 +91,17 @@ def run(
         raise SurveyError(*faults)
     out = out or Path(survey.folder) / "report"
     _claim_folder(out, {task.id for task in survey.tasks})
+    reviews = stored(out)
     frames = []
     made = [Job(task, str(out), maps, uncertainty) for task in _resolved(survey)]
     for frame in execute(analyse_file, made, jobs):
         frames.append(frame)
         if on_frame:
             on_frame(frame, len(survey.tasks))
-    report = _concluded(survey, tuple(frames))
+    report = with_reviews(_concluded(survey, tuple(frames)), reviews)
+    tasks = kept.keep(survey.tasks, out)
     for document in (*_ALWAYS, *documents):
-        WRITERS[document](report, survey.tasks, out)
+        WRITERS[document](report, tasks, out)
     return report
 
 
@@ -143,6 +148,7 @@ def analyse_file(job: Job) -> FrameReport:
         partner = read(Path(task.pair.partner.path), task.pair.partner.read) if task.pair else None
         report, maps = pipeline.analyse(frame, task, partner=partner, maps=job.maps, uncertainty=job.uncertainty)
         frame_files.write(report, maps, Path(job.out))
+        kept.keep_photograph(task, Path(job.out))
     except FrameError as error:
         return pipeline.failed(task, str(error))
     except OutputError:
@@ -230,7 +236,7 @@ def _claim_folder(out: Path, ids: set[str]) -> None:
         part.unlink(missing_ok=True)  # of a run that was killed while it wrote
     for folder in (out / "frames").glob("*"):
         if folder.name not in ids:
-            for name in frame_files.NAMES:
+            for name in (*frame_files.NAMES, kept.PHOTOGRAPH):
                 (folder / name).unlink(missing_ok=True)
             if not any(folder.iterdir()):
                 folder.rmdir()
@@ -268,6 +274,4 @@ def _assets(survey: Survey, frames: tuple[FrameReport, ...]) -> Iterator[AssetRe
     for asset in survey.assets:
         shown = tuple(frame.id for frame in frames if frame.asset == asset.id and frame.status == "analysed")
         reason = asset.not_inspected or (None if shown else "no analysed frame shows it")
-        yield AssetReport(
-            asset.id, asset.description, asset.location, asset.criticality, reason is None, reason, shown
-        )
+        yield AssetReport(asset.id, asset.description, asset.location, asset.criticality, reason is None, reason, shown)

@@ -10,7 +10,7 @@ from painting import Part
 from shot import Shot
 
 EXPONENTS = (1.6, 2.0)  # a rise grows with load^n
-LIKE_LOADS = 1.10  # largest over smallest load of twins that are compared as they are
+LIKE_LOADS = 1.03  # largest over smallest load of twins that are compared as they are
 MIDDLE_EXPONENT = 1.8  # by which they are brought to one load where they are not
 LEAST_LOAD = 0.40  # of rated load: below it nothing is cleared
 # Upper ends of the classes [K] and their urgencies: ANSI/NETA Table 100.18, the gaps between its whole kelvins closed.

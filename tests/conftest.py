@@ -3,9 +3,24 @@
 from __future__ import annotations
 
 import pytest
+from hypothesis import settings
 from samples import SURVEYS
 
 from irsurvey.run import run
+
+# An example may take long where two cores do the work of ten: time is no property of what is tested.
+settings.register_profile("patient", deadline=None)
+settings.load_profile("patient")
+
+
+BROWSER = ("live", "review")
+"""Folders of tests that need Chromium: `pytest -m browser`."""
+
+
+def pytest_collection_modifyitems(items):
+    for item in items:
+        if item.path.parent.name in BROWSER:
+            item.add_marker(pytest.mark.browser)
 
 
 @pytest.fixture(scope="session")

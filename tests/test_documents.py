@@ -128,11 +128,12 @@ def fake_checkout(folder: Path, test_command: str) -> subprocess.CompletedProces
     shutil.copy(ROOT / ".ci" / "run", folder / ".ci")
     (folder / "README.md").write_text(README.replace(TESTS, test_command), encoding="utf-8")
     (folder / ".venv" / "bin").mkdir(parents=True)
-    for tool in ("ruff", "mypy"):
+    for tool in ("python", "ruff", "mypy", "chromedriver"):
         path = folder / ".venv" / "bin" / tool
         path.write_text(f'#!/bin/sh\necho "{tool} $*"\n')
         path.chmod(0o755)
-    return subprocess.run([folder / ".ci" / "run"], capture_output=True, text=True, cwd="/", check=False)
+    found = {**os.environ, "PATH": f"{folder / '.venv' / 'bin'}{os.pathsep}{os.environ['PATH']}"}  # a browser is there
+    return subprocess.run([folder / ".ci" / "run"], capture_output=True, text=True, cwd="/", check=False, env=found)
 
 
 def test_ci_runs_the_test_command_of_the_readme_and_then_the_checks(tmp_path: Path) -> None:
@@ -140,7 +141,8 @@ def test_ci_runs_the_test_command_of_the_readme_and_then_the_checks(tmp_path: Pa
     assert done.returncode == 0
     lines = done.stdout.splitlines()
     assert lines[1:4] == ["made", "pytest", str(tmp_path.resolve())]
-    assert [line.split()[0] for line in lines[4:]] == ["ruff", "mypy"]
+    assert lines[4] == "python -m pytest -n auto -m browser"
+    assert [line.split()[0] for line in lines[5:]] == ["ruff", "mypy"]
 
 
 def test_ci_fails_with_the_test_command(tmp_path: Path) -> None:

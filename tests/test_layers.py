@@ -16,6 +16,7 @@ PACKAGE = "irsurvey"
 HOMES = {
     "click": {"cli"},
     "cv2": {"radiometry", "anomalies", "geometry", "analysis", "report"},
+    "fpdf": {"report"},
     "imagecodecs": {"readers"},
     "jinja2": {"report"},
     "matplotlib": {"report"},

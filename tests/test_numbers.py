@@ -8,9 +8,11 @@ from math import inf, nan
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from scipy import constants
 
 from irsurvey import numbers
 from irsurvey.model import Estimate, Input
+from irsurvey.numbers import Style
 
 SPACED = "\u00a0±\u00a0"
 
@@ -253,3 +255,106 @@ def test_an_interval_that_plus_minus_covers_alike_on_both_sides_is_not_repeated(
     # A rectangular ±1: u = 1/√3, 95 % within ±0.95, U = 1.15.
     assert numbers.interval(Estimate(20.0, 3**-0.5, (19.05, 20.95))) == ""
     assert numbers.interval(Estimate(20.0, 3**-0.5, (19.05, 20.85))) != ""
+
+
+US = Style(units="us")
+COMMA = Style(decimal_comma=True)
+
+
+@pytest.mark.parametrize(
+    ("key", "value", "in_us", "symbol"),
+    [
+        # scipy.constants: its own table of units, from CODATA and NIST SP 811; the International Table Btu
+        ("air_c", 21.0, float(constants.convert_temperature(21.0, "C", "F")), "°F"),
+        ("delta_k", 5.0, 5.0 / constants.degree_Fahrenheit, "°F"),
+        ("distance_m", 2.5, 2.5 / constants.foot, "ft"),
+        ("area_m2", 0.42, 0.42 / constants.foot**2, "ft²"),
+        ("wind_m_s", 5.0, 5.0 / constants.mph, "mph"),
+        ("vapour_density_g_m3", 8.25, 8.25e-3 * constants.foot**3 / constants.grain, "gr/ft³"),
+        ("excess_heat_w", 8.5, 8.5 * 3600 / constants.Btu_IT, "Btu/h"),
+        ("heat_flux_w_m2", 38.2, 38.2 * 3600 / constants.Btu_IT * constants.foot**2, "Btu/(h·ft²)"),
+        (
+            "u_value_w_m2k",
+            1.9,
+            1.9 * 3600 / constants.Btu_IT * constants.foot**2 * constants.degree_Fahrenheit,
+            "Btu/(h·ft²·°F)",
+        ),
+        (
+            "film_resistance_m2k_w",
+            0.13,
+            0.13 * constants.Btu_IT / 3600 / constants.foot**2 / constants.degree_Fahrenheit,
+            "h·ft²·°F/Btu",
+        ),
+        (
+            "linear_transmittance_w_mk",
+            0.11,
+            0.11 * 3600 / constants.Btu_IT * constants.foot * constants.degree_Fahrenheit,
+            "Btu/(h·ft·°F)",
+        ),
+        ("excess_heat_w_k", 0.42, 0.42 * 3600 / constants.Btu_IT * constants.degree_Fahrenheit, "Btu/(h·°F)"),
+        ("gradient_k_per_m", 0.2, 0.2 / constants.degree_Fahrenheit * constants.foot, "°F/ft"),
+        ("slope_k_per_year", 2.0, 2.0 / constants.degree_Fahrenheit, "°F/year"),
+        ("degree_days_kd", 3000.0, 5400.0, "°F·d"),
+    ],
+)
+def test_us_units_are_those_of_an_outside_table(key: str, value: float, in_us: float, symbol: str) -> None:
+    assert numbers.unit(key, style=US) == symbol
+    assert numbers.converted(value, key, style=US) == pytest.approx(in_us, rel=1e-9)  # the digits of the Btu
+    assert numbers.converted(value, key) == value
+
+
+def test_mercury_and_the_factors_of_the_trade_are_those_of_nist() -> None:
+    # NIST SP 811 (2008), B.8 [M]: seven digits each
+    assert numbers.converted(33.86389, "pressure_hpa", style=US) == pytest.approx(1.0, rel=1e-7)
+    assert numbers.converted(5.678263, "u_value_w_m2k", style=US) == pytest.approx(1.0, rel=2e-7)
+    assert numbers.converted(3.154591, "heat_flux_w_m2", style=US) == pytest.approx(1.0, rel=2e-7)
+    assert numbers.converted(0.1761102, "film_resistance_m2k_w", style=US) == pytest.approx(1.0, rel=3e-7)
+
+
+@pytest.mark.parametrize(
+    "key", ["irradiance_w_m2", "excess_power_w", "pressure_pa", "load_a", "ifov_mrad", "energy_kwh"]
+)
+def test_what_a_trade_reads_in_si_units_everywhere_stays(key: str) -> None:
+    assert numbers.scale(key, US) == numbers.scale(key)
+
+
+@given(value=st.floats(-50, 500), u=st.floats(1e-3, 50), key=st.sampled_from(["air_c", "delta_k", "area_m2", "w_k"]))
+def test_after_a_conversion_u_still_has_two_digits_and_the_value_its_place(value: float, u: float, key: str) -> None:
+    shown, symbol = numbers.measured(Estimate(value, u), key, style=US).rsplit("\u00a0", 1)
+    said, expanded = (Decimal(part.replace("−", "-")) for part in shown.split(SPACED))
+    scale = numbers.scale(key, US) if symbol != "in²" else numbers.Scale("in²", 1e4 / 6.4516)
+    place = Decimal(1).scaleb(expanded.adjusted() - 1)
+    assert said % place == 0
+    assert abs(expanded - Decimal(2 * scale.factor * u)) <= place * Decimal("0.5000001")
+    assert abs(said - Decimal(scale.factor * value + scale.shift)) <= place * Decimal("0.5000001")
+
+
+def test_small_areas_are_in_square_inches() -> None:
+    # 1 in² is 6.4516 cm² exactly
+    assert numbers.measured(Estimate(64.516e-4, None), "area_m2", style=US) == "10\u00a0in²"
+    assert numbers.least_area(6.4516e-4, style=US) == "1.0\u00a0in²"
+    assert numbers.area_range(64.516e-4, 6.4516e-4, 64.516e-4, style=US) == "10\u00a0in² (1 to 10\u00a0in²)"
+    assert numbers.least_area(0.5, style=US) == "5.4\u00a0ft²"  # 5.38, and no less may be promised
+
+
+def test_an_interval_and_an_input_move_with_their_unit() -> None:
+    drawn = Estimate(20.0, 1.0, (18.5, 22.5))
+    assert numbers.interval_of(drawn, "mean_c", style=US) == "65.3 to 72.5 (95\u00a0%)"
+    assert numbers.stated(Input(21.0, 0.5, "survey"), "air_c", style=US) == f"69.8{SPACED}1.8"
+    assert numbers.stated(Input(2.5, 0.0, "survey"), "distance_m:plate", style=US) == "8.202"
+
+
+def test_a_decimal_comma_stands_wherever_a_point_stood() -> None:
+    for text in (
+        numbers.shown(Estimate(3.14, 0.14), style=COMMA),
+        numbers.number(0.25, style=COMMA),
+        numbers.decimals(18.5, 1, style=COMMA),
+        numbers.rounded_up(0.0334, style=COMMA),
+        numbers.magnitude(Estimate(0.1, 0.06), style=COMMA),
+        numbers.magnitude(Estimate(0.1, 0.2), style=COMMA),
+        numbers.interval(Estimate(20.0, 1.0, (18.5, 22.5)), style=COMMA),
+        numbers.area_range(0.35, 0.12, 0.9, style=COMMA),
+        numbers.signed(0.53, style=COMMA),
+    ):
+        assert "," in text
+        assert "." not in text

@@ -13,7 +13,8 @@ from irsurvey.analysis.claims import limited
 from irsurvey.analysis.correction import correct
 from irsurvey.analysis.regions import has_small_reference, screen
 from irsurvey.assess.criteria import criteria
-from irsurvey.assess.electrical import Member, TwinPlan, assess_component
+from irsurvey.assess.electrical import assess_component
+from irsurvey.assess.twins import Member, TwinPlan
 from irsurvey.errors import FrameError
 from irsurvey.model import Component, Detection, Estimate, KnownRectangle, Surface
 

@@ -164,18 +164,21 @@ def test_limits_and_what_they_allow_at_this_load(station, frame, known):
         allowed, abs=0.01
     )  # rounded
     assert found.above_limit_k.value == pytest.approx(true["above_limit_k"], abs=TEMPERATURE_ERROR)
-    low, high = true["above_allowed_k"]
+    # Wind buys no rise: outdoors it is the rise brought to calm that is held against what the load allows.
+    calm = known.get("delta_ambient_in_calm_k")
+    more = 0.0 if calm is None else calm - known["delta_ambient_k"]
+    low, high = (end + more for end in true["above_allowed_k"])
     assert low - TEMPERATURE_ERROR <= found.above_allowed_k.value <= high + TEMPERATURE_ERROR
 
 
-def test_only_the_bad_lug_is_warmer_than_its_load_allows(station):
+def test_only_what_is_bad_is_warmer_than_its_load_allows(station):
     exceeding = {
         one.key
         for frame in station.frames
         for one in frame.components
         if one.limit is not None and judged_by(one, "absolute-limit-at-load").urgency
     }
-    assert exceeding == {"pump-one:component:phase 2 lug"}
+    assert exceeding == {"pump-one:component:phase 2 lug", "yard-isolator:component:phase 2 clamp"}
     assert judged_by(part(station, "pump-one", "phase 2 lug"), "absolute-limit").urgency == 0
 
 

@@ -9,8 +9,9 @@ import pytest
 
 from irsurvey.analysis.repairs import repair_list
 from irsurvey.assess.criteria import criteria
-from irsurvey.assess.electrical import ALL_HOT, Member, TwinPlan, assess_component
+from irsurvey.assess.electrical import assess_component
 from irsurvey.assess.severity import LOW_LOAD, SATURATED, SIZE_LIMITED, assess
+from irsurvey.assess.twins import ALL_HOT, Member, TwinPlan
 from irsurvey.model import AssetReport, ComponentReport, Estimate, Finding, FrameReport, Shape, Source
 
 NETA = tuple(criteria()[name] for name in ("neta-similar", "neta-ambient"))

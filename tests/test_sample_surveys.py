@@ -394,6 +394,7 @@ def test_the_checklist_finds_what_the_survey_left_out_and_nothing_else(house):
 
 ELSEWHERE = {
     "Maps",  # arrays beside the report
+    "Review", "Decision", "ReviewStatus", ("Report", "reviews"), ("Report", "review_status"),  # of a reviewer
     ("FrameReport", "reason"), ("PairReport", "reason"),  # of what failed or was refused
     ("FrameReport", "draws"),  # of Monte Carlo
 }  # fmt: skip

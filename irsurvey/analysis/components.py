@@ -15,10 +15,11 @@ from irsurvey.analysis.pv import pv_pattern
 from irsurvey.analysis.regions import near
 from irsurvey.anomalies.patch import cropped
 from irsurvey.assess.criteria import Criterion
-from irsurvey.assess.electrical import Member, TwinPlan, assess_component, load_ratio, rated_band, twins
+from irsurvey.assess.electrical import assess_component
 from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.limits import allowed_now, lowest
 from irsurvey.assess.severity import CONDITIONS, HOTTER_BESIDE, NO_SOLUTION, SATURATED, SIZE_LIMITED
+from irsurvey.assess.twins import Member, TwinPlan, load_ratio, rated_band, twins
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import mask
 from irsurvey.model import (

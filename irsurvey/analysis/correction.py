@@ -106,7 +106,7 @@ def correct(frame: Frame, task: FrameTask) -> Corrected:
     signal, band = task.camera.signal, task.camera.band
     codes = _encoded(frame, task.camera)
     apparent = apparent_temperature(stored_values(codes), signal, band)
-    optics, optics_names = _optics(task, frame.stored.shape)
+    optics, optics_names = optics_of(task, frame.stored.shape)
     t_apparent = look_up(codes, apparent)
     pivot = float(np.nanmedian(t_apparent[::4, ::4])) if np.isfinite(t_apparent[::4, ::4]).any() else float("nan")
     readable = _readable(codes, apparent, task.camera)
@@ -320,7 +320,7 @@ def _far_off(task: FrameTask, scene: Scene, surface: Surface, offset: float, mos
     return FrameError(Fault(f"{task.id}: surface {surface.name}: temperature_c", expected, got, remedy))
 
 
-def _optics(task: FrameTask, shape: tuple[int, ...]) -> tuple[NDArray[np.uint8], tuple[Optics, ...]]:
+def optics_of(task: FrameTask, shape: tuple[int, ...]) -> tuple[NDArray[np.uint8], tuple[Optics, ...]]:
     """Index of the optics of every pixel; drawn surfaces, then components, the later over the earlier."""
     index = np.zeros(shape, np.uint8)
     names: list[Optics] = [("emissivity", "reflected")]

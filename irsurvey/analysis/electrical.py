@@ -9,11 +9,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from irsurvey.analysis.exchange import Columns, total
-from irsurvey.assess.electrical import load_factor
 from irsurvey.assess.limits import Limit
 from irsurvey.assess.pv import LEAST_IRRADIANCE, STANDARD_IRRADIANCE, scaled
+from irsurvey.assess.twins import load_factor
 from irsurvey.heat.joint import excess_resistance, film_coefficient, power, voltage_drop, yearly_energy
-from irsurvey.heat.wind import wind_factor
+from irsurvey.heat.wind import HIGHEST, wind_factor
 from irsurvey.model import JointShape
 
 Array = NDArray[np.float64]
@@ -35,10 +35,10 @@ class PartFacts:
     neighbours: tuple[str, ...] = ()  # PV: the modules it is held against
 
 
-def beside(facts: PartFacts, hottest: Array, ambient: Array, values: Columns) -> Results:
-    """How far a part (n,) [K] is above its absolute limit, and above what is allowed at this load and ambient.
+def beside(facts: PartFacts, hottest: Array, rise: Array, values: Columns) -> Results:
+    """How far a part (n,) [K] is above its absolute limit, and its rise above what is allowed at this load.
 
-    A rise is allowed in proportion to the load to the power of its exponent: a cool day does not buy it.
+    A rise is allowed in proportion to the load to the power of its exponent: neither a cool day nor wind buys it.
     """
     limit = facts.limit
     if limit is None:
@@ -46,7 +46,7 @@ def beside(facts: PartFacts, hottest: Array, ambient: Array, values: Columns) ->
     results = {"above_limit": hottest - limit.t_max}
     if limit.rise is not None and facts.load_ratio is not None and "load_exponent" in values:
         allowed = limit.rise * load_factor(facts.load_ratio, values["load_exponent"][:, 0])
-        results["above_allowed"] = hottest - ambient - np.minimum(allowed, limit.rise)
+        results["above_allowed"] = rise - np.minimum(allowed, limit.rise)
     return results
 
 
@@ -54,7 +54,8 @@ def in_calm(rises: Mapping[str, Array], values: Columns) -> Results:
     """Rises (n,) [K] brought to 1 m/s of wind; nothing where there is not more of it."""
     if "wind" not in values:
         return {}
-    factor = np.asarray(wind_factor(values["wind"]))[:, 0] * values["wind_factor"][:, 0]
+    held = np.minimum(values["wind"], HIGHEST)  # above it nothing is valid, and what was raised stays raised
+    factor = np.asarray(wind_factor(held))[:, 0] * values["wind_factor"][:, 0]
     return {f"{name}_in_calm": rise * np.maximum(factor, 1.0) for name, rise in rises.items()}
 
 
@@ -66,8 +67,8 @@ def relative_difference(over_twin: Array, over_air: Array) -> Array:
 def over_neighbours(hottest: Array, neighbours: list[Array], values: Columns) -> Array:
     """Over the median of its neighbours (n,) [K], brought to 1000 W/m² where the sun was weaker.
 
-    By no more than 600 W/m² allow (below it that is only a part of what it should be, and nothing is cleared), and as it
-    reads where the irradiance was not recorded: a correction may raise, never lower.
+    By no more than 600 W/m² allow (below it that is only a part of what it should be, and nothing is cleared), and as
+    it reads where the irradiance was not recorded: a correction may raise, never lower.
     """
     over = hottest - np.median(np.stack(neighbours), axis=0)
     if "irradiance" not in values:

@@ -80,6 +80,8 @@ def findings(evidence: Evidence) -> Iterator[Finding]:
             flags=tuple(flag for flag, applies in flags if applies),
             viewed_from=task.viewed_from,
         )
+        if task.kind == "building" and not evidence.is_valid:  # a wall in the sun asks for another look, not for repair
+            verdict = verdict._replace(urgency=None)
         budgets = evidence.numbers.budgets_of(name)
         changes = class_flips(verdict, numbers, budgets, evidence)
         key = _key(task.id, measured)

@@ -1,4 +1,4 @@
-"""Components that nobody has drawn: warm parts found in a frame, with an outline and, where there are twins, a group."""
+"""Components that nobody has drawn: warm parts found in a frame, with an outline, grouped with their twins."""
 
 from __future__ import annotations
 

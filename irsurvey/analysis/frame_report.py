@@ -15,8 +15,8 @@ from irsurvey.analysis.findings import findings, reference_emissivity
 from irsurvey.analysis.regions import ENOUGH_REFERENCE, SMALL_REFERENCE, Screened, has_small_reference, stretch_of
 from irsurvey.analysis.risk import surfaces_at_risk
 from irsurvey.analysis.surroundings import surroundings_flags
-from irsurvey.assess.electrical import TwinPlan
 from irsurvey.assess.severity import LEAST_EMISSIVITY, REFLECTIVE
+from irsurvey.assess.twins import TwinPlan
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import outline
 from irsurvey.heat.humid_air import dew_point, vapour_density

@@ -16,7 +16,7 @@ from irsurvey.geometry.polygons import mask
 from irsurvey.model import FrameTask, Indication
 
 _GLASS = "glass"
-"""In the name of a material: it mirrors, whatever its emissivity."""
+"""In the name of a surface or its material: it mirrors, whatever its emissivity."""
 
 
 def indication_of(evidence: Evidence, label: int, patch: Patch, sense: str, emissivity: float) -> Indication | None:
@@ -52,10 +52,10 @@ def openings(task: FrameTask, shape: tuple[int, ...]) -> NDArray[np.bool_] | Non
 
 
 def glazing(task: FrameTask, shape: tuple[int, ...]) -> NDArray[np.bool_]:
-    """Pixels (rows, columns) of surfaces whose material is glass."""
+    """Pixels (rows, columns) of surfaces that are glass by their name or material."""
     glass = np.zeros((shape[0], shape[1]), np.bool_)
     for surface in task.surfaces:
-        if _GLASS in surface.material:
+        if _GLASS in surface.material or _GLASS in surface.name.lower():
             glass |= mask(surface.polygon, (shape[0], shape[1]))
     return glass
 

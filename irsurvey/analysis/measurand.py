@@ -17,7 +17,7 @@ from irsurvey.analysis.correction import Corrected, Optics, air_path
 from irsurvey.analysis.electrical import PartFacts
 from irsurvey.analysis.envelope import Air, Humidity
 from irsurvey.analysis.exchange import Columns, Surroundings, flux_of, terms_of
-from irsurvey.assess.electrical import load_factor, similar_rise
+from irsurvey.assess.twins import load_factor, similar_rise
 from irsurvey.geometry.footprint import pixel_area
 from irsurvey.heat.bridge import incidence_factor, linear_transmittance
 from irsurvey.model import Scene
@@ -354,9 +354,9 @@ def _component(
         if twin.name != region.name:
             (other,) = [one for one in plan.components if one.name == twin.name]
             t_twin = temperatures.functionals(other.whole)[:, 0]
-    results |= rises | electrical.beside(facts, hottest, ambient, values)
-    if plan.is_windy:
-        results |= electrical.in_calm(rises, values)
+    calm = electrical.in_calm(rises, values) if plan.is_windy else {}
+    over_air = calm.get("delta_ambient_in_calm", rises["delta_ambient"])
+    results |= rises | calm | electrical.beside(facts, hottest, over_air, values)
     if facts.neighbours:
         others = [spots[name] for name in facts.neighbours]
         results["delta_neighbours"] = electrical.over_neighbours(hottest, others, values)

@@ -17,9 +17,9 @@ from irsurvey.analysis.strips import Drawn, drawn_strips
 from irsurvey.analysis.surroundings import air_of, humidity_of, surroundings
 from irsurvey.anomalies.patch import Patch, cropped
 from irsurvey.anomalies.shape import Spot, extreme_spot
-from irsurvey.assess.electrical import LOAD_EXPONENT, LOAD_EXPONENT_U, TwinPlan
 from irsurvey.assess.limits import lowest
 from irsurvey.assess.pv import LEAST_NEIGHBOURS, neighbours, sound
+from irsurvey.assess.twins import LOAD_EXPONENT, LOAD_EXPONENT_U, TwinPlan
 from irsurvey.geometry.polygons import mask
 from irsurvey.geometry.rectify import pixel_areas
 from irsurvey.heat.wind import WIND_FACTOR_U
@@ -172,21 +172,24 @@ def _measured(
         rim=imperfections.perimeter(patch) * extent / patch.pixels,
         outline=next((q.name for q in whole_own if q.name.startswith(imperfections.OUTLINE)), None),
     )
-    narrow = _has_narrow_core(patch, sense, screened, task.camera.spot_pixels)
+    narrow = _has_narrow_core(patch, sense, screened, spot, noise * stretch)
     return Measured(patch, sense, spot, centre, t_spot, region, (*spot_own, *whole_own), narrow)
 
 
-def _has_narrow_core(patch: Patch, sense: str, screened: Screened, spot_pixels: int) -> bool:
+def _has_narrow_core(patch: Patch, sense: str, screened: Screened, spot: Spot, noise: float) -> bool:
     """Whether the pixels above half the contrast within an area hold no measurement spot: then none reads them.
 
-    Contrast of the extreme pixel against the median of the area; below five times the noise there is none.
+    Contrast of the extreme pixel against the median of the area.  Where the best spot reads within five times the noise
+    [K] of that pixel there is no such core: the hottest of many noisy pixels is hotter than any mean.
     """
-    t = np.where(patch.mask, screened.t[patch.box], np.nan) * (1.0 if sense == "hot" else -1.0)
+    sign = 1.0 if sense == "hot" else -1.0
+    t = np.where(patch.mask, screened.t[patch.box], np.nan) * sign
     extreme, middle = float(np.nanmax(t)), float(np.nanmedian(t))
-    if extreme - middle < 5 * screened.noise:
+    if extreme - sign * float(screened.t[spot.rows, spot.columns].mean()) < 5 * noise:
         return False
     core = (t >= (extreme + middle) / 2).astype(np.uint8)
-    return not cv2.erode(core, np.ones((spot_pixels, spot_pixels), np.uint8), borderValue=0).any()
+    side = max(round(spot.rows.size**0.5), 1)
+    return not cv2.erode(core, np.ones((side, side), np.uint8), borderValue=0).any()
 
 
 def _stretch(corrected: Corrected, task: FrameTask, row: int, column: int) -> float:

@@ -11,10 +11,10 @@ from numpy.typing import NDArray
 
 from irsurvey.analysis.inputs import named
 from irsurvey.assess.criteria import criteria
-from irsurvey.assess.electrical import LEAST_LOAD, LOAD_EXPONENT, LOAD_EXPONENT_U, load_factor
 from irsurvey.assess.population import LEAST_COUNT, alarm
 from irsurvey.assess.severity import BELOW_AIR, LOW_LOAD, MIRRORS, NO_SOLUTION, REFLECTIVE, SATURATED, SIZE_LIMITED
 from irsurvey.assess.trend import normalised_rise, theil_sen
+from irsurvey.assess.twins import LEAST_LOAD, LOAD_EXPONENT, LOAD_EXPONENT_U, load_factor
 from irsurvey.model import (
     BudgetTerm,
     ComponentReport,

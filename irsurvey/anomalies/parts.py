@@ -25,8 +25,8 @@ _NECK: Final = log(1.5)
 _WIDE: Final = 3.0
 """Half-width [px] each side of a neck must have: of narrower ones a ragged rim may feign a neck."""
 _SOLID: Final = 0.85
-"""Solidity of what is left beside a hotter part, from which it is a part and not its halo [house]; a half ring has 0.7
-or less, a rectangle 1."""
+"""Solidity of what is left beside a hotter part, from which it is a part and not its halo [house]; a half ring has
+0.75 where its hole is half as wide as it is, and less where it is thinner; a rectangle has 1."""
 _SPOT: Final = 9
 """Pixels of the hottest spot, 3 × 3, whose least one stands for the highest rise of a part."""
 _LEAST_SHARE: Final = 0.15
@@ -173,7 +173,7 @@ def _depth(part: NDArray[np.bool_]) -> NDArray[np.float32]:
 def _core(piece: NDArray[np.bool_], height: NDArray[np.float32]) -> NDArray[np.bool_]:
     """A piece down to half of its median, where a blurred edge has its middle; its largest connected part, filled.
 
-    What has less than a seventh of its highest rise is another part, or the halo of this one, and no part of the median.
+    What has less than a seventh of its highest rise is another part, or its halo, and does not count in the median.
     """
     from scipy.ndimage import binary_fill_holes
 

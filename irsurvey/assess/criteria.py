@@ -140,7 +140,8 @@ def criteria(own: Own = ()) -> dict[str, Criterion]:
 
 
 def chosen(names: tuple[str, ...], kind: str, method: str, own: Own = ()) -> tuple[Criterion, ...]:
-    """The criteria among `names` and `own` for this kind and method of survey, or the default ones where none suits.
+    """The criteria among `names` and `own` for this kind and method of survey, with the default ones for findings, for
+    components, where none of them judges these.
 
     A survey may name criteria for all its groups at once, building and electrical.  An own one may be named by its file
     or by its name, and counts in any case: it was given to be used.  So do those of `ALWAYS`.
@@ -157,7 +158,9 @@ def chosen(names: tuple[str, ...], kind: str, method: str, own: Own = ()) -> tup
         raise SurveyError(*faults)
     named = [*(by_file.get(name, name) for name in names), *by_file.values()]
     suited = [name for name in named if name not in ALWAYS and known[name].suits(kind, method)]
-    suited = suited or list(DEFAULTS.get((kind, method), ()))
+    judged = {known[name].applies_to for name in suited}
+    # what is hot outside any component is judged also where only criteria for components were named
+    suited += [name for name in DEFAULTS.get((kind, method), ()) if known[name].applies_to not in judged]
     always = [name for name in ALWAYS if known[name].suits(kind, method)]
     return tuple(known[name] for name in dict.fromkeys([*suited, *always]))
 

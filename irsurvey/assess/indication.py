@@ -43,7 +43,7 @@ class Look:
     pattern: str
     says: str
     verify_by: str
-    sense: str  # "loss" | "loss or cold" | "hot"
+    sense: str  # "loss" | "cold" | "hot"
     methods: tuple[str, ...]
     mark: str
     cues: tuple[CueBounds, ...]
@@ -113,7 +113,7 @@ def indicate(
 
 
 def _is_possible(look: Look, sense: str, is_loss: bool, pressure_change: bool | None) -> bool:
-    agrees = {"loss": is_loss, "loss or cold": is_loss or sense == "cold", "hot": sense == "hot"}[look.sense]
+    agrees = {"loss": is_loss, "cold": sense == "cold", "hot": sense == "hot"}[look.sense]
     return agrees and not (look.changes_with_pressure and pressure_change is False)
 
 

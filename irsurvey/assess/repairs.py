@@ -11,7 +11,7 @@ from typing import Any, Final
 
 from irsurvey.assess.conformity import class_probabilities
 from irsurvey.assess.criteria import Criterion
-from irsurvey.assess.electrical import ALL_HOT, OF_TWINS
+from irsurvey.assess.electrical import OF_TWINS
 from irsurvey.assess.judged import Judged
 from irsurvey.assess.severity import (
     BELOW_AIR,
@@ -23,6 +23,7 @@ from irsurvey.assess.severity import (
     NO_SOLUTION,
     REFLECTIVE,
 )
+from irsurvey.assess.twins import ALL_HOT
 from irsurvey.model.report import Assessment, RepairItem
 
 DOUBTFUL: Final = (REFLECTIVE, MIRRORS, NO_SOLUTION, BELOW_AIR)
@@ -123,4 +124,5 @@ def _words() -> dict[str, Any]:
 def _importance(item: RepairItem) -> tuple[float, float, float]:
     unknown_first = 0.5 if item.urgency is None else 0.0
     delta = abs(item.delta_k.value) if item.delta_k else -1.0
-    return -(item.urgency or unknown_first), -(-1.0 if item.confidence is None else item.confidence), -delta
+    sure = -1.0 if item.confidence is None else round(item.confidence, 2)  # as it is shown
+    return -(item.urgency or unknown_first), -sure, -delta

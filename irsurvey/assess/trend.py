@@ -8,7 +8,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from irsurvey.assess.electrical import LOAD_EXPONENT, LOAD_EXPONENT_U, load_factor
+from irsurvey.assess.twins import LOAD_EXPONENT, LOAD_EXPONENT_U, load_factor
 
 _TAIL = 0.025
 """Probability left at each side of a 95 % interval."""

@@ -487,6 +487,47 @@ class PopulationAlarm:
 
 
 @dataclass(frozen=True, slots=True)
+class Decision:
+    """What one reviewer decided about one finding or component, and the numbers it was decided on."""
+
+    key: str
+    id: str  # of the finding, or the name of the component
+    frame: str
+    decision: str  # "accepted" | "rejected" | "reclassified" | "open": taken back | "commented": nothing decided
+    criterion: str | None  # whose class it was given, where it was reclassified to one
+    class_: str | None
+    urgency: int | None  # it was reclassified to, or that of the class
+    comment: str
+    on: dict[str, Estimate | None]
+
+
+@dataclass(frozen=True, slots=True)
+class Review:
+    """The decisions one reviewer handed over at once."""
+
+    reviewer: str
+    date: str  # ISO 8601
+    report: str  # identity of the report they were made on
+    decisions: tuple[Decision, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class ReviewStatus:
+    """Where one finding or component stands after all reviews; what decided it, who and when, None while open."""
+
+    key: str
+    id: str
+    frame: str
+    status: str  # "open" | "accepted" | "rejected" | "reclassified" | "asked again" | "gone"
+    class_: str | None
+    urgency: int | None
+    reviewer: str | None
+    date: str | None
+    comment: str
+    moved: tuple[str, ...]  # numbers that moved beyond their U since, so that the reviewer is asked again
+
+
+@dataclass(frozen=True, slots=True)
 class Report:
     """A whole report: what report.json holds."""
 
@@ -504,6 +545,8 @@ class Report:
     seasons: tuple[SeasonReport, ...]
     checklist: tuple[ChecklistItem, ...]
     cautions: tuple[str, ...]
+    reviews: tuple[Review, ...] = ()  # by date, of one date in the order they came in
+    review_status: tuple[ReviewStatus, ...] = ()  # of every finding and component; empty without reviews
 
 
 @dataclass(frozen=True, slots=True, eq=False)

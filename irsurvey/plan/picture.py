@@ -66,7 +66,7 @@ def ready(task: FrameTask) -> FrameTask:
         scene = scene.with_(Quantity("reflected", faced, camera.accuracy / 3**0.5, low=0.0))
     signal, noise = Signal("apparent-temperature"), camera.noise or UNKNOWN_NOISE
     camera = replace(camera, signal=signal, range=None, noise=noise)
-    return replace(task, camera=camera, scene=scene, inspect=None, known_scale=None)
+    return replace(task, camera=camera, scene=scene, inspect=None, known_scale=None, strips=(), pair=None)
 
 
 def imagined(

@@ -1,4 +1,8 @@
-"""What small drawings in the page share: their size, where their axes stand, ticks at round numbers."""
+"""What small drawings in the documents share: their size, where their axes stand, ticks at round numbers.
+
+They are places in the coordinates of a drawing, which the page sets as SVG and the paper as lines: one look, lettering
+that stays text, and quick.  Histograms of 27 frames took 0.1 s so and 7.0 s as SVG from matplotlib.
+"""
 
 from __future__ import annotations
 
@@ -7,6 +11,7 @@ from dataclasses import dataclass
 from math import ceil, floor, log10
 
 from irsurvey import numbers
+from irsurvey.numbers import SI, Style
 from irsurvey.report.scale import round_step
 
 WIDTH, HEIGHT = 360, 190
@@ -41,12 +46,12 @@ class Axis:
         """The place of a number in the drawing."""
         return round(self.first + (self.last - self.first) * (value - self.low) / (self.high - self.low), 1)
 
-    def ticks(self, most: int) -> tuple[Tick, ...]:
+    def ticks(self, most: int, *, style: Style = SI) -> tuple[Tick, ...]:
         """Marks at round numbers, no more steps than `most`."""
         step = round_step((self.high - self.low) / most)
         places = max(0, -floor(log10(step)))
         multiples = range(ceil(self.low / step - 1e-9), floor(self.high / step + 1e-9) + 1)
-        return tuple(Tick(self.at(k * step), numbers.decimals(k * step, places)) for k in multiples)
+        return tuple(Tick(self.at(k * step), numbers.decimals(k * step, places, style=style)) for k in multiples)
 
 
 def upwards(values: Iterable[float], least_span: float) -> Axis:

@@ -47,6 +47,7 @@ def changed(frame: FrameReport, change: NDArray[np.float32]) -> Image.Image:
     strip = scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), -end, end, beyond, unit="K")
     image = picture.side_by_side(canvas, strip)
     image.putpalette(palette(COLORMAP))
+    image.info["Scale"] = picture.scale_of(-end, end, beyond, "K")
     image.info["Description"] = _in_words(frame, end)
     return image
 

@@ -8,8 +8,10 @@ from math import inf
 from irsurvey import numbers
 from irsurvey.assess.limits import limits
 from irsurvey.model import Band, ComponentReport, Estimate, JointHeat, TrendReport
+from irsurvey.numbers import SI, Style
 from irsurvey.report import results, texts
 from irsurvey.report.facts import Fact
+from irsurvey.report.sentences import in_style
 
 _CALM = {"delta_similar_in_calm_k": "delta_similar_k", "delta_ambient_in_calm_k": "delta_ambient_k"}
 """A difference brought to 1 m/s of wind → as it was measured."""
@@ -19,63 +21,68 @@ _AT_LEAST = ("excess_resistance_uohm", "voltage_drop_mv", "yearly_loss_kwh")
 _ESTIMATE = "an estimate"
 
 
-def of_component(item: ComponentReport) -> tuple[Fact, ...]:
+def of_component(item: ComponentReport, *, style: Style = SI) -> tuple[Fact, ...]:
     """Load and rise at rated load, wind, comparison with its twin and neighbours, absolute limit and margins.
 
     Nothing where there is but the load, which the table of components tells."""
-    told = (*_rated(item), *_in_calm(item), *_compared(item), *_limit(item))
-    load = results.load(item, item.load_a, item.rated_a)
+    told = (*_rated(item, style), *_in_calm(item, style), *_compared(item, style), *_limit(item, style))
+    load = results.load(item, item.load_a, item.rated_a, style=style)
     return (Fact("Load", load), *told) if told and load else told
 
 
-def of_joint(item: ComponentReport) -> tuple[Fact, ...]:
+def of_joint(item: ComponentReport, *, style: Style = SI) -> tuple[Fact, ...]:
     """The heat its joint gives off and what follows from it: estimates, all of them."""
-    return tuple(_joint(item.joint, item)) if item.joint else ()
+    return tuple(_joint(item.joint, item, style)) if item.joint else ()
 
 
-def of_trend(trend: TrendReport) -> tuple[Fact, ...]:
+def of_trend(trend: TrendReport, *, style: Style = SI) -> tuple[Fact, ...]:
     """Slope of its rise over the surveys, change since the last one, and whether that is more than its uncertainty."""
-    return tuple(_trend(trend))
+    return tuple(_trend(trend, style))
 
 
-def _rated(item: ComponentReport) -> Iterator[Fact]:
+def _rated(item: ComponentReport, style: Style) -> Iterator[Fact]:
     if item.at_rated_load:
         bands = {"similar": item.at_rated_load.delta_similar_k, "ambient": item.at_rated_load.delta_ambient_k}
         told = [
-            f"{_band(band, 'delta_k', 2)} {texts.basis(basis)}"
+            f"{_band(band, 'delta_k', 2, style)} {texts.basis(basis)}"
             for basis, band in bands.items()
             if band and not band.low == band.high == 0  # the coolest twin itself
         ]
         if told:
-            yield Fact("Rise at rated load", "; ".join(told), texts.remark("rated"))
+            yield Fact("Rise at rated load", "; ".join(told), in_style(texts.remark("rated"), style))
 
 
-def _in_calm(item: ComponentReport) -> Iterator[Fact]:
+def _in_calm(item: ComponentReport, style: Style) -> Iterator[Fact]:
     for key, measured in _CALM.items():
         if getattr(item, key):
-            as_read = results.reading(item, measured)
-            yield Fact(texts.name(key), _reading(item, key), f"{as_read} as measured; {texts.remark('wind')}")
+            as_read = results.reading(item, measured, style=style)
+            name = in_style(texts.name(key), style)
+            yield Fact(name, _reading(item, key, style), f"{as_read} as measured; {texts.remark('wind')}")
 
 
-def _compared(item: ComponentReport) -> Iterator[Fact]:
+def _compared(item: ComponentReport, style: Style) -> Iterator[Fact]:
     for key in ("relative_difference_percent", "delta_neighbours_k"):
         if getattr(item, key):
-            yield Fact(texts.name(key), _reading(item, key), texts.remark(key))
+            yield Fact(in_style(texts.name(key), style), _reading(item, key, style), in_style(texts.remark(key), style))
 
 
-def _limit(item: ComponentReport) -> Iterator[Fact]:
+def _limit(item: ComponentReport, style: Style) -> Iterator[Fact]:
     if limit := item.limit:
         rise = limit.rise_k
-        allowed = f"{numbers.with_symbol(numbers.number(rise), 'K')} above ambient air at rated load; " if rise else ""
-        text = numbers.with_symbol(numbers.number(limit.max_c), "°C")
+        allowed = f"{numbers.told(rise, 'rise_k', style=style)} above ambient air at rated load; " if rise else ""
+        text = numbers.told(limit.max_c, "max_c", style=style)
         known = limits().get(limit.name)
         yield Fact("Absolute limit", f"{text}, {known.what if known else limit.name}", f"{allowed}{limit.source}")
         if limit.allowed_now_c:
-            yield Fact("Allowed now", _band(limit.allowed_now_c, "allowed_now_c", 3), texts.remark("allowed"))
+            yield Fact(
+                "Allowed now",
+                _band(limit.allowed_now_c, "allowed_now_c", 3, style),
+                in_style(texts.remark("allowed"), style),
+            )
     for key in _MARGINS:
         margin: Estimate | None = getattr(item, key)
         if margin:
-            yield Fact(texts.name(key), _reading(item, key), _side(item, key, margin))
+            yield Fact(texts.name(key), _reading(item, key, style), _side(item, key, margin))
 
 
 def _side(item: ComponentReport, key: str, margin: Estimate) -> str:
@@ -88,38 +95,40 @@ def _side(item: ComponentReport, key: str, margin: Estimate) -> str:
     return texts.remark("below" if margin.value < -reach else "near")
 
 
-def _joint(joint: JointHeat, item: ComponentReport) -> Iterator[Fact]:
+def _joint(joint: JointHeat, item: ComponentReport, style: Style) -> Iterator[Fact]:
     is_bound = results.is_bound(item, "max_c")
     yield Fact("Taken for", texts.form(joint.form))
     for key in ("power_w", "excess_power_w", *_AT_LEAST, "film_coefficient_w_m2k"):
-        text = numbers.measured(getattr(joint, key), key)
+        text = numbers.measured(getattr(joint, key), key, style=style)
         if text == numbers.NOTHING:
             continue
         at_least = "at least " if key in _AT_LEAST or (is_bound and key != "film_coefficient_w_m2k") else ""
         yield Fact(texts.name(key), f"{at_least}{text}, {_ESTIMATE}")
 
 
-def _trend(trend: TrendReport) -> Iterator[Fact]:
-    slope = numbers.measured(trend.slope_k_per_year, "slope_k_per_year")
+def _trend(trend: TrendReport, style: Style) -> Iterator[Fact]:
+    slope = numbers.measured(trend.slope_k_per_year, "slope_k_per_year", style=style)
     low, high = trend.slope_low_k_per_year, trend.slope_high_k_per_year
     if slope != numbers.NOTHING:
         ends = ""
         if low is not None and high is not None:
             way = "rises" if low > 0 else "falls" if high < 0 else "level"
-            ends = f"{_band(Band(low, high), 'slope_k_per_year', 2)} (95\u00a0%): {texts.remark(way)}"
+            ends = f"{_band(Band(low, high), 'slope_k_per_year', 2, style)} (95\u00a0%): {texts.remark(way)}"
         yield Fact(texts.name("trend_slope"), slope, ends)
-    change = numbers.measured(trend.change_k, "change_k")
+    change = numbers.measured(trend.change_k, "change_k", style=style)
     if change != numbers.NOTHING:
         told = {None: "", True: "significant", False: "insignificant"}[trend.is_significant]
         yield Fact(texts.name("trend_change"), change, texts.remark(told))
 
 
-def _band(band: Band, key: str, digits: int) -> str:
+def _band(band: Band, key: str, digits: int, style: Style) -> str:
     """A range with the unit of its key: "32.1 to 35.9 °C"."""
-    return numbers.with_unit(f"{numbers.number(band.low, digits)} to {numbers.number(band.high, digits)}", key)
+    low, high = (numbers.converted(end, key, style=style) for end in (band.low, band.high))
+    text = f"{numbers.number(low, digits, style=style)} to {numbers.number(high, digits, style=style)}"
+    return numbers.with_unit(text, key, style=style)
 
 
-def _reading(item: ComponentReport, key: str) -> str:
+def _reading(item: ComponentReport, key: str, style: Style) -> str:
     """One number with its unit and, where it was drawn, its interval."""
-    drawn = results.interval(item, key)
-    return f"{results.reading(item, key)}; {drawn}" if drawn else results.reading(item, key)
+    text, drawn = results.reading(item, key, style=style), results.interval(item, key, style=style)
+    return f"{text}; {drawn}" if drawn else text

@@ -7,10 +7,14 @@ from dataclasses import dataclass, replace
 from irsurvey import numbers
 from irsurvey.assess.conditions import requirement_sets
 from irsurvey.model import ConditionCheck
+from irsurvey.numbers import SI, Style
 from irsurvey.report import texts
+from irsurvey.report.sentences import in_style
 
 _ASSUMED = " (assumed)"
 """What a check ends in that is asked under circumstances nobody recorded."""
+_KEPT = ("W/m²",)
+"""Units of a condition that are the same in every style: of irradiance."""
 _WORST_FIRST = ("not met", "not recorded", "met")
 
 
@@ -25,26 +29,33 @@ class Row:
     leaves: str
 
 
-def rows(review: tuple[ConditionCheck, ...]) -> tuple[Row, ...]:
+def rows(review: tuple[ConditionCheck, ...], *, style: Style = SI) -> tuple[Row, ...]:
     """The rows of a review, what is not met first; groups that fared alike share one."""
     alike: dict[ConditionCheck, list[ConditionCheck]] = {}
     for check in review:
         alike.setdefault(replace(check, group="", value=None), []).append(check)
     groups = {check.group for check in review}
     ordered = sorted(alike.values(), key=lambda same: _WORST_FIRST.index(same[0].verdict))
-    return tuple(_row(same, len(groups)) for same in ordered)
+    return tuple(_row(same, len(groups), style) for same in ordered)
 
 
-def _row(same: list[ConditionCheck], groups: int) -> Row:
+def _row(same: list[ConditionCheck], groups: int, style: Style) -> Row:
     check = same[0]
     known = {one.check: one for group in requirement_sets() for one in group.requirements}
     requirement = known.get(check.check.removesuffix(_ASSUMED))
     values = sorted(one.value for one in same if one.value is not None)
-    ends = dict.fromkeys(numbers.number(value, 3) for value in (values[:1] + values[-1:]))
+    to = (
+        numbers.Scale(symbol)
+        if (symbol := requirement.unit if requirement else "") in _KEPT
+        else (numbers.expressed(symbol, style))
+    )
+    ends = dict.fromkeys(
+        numbers.number(to.factor * value + to.shift, 3, style=style) for value in (values[:1] + values[-1:])
+    )
     return Row(
-        check,
+        replace(check, check=in_style(check.check, style), requirement=in_style(check.requirement, style)),
         groups=_listed([one.group for one in same], groups),
-        recorded=numbers.with_symbol(" to ".join(ends) or numbers.NOTHING, requirement.unit if requirement else ""),
+        recorded=numbers.with_symbol(" to ".join(ends) or numbers.NOTHING, to.symbol),
         to_record=((requirement and requirement.stated_by) or check.check) if check.verdict == "not recorded" else "",
         leaves=texts.kept(check.limits_to),
     )

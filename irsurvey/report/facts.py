@@ -7,7 +7,9 @@ from dataclasses import dataclass
 
 from irsurvey import numbers
 from irsurvey.model import Estimate, Finding, ReferenceReport, RoomAir, StripReport, SurfaceAtRisk
+from irsurvey.numbers import SI, Style
 from irsurvey.report import results, texts
+from irsurvey.report.sentences import in_style
 
 Record = Finding | ReferenceReport | RoomAir | StripReport
 
@@ -24,42 +26,48 @@ class Fact:
     note: str = ""
 
 
-def of_reference(reference: ReferenceReport) -> tuple[Fact, ...]:
+def of_reference(reference: ReferenceReport, *, style: Style = SI) -> tuple[Fact, ...]:
     """Heat flux, film resistance and U-values of a reference area."""
-    flux = _fact(reference, "heat_flux_w_m2", "an estimate")
+    flux = _fact(reference, "heat_flux_w_m2", "an estimate", style=style)
     return (
-        *([Fact(flux.name, flux.text, terms(reference.heat_flux_terms_w_m2))] if flux else []),
-        *_told(reference, ("film_resistance_m2k_w",)),
-        *_told(reference, ("u_value_w_m2k", "u_value_simple_w_m2k"), "an estimate from one moment"),
-        *_refused(reference.refusals),
+        *([Fact(flux.name, flux.text, terms(reference.heat_flux_terms_w_m2, style=style))] if flux else []),
+        *_told(reference, ("film_resistance_m2k_w",), style=style),
+        *_told(reference, ("u_value_w_m2k", "u_value_simple_w_m2k"), "an estimate from one moment", style=style),
+        *_refused(reference.refusals, style),
     )
 
 
-def of_finding(item: Finding) -> tuple[Fact, ...]:
+def of_finding(item: Finding, *, style: Style = SI) -> tuple[Fact, ...]:
     """What a finding means for the envelope: heat, U-values, temperature factors, moisture, pressure."""
-    heat = Fact("Heat flux goes", terms(item.heat_flux_terms_w_m2))
+    heat = Fact("Heat flux goes", terms(item.heat_flux_terms_w_m2, style=style))
     return (
         *([heat] if heat.text else []),
-        *_told(item, ("excess_heat_w_k",)),
-        *_told(item, ("u_value_w_m2k", "u_value_increase_w_m2k", "u_value_from_contrast_w_m2k"), "an estimate"),
-        *_told(item, ("temperature_factor", "temperature_factor_at_0_25")),
-        *_margin(item, "dew_point_margin_k", "condensation_probability"),
-        *_margin(item, "mould_margin_k", "mould_probability"),
-        *_told(item, ("pressure_change_k",)),
-        *_refused(item.refusals),
+        *_told(item, ("excess_heat_w_k",), style=style),
+        *_told(
+            item, ("u_value_w_m2k", "u_value_increase_w_m2k", "u_value_from_contrast_w_m2k"), "an estimate", style=style
+        ),
+        *_told(item, ("temperature_factor", "temperature_factor_at_0_25"), style=style),
+        *_margin(item, "dew_point_margin_k", "condensation_probability", style),
+        *_margin(item, "mould_margin_k", "mould_probability", style),
+        *_told(item, ("pressure_change_k",), style=style),
+        *_refused(item.refusals, style),
     )
 
 
-def of_strip(strip: StripReport) -> tuple[Fact, ...]:
+def of_strip(strip: StripReport, *, style: Style = SI) -> tuple[Fact, ...]:
     """What was measured along a strip."""
     keys = ("length_m", "undisturbed_c", "undisturbed_gradient_k_per_m", "extreme_c", "temperature_factor")
     judged = ("incidence_factor", "linear_transmittance_w_mk", "u_value_w_m2k")
-    return (*_told(strip, keys), *_told(strip, judged, "an estimate"), *_refused(strip.refusals))
+    return (
+        *_told(strip, keys, style=style),
+        *_told(strip, judged, "an estimate", style=style),
+        *_refused(strip.refusals, style),
+    )
 
 
-def of_room(room: RoomAir) -> tuple[Fact, ...]:
+def of_room(room: RoomAir, *, style: Style = SI) -> tuple[Fact, ...]:
     """Humidity of the room air, and the surface temperatures it asks for."""
-    return tuple(_told(room, ("vapour_pressure_pa", "dew_point_c", "mould_surface_c")))
+    return tuple(_told(room, ("vapour_pressure_pa", "dew_point_c", "mould_surface_c"), style=style))
 
 
 def share(risk: SurfaceAtRisk) -> str:
@@ -68,56 +76,58 @@ def share(risk: SurfaceAtRisk) -> str:
     return f"{value} ({low} to {high})"
 
 
-def area(risk: SurfaceAtRisk) -> str:
+def area(risk: SurfaceAtRisk, *, style: Style = SI) -> str:
     """The same as an area; "–" without a scale."""
     if risk.area_m2 is None or risk.area_low_m2 is None or risk.area_high_m2 is None:
         return numbers.NOTHING
-    return numbers.area_range(risk.area_m2, risk.area_low_m2, risk.area_high_m2)
+    return numbers.area_range(risk.area_m2, risk.area_low_m2, risk.area_high_m2, style=style)
 
 
-def terms(parts: dict[str, Estimate | None]) -> str:
+def terms(parts: dict[str, Estimate | None], *, style: Style = SI) -> str:
     """Where a heat flux goes: "20.1 ± 4.0 W/m² to the air by convection; …"."""
     told = (
-        f"{numbers.measured(estimate, 'heat_flux_w_m2')} {texts.term(key)}"
+        f"{numbers.measured(estimate, 'heat_flux_w_m2', style=style)} {texts.term(key)}"
         for key, estimate in parts.items()
         if estimate
     )
     return "; ".join(told)
 
 
-def cues(evidence: dict[str, float]) -> tuple[Fact, ...]:
+def cues(evidence: dict[str, float], *, style: Style = SI) -> tuple[Fact, ...]:
     """The measured cues of a pattern; those nobody could measure are left out."""
-    told = (Fact(texts.cue(key), _cue(key, value)) for key, value in evidence.items())
+    told = (Fact(texts.cue(key), _cue(key, value, style)) for key, value in evidence.items())
     return tuple(fact for fact in told if fact.text != numbers.NOTHING)
 
 
-def _cue(key: str, value: float) -> str:
+def _cue(key: str, value: float, style: Style) -> str:
     if key in _YES_OR_NO:
         return "yes" if value else "no"
-    return numbers.with_unit(numbers.number(value, 2), key)
+    return numbers.told(value, key, 2, style=style)
 
 
-def _told(record: Record, keys: Iterable[str], word: str = "") -> list[Fact]:
-    return [fact for key in keys if (fact := _fact(record, key, word))]
+def _told(record: Record, keys: Iterable[str], word: str = "", *, style: Style) -> list[Fact]:
+    return [fact for key in keys if (fact := _fact(record, key, word, style=style))]
 
 
-def _fact(record: Record, key: str, word: str = "") -> Fact | None:
+def _fact(record: Record, key: str, word: str = "", *, style: Style) -> Fact | None:
     """One number that exists, with its interval and what kind of number it is."""
     if getattr(record, key) is None:
         return None
     if isinstance(record, Finding):
-        text, drawn = results.reading(record, key), results.interval(record, key)
+        text, drawn = results.reading(record, key, style=style), results.interval(record, key, style=style)
     else:
-        text, drawn = numbers.measured(getattr(record, key), key), numbers.interval_of(getattr(record, key), key)
+        estimate: Estimate | None = getattr(record, key)
+        text = numbers.measured(estimate, key, style=style)
+        drawn = numbers.interval_of(estimate, key, style=style)
     if text == numbers.NOTHING:
         return None
     told = f"{text}; {drawn}" if drawn else text
-    return Fact(texts.name(key), f"{told}, {word}" if word else told)
+    return Fact(in_style(texts.name(key), style), f"{told}, {word}" if word else told)
 
 
-def _margin(item: Finding, key: str, probability: str) -> list[Fact]:
+def _margin(item: Finding, key: str, probability: str, style: Style) -> list[Fact]:
     """A margin of the coldest spot with the probability that there is none."""
-    fact, chance = _fact(item, key), results.chance(getattr(item, probability))
+    fact, chance = _fact(item, key, style=style), results.chance(getattr(item, probability))
     if not chance:
         return [fact] if fact else []
     bound = "at least " if results.is_bound(item, key) else ""
@@ -127,12 +137,12 @@ def _margin(item: Finding, key: str, probability: str) -> list[Fact]:
     return [Fact(fact.name, fact.text, f"{name} at the moment of the survey: {bound}{chance}")]
 
 
-def _refused(refusals: dict[str, str]) -> list[Fact]:
+def _refused(refusals: dict[str, str], style: Style) -> list[Fact]:
     """What is not given, with why and what would make it possible; one line for all that share a remedy."""
     shared: dict[str, list[tuple[str, str]]] = {}
     for key, told in refusals.items():
-        why, _, remedy = told.partition(": ")
-        shared.setdefault(remedy or why, []).append((texts.name(key), why))
+        why, _, remedy = in_style(told, style).partition(": ")
+        shared.setdefault(remedy or why, []).append((in_style(texts.name(key), style), why))
     return [_not_given(remedy, same) for remedy, same in shared.items()]
 
 

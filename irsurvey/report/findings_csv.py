@@ -10,6 +10,8 @@ from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Joi
 from irsurvey.report import csv_table
 from irsurvey.report.json import plain
 from irsurvey.report.ranking import governing
+from irsurvey.report.review.standing import COLUMNS as REVIEW
+from irsurvey.report.review.standing import cells
 
 
 def _estimates(*records: type) -> tuple[str, ...]:
@@ -47,12 +49,14 @@ COLUMNS = (
     *_PROBABILITIES,
     "indication",
     *("criterion", "class", "urgency", "verdict", "outcome", "flags"),
+    *REVIEW,
 )
 
 
 def write(report: Report, _tasks: tuple[FrameTask, ...], out: Path) -> Path:
     """Write OUT/findings.csv, whole or not at all, and return its path."""
-    rows = (_row(frame, item) for frame in report.frames for item in _items(frame))
+    told = cells(report)
+    rows = (_row(frame, item) | told.get(item.key, {}) for frame in report.frames for item in _items(frame))
     return csv_table.write(out / "findings.csv", COLUMNS, rows)
 
 

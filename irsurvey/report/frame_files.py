@@ -11,9 +11,13 @@ from irsurvey import files
 from irsurvey.model import FrameReport, Maps
 from irsurvey.report import change_picture, picture
 from irsurvey.report.inks import COLORMAP
+from irsurvey.report.links import SHEET
 
-NAMES = ("temperature.tif", "findings.tif", "heat_flux.tif", "u_temperature.tif", "annotated.png", "change.png")
-"""Every file this module may write into a frame's folder."""
+NAMES = (
+    *("temperature.tif", "findings.tif", "heat_flux.tif", "u_temperature.tif", "annotated.png", "change.png"),
+    SHEET,
+)
+"""Every file that a run may write into a frame's folder: these here, and the frame's page in a report of many files."""
 
 
 def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP) -> Path:

@@ -5,29 +5,36 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
-from functools import cache
+from functools import cache, partial
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 from irsurvey import files, numbers
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
+from irsurvey.numbers import Style
 from irsurvey.report import (
     axes,
     component_facts,
     condition_rows,
     facts,
+    live,
     pictures,
+    ranking_plot,
     repair_list,
     results,
+    review,
     season_table,
     strip_plot,
     texts,
     trend_plot,
 )
 from irsurvey.report.labels import change_mark, component_mark, strip_mark
+from irsurvey.report.links import REPORT, SHEET, Links
 from irsurvey.report.picture import NUMBERED
-from irsurvey.report.pictures import Picture
 from irsurvey.report.ranking import Ranked, foremost, governing, in_order
+from irsurvey.report.sentences import in_style
+from irsurvey.report.sheets import Sheet, entry, is_compared, sheet
+from irsurvey.report.style import asked, day, moment, spoken
 
 if TYPE_CHECKING:
     from jinja2 import Environment
@@ -35,27 +42,40 @@ if TYPE_CHECKING:
 SUMMARY_LENGTH = 12
 """Results named on the first page; the table behind it has all of them."""
 
+IN_ONE_FILE = 60
+"""Frames up to which all of a report is one file; of more, each has a page of its own."""
+MOST_ROWS = 500
+"""Rows of a table of all anomalies or components in a report of many files: the foremost."""
+MOST_PICTURED = 60
+"""Parts of a repair list with their pictures in a report of many files: the first."""
+
+_SMALL_SIDES = ((500, 240), (2000, 120))
+"""Frames up to which → longer side [px] of their small pictures, so that a report of many files stays below 20 MB."""
+_MODULES = {
+    "n": numbers,
+    "r": results,
+    "f": facts,
+    "c": component_facts,
+    "strip_plot": strip_plot,
+    "trend_plot": trend_plot,
+}
+"""What the templates call a module whose words depend on the style."""
 _LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
 _NAMED = 3  # findings or components of one frame named when they are not cleared for one reason; of more, their number
-_NOT_FREE_TEXT = {"title", "kind", "method", "viewed_from", "timezone", "reference", "camera"}
-_TIME = re.compile(r"(\d{4}-\d\d-\d\d)T(\d\d:\d\d)(?::\d\d(?:\.\d+)?)?(.*)")
+_NOT_FREE_TEXT = {
+    "title",
+    "kind",
+    "method",
+    "viewed_from",
+    "timezone",
+    "reference",
+    "camera",
+    "display_units",
+    "date_format",
+    "history",
+    "frame_table",
+}
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
-
-
-@dataclass(frozen=True, slots=True)
-class Sheet:
-    """What the page shows of one frame; of very many findings, the foremost, and how many `more` there are."""
-
-    frame: FrameReport
-    task: FrameTask | None
-    findings: tuple[Finding, ...]
-    more: int
-    picture: Picture | None
-    photo: Picture | None
-    change: Picture | None  # what pressure changed
-    unchanged: tuple[str, ...]  # ids of findings that pressure did not change
-    to_do: str  # in short: what the most urgent of its findings and components asks for
-    chip: str  # how that is set
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,46 +88,121 @@ class Open:
 
 
 def write(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> Path:
-    """Write OUT/report.html from the records and the pictures already in OUT/frames, and return its path."""
-    path = out / "report.html"
-    files.write_bytes(path, page(report, tasks, out).encode("utf-8", "replace"))
+    """Write OUT/report.html from the records and the pictures already in OUT/frames, and return its path.
+
+    A report of more than `IN_ONE_FILE` frames has its sheets on pages of their own, OUT/frames/<id>/sheet.html; those
+    that an earlier, larger report left are removed."""
+    pages = _Pages.of(report, tasks, out)
+    for frame in report.frames:
+        path = out / "frames" / frame.id / SHEET
+        if pages.is_split:
+            files.write_bytes(path, pages.of_frame(frame).encode("utf-8", "replace"))
+        else:
+            path.unlink(missing_ok=True)
+    path = out / REPORT
+    files.write_bytes(path, pages.of_report().encode("utf-8", "replace"))
     return path
 
 
 def page(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> str:
-    """The text of the page.  All text of the survey is escaped; control characters become U+FFFD."""
-    by_id = {task.id: task for task in tasks}
-    ranked = in_order(report)
-    sheets = [_sheet(frame, by_id.get(frame.id), out) for frame in report.frames]
-    seasons = season_table.tables(report)
-    listed = {(item.frame, item.key) for item in report.repairs}
-    standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
-    template = _environment().get_template("report.html.j2")
-    rendered = template.render(
-        report=report,
-        title=_about(report).get("title") or "Thermographic survey",
-        about={texts.about(key): text for key, text in _about(report).items() if key not in _NOT_FREE_TEXT},
-        sheets=sheets,
-        shown={finding.id for sheet in sheets for finding in sheet.findings},
-        frame_ids={frame.id for frame in report.frames},
-        failed=[frame for frame in report.frames if frame.status == "failed"],
-        analysed=[frame for frame in report.frames if frame.status != "failed"],
-        ranked=ranked,
-        findings=[entry for entry in ranked if isinstance(entry.item, Finding)],
-        components=[entry for entry in ranked if isinstance(entry.item, ComponentReport)],
-        roof=_warm_areas(ranked, by_id),
-        conditions=condition_rows.rows(report.conditions_review),
-        seasons=seasons,
-        season_notes=season_table.notes(seasons),
-        season_costs=season_table.in_short(report),
-        named={_name(entry): entry for entry in ranked},
-        not_cleared=sum(1 for _ in not_cleared(report)),
-        open_points=gathered(not_cleared(report)),
-        repairs=repair_list.shown(report, ranked, by_id, out),
-        notable=[entry for entry in ranked if entry.item.urgency != 0 and _place(entry) not in listed],
-        cautions=tuple(dict.fromkeys((*report.cautions, *standing))),
-    )
-    return _CONTROLS.sub("\ufffd", rendered)
+    """The text of report.html.  All text of the survey is escaped; control characters become U+FFFD."""
+    return _Pages.of(report, tasks, out).of_report()
+
+
+@dataclass(frozen=True, slots=True)
+class _Pages:
+    """The pages of a report, and what they share."""
+
+    report: Report
+    tasks: dict[str, FrameTask]
+    out: Path
+    style: Style
+    shared: dict[str, Any]
+
+    @classmethod
+    def of(cls, report: Report, tasks: tuple[FrameTask, ...], out: Path) -> _Pages:
+        style = asked(report)
+        about = _about(report)
+        shared = {
+            "report": report,
+            "title": about.get("title") or "Thermographic survey",
+            "shown": {finding.id for frame in report.frames for finding in foremost(frame, NUMBERED)},
+            "frame_ids": {frame.id for frame in report.frames},
+            "style": style,
+            "out": out,
+            "live": live,
+            "tables": live.page_data(report, tasks),
+            "review": review,
+            "desk": review.Desk(report, tasks),
+            "s": partial(in_style, style=style),
+            "moment": partial(moment, style=style),
+            "day": partial(day, style=style),
+            **{name: spoken(module, style) for name, module in _MODULES.items()},
+        }
+        return cls(report, {task.id: task for task in tasks}, out, style, shared)
+
+    @property
+    def is_split(self) -> bool:
+        return len(self.report.frames) > IN_ONE_FILE
+
+    def of_report(self) -> str:
+        """The report itself."""
+        report, style, out = self.report, self.style, self.out
+        ranked = in_order(report)
+        most = MOST_ROWS if self.is_split else len(ranked)
+        findings = [entry for entry in ranked if isinstance(entry.item, Finding)]
+        components = [entry for entry in ranked if isinstance(entry.item, ComponentReport)]
+        seasons = season_table.tables(report, style=style)
+        listed = {(item.frame, item.key) for item in report.repairs}
+        standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
+        side = _small_side(len(report.frames)) if self.is_split else 0
+        about = _about(report)
+        if "date" in about:
+            about["date"] = moment(about["date"], style=style)
+        return self._rendered(
+            "report.html.j2",
+            Links(self.is_split),
+            about={texts.about(key): text for key, text in about.items() if key not in _NOT_FREE_TEXT},
+            sheets=[] if self.is_split else [self._sheet(frame) for frame in report.frames],
+            index=[entry(frame, pictures.small(frame, side, out) if side else None) for frame in report.frames],
+            failed=[frame for frame in report.frames if frame.status == "failed"],
+            analysed=[frame for frame in report.frames if frame.status != "failed"],
+            ranked=ranked,
+            findings=findings,
+            components=components,
+            most_rows=most,
+            of_findings=ranking_plot.plots(findings, self.tasks.values(), style=style),
+            of_components=ranking_plot.plots(components, self.tasks.values(), style=style),
+            roof=_warm_areas(ranked, self.tasks),
+            conditions=condition_rows.rows(report.conditions_review, style=style),
+            seasons=seasons,
+            season_notes=season_table.notes(seasons),
+            season_costs=season_table.in_short(report, style=style),
+            named={_name(entry): entry for entry in ranked},
+            not_cleared=sum(1 for _ in not_cleared(report)),
+            open_points=gathered(not_cleared(report)),
+            repairs=repair_list.shown(
+                report, ranked, self.tasks, out, style=style, pictured=MOST_PICTURED if self.is_split else None
+            ),
+            notable=[entry for entry in ranked if entry.item.urgency != 0 and _place(entry) not in listed],
+            cautions=tuple(dict.fromkeys((*report.cautions, *standing))),
+        )
+
+    def of_frame(self, frame: FrameReport) -> str:
+        """The page of one frame, where frames have pages of their own."""
+        place = [one.id for one in self.report.frames].index(frame.id)
+        around = {
+            name: self.report.frames[at].id if 0 <= at < len(self.report.frames) else None
+            for name, at in (("before", place - 1), ("after", place + 1))
+        }
+        return self._rendered("frame.html.j2", Links(True, frame.id), entry=self._sheet(frame), **around)
+
+    def _sheet(self, frame: FrameReport) -> Sheet:
+        return sheet(frame, self.tasks.get(frame.id), self.out, style=self.style)
+
+    def _rendered(self, template: str, links: Links, **told: Any) -> str:
+        text = _environment().get_template(template).render(**self.shared, to=links, **told)
+        return _CONTROLS.sub("\ufffd", text)
 
 
 def not_cleared(report: Report) -> Iterator[Open]:
@@ -117,7 +212,7 @@ def not_cleared(report: Report) -> Iterator[Open]:
             continue
         if frame.claim == "not valid":
             yield Open(frame, "the whole frame", frame.claim_reason)
-        elif not _is_compared(frame):
+        elif not is_compared(frame):
             yield Open(frame, "the whole frame", "nothing in it could be compared with a reference area")
         if frame.temperature and (lost := frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels):
             yield Open(frame, f"{lost} pixels", "no temperature could be measured there")
@@ -183,53 +278,13 @@ def _why(item: Finding | ComponentReport) -> str:
     return " ".join(texts.flag(flag) for flag in item.flags) or "no criterion applies"
 
 
-def _sheet(frame: FrameReport, task: FrameTask | None, out: Path) -> Sheet:
-    items: tuple[Finding | ComponentReport, ...] = (*frame.findings, *frame.components)
-    urgency = max((item.urgency for item in items if item.urgency is not None), default=None)
-    is_open = any(item.outcome == "not cleared" for item in items)
-    to_do = texts.to_do(urgency, "not cleared" if is_open else "")
-    chip = "weak" if to_do != texts.urgency(urgency) else "ux" if urgency is None else f"u{urgency}"
-    if frame.status == "failed":
-        to_do, chip = "not readable", "weak"
-    elif not items and frame.claim == "not valid":
-        to_do, chip = frame.claim, "weak"
-    elif not items:
-        to_do, chip = ("nothing found", "") if _is_compared(frame) else ("nothing compared", "weak")
-    shown = foremost(frame, NUMBERED)
-    return Sheet(
-        frame,
-        task,
-        findings=shown,
-        more=len(frame.findings) - len(shown),
-        picture=pictures.stored(frame, out, "annotated.png"),
-        photo=pictures.photograph(task, pictures.PHOTOGRAPH_SIDE) if task and frame.status != "failed" else None,
-        change=pictures.stored(frame, out, "change.png"),
-        unchanged=_unchanged(frame),
-        to_do=to_do,
-        chip=chip,
-    )
-
-
-def _unchanged(frame: FrameReport) -> tuple[str, ...]:
-    """Findings seen in both frames of a pair that pressure did not change."""
-    changed = {change.finding for change in frame.pair.changes} if frame.pair else set()
-    compared = (finding.id for finding in frame.findings if frame.pair and finding.pressure_change_k)
-    return tuple(id_ for id_ in compared if id_ not in changed)
-
-
-def _is_compared(frame: FrameReport) -> bool:
-    """Whether a frame has a reference area to hold its pixels against."""
-    return frame.detectable is not None and frame.detectable.min_delta_k is not None
+def _small_side(frames: int) -> int:
+    """Longer side [px] of the small pictures of a report of so many frames; 0: none."""
+    return next((side for most, side in _SMALL_SIDES if frames <= most), 0)
 
 
 def _short(text: str, length: int = _LONG) -> str:
     return text if len(text) <= length else f"{text[: length - 1].rstrip()}…"
-
-
-def _moment(taken: str) -> str:
-    """When a frame was taken, to the minute: "2026-01-18 07:12 +01:00"; what is no such time stays as it is."""
-    match = _TIME.fullmatch(taken)
-    return " ".join(part for part in match.groups() if part) if match else taken
 
 
 def _upper_first(text: str) -> str:
@@ -247,22 +302,16 @@ def _environment() -> Environment:
         trim_blocks=True,
         lstrip_blocks=True,
     )
-    environment.filters |= {"short": _short, "moment": _moment, "upper_first": _upper_first}
+    environment.filters |= {"short": _short, "upper_first": _upper_first}
     environment.globals |= {
         "axes": axes,
-        "c": component_facts,
         "change_mark": change_mark,
         "component_mark": component_mark,
-        "f": facts,
         "governing": governing,
         "numbered": NUMBERED,
-        "n": numbers,
-        "r": results,
         "strip_mark": strip_mark,
-        "strip_plot": strip_plot.plot,
         "summary_length": SUMMARY_LENGTH,
         "t": texts,
-        "trend_plot": trend_plot.plot,
     }
     environment.tests |= {"component": lambda ranked: isinstance(ranked.item, ComponentReport)}
     return environment

@@ -22,6 +22,8 @@ _LINE = 120
 _CLAIMS = ["quantitative", "qualitative", "not valid"]
 _WORDS = {
     "FrameReport.status": ["analysed", "failed"],
+    "Decision.decision": ["accepted", "rejected", "reclassified", "open", "commented"],
+    "ReviewStatus.status": ["open", "accepted", "rejected", "reclassified", "asked again", "gone"],
     "FrameReport.kind": ["building", "electrical"],
     "FrameReport.claim": _CLAIMS,
     "Report.claim": _CLAIMS,
@@ -41,6 +43,10 @@ _WORDS = {
 """Record and key → all it may hold."""
 
 _MEANINGS = {
+    "reviews": "what reviewers decided, by date; what was measured stays as it is",
+    "review_status": "where each finding and component stands after them; empty without reviews",
+    "Decision.on": "the numbers the decision was made on",
+    "ReviewStatus.moved": "numbers that moved beyond their U since, so that the reviewer is asked again",
     "urgency": "0 none, 1 investigate, 2 repair as time permits, 3 watch closely, 4 at once",
     "Assessment.verdict": "the number against the edge where action begins, guard band 2u; null: no class or no u",
     "outcome": "what is done about it; cleared only where the number stays 2u clear of where action begins",

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from io import BytesIO
 from math import ceil, floor
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -11,11 +12,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from irsurvey.model import FrameReport, Maps
-from irsurvey.numbers import decimals
+from irsurvey.numbers import Style, decimals
 from irsurvey.report import outlines, scale
 from irsurvey.report.inks import COLORMAP, DARK, LEVELS, LIGHT, UNMEASURABLE, Pixels, palette
 from irsurvey.report.labels import Box, Label, Point, component_mark, place, strip_mark
 from irsurvey.report.ranking import foremost
+from irsurvey.report.sentences import in_style
 
 if TYPE_CHECKING:
     from PIL import Image
@@ -55,19 +57,45 @@ def annotated(frame: FrameReport, maps: Maps, *, colormap: str = COLORMAP) -> Im
     beyond = bool((temperature < low).any()), bool((temperature > high).any())
     image = side_by_side(canvas, scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), low, high, beyond))
     image.putpalette(palette(colormap))
+    image.info["Scale"] = scale_of(low, high, beyond, "°C")
     image.info["Description"] = _in_words(frame, low, high, colormap)
     return image
 
 
-def save(image: Image.Image, path: Path) -> None:
-    """Write the picture as PNG, its description with it.
+def save(image: Image.Image, path: Path | BytesIO) -> None:
+    """Write the picture as PNG, its description and the ends of its scale with it.
 
     Level 1: half the time of the usual level for the same size, because noise hardly compresses."""
     from PIL.PngImagePlugin import PngInfo
 
     words = PngInfo()
-    words.add_itxt("Description", image.info["Description"])
+    for name in ("Description", "Scale"):
+        words.add_itxt(name, str(image.info.get(name, "")))
     image.save(path, format="PNG", compress_level=1, pnginfo=words)
+
+
+def scale_of(low: float, high: float, beyond: tuple[bool, bool], unit: str) -> str:
+    """The scale beside a picture, as `restyled` reads it: its ends, whether the frame goes beyond them, its unit."""
+    return f"{low!r} {high!r} {beyond[0]:d} {beyond[1]:d} {unit}"
+
+
+def restyled(image: Image.Image, style: Style) -> Image.Image:
+    """A picture that was saved, its scale and its description in a style; as it is where it does not tell its scale."""
+    from PIL import Image
+
+    written = str(image.info.get("Scale", "")).split()
+    if image.mode != "P" or len(written) != 5:  # low, high, below, above, unit
+        return image
+    low, high = (float(end) for end in written[:2])
+    pixels = np.asarray(image).copy()
+    beyond = written[2] == "1", written[3] == "1"
+    strip = scale.strip(pixels.shape[0], low, high, beyond, unit=written[4], style=style)
+    pixels[:, -strip.shape[1] :] = strip
+    changed = Image.frombytes("P", image.size, pixels.tobytes())
+    changed.putpalette(image.getpalette() or [])
+    drawn, semicolon, rest = str(image.info.get("Description", "")).partition(";")
+    changed.info |= {"Scale": image.info["Scale"], "Description": in_style(drawn, style) + semicolon + rest}
+    return changed
 
 
 def display_range(temperature: Temperatures, labels: NDArray[np.uint16]) -> tuple[float, float]:

@@ -11,6 +11,8 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from irsurvey.model import FrameReport, FrameTask
+from irsurvey.numbers import SI, Style
+from irsurvey.report import picture
 from irsurvey.report.labels import Box
 from irsurvey.report.picture import box, enlargement
 
@@ -40,17 +42,23 @@ class Picture:
     words: str
 
 
-def stored(frame: FrameReport, out: Path, name: str) -> Picture | None:
-    """A picture that the run left in the folder of a frame, as it is; None where there is none."""
+def stored(frame: FrameReport, out: Path, name: str, *, style: Style = SI) -> Picture | None:
+    """A picture that the run left in the folder of a frame, its scale in a style; None where there is none."""
     from PIL import Image
 
     path = out / "frames" / frame.id / name
     if frame.status == "failed" or not path.is_file():
         return None
-    with Image.open(path) as image:
-        words = str(image.info.get("Description", ""))
-        width, height = image.size
-    return Picture(f"data:image/png;base64,{b64encode(path.read_bytes()).decode()}", width, height, words)
+    data = path.read_bytes()
+    with Image.open(io.BytesIO(data)) as image:
+        shown: Image.Image = image
+        if (style.units, style.decimal_comma) != (SI.units, SI.decimal_comma):
+            shown = picture.restyled(image, style)
+            stream = io.BytesIO()
+            picture.save(shown, stream)
+            data = stream.getvalue()
+        words = str(shown.info.get("Description", ""))
+        return Picture(f"data:image/png;base64,{b64encode(data).decode()}", *shown.size, words)
 
 
 def around(frame: FrameReport, polygon: tuple[tuple[float, float], ...], words: str, out: Path) -> Picture | None:
@@ -60,6 +68,16 @@ def around(frame: FrameReport, polygon: tuple[tuple[float, float], ...], words: 
         return None
     part = _window(polygon, frame.source.shape)
     return _reduced(path, THUMBNAIL_SIDE, words, lambda image: image.crop(part))
+
+
+def small(frame: FrameReport, side: int, out: Path) -> Picture | None:
+    """A frame's annotated picture without the scale beside it, its longer side no longer than `side`; None without."""
+    if frame.status == "failed" or frame.source.shape is None:
+        return None
+    factor = enlargement(frame.source.shape)
+    whole = (0, 0, frame.source.shape[1] * factor, frame.source.shape[0] * factor)
+    words = f"Thermal picture of frame {frame.id}"
+    return _reduced(out / "frames" / frame.id / "annotated.png", side, words, lambda image: image.crop(whole))
 
 
 def photograph(task: FrameTask, side: int) -> Picture | None:

@@ -8,6 +8,7 @@ from pathlib import Path
 
 from irsurvey import numbers
 from irsurvey.model import ComponentReport, FrameTask, RepairItem, Report
+from irsurvey.numbers import SI, Style
 from irsurvey.report import pictures, results, texts
 from irsurvey.report.labels import component_mark
 from irsurvey.report.pictures import Picture
@@ -41,22 +42,36 @@ class Shown:
     again: tuple[Line, ...]
 
 
-def shown(report: Report, ranked: Iterable[Ranked], tasks: Mapping[str, FrameTask], out: Path) -> Shown:
-    """The list of a report, both parts in its order."""
+def shown(
+    report: Report,
+    ranked: Iterable[Ranked],
+    tasks: Mapping[str, FrameTask],
+    out: Path,
+    *,
+    style: Style = SI,
+    pictured: int | None = None,
+) -> Shown:
+    """The list of a report, both parts in its order; `pictured`: so many have pictures, the first; None: all."""
     entries = {(entry.frame.id, entry.item.key): entry for entry in ranked}
-    frames = {item.frame for item in report.repairs if item.urgency} & tasks.keys()
+    listed = [(item, _line(item, entries.get((item.frame, item.key)), style)) for item in report.repairs]
+    urgent = [(item, line) for item, line in listed if item.urgency]
+    with_pictures = urgent if pictured is None else urgent[:pictured]
+    frames = {item.frame for item, _ in with_pictures} & tasks.keys()
     photos = {id_: pictures.photograph(tasks[id_], pictures.THUMBNAIL_SIDE) for id_ in sorted(frames)}
-    listed = [(item, _line(item, entries.get((item.frame, item.key)))) for item in report.repairs]
     return Shown(
-        repair=tuple(_pictured(line, photos.get(item.frame), out) for item, line in listed if item.urgency),
+        repair=(
+            *(_pictured(line, photos.get(item.frame), out) for item, line in with_pictures),
+            *(line for _, line in urgent[len(with_pictures) :]),
+        ),
         again=tuple(line for item, line in listed if not item.urgency),
     )
 
 
-def _line(item: RepairItem, entry: Ranked | None) -> Line:
+def _line(item: RepairItem, entry: Ranked | None, style: Style) -> Line:
     mark, spot = "", ""
     if entry:
-        spot = results.reading(entry.item, "max_c" if isinstance(entry.item, ComponentReport) else "extreme_c")
+        key = "max_c" if isinstance(entry.item, ComponentReport) else "extreme_c"
+        spot = results.reading(entry.item, key, style=style)
         mark = component_mark(entry.place) if isinstance(entry.item, ComponentReport) else str(entry.place)
     return Line(
         item,
@@ -64,9 +79,9 @@ def _line(item: RepairItem, entry: Ranked | None) -> Line:
         mark,
         spot=spot.strip(numbers.NOTHING),
         sure=results.chance(item.confidence),
-        delta=_delta(item, entry),
+        delta=_delta(item, entry, style),
         basis=_basis(item, entry),
-        load=results.load(entry.item if entry else None, item.load_a, item.rated_a),
+        load=results.load(entry.item if entry else None, item.load_a, item.rated_a, style=style),
     )
 
 
@@ -78,9 +93,9 @@ def _pictured(line: Line, photo: Picture | None, out: Path) -> Line:
     return replace(line, thermal=thermal, photo=photo)
 
 
-def _delta(item: RepairItem, entry: Ranked | None) -> str:
+def _delta(item: RepairItem, entry: Ranked | None, style: Style) -> str:
     """The difference with its unit, and with ≥ or ≤ where the reading is only a bound; "" where there is none."""
-    text = numbers.measured(item.delta_k, "delta_k")
+    text = numbers.measured(item.delta_k, "delta_k", style=style)
     if text == numbers.NOTHING:
         return ""
     return results.bounded(entry.item, _JUDGED.get(item.delta_basis, ""), text) if entry else text

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from irsurvey import numbers
 from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
+from irsurvey.numbers import SI, Style
 from irsurvey.report import texts
 from irsurvey.report.ranking import governing, is_saturated
 
@@ -61,10 +62,10 @@ class Change:
     inputs: tuple[str, ...]
 
 
-def reading(item: Item, key: str, *, unit: bool = True) -> str:
+def reading(item: Item, key: str, *, unit: bool = True, style: Style = SI) -> str:
     """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
     estimate: Estimate | None = getattr(item, key)
-    text = numbers.measured(estimate, key, unit=unit)
+    text = numbers.measured(estimate, key, unit=unit, style=style)
     return text if estimate is None or text == numbers.NOTHING else bounded(item, key, text)
 
 
@@ -75,9 +76,9 @@ def bounded(item: Item, key: str, text: str) -> str:
     return f"{'≤' if isinstance(item, Finding) and item.sense == 'cold' else '≥'}\u00a0{text}"
 
 
-def interval(item: Item, key: str) -> str:
+def interval(item: Item, key: str, *, style: Style = SI) -> str:
     """The 95 % interval of one number where it was drawn and the reading is not only a bound; else ""."""
-    return "" if is_bound(item, key) else numbers.interval_of(getattr(item, key), key)
+    return "" if is_bound(item, key) else numbers.interval_of(getattr(item, key), key, style=style)
 
 
 def is_bound(item: Item, key: str) -> bool:
@@ -105,19 +106,20 @@ def chance(probability: float | None) -> str:
     return "" if probability is None else numbers.percent(min(max(probability, _NO_CHANCE), 1 - _NO_CHANCE))
 
 
-def rated(item: ComponentReport) -> str:
+def rated(item: ComponentReport, *, style: Style = SI) -> str:
     """Its rise over a similar one at rated load; "" where there is none, as of the twin all are compared with."""
     band = item.at_rated_load.delta_similar_k if item.at_rated_load else None
     if band is None or band.low == band.high == 0:
         return ""
-    return f"{numbers.number(band.low, 2)} to {numbers.number(band.high, 2)}"
+    low, high = (numbers.converted(end, "delta_similar_k", style=style) for end in (band.low, band.high))
+    return f"{numbers.number(low, 2, style=style)} to {numbers.number(high, 2, style=style)}"
 
 
-def load(item: Item | None, load_a: float | None, rated_a: float | None) -> str:
+def load(item: Item | None, load_a: float | None, rated_a: float | None, *, style: Style = SI) -> str:
     """The load of a part and what it is of: "200 A of 400 A rated (50 %)"; "" where load is not what heats it."""
     if load_a is None and rated_a is None and item and "load unknown" not in item.flags:
         return ""
-    stated, rating = (numbers.with_symbol(numbers.number(current), "A") for current in (load_a, rated_a))
+    stated, rating = (numbers.with_symbol(numbers.number(current, style=style), "A") for current in (load_a, rated_a))
     if load_a is None:
         return "not recorded" if rated_a is None else f"not recorded; rated {rating}"
     if not rated_a:
@@ -125,17 +127,17 @@ def load(item: Item | None, load_a: float | None, rated_a: float | None) -> str:
     return f"{stated} of {rating} rated ({numbers.percent(load_a / rated_a)})"
 
 
-def budgets(item: Item) -> tuple[Shown, ...]:
+def budgets(item: Item, *, style: Style = SI) -> tuple[Shown, ...]:
     """The budgets of a finding or component: of the number it is judged by, of other differences, of the rest."""
     first = _judged(item)
     keys = sorted(item.budgets, key=lambda key: (key != first, not key.startswith("delta_")))
-    return tuple(_shown(item, key, item.budgets[key]) for key in keys if item.budgets[key])
+    return tuple(_shown(item, key, item.budgets[key], style) for key in keys if item.budgets[key])
 
 
-def changes(item: Item) -> tuple[Change, ...]:
+def changes(item: Item, *, style: Style = SI) -> tuple[Change, ...]:
     """What would change the class, by the class it would become."""
     return tuple(
-        Change(class_, tuple(_told(flip) for flip in item.flips if flip.class_ == class_))
+        Change(class_, tuple(_told(flip, style) for flip in item.flips if flip.class_ == class_))
         for class_ in dict.fromkeys(flip.class_ for flip in item.flips)
     )
 
@@ -152,26 +154,27 @@ def _judged(item: Item) -> str | None:
     return assessment.quantity if assessment else None
 
 
-def _shown(item: Item, key: str, terms: tuple[BudgetTerm, ...]) -> Shown:
-    listed = tuple(_line(term, key) for term in terms if abs(term.share) >= _LEAST_SHARE)
+def _shown(item: Item, key: str, terms: tuple[BudgetTerm, ...], style: Style) -> Shown:
+    listed = tuple(_line(term, key, style) for term in terms if abs(term.share) >= _LEAST_SHARE)
     charted = [term for term in terms if term.share >= _LEAST_BAR][:_BARS]
     return Shown(
         key=key,
         name=texts.name(key),
-        reading=reading(item, key),
-        unit=numbers.difference_unit(key),
+        reading=reading(item, key, style=style),
+        unit=numbers.difference_unit(key, style=style),
         lines=(*listed, *_rest([term for term in terms if abs(term.share) >= _LEAST_SHARE])),
-        chart=(*(_line(term, key) for term in charted), *_rest(charted)),
+        chart=(*(_line(term, key, style) for term in charted), *_rest(charted)),
     )
 
 
-def _line(term: BudgetTerm, key: str) -> Line:
-    of_input, of_number = numbers.difference_unit(term.input), numbers.difference_unit(key)
+def _line(term: BudgetTerm, key: str, style: Style) -> Line:
+    of_input, of_number = (numbers.difference_scale(name, style) for name in (term.input, key))
+    slope = numbers.number(term.sensitivity * of_number.factor / of_input.factor, 2, style=style)
     return Line(
         name=texts.name(term.input),
-        u=numbers.with_symbol(numbers.number(term.u, 2), of_input),
-        sensitivity=numbers.with_symbol(numbers.number(term.sensitivity, 2), _per(of_number, of_input)),
-        contribution=numbers.number(term.contribution, 2),
+        u=numbers.in_symbol(term.u, of_input, 2, style=style),
+        sensitivity=numbers.with_symbol(slope, _per(of_number.symbol, of_input.symbol)),
+        contribution=numbers.number(term.contribution * of_number.factor, 2, style=style),
         share=numbers.percent(term.share),
         bar=_bar(term.share),
     )
@@ -193,7 +196,8 @@ def _per(of_number: str, of_input: str) -> str:
     return f"{of_number} per {of_input.removesuffix('s')}".strip() if of_input else of_number
 
 
-def _told(flip: Flip) -> str:
+def _told(flip: Flip, style: Style) -> str:
     """A change of one input in words: "−1.3 K in reflected apparent temperature"."""
-    change = numbers.with_symbol(numbers.signed(flip.change), numbers.difference_unit(flip.input))
+    to = numbers.difference_scale(flip.input, style)
+    change = numbers.with_symbol(numbers.signed(flip.change * to.factor, style=style), to.symbol)
     return f"{change} in {texts.inside(flip.input)}"

@@ -7,7 +7,9 @@ from dataclasses import dataclass, replace
 
 from irsurvey import numbers
 from irsurvey.model import Estimate, Finding, Report, SeasonReport, SeasonRow
+from irsurvey.numbers import SI, Style
 from irsurvey.report import texts
+from irsurvey.report.sentences import in_style
 
 _SMALL_KWH = 1.0
 """Several findings that surely take less a season share one line."""
@@ -49,9 +51,9 @@ class Table:
     parts: tuple[Part, ...]
 
 
-def tables(report: Report) -> tuple[Table, ...]:
+def tables(report: Report, *, style: Style = SI) -> tuple[Table, ...]:
     """A table for each season that was estimated."""
-    return tuple(_table(report, season) for season in report.seasons if season.findings or season.elements)
+    return tuple(_table(report, season, style) for season in report.seasons if season.findings or season.elements)
 
 
 def notes(shown: tuple[Table, ...]) -> tuple[str, ...]:
@@ -62,35 +64,37 @@ def notes(shown: tuple[Table, ...]) -> tuple[str, ...]:
     return tuple(texts.owner(note) for note in told)
 
 
-def in_short(report: Report) -> dict[str, str]:
+def in_short(report: Report, *, style: Style = SI) -> dict[str, str]:
     """Finding id → what it costs in half a sentence, in the season in which it takes most."""
-    rows = [(row, season) for season in report.seasons for row in season.findings if _energy(row) != numbers.NOTHING]
+    rows = [
+        (row, season) for season in report.seasons for row in season.findings if _energy(row, style) != numbers.NOTHING
+    ]
     rows.sort(key=lambda entry: entry[0].energy_kwh.value if entry[0].energy_kwh else 0.0)
     told = {}
     for row, season in rows:
-        cost = _cost(row, season)
+        cost = _cost(row, season, style)
         price = f" ({cost})" if cost != numbers.NOTHING else ""
-        told[row.of] = f"in a {texts.season(season.sense).lower()} season {_energy(row)}{price}"
+        told[row.of] = f"in a {texts.season(season.sense).lower()} season {_energy(row, style)}{price}"
     return told
 
 
-def _table(report: Report, season: SeasonReport) -> Table:
+def _table(report: Report, season: SeasonReport, style: Style) -> Table:
     findings = {finding.id: finding for frame in report.frames for finding in frame.findings}
     labels = {frame.id: frame.label for frame in report.frames}
     described = _descriptions(report.survey.get("element"))
     small = [row for row in season.findings if _is_small(row)]
     kept = season.findings if len(small) < 2 else [row for row in season.findings if not _is_small(row)]
-    lines = [_of_finding(row, season, findings.get(row.of), labels.get(row.frame or "", "")) for row in kept]
+    lines = [_of_finding(row, season, findings.get(row.of), labels.get(row.frame or "", ""), style) for row in kept]
     if len(small) > 1:
-        lines.append(_gathered(small, season))
+        lines.append(_gathered(small, season, style))
     whole = tuple(
-        _line(row, season, described.get(row.of, row.of), where=labels.get(row.frame or "", _NOT_MEASURED))
+        _line(row, season, described.get(row.of, row.of), labels.get(row.frame or "", _NOT_MEASURED), style=style)
         for row in season.elements
     )
     return Table(
         sense=season.sense,
         heading=f"{texts.season(season.sense)} season",
-        basis=_basis(season),
+        basis=_basis(season, style),
         has_cost=season.price is not None,
         parts=tuple(
             part
@@ -98,12 +102,12 @@ def _table(report: Report, season: SeasonReport) -> Table:
                 Part(
                     *("Extra heat of single places", "Place", "Where"),
                     tuple(lines),
-                    _total(season.findings_total, season),
+                    _total(season.findings_total, season, style),
                 ),
                 Part(
                     *("All heat through parts of the building", "Part", "Measured at"),
                     whole,
-                    _total(season.elements_total, season),
+                    _total(season.elements_total, season, style),
                 ),
             )
             if part.lines
@@ -111,13 +115,13 @@ def _table(report: Report, season: SeasonReport) -> Table:
     )
 
 
-def _line(row: SeasonRow, season: SeasonReport, what: str, where: str = "") -> Line:
-    return Line(what, "", where, _energy(row), _cost(row, season), frame=row.frame)
+def _line(row: SeasonRow, season: SeasonReport, what: str, where: str = "", *, style: Style) -> Line:
+    return Line(what, "", where, _energy(row, style), _cost(row, season, style), frame=row.frame)
 
 
-def _of_finding(row: SeasonRow, season: SeasonReport, finding: Finding | None, where: str) -> Line:
+def _of_finding(row: SeasonRow, season: SeasonReport, finding: Finding | None, where: str, style: Style) -> Line:
     """A finding in an owner's words: a colder patch, and what it is consistent with."""
-    line = _line(row, season, row.of, where)
+    line = _line(row, season, row.of, where, style=style)
     if finding is None:
         return line
     note = texts.pattern(finding.indication.pattern) if finding.indication else ""
@@ -130,7 +134,7 @@ def _is_small(row: SeasonRow) -> bool:
     return bool(energy and energy.u is not None and energy.value + numbers.COVERAGE_FACTOR * energy.u < _SMALL_KWH)
 
 
-def _gathered(small: list[SeasonRow], season: SeasonReport) -> Line:
+def _gathered(small: list[SeasonRow], season: SeasonReport, style: Style) -> Line:
     """All rows that are too small to stand alone; their sum without ±, which only the total has."""
     energy, cost = (
         sum(estimate.value for row in small if (estimate := getattr(row, name))) for name in ("energy_kwh", "cost")
@@ -139,25 +143,25 @@ def _gathered(small: list[SeasonRow], season: SeasonReport) -> Line:
         f"{len(small)} places that take less than {numbers.number(_SMALL_KWH)} kWh each",
         "",
         "",
-        f"about {numbers.with_symbol(numbers.number(energy, 2), 'kWh')}",
-        f"about {numbers.with_symbol(numbers.number(cost, 2), season.currency)}",
+        f"about {numbers.with_symbol(numbers.number(energy, 2, style=style), 'kWh')}",
+        f"about {numbers.with_symbol(numbers.number(cost, 2, style=style), season.currency)}",
     )
 
 
-def _total(row: SeasonRow | None, season: SeasonReport) -> Line | None:
-    return _line(row, season, "Together") if row else None
+def _total(row: SeasonRow | None, season: SeasonReport, style: Style) -> Line | None:
+    return _line(row, season, "Together", style=style) if row else None
 
 
-def _energy(row: SeasonRow) -> str:
-    return _amount(row.energy_kwh, row, "kWh")
+def _energy(row: SeasonRow, style: Style) -> str:
+    return _amount(row.energy_kwh, row, "kWh", style)
 
 
-def _cost(row: SeasonRow, season: SeasonReport) -> str:
-    return _amount(row.cost, row, season.currency)
+def _cost(row: SeasonRow, season: SeasonReport, style: Style) -> str:
+    return _amount(row.cost, row, season.currency, style)
 
 
-def _amount(estimate: Estimate | None, row: SeasonRow, symbol: str) -> str:
-    told = numbers.magnitude(estimate) if row.order_of_magnitude else numbers.shown(estimate)
+def _amount(estimate: Estimate | None, row: SeasonRow, symbol: str, style: Style) -> str:
+    told = (numbers.magnitude if row.order_of_magnitude else numbers.shown)(estimate, style=style)
     return numbers.with_symbol(told, symbol)
 
 
@@ -171,17 +175,18 @@ def _descriptions(elements: object) -> dict[str, str]:
     }
 
 
-def _basis(season: SeasonReport) -> str:
+def _basis(season: SeasonReport, style: Style) -> str:
     """What the estimate rests on, in a sentence or two."""
-    days = numbers.shown(season.degree_days_kd)
+    days = numbers.measured(season.degree_days_kd, "degree_days_kd", unit=False, style=style)
     performance = (
         f"{numbers.percent(season.efficiency)} efficiency of the heating"
         if season.sense == "heating"
-        else f"a performance factor of {numbers.number(season.efficiency, 2)} of the cooling"
+        else f"a performance factor of {numbers.number(season.efficiency, 2, style=style)} of the cooling"
     )
     price = (
-        f", {numbers.with_symbol(numbers.number(season.price, 3), season.currency)} per kWh"
+        f", {numbers.with_symbol(numbers.number(season.price, 3, style=style), season.currency)} per kWh"
         if season.price is not None
         else ""
     )
-    return f"It rests on {days} degree days ({season.how}), {performance}{price}."
+    kind = "Fahrenheit degree days" if style.units == "us" else "degree days"
+    return f"It rests on {days} {kind} ({in_style(season.how, style)}), {performance}{price}."

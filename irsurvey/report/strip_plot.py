@@ -7,6 +7,7 @@ from math import ceil, dist
 
 from irsurvey import numbers
 from irsurvey.model import StripReport
+from irsurvey.numbers import SI, Style
 from irsurvey.report.axes import LEFT, RIGHT, TICKS_ACROSS, TICKS_UP, Axis, Tick, upwards
 
 _LEAST_SPAN_K = 0.5
@@ -25,37 +26,43 @@ class Plot:
     up: tuple[Tick, ...]
     unit: str  # of the distance
     words: str
+    up_unit: str = "°C"
 
 
-def plot(strip: StripReport) -> Plot | None:
+def plot(strip: StripReport, *, style: Style = SI) -> Plot | None:
     """The drawing of one strip; None where there is no profile to draw."""
-    profile = [(at, t) for at, t in strip.profile if t == t]  # NaN is not itself
+    to = numbers.scale("extreme_c", style)
+    profile = [(at, to.factor * t + to.shift) for at, t in strip.profile if t == t]  # NaN is not itself
     if len(profile) < 2 or not profile[-1][0] > profile[0][0]:
         return None
     profile = profile[:: ceil(len(profile) / _MOST_POINTS)]
-    per_pixel, unit = _scale(strip)
+    per_pixel, unit = _scale(strip, style)
     x = Axis(profile[0][0] * per_pixel, profile[-1][0] * per_pixel, LEFT, RIGHT)
-    level = strip.undisturbed_c.value if strip.undisturbed_c else None
+    level = to.factor * strip.undisturbed_c.value + to.shift if strip.undisturbed_c else None
     temperatures = [t for _, t in profile]
-    y = upwards(temperatures if level is None else [*temperatures, level], _LEAST_SPAN_K)
+    y = upwards(temperatures if level is None else [*temperatures, level], _LEAST_SPAN_K * to.factor)
     return Plot(
         line=" ".join(f"{x.at(at * per_pixel)},{y.at(t)}" for at, t in profile),
         level=None if level is None else y.at(level),
-        across=x.ticks(TICKS_ACROSS),
-        up=y.ticks(TICKS_UP),
+        across=x.ticks(TICKS_ACROSS, style=style),
+        up=y.ticks(TICKS_UP, style=style),
         unit=unit,
-        words=_in_words(temperatures, x.high - x.low, unit, level),
+        words=_in_words(
+            temperatures, numbers.with_symbol(numbers.number(x.high - x.low, 2, style=style), unit), level, style
+        ),
+        up_unit=to.symbol,
     )
 
 
-def _scale(strip: StripReport) -> tuple[float, str]:
+def _scale(strip: StripReport, style: Style) -> tuple[float, str]:
     """Length of a pixel along the strip and its unit; pixels where there is no scale."""
     pixels = dist(strip.from_, strip.to)
-    return (strip.length_m.value / pixels, "m") if strip.length_m and pixels > 0 else (1.0, "px")
+    to = numbers.scale("length_m", style)
+    return (to.factor * strip.length_m.value / pixels, to.symbol) if strip.length_m and pixels > 0 else (1.0, "px")
 
 
-def _in_words(temperatures: list[float], length: float, unit: str, level: float | None) -> str:
-    low, high = numbers.decimals(min(temperatures), 1), numbers.decimals(max(temperatures), 1)
-    over = numbers.with_symbol(numbers.number(length, 2), unit)
-    told = f"Temperature along the strip, {low} to {high} °C over {over}"
-    return told if level is None else f"{told}; undisturbed wall {numbers.decimals(level, 1)} °C"
+def _in_words(temperatures: list[float], over: str, level: float | None, style: Style) -> str:
+    symbol = numbers.unit("extreme_c", style=style)
+    low, high = (numbers.decimals(end, 1, style=style) for end in (min(temperatures), max(temperatures)))
+    told = f"Temperature along the strip, {low} to {high} {symbol} over {over}"
+    return told if level is None else f"{told}; undisturbed wall {numbers.decimals(level, 1, style=style)} {symbol}"

@@ -10,7 +10,9 @@ from statistics import median
 
 from irsurvey import numbers
 from irsurvey.model import TrendReport
+from irsurvey.numbers import SI, Style
 from irsurvey.report.axes import LEFT, RIGHT, TICKS_UP, Axis, Tick, upwards
+from irsurvey.report.style import day as day_in
 
 DAYS_PER_YEAR = 365.2425
 """Of the Gregorian calendar."""
@@ -33,24 +35,27 @@ class Plot:
     across: tuple[Tick, ...]
     up: tuple[Tick, ...]
     words: str
+    up_unit: str = "K"
 
 
-def plot(trend: TrendReport) -> Plot | None:
+def plot(trend: TrendReport, *, style: Style = SI) -> Plot | None:
     """The drawing of one trend; None where there are not two surveys on different days to draw."""
-    points = sorted(_dated(trend))
+    to = numbers.scale("delta_k", style)
+    points = [(day, to.factor * rise) for day, rise in sorted(_dated(trend))]
     if len(points) < 2 or points[0][0] == points[-1][0]:
         return None
     days, rises = [day for day, _ in points], [rise for _, rise in points]
     room = _ROOM * (days[-1] - days[0])
     x = Axis(days[0] - room, days[-1] + room, LEFT, RIGHT)
-    ends = _line(days, rises, trend.slope_k_per_year.value if trend.slope_k_per_year else None)
-    y = upwards([0.0, *rises, *(rise for _, rise in ends)], _LEAST_SPAN_K)
+    ends = _line(days, rises, to.factor * trend.slope_k_per_year.value if trend.slope_k_per_year else None)
+    y = upwards([0.0, *rises, *(rise for _, rise in ends)], _LEAST_SPAN_K * to.factor)
     return Plot(
         points=tuple((x.at(day), y.at(rise)) for day, rise in points),
         line=" ".join(f"{x.at(day)},{y.at(rise)}" for day, rise in ends),
-        across=_dates(x, days),
-        up=y.ticks(TICKS_UP),
-        words=_in_words(points),
+        across=_dates(x, days, style),
+        up=y.ticks(TICKS_UP, style=style),
+        words=_in_words(points, to.symbol, style),
+        up_unit=to.symbol,
     )
 
 
@@ -74,17 +79,26 @@ def _line(days: list[int], rises: list[float], slope: float | None) -> list[tupl
     return [(day, level + per_day * day) for day in (days[0], days[-1])]
 
 
-def _dates(x: Axis, days: list[int]) -> tuple[Tick, ...]:
+def _dates(x: Axis, days: list[int], style: Style) -> tuple[Tick, ...]:
     """The turns of years, or the months of the first and last survey where fewer than two turns lie between."""
     first, last = (date.fromordinal(day) for day in (days[0], days[-1]))
     years = range(first.year + 1, last.year + 1)
     if len(years) < 2:
-        return tuple(Tick(x.at(day.toordinal()), f"{day:%Y-%m}") for day in (first, last))
+        return tuple(Tick(x.at(day.toordinal()), _month(day, style)) for day in (first, last))
     step = ceil(len(years) / _MOST_YEARS)
     return tuple(Tick(x.at(date(year, 1, 1).toordinal()), str(year)) for year in years[::step])
 
 
-def _in_words(points: list[tuple[int, float]]) -> str:
+def _month(day: date, style: Style) -> str:
+    """The month of a day: "2026-01"; the whole day in a style of its own."""
+    return f"{day:%Y-%m}" if style.date_format == SI.date_format else day_in(day, style=style)
+
+
+def _in_words(points: list[tuple[int, float]], symbol: str, style: Style) -> str:
     told = points if len(points) <= _TOLD else [points[0], points[-1]]
-    listed = ", ".join(f"{date.fromordinal(day)} {numbers.with_symbol(numbers.number(k, 2), 'K')}" for day, k in told)
+    listed = ", ".join(
+        f"{day_in(date.fromordinal(day), style=style)} "
+        f"{numbers.with_symbol(numbers.number(rise, 2, style=style), symbol)}"
+        for day, rise in told
+    )
     return f"Rise over ambient air, {len(points)} surveys: {listed}"

@@ -7,6 +7,7 @@ A default says what counts when a key stands at no level; `None` means absent.  
 from __future__ import annotations
 
 import datetime
+import re
 from typing import Annotated, Any
 
 from pydantic import AfterValidator, BaseModel, ConfigDict, Field, Strict, WithJsonSchema
@@ -57,6 +58,14 @@ def _sensible(moment: datetime.datetime) -> datetime.datetime:
     return moment
 
 
+def _a_day(pattern: str) -> str:
+    """A check of how days are written: each part once, and nothing that would need a language."""
+    parts = sorted(re.findall("%(.?)", pattern.replace("%y", "%Y")))
+    if parts != ["Y", "d", "m"]:
+        raise wrong("%d, %m and %Y or %y, each once", repr(pattern), "such as %d.%m.%Y")
+    return pattern
+
+
 FINITE = Field(allow_inf_nan=False)
 LARGEST = 1e12
 """Beyond this a positive number is a slip of the pen; it keeps sums and unit conversions finite."""
@@ -74,6 +83,15 @@ Coordinate = Annotated[float, Strict(), FINITE, Field(ge=-0.5)]
 Whole = Annotated[int, Strict(), Field(ge=0, le=2**31)]
 Counted = Annotated[int, Strict(), Field(ge=1, le=2**31)]
 Day = Annotated[datetime.date, Strict(), WithJsonSchema({"type": "string", "pattern": r"^\d{4}-\d\d-\d\d$"})]
+DateFormat = Annotated[
+    str,
+    Strict(),
+    Field(max_length=40),
+    AfterValidator(_a_day),
+    WithJsonSchema(
+        {"type": "string", "maxLength": 40, "pattern": "^(?=.*%d)(?=.*%m)(?=.*%[Yy])[^%]*(%[dmYy][^%]*){3}$"}
+    ),
+]
 Moment = Annotated[
     datetime.datetime,
     Strict(),

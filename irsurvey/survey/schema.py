@@ -12,6 +12,7 @@ from irsurvey.survey.fields import (
     AirCelsius,
     Celsius,
     Counted,
+    DateFormat,
     Day,
     Emissivity,
     Fraction,
@@ -299,6 +300,13 @@ class About(Table):
     reference: Reference | None = key("Reference area or automatic, as at the top of the file", "automatic")
     date: Day | None = key("Date of the survey")
     timezone: Name | None = key("Time zone of local times, such as Europe/Vienna; without one they are read as UTC")
+    display_units: Literal["si", "us"] = key(
+        "Units of what people read, us: °F, ft, Btu/h; report.json, findings.csv and this file stay as they are", "si"
+    )
+    decimal_comma: Annotated[bool, Strict()] = key(
+        "Whether people read 0,5 or 0.5; tables of data keep the point", False
+    )
+    date_format: DateFormat = key("How people read days, of %d, %m and %Y or %y: %d.%m.%Y", "%Y-%m-%d")
     criteria: list[Name] = key(
         "Names of criteria, or a file of the site's own such as site.toml; default: those of the kind and method", []
     )

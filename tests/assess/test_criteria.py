@@ -227,14 +227,18 @@ def test_every_kind_and_method_has_defaults_and_they_exist() -> None:
 
 def test_named_criteria_count_where_they_suit_and_defaults_elsewhere() -> None:
     named = ("neta-ambient",)
-    assert [one.name for one in chosen(named, "electrical", "contact")] == ["neta-ambient", *ALWAYS]
+    assert [one.name for one in chosen(named, "electrical", "contact")] == ["neta-ambient", *CONTACT]
     assert tuple(one.name for one in chosen(named, "building", "envelope")) == DEFAULTS["building", "envelope"]
     voltage = [one.name for one in chosen(named, "electrical", "voltage-driven")]
     assert voltage == ["voltage-driven", "absolute-limit"]  # no table for contacts is borrowed
 
 
+CONTACT = ("electrical-contrast", *ALWAYS)
+"""What counts beside criteria named for components: that for what is hot outside any, and those of stated limits."""
+
+
 def test_limits_stated_for_a_part_count_whatever_criteria_are_named() -> None:
-    assert [one.name for one in chosen(("naval",), "electrical", "contact")] == ["naval", *ALWAYS]
+    assert [one.name for one in chosen(("naval",), "electrical", "contact")] == ["naval", *CONTACT]
     assert chosen(ALWAYS, "electrical", "contact") == chosen((), "electrical", "contact")  # they take no default away
     assert not set(ALWAYS) & {one.name for one in chosen(("naval",), "building", "envelope")}
 
@@ -245,8 +249,8 @@ OWN = (("schemes/site.toml", SITE),)
 def test_a_scheme_of_the_site_counts_beside_built_in_ones_named_by_its_file_or_its_name() -> None:
     for names in (("neta-ambient",), ("neta-ambient", "schemes/site.toml"), ("neta-ambient", "site-lugs")):
         found = [one.name for one in chosen(names, "electrical", "contact", OWN)]
-        assert found == ["neta-ambient", "site-lugs", *ALWAYS]
-    assert [one.name for one in chosen((), "electrical", "contact", OWN)] == ["site-lugs", *ALWAYS]
+        assert found == ["neta-ambient", "site-lugs", *CONTACT]
+    assert [one.name for one in chosen((), "electrical", "contact", OWN)] == ["site-lugs", *CONTACT]
     assert "site-lugs" not in [one.name for one in chosen((), "electrical", "pv", OWN)]  # does not suit
     assert list(criteria(OWN)) == [*BUILT_IN, "site-lugs"]
     assert criteria(OWN)["site-lugs"] == load_criterion(SITE, "site.toml")

@@ -11,21 +11,7 @@ from hypothesis import example, given
 from hypothesis import strategies as st
 
 from irsurvey.assess.criteria import Criterion, chosen, class_of, criteria, load_criterion
-from irsurvey.assess.electrical import (
-    ALL_HOT,
-    NO_TWIN,
-    NORMALISED,
-    TWIN_SIZE_LIMITED,
-    UNBALANCED,
-    Member,
-    TwinPlan,
-    assess_component,
-    load_factor,
-    load_ratio,
-    rated_band,
-    similar_rise,
-    twins,
-)
+from irsurvey.assess.electrical import assess_component
 from irsurvey.assess.limits import allowed_now, limits
 from irsurvey.assess.severity import (
     BLOCKERS,
@@ -46,6 +32,20 @@ from irsurvey.assess.severity import (
     UNSTEADY,
     WINDY,
     Verdict,
+)
+from irsurvey.assess.twins import (
+    ALL_HOT,
+    NO_TWIN,
+    NORMALISED,
+    TWIN_SIZE_LIMITED,
+    UNBALANCED,
+    Member,
+    TwinPlan,
+    load_factor,
+    load_ratio,
+    rated_band,
+    similar_rise,
+    twins,
 )
 from irsurvey.model.quantities import Estimate
 
@@ -154,8 +154,8 @@ def test_a_sound_part_beside_a_saturated_one_is_not_its_own_yardstick() -> None:
     assert "≥ 95.00\u00a0±" in verdicts["2"].assessments[0].statement
 
 
-def test_loads_within_a_tenth_are_compared_as_they_are() -> None:
-    members = (lug("1", 10.0, load=240.0), lug("2", 14.0, load=262.0))
+def test_loads_that_differ_by_less_than_a_meter_tells_are_compared_as_they_are() -> None:
+    members = (lug("1", 10.0, load=240.0), lug("2", 14.0, load=246.0))
     plans = twins(members, AIR)
     assert rises(members, plans) == pytest.approx([0.0, 4.0], abs=1e-9)
     assert [plan.load_ratio for plan in plans] == [1.0, 1.0]
@@ -540,7 +540,7 @@ def test_plans_hold_their_promises_for_any_group(members: list[Member]) -> None:
         if ALL_HOT in plan.flags:
             found_class = class_of(similar, SIMILAR)
             assert found_class is not None
-            assert found_class.urgency == 0
+            assert found_class.urgency <= 1  # asked about between twins, no repair
 
 
 @given(members_of_a_group, st.integers(0, 4), st.sampled_from([SATURATED, SIZE_LIMITED, NO_SOLUTION, REFLECTIVE]))
@@ -787,7 +787,8 @@ def test_a_part_that_is_mild_only_because_of_the_wind_is_not_cleared() -> None:
         ({"steady": 3599.0, "time_constant": 1200.0}, UNSTEADY, True),  # three time constants [S] are 3600 s
         ({"steady": 3600.0, "time_constant": 1200.0}, UNSTEADY, False),
         ({"steady": None, "time_constant": 1200.0}, UNSTEADY, False),  # nobody logged the load
-        ({"steady": 0.0, "time_constant": None}, UNSTEADY, False),
+        ({"steady": 0.0, "time_constant": None}, UNSTEADY, True),  # of a usual part, 20 minutes [house]
+        ({"steady": 3600.0, "time_constant": None}, UNSTEADY, False),
         ({"wind": 5.0}, WINDY, False),
         ({"wind": 5.01}, WINDY, True),
         ({"wind": 10.0}, CONDITIONS, False),

@@ -102,16 +102,16 @@ def test_what_does_not_change_with_the_pressure_is_no_air_leakage():
 @pytest.mark.parametrize(("cues", "pattern"), TYPICAL)
 def test_only_what_loses_heat_has_a_typical_pattern(cues, pattern):
     # Inside a heated house the colder ones lose heat, outside the warmer ones; in a cooled house the other way round.
+    # What is damp cools by evaporation on either face, and is never the warmer.
     for viewed_from, outward, loss, gain in (
         ("inside", True, "cold", "hot"),
         ("outside", True, "hot", "cold"),
         ("inside", False, "hot", "cold"),
         ("outside", False, "cold", "hot"),
     ):
-        assert said(cues, viewed_from=viewed_from, outward=outward, sense=loss).pattern == pattern
-        # What is damp cools by evaporation on either face.
-        expected = MOISTURE if pattern == MOISTURE and gain == "cold" else NO_PATTERN
-        assert said(cues, viewed_from=viewed_from, outward=outward, sense=gain).pattern == expected
+        for sense, usual in ((loss, pattern), (gain, NO_PATTERN)):
+            expected = usual if pattern != MOISTURE else MOISTURE if sense == "cold" else NO_PATTERN
+            assert said(cues, viewed_from=viewed_from, outward=outward, sense=sense).pattern == expected
 
 
 def test_a_warm_place_inside_a_heated_house_is_no_air_leakage_and_the_report_says_why():

@@ -482,6 +482,9 @@ def tasks() -> tuple[FrameTask, ...]:
     camera = Camera("wide", (7.5e-6, 13e-6), Signal("apparent-temperature"), ifov=1e-3, noise=0.05)
     scene = Scene((Quantity("emissivity", 0.92, 0.02, "survey"),))
     return tuple(
-        FrameTask(name, f"frames/{name}.tif", f"/secret/place/{name}.tif", "building", "envelope", camera, scene)
+        FrameTask(
+            *(name, f"frames/{name}.tif", f"/secret/place/{name}.tif", "building", "envelope", camera, scene),
+            viewed_from="inside",
+        )
         for name in ("F01", "F02", "F03", "S01")
     )

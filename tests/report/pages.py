@@ -30,7 +30,7 @@ class Page(HTMLParser):
         assert self.open.pop() == tag
 
     def handle_data(self, data: str) -> None:
-        if self.open and self.open[-1] != "style":
+        if self.open and self.open[-1] not in ("style", "script"):
             self.texts.append(data)
 
     @property

@@ -140,7 +140,9 @@ def test_every_new_number_of_an_envelope_has_its_columns_and_dicts_have_none() -
 
 def test_the_columns_are_those_of_the_specification() -> None:
     assert COLUMNS[:6] == ("frame", "id", "key", "kind", "name", "sense")
-    assert COLUMNS[-6:] == ("criterion", "class", "urgency", "verdict", "outcome", "flags")
+    judged = COLUMNS.index("criterion")
+    assert COLUMNS[judged : judged + 6] == ("criterion", "class", "urgency", "verdict", "outcome", "flags")
+    assert all(column.startswith("review") for column in COLUMNS[judged + 6 :])
     assert len(set(COLUMNS)) == len(COLUMNS)
 
 

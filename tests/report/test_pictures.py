@@ -13,7 +13,7 @@ from PIL import Image
 
 from irsurvey.model import FrameTask, Maps, Report
 from irsurvey.report import frame_files
-from irsurvey.report.pictures import THUMBNAIL_SIDE, Picture, around, photograph
+from irsurvey.report.pictures import THUMBNAIL_SIDE, Picture, around, photograph, small
 
 
 def opened(picture: Picture | None) -> Image.Image:
@@ -96,3 +96,15 @@ def test_a_photograph_with_transparency_or_a_palette_is_shown(tasks: tuple[Frame
         path = tmp_path / f"{mode}.png"
         Image.new(mode, (400, 200)).save(path)
         assert opened(photograph(of(tasks[0], path), 100)).size == (100, 50)
+
+
+def test_a_small_picture_is_the_whole_frame_without_its_scale(report: Report, wall_maps: Maps, tmp_path: Path) -> None:
+    wall = report.frames[0]
+    frame_files.write(wall, wall_maps, tmp_path)
+    image = opened(small(wall, 240, tmp_path))
+    assert image.size == (240, 180)  # 320 × 240 pixels, none beside them
+    pixels = np.asarray(image.convert("RGB")).astype(int)
+    assert pixels[90, 70, 0] > 150  # the wall: the warm end
+    assert pixels[70, 135, 0] < 60  # the middle of the coldest patch: the cold end
+    assert small(report.frames[2], 240, tmp_path) is None  # a frame that failed
+    assert small(report.frames[3], 240, tmp_path) is None  # one whose picture is gone

@@ -11,11 +11,12 @@ import numpy as np
 import pytest
 from report.pages import Page, section
 
-from irsurvey.model import ConditionCheck, Estimate, FrameReport, FrameTask, Indication, Maps, Report
+from irsurvey.model import ConditionCheck, Estimate, FrameReport, FrameTask, Indication, Input, Maps, Report
 from irsurvey.report import frame_files, season_table
 from irsurvey.report.condition_rows import rows
 from irsurvey.report.html import page
 from irsurvey.report.picture import NUMBERED
+from irsurvey.report.pressure import leak_sense
 
 Shown = Callable[[Report], str]
 
@@ -195,13 +196,15 @@ def test_a_strip_tells_its_numbers_its_warning_and_draws_its_profile(report: Rep
     assert "Linear thermal transmittance Ψ 0.112 ± 0.048 W/(m·K), an estimate" in text
     assert "Temperature factor, at the film resistance seen 0.708 ± 0.062" in text
     assert "ends still have a gradient: Where the wall should be undisturbed" in text
-    drawing = next(tag for tag in Page(html).all("svg"))
-    words = (drawing["aria-label"] or "").replace("\u00a0", " ")
-    assert words == "Temperature along the strip, 15.2 to 18.5 °C over 0.3 m; undisturbed wall 18.6 °C"
+    words = [(tag["aria-label"] or "").replace("\u00a0", " ") for tag in Page(html).all("svg")]
+    assert words[1] == "Temperature along the strip, 15.2 to 18.5 °C over 0.3 m; undisturbed wall 18.6 °C"
+
+
+AIRS = {"indoor_air_c": Input(20.5, 0.5, "log"), "outdoor_air_c": Input(1.0, 0.5, "log")}
 
 
 def test_an_accepted_pair_tells_what_changed_and_what_did_not(report: Report, show: Shown) -> None:
-    text = Page(show(report)).text
+    text = Page(show(with_wall(report, inputs=report.frames[0].inputs | AIRS))).text
     assert "the pressure inside was 50 Pa below that outside" in text
     assert "correlation 0.97 (1: alike)" in text
     assert (
@@ -209,10 +212,68 @@ def test_an_accepted_pair_tells_what_changed_and_what_did_not(report: Report, sh
         "turned by 0.41°" in text
     )
     assert "Smallest change that counts 0.35 K" in text
-    assert "consistent with air leakage; verify with smoke" in text
-    assert "a colder −1.62 ± 0.22 0.310 ± 0.040 F01-2" in text
-    assert "b colder – 21.0 ± 8.0 cm² none lies there" in text
+    assert "a colder −1.62 ± 0.22 0.310 ± 0.040 F01-2 consistent with air leakage; verify with smoke" in text
+    assert "b colder – 21.0 ± 8.0 cm² none lies there consistent with air leakage; verify with smoke" in text
     assert "Did not change: F01-1. That is consistent with the construction" in text
+
+
+def test_only_what_is_known_not_to_change_is_called_construction(report: Report, show: Shown) -> None:
+    wall = report.frames[0]
+    first = wall.findings[0]
+    assert first.indication
+    untold = {key: value for key, value in first.indication.evidence.items() if key != "changed_with_pressure"}
+    for indication in (None, replace(first.indication, evidence=untold)):
+        findings = (replace(first, indication=indication), wall.findings[1])
+        text = Page(show(with_wall(report, findings=findings))).text
+        assert "Cannot be told at this pressure: F01-1." in text
+        assert "Did not change" not in text
+
+
+@pytest.mark.parametrize(
+    ("pressure", "viewed_from", "indoor", "outdoor", "leak"),
+    [
+        # air flows from the higher pressure to the lower, and brings the temperature of where it comes from
+        (-50.0, "inside", 20.0, 1.0, "cold"),
+        (-50.0, "inside", 24.0, 33.0, "hot"),
+        (50.0, "outside", 20.0, 1.0, "hot"),
+        (50.0, "outside", 24.0, 33.0, "cold"),
+        (50.0, "inside", 20.0, 1.0, ""),
+        (-50.0, "outside", 20.0, 1.0, ""),
+        (-50.0, "inside", 20.0, 18.0, ""),
+        (-50.0, None, 20.0, 1.0, None),
+    ],
+)
+def test_a_leak_shows_by_the_air_that_comes_through_it(
+    report: Report,
+    tasks: tuple[FrameTask, ...],
+    pressure: float,
+    viewed_from: str | None,
+    indoor: float,
+    outdoor: float,
+    leak: str | None,
+) -> None:
+    wall = report.frames[0]
+    assert wall.pair
+    airs = {"indoor_air_c": Input(indoor, 0.5, "log"), "outdoor_air_c": Input(outdoor, 0.5, "log")}
+    at = replace(wall, pair=replace(wall.pair, pressure_pa=pressure), inputs=wall.inputs | airs)
+    assert leak_sense(at, replace(tasks[0], viewed_from=viewed_from)) == leak
+    assert leak_sense(wall, tasks[0]) is None  # the airs were not recorded
+
+
+def test_a_change_of_the_wrong_sense_is_not_called_leakage(report: Report, show: Shown) -> None:
+    wall = report.frames[0]
+    assert wall.pair
+    warmer = tuple(replace(change, sense="hot") for change in wall.pair.changes)
+    text = Page(show(with_wall(report, inputs=wall.inputs | AIRS, pair=replace(wall.pair, changes=warmer)))).text
+    assert "consistent with air leakage" not in text
+    assert text.count("not that of a leak, which would be colder at this pressure") == 2
+    outward = replace(wall.pair, pressure_pa=50.0)
+    text = Page(show(with_wall(report, inputs=wall.inputs | AIRS, pair=outward))).text
+    assert "consistent with air leakage" not in text
+    assert text.count("not that of a leak, which leaves no trace on this side at this pressure") == 2
+    text = Page(show(report)).text
+    assert "consistent with air leakage" not in text
+    assert text.count("not told: the side seen and the temperatures of both airs are not all known") == 2
 
 
 def test_a_pair_that_could_not_be_compared_concludes_nothing(report: Report, show: Shown) -> None:

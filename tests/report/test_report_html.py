@@ -74,7 +74,8 @@ def test_nothing_outside_the_file_is_asked_for(shown_page: Page) -> None:
         for name in ("src", "href", "srcset", "poster", "data", "action", "background"):
             value = attributes.get(name)
             assert value is None or value.startswith(("#", "data:image/png;base64,")), (tag, name, value)
-    assert not shown_page.all("script", "link", "iframe", "object", "embed", "base", "form")
+    assert not shown_page.all("link", "iframe", "object", "embed", "base", "form")
+    assert {script.get("src") for script in shown_page.all("script")} == {None}
 
 
 def test_the_style_asks_for_nothing_outside_either(report: Report, out: Path) -> None:
@@ -85,7 +86,8 @@ def test_the_style_asks_for_nothing_outside_either(report: Report, out: Path) ->
 
 def test_the_page_forbids_itself_every_request(shown_page: Page) -> None:
     policy = next(meta["content"] for meta in shown_page.all("meta") if "http-equiv" in meta)
-    assert policy == "default-src 'none'; img-src data:; style-src 'unsafe-inline'"
+    allowed = r"default-src 'none'; img-src data:; style-src 'unsafe-inline'; script-src( 'sha256-[\w+/]{43}='){2}"
+    assert re.fullmatch(allowed, policy)  # the page's own two scripts, by their hashes, and no other
 
 
 def test_every_frame_finding_and_component_has_its_place(report: Report, shown_page: Page) -> None:

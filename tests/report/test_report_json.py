@@ -53,6 +53,7 @@ def test_the_keys_are_those_of_the_records_without_trailing_underscore(report: R
     assert list(contents) == [
         *("format", "tool", "survey", "claim", "claim_reason", "conditions_review", "next_visit", "assets"),
         *("frames", "repairs", "populations", "seasons", "checklist", "cautions"),
+        *("reviews", "review_status"),
     ]
     assert contents["frames"][0]["inputs"]["emissivity"] == {
         "value": 0.92,

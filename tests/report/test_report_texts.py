@@ -189,5 +189,5 @@ def test_no_text_hides_a_flag_that_blocks_clearing() -> None:
         assert code in TEXTS["flags"]
 
 
-def test_the_documents_are_json_both_tables_and_html() -> None:
-    assert list(WRITERS) == ["json", "csv", "repairs", "html"]
+def test_the_documents_are_json_both_tables_html_and_the_mark_of_tables() -> None:
+    assert list(WRITERS) == ["json", "csv", "repairs", "html", "pdf", "csv-bom"]

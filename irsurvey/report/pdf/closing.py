@@ -1,0 +1,64 @@
+"""The last pages: whether the report is complete, what must be known of every such report, how its numbers read."""
+
+from __future__ import annotations
+
+from irsurvey import numbers
+from irsurvey.model import ChecklistItem
+from irsurvey.report import texts
+from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, bullets, heading, paragraph, text
+from irsurvey.report.pdf.layout import Entry, Layout, Piece
+from irsurvey.report.pdf.letters import MISSING
+from irsurvey.report.pdf.parts import chip, short
+from irsurvey.report.pdf.runs import Runs
+from irsurvey.report.pdf.story import Story
+from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.words import say
+
+
+def checklist(story: Story, layout: Layout) -> None:
+    """What a complete report states, and whether this one does."""
+    items = story.report.checklist
+    if not items:
+        return
+    missing = sum(1 for item in items if not item.present)
+    told = say("all_here", all=len(items))
+    if missing:
+        told = say("one_missing" if missing == 1 else "missing", count=missing, all=len(items))
+    rows: list[list[Runs]] = [
+        [
+            text(item.item, SMALL_STRONG),
+            text(texts.asked_by(item.asked_by), SMALL),
+            (chip(say("present"), "ok") if item.present else chip(say("is_missing"), "weak"),),
+            text(f"{'' if item.present or not item.where else say('to_be_stated')}{_where(item)}", SMALL),
+        ]
+        for item in items
+    ]
+    heads = [Head(say(key)) for key in ("item", "asked_by", "here", "where")]
+    layout.turn(say("checklist"))
+    layout.add(heading(say("checklist"), H2, entry=Entry(say("checklist"), 0), place="checklist"))
+    layout.add(paragraph(text(told)))
+    layout.add(table(heads, rows, caption=text(say("checklist_caption"), NOTE)))
+
+
+def cautions(story: Story, layout: Layout) -> None:
+    """The standing cautions, how the numbers are to be read, and what else was written."""
+    temperature, difference = (numbers.unit(key, style=story.style) for key in ("air_c", "delta_k"))
+    pieces: list[Piece] = [
+        *heading(say("cautions"), H2, gap=9, entry=Entry(say("cautions"), 0), place="cautions"),
+        *bullets((text(caution) for caution in story.cautions), gap=1.4),
+        *heading(say("how_numbers_read")),
+        *paragraph(text(say("numbers_how", temperature=temperature, difference=difference))),
+        *paragraph(text(say("substitute", box=MISSING), NOTE)),
+        *paragraph(text(say("beside_files", files=_files(story)), NOTE)),
+    ]
+    layout.go_on(say("cautions"), 120)
+    layout.add(pieces)
+
+
+def _where(item: ChecklistItem) -> str:
+    return short(item.where) or numbers.NOTHING
+
+
+def _files(story: Story) -> str:
+    repairs = say("repairs_file") if story.report.repairs else ""
+    return f"report.json, findings.csv{repairs}"

@@ -1,0 +1,197 @@
+"""Everything in one line each: conditions, anomalies, warm areas of a roof, components, groups of parts, assets."""
+
+from __future__ import annotations
+
+from irsurvey import numbers
+from irsurvey.model import ComponentReport, Finding
+from irsurvey.numbers import Style
+from irsurvey.report import condition_rows, results, texts
+from irsurvey.report.html import SUMMARY_LENGTH
+from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, text
+from irsurvey.report.pdf.layout import Entry, Layout, Piece
+from irsurvey.report.pdf.parts import (
+    asked_for,
+    chip,
+    class_of,
+    found,
+    frame_name,
+    head,
+    item_place,
+    joined,
+    outcome,
+    short,
+    title,
+    unbroken,
+)
+from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
+from irsurvey.report.pdf.story import Story
+from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.words import say
+
+_OF_FINDINGS = ("mean_delta_k", "delta_k", "extreme_c", "area_m2", "excess_heat_w")
+_OF_COMPONENTS = ("max_c", "delta_similar_k", "delta_ambient_k")
+_BRIEF = 12  # letters of a requirement that stays on one line
+_LEAST_ROOM = 60.0
+"""A section begins on a new page where less is left of the last one [mm]."""
+
+
+def overview(story: Story, layout: Layout) -> None:
+    """All these tables, as many as there is something to tell of."""
+    for place, name, pieces in (
+        ("conditions", say("conditions"), _conditions(story)),
+        ("anomalies", say("anomalies_all"), _anomalies(story)),
+        ("roof", say("roof"), _roof(story)),
+        ("components", say("components_all"), _components(story)),
+        ("populations", say("populations"), _populations(story)),
+        ("assets", say("assets"), _assets(story)),
+    ):
+        if not pieces:
+            continue
+        layout.go_on(name, _LEAST_ROOM)
+        layout.add([*heading(name, H2, gap=9, entry=Entry(name, 0), place=place), *pieces])
+
+
+def _conditions(story: Story) -> list[Piece]:
+    rows: list[list[Runs]] = []
+    for row in condition_rows.rows(story.report.conditions_review, style=story.style):
+        check = row.check
+        recorded = say("to_record", what=row.to_record) if row.to_record else row.recorded
+        rows.append(
+            [
+                text(check.check, SMALL_STRONG),
+                text(short(row.groups, 400) or numbers.NOTHING, SMALL),
+                text(unbroken(check.requirement) if len(check.requirement) < _BRIEF else check.requirement, SMALL),
+                text(recorded, SMALL),
+                (chip(check.verdict, "ok" if check.verdict == "met" else "weak"),),
+                text(row.leaves or numbers.NOTHING, SMALL),
+                text(check.source, Face(6.4, ink=NOTE.ink)),
+            ]
+        )
+    heads = [Head(say(key)) for key in ("condition", "groups", "required", "recorded", "verdict", "leaves", "source")]
+    return table(heads, rows, caption=text(say("conditions_caption"), NOTE)) if rows else []
+
+
+def _anomalies(story: Story) -> list[Piece]:
+    rows: list[list[Runs]] = []
+    for entry in story.findings:
+        item = entry.item
+        assert isinstance(item, Finding)
+        label = f", {short(entry.frame.label)}" if entry.frame.label else ""
+        rows.append(
+            [
+                (title(entry, SMALL), Run(f" {texts.sense(item.sense)}{label}", NOTE)),
+                *(text(results.reading(item, key, unit=False, style=story.style), SMALL) for key in _OF_FINDINGS),
+                text(class_of(item), SMALL),
+                (outcome(item), Run(": ", SMALL), *asked_for(item)),
+            ]
+        )
+    heads = [
+        Head(say("anomaly_head")),
+        *(Head(head(key, say(key), story.style), at_right=True) for key in _OF_FINDINGS),
+        *(Head(say(key)) for key in ("class", "outcome")),
+    ]
+    return table(heads, rows, caption=text(say("anomalies_caption"), NOTE)) if rows else []
+
+
+def _roof(story: Story) -> list[Piece]:
+    areas = story.warm_areas
+    rows: list[list[Runs]] = []
+    for entry in areas:
+        item = entry.item
+        verify = item.indication.verify_by if item.indication else ""
+        rows.append(
+            [
+                (title(entry, SMALL),),
+                text(short(entry.frame.label) or numbers.NOTHING, SMALL),
+                text(results.reading(item, "area_m2", unit=False, style=story.style), SMALL),
+                text(results.reading(item, "mean_delta_k", unit=False, style=story.style), SMALL),
+                (chip(say("needs_verification"), "weak"), Run(say("by", how=short(verify)) if verify else "", SMALL)),
+            ]
+        )
+    heads = [
+        *(Head(say(key)) for key in ("warm_area", "where")),
+        *(Head(head(key, say(key), story.style), at_right=True) for key in ("area_m2", "mean_delta_k")),
+        Head(say("status")),
+    ]
+    caption = text(say("roof_caption", count=len(areas)), NOTE)
+    return [*paragraph(text(say("roof_how"))), *table(heads, rows, caption=caption)] if rows else []
+
+
+def _components(story: Story) -> list[Piece]:
+    rows: list[list[Runs]] = []
+    for entry in story.components:
+        item = entry.item
+        assert isinstance(item, ComponentReport)
+        label = f", {short(entry.frame.label)}" if entry.frame.label else ""
+        rows.append(
+            [
+                (title(entry, SMALL), *found(item)),
+                (frame_name(entry.frame, SMALL), Run(label, SMALL)),
+                *(text(results.reading(item, key, unit=False, style=story.style), SMALL) for key in _OF_COMPONENTS),
+                text(class_of(item), SMALL),
+                (outcome(item), Run(": ", SMALL), *asked_for(item)),
+            ]
+        )
+    heads = [
+        *(Head(say(key)) for key in ("component_head", "where")),
+        *(Head(head(key, say(key), story.style), at_right=True) for key in _OF_COMPONENTS),
+        *(Head(say(key)) for key in ("class", "outcome")),
+    ]
+    return table(heads, rows, caption=text(say("components_caption"), NOTE)) if rows else []
+
+
+def _populations(story: Story) -> list[Piece]:
+    named = story.named
+    rows: list[list[Runs]] = []
+    for group in story.report.populations:
+        names = []
+        for key in group.exceeding[:SUMMARY_LENGTH]:
+            entry = named.get(key)
+            words = f"{entry.frame.id} {entry.item.name}" if entry and isinstance(entry.item, ComponentReport) else key
+            names.append(Run(short(words), Face(SMALL.size, ink=DEEP), link=item_place(entry) if entry else ""))
+        more = len(group.exceeding) - SUMMARY_LENGTH
+        rest = say("and_more", count=more) if more > 0 else ""
+        rows.append(
+            [
+                text(short(group.group) or numbers.NOTHING, SMALL_STRONG),
+                text(str(group.count), SMALL),
+                text(_alarm(group.alarm_k, story.style), SMALL),
+                text(texts.usual(group.how), SMALL),
+                (*joined(names, SMALL), Run(rest, SMALL)) if names else text(say("none"), SMALL),
+            ]
+        )
+    heads = [
+        Head(say("group")),
+        Head(say("parts"), at_right=True),
+        Head(head("alarm_k", say("stands_out_above"), story.style), at_right=True),
+        Head(say("usual_by")),
+        Head(say("stand_out")),
+    ]
+    caption = text(say("populations_caption"), NOTE)
+    return [*paragraph(text(texts.repairs("population"))), *table(heads, rows, caption=caption)] if rows else []
+
+
+def _alarm(alarm_k: float, style: Style) -> str:
+    return numbers.number(numbers.converted(alarm_k, "alarm_k", style=style), 3, style=style)
+
+
+def _assets(story: Story) -> list[Piece]:
+    frames = {frame.id: frame for frame in story.report.frames}
+    rows: list[list[Runs]] = []
+    for asset in story.report.assets:
+        if asset.inspected:
+            names = [frame_name(frames[id_], SMALL) if id_ in frames else Run(id_, SMALL) for id_ in asset.frames]
+            seen: Runs = tuple(joined(names, SMALL)) or text(say("yes"), SMALL)
+        else:
+            seen = (chip(say("not_inspected"), "weak"), Run(f" {asset.reason or say('no_reason')}", SMALL))
+        rows.append(
+            [
+                text(short(asset.id), SMALL_STRONG),
+                text(asset.description or numbers.NOTHING, SMALL),
+                text(asset.location or numbers.NOTHING, SMALL),
+                text(numbers.NOTHING if asset.criticality is None else str(asset.criticality), SMALL),
+                seen,
+            ]
+        )
+    heads = [Head(say(key)) for key in ("asset_head", "description", "location", "criticality", "inspected")]
+    return table(heads, rows, caption=text(say("assets_caption"), NOTE)) if rows else []

@@ -1,0 +1,239 @@
+"""Small pieces that several parts of the paper share: chips, marks, names that lead somewhere, a result in a line."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from irsurvey import numbers
+from irsurvey.model import ComponentReport, Finding, FrameReport, Indication
+from irsurvey.numbers import Style
+from irsurvey.report import facts, results, texts
+from irsurvey.report.labels import component_mark
+from irsurvey.report.pdf.blocks import BODY, NOTE, SMALL, emphasis, paragraph, text
+from irsurvey.report.pdf.layout import BREADTH, Piece
+from irsurvey.report.pdf.runs import DEEP, INK, PAPER, Box, Face, Run, Runs
+from irsurvey.report.pdf.words import say
+from irsurvey.report.ranking import Ranked, governing
+from irsurvey.report.sentences import in_style
+
+Item = Finding | ComponentReport
+
+LONG = 140
+"""Letters of a free text that summary and tables show; the sheet of its frame has it all."""
+
+_WHITE, _UMBER = (255, 255, 255), (85, 70, 29)
+_CHIPS = {
+    "": (Box(), INK),
+    "ok": (Box((232, 238, 246), (140, 165, 198)), INK),
+    "weak": (Box(PAPER, (107, 90, 46), dashed=True), _UMBER),
+    "ux": (Box(PAPER, (107, 90, 46), dashed=True), _UMBER),
+    "u0": (Box(), INK),
+    "u1": (Box((247, 239, 216), (201, 173, 98)), INK),
+    "u2": (Box((236, 210, 138), (169, 130, 34)), INK),
+    "u3": (Box((138, 75, 0), (138, 75, 0)), _WHITE),
+    "u4": (Box((58, 28, 0), (58, 28, 0)), _WHITE),
+}
+"""How a chip is set → its box and the colour of its words."""
+_CHIP_SIZE = 6.8
+_MARK = Box(PAPER, (18, 24, 33), square=True)
+_DARK_MARK = Box((18, 24, 33), (18, 24, 33), square=True)
+
+
+def chip(words: str, kind: str = "") -> Run:
+    """Words in a box."""
+    box, ink = _CHIPS[kind]
+    return Run(words, Face(_CHIP_SIZE, "B" if kind == "u4" else "", ink), box=box)
+
+
+def urgency(level: int | None) -> Run:
+    """What an urgency asks for."""
+    return chip(texts.urgency(level), "ux" if level is None else f"u{level}")
+
+
+def asks(level: int | None, outcome: str) -> Run:
+    """What a result asks for."""
+    words = texts.to_do(level, outcome)
+    return urgency(level) if words == texts.urgency(level) else chip(words, "weak")
+
+
+def to_do(item: Item) -> Run:
+    """What a finding or component asks for."""
+    return asks(item.urgency, item.outcome)
+
+
+def claim(kind: str) -> Run:
+    """What may be claimed."""
+    return chip(kind, {"not valid": "weak", "quantitative": "ok"}.get(kind, ""))
+
+
+def asked_for(item: Item) -> Runs:
+    """The same in a narrow column: its colour, and words that may be broken."""
+    one = to_do(item)
+    return Run("\u00a0", Face(4), box=one.box), Run(one.text, Face(7.2, one.face.style))
+
+
+def mark(item: Item, place: int) -> Run:
+    """The number or letter that a finding or component has on the picture."""
+    is_component = isinstance(item, ComponentReport)
+    words = component_mark(place) if is_component else str(place)
+    return Run(words, Face(_CHIP_SIZE, "", _WHITE if is_component else INK), box=_DARK_MARK if is_component else _MARK)
+
+
+def dark_mark(words: str) -> Run:
+    """The letter of a strip on the picture."""
+    return Run(words, Face(_CHIP_SIZE, "", _WHITE), box=_DARK_MARK)
+
+
+def light_mark(words: str) -> Run:
+    """The letter of a change on its picture."""
+    return Run(words, Face(_CHIP_SIZE), box=_MARK)
+
+
+def outcome(item: Item, face: Face = SMALL) -> Run:
+    """Its outcome, and whether one plausible change would make it another."""
+    words = f"{item.outcome}{say('fragile') if item.flips else ''}"
+    return Run(words, Face(face.size, "B" if item.outcome == "act" else "", face.ink))
+
+
+def found(item: ComponentReport) -> Runs:
+    """Says of a component that nobody drew it."""
+    return (Run(" "), chip(say("found"), "weak")) if item.is_found else ()
+
+
+def frame_place(frame: str) -> str:
+    """The name of the place where the sheet of a frame begins."""
+    return f"frame {frame}"
+
+
+def item_place(entry: Ranked) -> str:
+    """The name of the place where a finding or component is told of."""
+    if isinstance(entry.item, Finding):
+        return finding_place(entry.item.id)
+    return f"component {entry.frame.id} {entry.place}"
+
+
+def finding_place(id_: str) -> str:
+    """The name of the place where a finding is told of."""
+    return f"finding {id_}"
+
+
+def title(entry: Ranked, face: Face = BODY) -> Run:
+    """The name of a finding or component, which leads to it."""
+    name = entry.item.name if isinstance(entry.item, ComponentReport) else entry.item.id
+    return Run(short(name), Face(face.size, "B", DEEP), link=item_place(entry))
+
+
+def frame_name(frame: FrameReport, face: Face = BODY) -> Run:
+    """The id of a frame, which leads to its sheet."""
+    return Run(frame.id, Face(face.size, face.style, DEEP), link=frame_place(frame.id))
+
+
+def class_of(item: Item) -> str:
+    """Its class by the criterion that governs."""
+    assessment = governing(item.assessments)
+    return assessment.class_ if assessment and assessment.class_ else say("no_class")
+
+
+def headline(entry: Ranked, style: Style) -> str:
+    """One finding or component in a sentence."""
+    item = entry.item
+    told = []
+    if isinstance(item, ComponentReport):
+        told.append(results.reading(item, "max_c", style=style))
+        if item.similar_to and item.similar_to != item.name and item.delta_similar_k:
+            told.append(
+                say("above", delta=results.reading(item, "delta_similar_k", style=style), what=short(item.similar_to))
+            )
+        if item.delta_ambient_k:
+            told.append(f"{results.reading(item, 'delta_ambient_k', style=style)} {texts.basis('ambient')}")
+        if item.delta_neighbours_k:
+            told.append(
+                say("above", delta=results.reading(item, "delta_neighbours_k", style=style), what=say("its_neighbours"))
+            )
+    else:
+        told.append(say("than_reference", sense=texts.sense(item.sense)))
+        if item.delta_k or item.mean_delta_k:
+            delta = results.reading(item, "mean_delta_k" if item.mean_delta_k else "delta_k", style=style)
+            over = say("over_area", area=results.reading(item, "area_m2", style=style)) if item.area_m2 else ""
+            told.append(f"ΔT {delta}{over}")
+        elif item.extreme_c:
+            told.append(results.reading(item, "extreme_c", style=style))
+    return ", ".join(told)
+
+
+def meaning(item: Finding, cost: str, style: Style) -> str:
+    """What a finding is consistent with, and what it takes, in a line."""
+    told = [short(texts.pattern(item.indication.pattern), 90)] if item.indication else []
+    if item.excess_heat_w:
+        told.append(say("excess_heat", heat=results.reading(item, "excess_heat_w", style=style)))
+    if cost:
+        told.append(say("estimate_of", what=cost))
+    return upper_first("; ".join(told))
+
+
+def indication(one: Indication, style: Style) -> list[Piece]:
+    """What the pattern of a finding is consistent with, and the cues it was read from."""
+    statement = one.statement or upper_first(texts.pattern(one.pattern))
+    verify = say("verify_by", how=one.verify_by) if one.verify_by and one.verify_by not in one.statement else ""
+    told: Runs = (
+        emphasis(say("indication")),
+        Run(f" {statement}{verify} "),
+        Run(say("no_proof"), NOTE),
+    )
+    cues = facts.cues(one.evidence, style=style)
+    read: list[Run] = [Run(say("read_from"), NOTE)]
+    for number, cue in enumerate(cues):
+        end = "; " if number < len(cues) - 1 else "."
+        read += [Run(f"{cue.name} ", NOTE), emphasis(cue.text, NOTE.size), Run(end, NOTE)]
+    return [*paragraph(told), *(paragraph(tuple(read), gap=0.4) if cues else ())]
+
+
+def flags(codes: Sequence[str], style: Style) -> list[Piece]:
+    """Flags and what they mean."""
+    pieces = []
+    for code in codes:
+        meaning_ = in_style(texts.flag(code), style)
+        told: Runs = (emphasis(code, 7.6), Run(f": {meaning_}" if meaning_ != code else "", Face(7.6)))
+        pieces += paragraph(told, gap=0.8)
+    return pieces
+
+
+def cell(item: Item, key: str, style: Style) -> Runs:
+    """One number of a finding or component in a table, with its 95 % interval where one was drawn."""
+    drawn = results.interval(item, key, style=style)
+    beside = (Run(f" {drawn}", Face(6.2, ink=NOTE.ink)),) if drawn else ()
+    return (Run(results.reading(item, key, unit=False, style=style), SMALL), *beside)
+
+
+def head(key: str, label: str, style: Style) -> str:
+    """The heading of a column of numbers, with their unit."""
+    unit = numbers.unit(key, style=style)
+    return f"{label}, {unit}" if unit else label
+
+
+def joined(names: Sequence[Run], face: Face = BODY) -> list[Run]:
+    """Names with commas between them."""
+    runs: list[Run] = []
+    for number, name in enumerate(names):
+        runs += [name, *([Run(", ", face)] if number < len(names) - 1 else [])]
+    return runs
+
+
+def short(words: str, length: int = LONG) -> str:
+    """A text cut to so many letters."""
+    return words if len(words) <= length else f"{words[: length - 1].rstrip()}…"
+
+
+def unbroken(words: str) -> str:
+    """A few words that stay on one line."""
+    return words.replace(" ", "\u00a0")
+
+
+def upper_first(words: str) -> str:
+    """A text that begins with a capital."""
+    return words[:1].upper() + words[1:]
+
+
+def quiet(words: str) -> list[Piece]:
+    """A paragraph of small print."""
+    return paragraph(text(words, NOTE), width=BREADTH)

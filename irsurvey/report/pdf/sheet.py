@@ -1,0 +1,323 @@
+"""The sheet of one frame: claim, then evidence, then how sure."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from itertools import zip_longest
+
+from irsurvey import numbers
+from irsurvey.model import ComponentReport, Estimate, Finding, FrameReport, FrameTask, Input
+from irsurvey.numbers import Style
+from irsurvey.report import facts, pictures, results, texts
+from irsurvey.report.facts import Fact
+from irsurvey.report.pdf import envelope
+from irsurvey.report.pdf.blocks import (
+    H2,
+    NOTE,
+    SMALL,
+    Column,
+    beside,
+    heading,
+    labelled,
+    paragraph,
+    picture,
+    space,
+    text,
+)
+from irsurvey.report.pdf.blocks import facts as in_columns
+from irsurvey.report.pdf.images import image
+from irsurvey.report.pdf.layout import BREADTH, Entry, Layout, Piece
+from irsurvey.report.pdf.parts import (
+    cell,
+    chip,
+    claim,
+    flags,
+    found,
+    frame_place,
+    head,
+    mark,
+    outcome,
+    quiet,
+    short,
+    unbroken,
+)
+from irsurvey.report.pdf.result import result
+from irsurvey.report.pdf.runs import DEEP, GAP, QUIET, Face, Run, Runs
+from irsurvey.report.pdf.story import Story
+from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.words import say
+from irsurvey.report.picture import NUMBERED
+from irsurvey.report.ranking import Ranked, foremost
+from irsurvey.report.sentences import in_style
+from irsurvey.report.style import day, moment
+
+_OF_FINDINGS = (
+    *("mean_delta_k", "delta_k", "mean_c", "extreme_c", "area_m2"),
+    *("heat_flux_w_m2", "reference_heat_flux_w_m2", "excess_heat_w"),
+)
+_OF_COMPONENTS = ("max_c", "mean_c", "delta_similar_k", "delta_ambient_k")
+_PICTURE = 108.0  # mm, width of the thermal picture
+_HIGHEST = 118.0  # mm, of a picture
+_GUTTER = 6.0
+_MANY_INPUTS = 8  # from here two of them share a row
+
+
+def sheet(frame: FrameReport, story: Story, layout: Layout, above: Sequence[Piece] = ()) -> None:
+    """All of one frame, from the top of a page; of one that could not be read, a few lines.  `above` stands first."""
+    name = f"{frame.id}{GAP}{short(frame.label)}".strip()
+    is_failed = frame.status == "failed"
+    if not is_failed or above or layout.room < 40:
+        layout.turn(name)
+    layout.add(above)
+    task = story.tasks.get(frame.id)
+    title: Runs = (Run(f"{frame.id}{GAP}", Face(H2.size, "B", QUIET)), Run(frame.label, H2))
+    entry = Entry(f"{frame.id}{GAP}{short(frame.label)}".rstrip(), 1)
+    layout.add(heading(title, H2, gap=8, place=frame_place(frame.id), entry=entry))
+    layout.add(paragraph(text(_where(frame, task, story.style), NOTE), gap=0.6, keep=True))
+    if is_failed:
+        layout.add(paragraph((chip(say("not_readable"), "weak"), Run(f" {frame.reason}"))))
+        layout.add(paragraph(text(say("not_analysed_clears_nothing"))))
+    else:
+        for pieces in _analysed(frame, task, story):
+            layout.add(pieces)
+    if frame.notes:
+        layout.add([*heading(say("notes")), *paragraph(text(frame.notes))])
+
+
+def _analysed(frame: FrameReport, task: FrameTask | None, story: Story) -> list[list[Piece]]:
+    why = f" {say('why', reason=in_style(frame.claim_reason, story.style))}" if frame.claim_reason else ""
+    shown = foremost(frame, NUMBERED)
+    entries = [Ranked(frame, finding, finding.label) for finding in shown]
+    entries += [Ranked(frame, component, place) for place, component in enumerate(frame.components, 1)]
+    return [
+        paragraph((claim(frame.claim), Run(f" {texts.claim(frame.claim)}{why}"))),
+        paragraph(text(bound(frame, story.style))),
+        [space(2.2), *_evidence(frame, task, story, len(shown))],
+        _findings(frame, shown, story.style),
+        _components(frame, story.style),
+        heading(say("assessment")) if entries else [],
+        *(result(entry, story) for entry in entries),
+        envelope.moisture(frame, story.style),
+        envelope.strips(frame, story.style),
+        envelope.pair(frame, story),
+        _how_sure(frame, task, story.style),
+        [*heading(say("to_know")), *flags(frame.flags, story.style)] if frame.flags else [],
+    ]
+
+
+def bound(frame: FrameReport, style: Style) -> str:
+    """What the frame would have shown, so that nothing is taken for cleared which it could not."""
+    d = frame.detectable
+    if d and d.min_delta_k:
+        area = say("pixels", count=d.min_pixels)
+        if d.min_area_m2:
+            area = f"{numbers.least_area(d.min_area_m2, style=style)} ({area})"
+        end = "." if frame.findings or frame.components else say("none_found")
+        told = [
+            say("would_have_shown", delta=numbers.least(d.min_delta_k, "min_delta_k", style=style), area=area, end=end)
+        ]
+    else:
+        told = [say("not_known_what")]
+    if _lost(frame):
+        told.append(say("where_measured"))
+    if frame.claim == "not valid":
+        told.append(say("clears_nothing"))
+    return " ".join(told)
+
+
+def _lost(frame: FrameReport) -> int:
+    return frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels if frame.temperature else 0
+
+
+def _where(frame: FrameReport, task: FrameTask | None, style: Style) -> str:
+    parts = [
+        moment(frame.taken, style=style) if frame.taken else "",
+        frame.group or "",
+        say("element", name=frame.element) if frame.element else "",
+        say("faces", side=task.orientation) if task and task.orientation else "",
+        say("asset", name=frame.asset) if frame.asset else "",
+        frame.source.file,
+    ]
+    return " · ".join(part for part in parts if part)
+
+
+def _evidence(frame: FrameReport, task: FrameTask | None, story: Story, shown: int) -> list[Piece]:
+    """The picture with its caption; beside it what it shows, and the photograph or what its reference tells."""
+    thermal = image(pictures.stored(frame, story.out, "annotated.png"))
+    photo = image(pictures.photograph(task, pictures.PHOTOGRAPH_SIDE)) if task else None
+    if thermal:
+        size = thermal.size(_PICTURE, _HIGHEST)
+        left = [picture(thermal.data, size)]
+    else:
+        left = paragraph(text(say("picture_missing")), width=_PICTURE)
+    left += paragraph(text(_caption(frame, shown, story.style), NOTE), width=_PICTURE, gap=0)
+    x, width = _PICTURE + _GUTTER, BREADTH - _PICTURE - _GUTTER
+    right = [
+        *paragraph(text(say("what_it_shows"), Face(9.4, "B", DEEP)), x=x, width=width, gap=0),
+        *labelled(_shown(frame, story.style), x=x, width=width),
+    ]
+    told = facts.of_reference(frame.reference, style=story.style) if frame.reference else ()
+    below: list[Piece] = []
+    if photo:
+        right += [picture(photo.data, photo.size(width, 60), x=x, gap=3)]
+        below = [*heading(say("reference_tells")), *in_columns(told)] if told else []
+    elif told:
+        named = paragraph(text(say("reference_tells"), Face(9.4, "B", DEEP)), x=x, width=width, gap=4)
+        right += [*named, *in_columns(told, columns=1, x=x, width=width)]
+    return [*beside([Column(0, left), Column(0, right)]), *below]
+
+
+def _caption(frame: FrameReport, shown: int, style: Style) -> str:
+    told = [say("picture_caption", unit=numbers.unit("min_c", style=style))]
+    if frame.findings:
+        rest = say("foremost", shown=shown, all=len(frame.findings)) if shown < len(frame.findings) else ""
+        told.append(say("numbers_are", rest=rest))
+    told += [say("letters_are")] if frame.components else []
+    told += [say("lines_are")] if frame.strips else []
+    told += [say("dashed_is")] if frame.reference else []
+    told += [say("hatched_is")] if _lost(frame) else []
+    return " ".join(told)
+
+
+def _shown(frame: FrameReport, style: Style) -> list[tuple[str, Runs]]:
+    told = []
+    if t := frame.temperature:
+        low, high, median = (_degrees(value, style) for value in (t.min_c, t.max_c, t.median_c))
+        unit = numbers.unit("min_c", style=style)
+        told.append((say("whole_frame"), say("range", low=low, high=high, median=median, unit=unit)))
+        if _lost(frame):
+            lost = say("lost", unmeasurable=t.unmeasurable_pixels, saturated=t.saturated_pixels)
+            told.append((say("left_out"), lost))
+    if r := frame.reference:
+        bare = numbers.with_unit(_degrees(r.median_c, style), "median_c", style=style)
+        value = numbers.measured(Estimate(r.median_c, r.u_c), "median_c", style=style) if r.u_c else bare
+        how = say("drawn" if r.how == "polygon" else "suggested")
+        spread, gradient = (_difference(one, style) for one in (r.spread_k, r.gradient_k))
+        reference = say("reference_is", value=value, how=how, pixels=r.pixels, spread=spread)
+        told.append((say("reference"), f"{reference}{say('gradient', gradient=gradient) if r.gradient_k else ''}"))
+    if (d := frame.detectable) and d.noise_k is not None:
+        more = say("corners", more=_difference(d.shading_allowance_k, style)) if d.shading_allowance_k else ""
+        told.append((say("noise"), f"{_difference(d.noise_k, style)}{more}"))
+    return [(name, text(words, Face(7.6))) for name, words in told]
+
+
+def _degrees(value: float | None, style: Style) -> str:
+    """A temperature to a tenth of a degree, without its unit."""
+    shown = None if value is None else numbers.converted(value, "min_c", style=style)
+    return numbers.decimals(shown, 1, style=style)
+
+
+def _difference(value: float | None, style: Style) -> str:
+    return numbers.told(value, "delta_k", 2, style=style)
+
+
+def _findings(frame: FrameReport, shown: tuple[Finding, ...], style: Style) -> list[Piece]:
+    if not frame.findings:
+        return []
+    heads = [Head(say("anomaly_head")), *(Head(head(key, say(key), style), at_right=True) for key in _OF_FINDINGS)]
+    rows: list[list[Runs]] = [
+        [
+            (mark(item, item.label), Run(f" {texts.sense(item.sense)}", SMALL)),
+            *(cell(item, key, style) for key in _OF_FINDINGS),
+        ]
+        for item in shown
+    ]
+    more = len(frame.findings) - len(shown)
+    return [
+        *heading(say("anomalies_here")),
+        *table(heads, rows, caption=text(say("anomalies_here_caption"), NOTE)),
+        *(quiet(say("more_less_important", count=more)) if more else ()),
+    ]
+
+
+def _components(frame: FrameReport, style: Style) -> list[Piece]:
+    if not frame.components:
+        return []
+    heads = [
+        *(Head(say(key)) for key in ("component_head", "group_phase")),
+        Head(head("load_a", say("load_a"), style), at_right=True),
+        *(Head(head(key, say(key), style), at_right=True) for key in _OF_COMPONENTS),
+        Head(head("delta_similar_k", say("at_rated_over_similar"), style), at_right=True),
+        Head(say("outcome")),
+    ]
+    return [
+        *heading(say("components_here")),
+        *table(
+            heads,
+            [_component(item, place, style) for place, item in enumerate(frame.components, 1)],
+            caption=text(say("components_here_caption"), NOTE),
+        ),
+    ]
+
+
+def _component(item: ComponentReport, place: int, style: Style) -> list[Runs]:
+    group = f"{item.group or numbers.NOTHING}{f', {item.phase}' if item.phase else ''}"
+    load = say("not_recorded")
+    if item.load_a is not None:
+        rated = "" if item.rated_a is None else say("of", rated=numbers.number(item.rated_a, style=style))
+        load = f"{numbers.number(item.load_a, style=style)}{rated}"
+    return [
+        (mark(item, place), Run(f" {item.name}", SMALL), *found(item)),
+        text(group, SMALL),
+        text(load, SMALL),
+        *(cell(item, key, style) for key in _OF_COMPONENTS),
+        text(results.rated(item, style=style) or numbers.NOTHING, SMALL),
+        (outcome(item),),
+    ]
+
+
+def _how_sure(frame: FrameReport, task: FrameTask | None, style: Style) -> list[Piece]:
+    pieces = heading(say("how_sure_head"))
+    rows = [_input(key, entry, style) for key, entry in frame.inputs.items()]
+    heads = [Head(say("input")), Head(say("value"), at_right=True), Head(say("origin"))]
+    if rows:
+        pieces += paragraph(text(say("inputs_caption"), NOTE), keep=True)
+    if len(rows) > _MANY_INPUTS:
+        half = (len(rows) + 1) // 2
+        empty: list[Runs] = [(), (), ()]
+        pairs = zip_longest(rows[:half], rows[half:], fillvalue=empty)
+        pieces += table([*heads, *heads], [[*left, *right] for left, right in pairs], dense=True)
+    elif rows:
+        pieces += table(heads, rows, dense=True)
+    told = in_columns(_known(frame, task, style))
+    return [*pieces, *([space(1.5), *told] if told else [])] if rows or told else []
+
+
+def _input(key: str, entry: Input, style: Style) -> list[Runs]:
+    """An input, and where its value comes from and, where that is less or better founded, its uncertainty."""
+    face = Face(6.8)
+    of_value, of_u = texts.origin(entry.from_), texts.founded(entry.u_from)
+    assumed = of_value.startswith("assumed")
+    origin = Run(unbroken(of_value), Face(6.8, "B" if assumed else "", (85, 70, 29) if assumed else face.ink))
+    beside_it = f", {unbroken(f'± {of_u}')}" if entry.u > 0 and of_u != texts.founded(entry.from_) else ""
+    return [
+        text(texts.name(key), face),
+        text(numbers.with_unit(numbers.stated(entry, key, style=style), key, style=style), face),
+        (origin, Run(beside_it, Face(6.8, ink=QUIET))),
+    ]
+
+
+def _known(frame: FrameReport, task: FrameTask | None, style: Style) -> list[Fact]:
+    told = []
+    if frame.uncertainty:
+        draws = say("draws", count=numbers.grouped(frame.draws)) if frame.draws else ""
+        told.append(Fact(say("uncertainty"), f"{texts.uncertainty(frame.uncertainty)}{draws}"))
+    if frame.atmosphere_transmittance is not None:
+        told.append(
+            Fact(say("air_path"), say("transmittance", tau=numbers.number(frame.atmosphere_transmittance, style=style)))
+        )
+    told += [Fact(texts.name(key), numbers.told(value, key, 3, style=style)) for key, value in frame.humid_air.items()]
+    if task:
+        camera = task.camera
+        low, high = (numbers.number(edge * 1e6, style=style) for edge in camera.band)
+        ifov = say("ifov", mrad=numbers.number(camera.ifov * 1e3, style=style)) if camera.ifov else ""
+        accuracy = say(
+            "accuracy",
+            k=numbers.told(camera.accuracy, "accuracy_k", style=style),
+            percent=numbers.number(camera.accuracy_fraction * 100, style=style),
+        )
+        calibrated = say("calibrated", on=day(camera.calibrated_on, style=style)) if camera.calibrated_on else ""
+        told.append(
+            Fact(say("camera"), f"{camera.name}: {say('band', low=low, high=high)}{ifov}{accuracy}{calibrated}")
+        )
+    return told
