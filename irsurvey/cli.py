@@ -229,7 +229,8 @@ def apply_review(out: Path, decisions: Path) -> int:
 
 @main.command()
 def materials() -> int:
-    """List the built-in emissivities with their sources."""
+    """List the built-in emissivities, and the building materials of layers, with their sources."""
+    from irsurvey.heat.building_materials import building_materials
     from irsurvey.radiometry.emissivity import materials as built_in
 
     rows = (
@@ -237,14 +238,25 @@ def materials() -> int:
         for entry in built_in().values()
     )
     _print_table(("material", "emissivity ± u", "note", "source"), rows)
+    layers = (
+        (name, f"{one.conductivity:g}", f"{one.density:g}", f"{one.specific_heat:g}", f"{one.source} ({one.mark})")
+        for name, one in building_materials().items()
+    )
+    _print_table(("layer of an element", "W/(m·K)", "kg/m³", "J/(kg·K)", "source"), layers)
     return ALL_DONE
 
 
 @main.command()
 @click.argument("survey", required=False, type=click.Path(path_type=Path))
 def criteria(survey: Path | None) -> int:
-    """List the built-in criteria with their classes, urgencies and sources, and those of SURVEY's own."""
+    """List criteria, limits and standards.
+
+    Criteria with their classes, urgencies and sources, those of SURVEY's own too; absolute limits of parts; the
+    standards whose requirements on the conditions may count."""
+    from irsurvey.assess.conditions import requirement_sets
     from irsurvey.assess.criteria import criteria as known
+    from irsurvey.assess.limits import limits
+    from irsurvey.constants import ZERO_CELSIUS
     from irsurvey.run import load_survey, own_criteria
 
     own = own_criteria(load_survey(_survey_file(survey))) if survey is not None else ()
@@ -253,6 +265,18 @@ def criteria(survey: Path | None) -> int:
         for name, entry in known(own).items()
     )
     _print_table(("criterion", "judges", "class: interval, urgency", "source"), rows)
+    parts = (
+        (
+            name,
+            f"{one.t_max - ZERO_CELSIUS:.0f} °C",
+            "" if one.rise is None else f"{one.rise:g} K",
+            f"{one.source} ({one.mark})",
+        )
+        for name, one in limits().items()
+    )
+    _print_table(("limit of a part", "at most", "rise at rated load", "source"), parts)
+    standards = ((one.name, one.kind, ", ".join(one.methods)) for one in requirement_sets())
+    _print_table(("standard", "kind", "methods"), standards)
     return ALL_DONE
 
 

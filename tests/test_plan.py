@@ -13,7 +13,7 @@ from scipy.stats import norm
 
 from irsurvey import pipeline
 from irsurvey.heat.humid_air import vapour_density
-from irsurvey.model import Component, Detection, FrameTask, KnownLength, Quantity, Signal, Surface, Survey
+from irsurvey.model import Component, Detection, FrameTask, KnownLength, Quantity, Signal, Strip, Surface, Survey
 from irsurvey.plan import Prospect, plan
 from irsurvey.plan.gains import gains
 from irsurvey.plan.picture import CORNER, MIDDLE, TARGET, imagined, ready
@@ -106,6 +106,12 @@ RELATIVE_ERROR = {
     0.5: {10: 77, 15: 51, 20: 38, 30: 26},
     1.5: {10: 26, 15: 17, 20: 13, 30: 9},
 }
+
+
+def test_what_is_drawn_on_frames_to_come_does_not_matter_before_they_are_taken() -> None:
+    # A strip below the last row of the picture that is imagined, as in a frame of twice its size.
+    drawn = replace(wall({"accuracy": 0.5}, 20), strips=(Strip("across", (10.0, 230.0), (300.0, 230.0)),))
+    assert only(drawn).walls == only(wall({"accuracy": 0.5}, 20)).walls
 
 
 @pytest.mark.parametrize("across", [10, 15, 20, 30])

@@ -9,7 +9,7 @@ from functools import cache
 from importlib.resources import files
 from typing import Final
 
-from irsurvey.model.report import ChecklistItem
+from irsurvey.model.conclusions import ChecklistItem
 
 REPORTS: Final = ("simplified report", "full report")
 """Kinds of report an item may be asked by; a full one states what a simplified one does, and more."""

@@ -12,7 +12,7 @@ from math import isfinite, isnan
 from typing import Final
 
 from irsurvey.errors import Fault, SurveyError
-from irsurvey.model.report import ConditionCheck
+from irsurvey.model.conclusions import ConditionCheck
 
 LEVELS: Final = ("not valid", "qualitative", "quantitative")
 """What a survey may claim, from least to most."""

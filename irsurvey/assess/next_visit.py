@@ -13,7 +13,7 @@ from typing import Final
 from irsurvey.assess.conformity import GUARD, accepted, action_probability
 from irsurvey.assess.judged import Judged
 from irsurvey.assess.severity import AGAINST_REFERENCE, AUTOMATIC_REFERENCE
-from irsurvey.model.report import NextMeasurement
+from irsurvey.model.conclusions import NextMeasurement
 
 SURE: Final = 0.95
 """Probability from which an action counts as certain [house]; a clearance needs guarded acceptance."""

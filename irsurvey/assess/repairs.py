@@ -24,7 +24,8 @@ from irsurvey.assess.severity import (
     REFLECTIVE,
 )
 from irsurvey.assess.twins import ALL_HOT
-from irsurvey.model.report import Assessment, RepairItem
+from irsurvey.model.conclusions import RepairItem
+from irsurvey.model.report import Assessment
 
 DOUBTFUL: Final = (REFLECTIVE, MIRRORS, NO_SOLUTION, BELOW_AIR)
 """Flags under which the reading itself is in question: it is confirmed before anything is repaired."""

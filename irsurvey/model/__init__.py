@@ -2,17 +2,26 @@
 
 from __future__ import annotations
 
+from irsurvey.model.conclusions import (
+    AssetReport,
+    ChecklistItem,
+    ConditionCheck,
+    Decision,
+    NextMeasurement,
+    PopulationAlarm,
+    RepairItem,
+    Review,
+    ReviewStatus,
+    SeasonReport,
+    SeasonRow,
+)
 from irsurvey.model.frame import Frame
 from irsurvey.model.quantities import Estimate, Quantity, Scene
 from irsurvey.model.report import (
     Assessment,
-    AssetReport,
     Band,
     BudgetTerm,
-    ChecklistItem,
     ComponentReport,
-    ConditionCheck,
-    Decision,
     Detectable,
     Finding,
     Flip,
@@ -22,19 +31,12 @@ from irsurvey.model.report import (
     JointHeat,
     LimitReport,
     Maps,
-    NextMeasurement,
     PairReport,
-    PopulationAlarm,
     PressureChange,
     RatedLoad,
     ReferenceReport,
-    RepairItem,
     Report,
-    Review,
-    ReviewStatus,
     RoomAir,
-    SeasonReport,
-    SeasonRow,
     Shape,
     Source,
     StripReport,

@@ -37,7 +37,7 @@ def _row(item: RepairItem, taken: Mapping[str, str | None]) -> dict[str, Any]:
     return {
         **{name: written[name] for name in (*same, "load_a", "rated_a", "action", "inspect_again", "key")},
         "component": item.what,
-        "asks_for": texts.urgency(item.urgency),
+        "asks_for": texts.to_do(item.urgency, "not cleared"),  # what asks for nothing is here to be looked at again
         "delta_k": delta.get("value"),
         "u_delta_k": delta.get("u"),
         "basis": item.delta_basis if delta else None,

@@ -24,8 +24,8 @@ from irsurvey.assess.severity import (
     UNSTEADY,
     WINDY,
 )
+from irsurvey.model.conclusions import NextMeasurement
 from irsurvey.model.quantities import Scene
-from irsurvey.model.report import NextMeasurement
 
 SIMILAR = criteria()["neta-similar"]
 CONTRAST = criteria()["building-contrast"]

@@ -24,7 +24,7 @@ from irsurvey.assess.severity import (
 )
 from irsurvey.assess.twins import ALL_HOT, NO_TWIN
 from irsurvey.model import Estimate
-from irsurvey.model.report import RepairItem
+from irsurvey.model.conclusions import RepairItem
 
 SITUATIONS = (
     list_of.JOINT,
