@@ -12,7 +12,7 @@ from irsurvey.numbers import SI, Style
 from irsurvey.report import pictures, results, texts
 from irsurvey.report.labels import component_mark
 from irsurvey.report.pictures import Picture
-from irsurvey.report.ranking import Ranked
+from irsurvey.report.ranking import Ranked, governing
 
 _JUDGED = {"similar": "delta_similar_k", "ambient": "delta_ambient_k", "reference": "delta_k"}
 """Basis of a difference → the number of a component or finding that it is."""
@@ -80,7 +80,7 @@ def _line(item: RepairItem, entry: Ranked | None, style: Style) -> Line:
         spot=spot.strip(numbers.NOTHING),
         sure=results.chance(item.confidence),
         delta=_delta(item, entry, style),
-        basis=_basis(item, entry),
+        basis=_basis(item, entry, style),
         load=results.load(entry.item if entry else None, item.load_a, item.rated_a, style=style),
     )
 
@@ -101,7 +101,14 @@ def _delta(item: RepairItem, entry: Ranked | None, style: Style) -> str:
     return results.bounded(entry.item, _JUDGED.get(item.delta_basis, ""), text) if entry else text
 
 
-def _basis(item: RepairItem, entry: Ranked | None) -> str:
+def _basis(item: RepairItem, entry: Ranked | None, style: Style) -> str:
+    """What a difference was taken against, and the one brought to calm air where that decides."""
     twin = entry.item.similar_to if entry and isinstance(entry.item, ComponentReport) else None
     words = texts.basis(item.delta_basis)
-    return f"{words}, {twin}" if twin and item.delta_basis == "similar" else words
+    if twin and item.delta_basis == "similar":
+        words = f"{words}, {twin}"
+    decides = governing(entry.item.assessments) if entry else None
+    if entry is None or decides is None or not decides.quantity.endswith("_in_calm_k"):
+        return words
+    calm = numbers.measured(getattr(entry.item, decides.quantity), "delta_k", style=style)
+    return f"{words}; {calm} brought to 1 m/s of wind, which decides"
