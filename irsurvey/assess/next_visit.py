@@ -108,7 +108,7 @@ def remaining_u(judged: Judged, measurement: Measurement) -> float:
         before += (one.contribution / largest) ** 2
         after += (one.sensitivity * u / largest) ** 2
     difference = sqrt(max(judged.u**2 - (before - after) * largest**2, 0.0))
-    return max(difference, judged.u * sqrt(after / before))
+    return min(max(difference, judged.u * sqrt(after / before)), judged.u)  # squares of tiny numbers round up
 
 
 def _would_settle(measurement: Measurement, decision: Decision) -> bool:

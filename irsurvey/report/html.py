@@ -13,6 +13,7 @@ from irsurvey import files, numbers
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
 from irsurvey.numbers import Style
 from irsurvey.report import (
+    about,
     axes,
     component_facts,
     condition_rows,
@@ -62,19 +63,6 @@ _MODULES = {
 """What the templates call a module whose words depend on the style."""
 _LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
 _NAMED = 3  # findings or components of one frame named when they are not cleared for one reason; of more, their number
-_NOT_FREE_TEXT = {
-    "title",
-    "kind",
-    "method",
-    "viewed_from",
-    "timezone",
-    "reference",
-    "camera",
-    "display_units",
-    "date_format",
-    "history",
-    "frame_table",
-}
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 
 
@@ -122,10 +110,9 @@ class _Pages:
     @classmethod
     def of(cls, report: Report, tasks: tuple[FrameTask, ...], out: Path) -> _Pages:
         style = asked(report)
-        about = _about(report)
         shared = {
             "report": report,
-            "title": about.get("title") or "Thermographic survey",
+            "title": about.said(report).get("title") or "Thermographic survey",
             "shown": {finding.id for frame in report.frames for finding in foremost(frame, NUMBERED)},
             "frame_ids": {frame.id for frame in report.frames},
             "style": style,
@@ -156,13 +143,10 @@ class _Pages:
         listed = {(item.frame, item.key) for item in report.repairs}
         standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
         side = _small_side(len(report.frames)) if self.is_split else 0
-        about = _about(report)
-        if "date" in about:
-            about["date"] = moment(about["date"], style=style)
         return self._rendered(
             "report.html.j2",
             Links(self.is_split),
-            about={texts.about(key): text for key, text in about.items() if key not in _NOT_FREE_TEXT},
+            about=about.headed(report, style=style),
             sheets=[] if self.is_split else [self._sheet(frame) for frame in report.frames],
             index=[entry(frame, pictures.small(frame, side, out) if side else None) for frame in report.frames],
             failed=[frame for frame in report.frames if frame.status == "failed"],
@@ -252,12 +236,6 @@ def _warm_areas(ranked: tuple[Ranked, ...], tasks: dict[str, FrameTask]) -> list
         and methods.get(entry.frame.id) == "roof-moisture"
     )
     return sorted(warm, key=size, reverse=True)
-
-
-def _about(report: Report) -> dict[str, str]:
-    """What [survey] says in words: title, date and free texts."""
-    survey = report.survey.get("survey")
-    return {key: text for key, text in survey.items() if isinstance(text, str)} if isinstance(survey, dict) else {}
 
 
 def _name(entry: Ranked) -> str:

@@ -6,7 +6,7 @@ from dataclasses import replace
 from math import nan, sqrt
 
 import pytest
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from irsurvey.assess.criteria import MARKS, criteria
@@ -162,6 +162,7 @@ def test_a_larger_uncertainty_never_closes_a_decision(one: Judged, more: float, 
 
 
 @given(NUMBERS)
+@example(Judged(SIMILAR, 0.0, 2.579536005666191e-160, (Sensitivity("reflected", 1.0, 1.0),)))  # its square is subnormal
 def test_a_measurement_never_makes_a_number_worse_known(one: Judged) -> None:
     for measurement in measurements():
         left = remaining_u(one, measurement)

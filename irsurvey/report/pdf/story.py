@@ -10,7 +10,7 @@ from pathlib import Path
 
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
 from irsurvey.numbers import Style
-from irsurvey.report import repair_list, season_table, style, texts
+from irsurvey.report import about, repair_list, season_table, style, texts
 from irsurvey.report.html import Open, gathered, not_cleared
 from irsurvey.report.pdf.parts import asks, chip
 from irsurvey.report.pdf.runs import Run
@@ -18,23 +18,6 @@ from irsurvey.report.pdf.words import say
 from irsurvey.report.ranking import Ranked, in_order
 from irsurvey.report.review.words import InWords
 
-_NOT_FREE_TEXT = {
-    "title",
-    "kind",
-    "method",
-    "viewed_from",
-    "timezone",
-    "reference",
-    "camera",
-    "display_units",
-    "decimal_comma",
-    "date_format",
-    "criteria",
-    "standards",
-    "frame_table",
-    "history",
-}
-"""Keys of [survey] that are settings, not something to read."""
 _DAY = re.compile(r"\d{4}-\d\d-\d\d")
 
 
@@ -106,7 +89,6 @@ def gather(report: Report, tasks: Iterable[FrameTask], out: Path) -> Story:
     """The story of a report whose pictures are already in OUT/frames."""
     by_id = {task.id: task for task in tasks}
     ranked = in_order(report)
-    about = said(report)
     asked_style = style.asked(report)
     points = list(not_cleared(report))
     standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
@@ -114,12 +96,8 @@ def gather(report: Report, tasks: Iterable[FrameTask], out: Path) -> Story:
         report=report,
         tasks=by_id,
         out=out,
-        title=about.get("title") or say("untitled"),
-        about={
-            texts.about(key): style.moment(text, style=asked_style) if key == "date" else text
-            for key, text in about.items()
-            if key not in _NOT_FREE_TEXT and text
-        },
+        title=about.said(report).get("title") or say("untitled"),
+        about=about.headed(report, style=asked_style),
         ranked=ranked,
         open_points=gathered(points),
         not_cleared=len(points),
@@ -132,17 +110,11 @@ def gather(report: Report, tasks: Iterable[FrameTask], out: Path) -> Story:
     )
 
 
-def said(report: Report) -> dict[str, str]:
-    """What [survey] says in words: title, date and free texts."""
-    survey = report.survey.get("survey")
-    return {key: text for key, text in survey.items() if isinstance(text, str)} if isinstance(survey, dict) else {}
-
-
 def made_on(report: Report) -> datetime:
     """The day of the survey at noon: as it was stated, else that of its earliest frame, so that the same report never
     gets another date; 1970 where nobody wrote one down."""
     taken = sorted(frame.taken for frame in report.frames if frame.taken)
-    for text in (said(report).get("date", ""), *taken):
+    for text in (about.said(report).get("date", ""), *taken):
         if day := _DAY.match(text):
             try:
                 return datetime.fromisoformat(f"{day[0]}T12:00:00+00:00")

@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 from irsurvey.model import FrameReport
+from irsurvey.report import about
 from irsurvey.report.pdf import closing, front, overview, repairs, summary
 from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, heading, paragraph, space, text
 from irsurvey.report.pdf.document import About, drawn, places
@@ -14,7 +15,7 @@ from irsurvey.report.pdf.layout import Entry, Layout, Page
 from irsurvey.report.pdf.parts import frame_place, short
 from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.sheet import sheet
-from irsurvey.report.pdf.story import Story, asked, made_on, said
+from irsurvey.report.pdf.story import Story, asked, made_on
 from irsurvey.report.pdf.tables import Head, table
 from irsurvey.report.pdf.words import say
 
@@ -116,7 +117,7 @@ def _about(story: Story, part: str = "") -> About:
     name = f"{tool.get('name', '')} {tool.get('version', '')}".strip()
     return About(
         title=f"{story.title}, {part}" if part else story.title,
-        author=said(story.report).get("surveyor", ""),
+        author=about.said(story.report).get("surveyor", ""),
         subject=say("kind"),
         creator=name,
         made=made_on(story.report),
