@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from math import inf, isfinite, isnan
 
 import numpy as np
@@ -40,7 +41,7 @@ class Term:
     share: float
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)  # no slots: the parts of the variances are worked out once and kept
 class Budget:
     """What each input contributes to each result.
 
@@ -61,12 +62,12 @@ class Budget:
     @property
     def u(self) -> Array:
         """Standard uncertainty of each result, shape (m,): u² = Σ r_ij s_i s_j.  JCGM 100:2008, eq. 13 and 16."""
-        return np.asarray(np.sqrt(self._shared().sum(axis=0)))
+        return np.asarray(np.sqrt(self._shared.sum(axis=0)))
 
     def terms(self, index: int) -> tuple[Term, ...]:
         """The inputs of one result, the largest contribution first; what has none, because no step of it had a
         solution (NaN), stands before all."""
-        swings, shared = self.half_swings[:, index], self._shared()[:, index]
+        swings, shared = self.half_swings[:, index], self._shared[:, index]
         variance = shared.sum()
         shares = shared / variance if variance != 0 else shared
         terms = [
@@ -95,6 +96,7 @@ class Budget:
             for value, u, half in zip(self.values.tolist(), self.u.tolist(), self.half_widths.tolist(), strict=True)
         )
 
+    @cached_property
     def _shared(self) -> Array:
         """Parts (k, m) of the variances of the results: s_i Σ_j r_ij s_j."""
         parts = self.half_swings * (self.correlation @ self.half_swings)

@@ -97,7 +97,8 @@ def test_an_interrupt_ends_everything_at_once_and_leaves_no_word(tmp_path: Path,
     finally:
         parent.kill()
     assert said == ""  # no traceback of a worker, no leaked semaphores
-    assert parent.returncode == 130
+    # A second press while Python is already closing down kills it by the signal itself, which shells report as 130 too.
+    assert parent.returncode in {130, -signal.SIGINT if times == 2 else 130}
     assert not left_over(workers)
 
 
