@@ -18,6 +18,10 @@ _OPTIONS = (
     *("--headless", "--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run", "--hide-scrollbars"),
     *("--disable-background-networking", "--disable-component-update", "--disable-sync", "--disable-dev-shm-usage"),
 )
+_SETTLED = """
+document.documentElement.style.scrollBehavior = "auto"; // a click must not wait for a scroll
+await new Promise((done) => setTimeout(done)); // after what the page itself does once it has loaded
+"""
 
 
 class Browser:
@@ -32,7 +36,12 @@ class Browser:
         self.messages()
         self.requests()
         self.driver.get(page.as_uri())
-        self.run("document.documentElement.style.scrollBehavior = 'auto'")  # a click must not wait for a scroll
+        self.run(_SETTLED)
+
+    def reload(self) -> None:
+        """Load the page again."""
+        self.driver.refresh()
+        self.run(_SETTLED)
 
     def run(self, body: str, *arguments: Any) -> Any:
         """What an asynchronous function (`given`) with this body returns."""

@@ -114,7 +114,7 @@ def desk(browser: Browser, lodge: Path, tmp_path: Path) -> Iterator[Desk]:
     made = Desk(browser, Path(shutil.copytree(lodge, tmp_path / "out")), saved)
     made.open()
     browser.run("localStorage.clear()")
-    made.open()
+    browser.reload()
     yield made
     assert browser.messages() == []
     assert [address for address in browser.requests() if not address.startswith(("file:", "about:", "blob:"))] == []

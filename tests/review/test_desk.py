@@ -132,7 +132,7 @@ def test_decisions_are_there_again_when_the_page_is(desk: Desk) -> None:
     Select(form(desk, 1).find_element(By.TAG_NAME, "select")).select_by_visible_text("2: repair as time permits")
     write(desk, 2, "two\nlines")
     before = desk.exported()
-    desk.browser.driver.refresh()
+    desk.browser.reload()
     assert desk.counts() == {"open": 1, "accepted": 1, "rejected": 0, "reclassified": 1}
     assert form(desk, 0).is_displayed()
     chosen = Select(form(desk, 1).find_element(By.TAG_NAME, "select")).first_selected_option
@@ -163,7 +163,7 @@ def test_without_a_place_to_keep_them_decisions_last_as_long_as_the_page_which_s
         assert "keeps nothing" in desk.browser.one(".review-note").text
         choose(desk, 0, "rejected")
         assert desk.exported()["decisions"][0]["decision"] == "rejected"
-        desk.browser.driver.refresh()
+        desk.browser.reload()
         assert desk.counts()["rejected"] == 0
     finally:
         desk.browser.driver.execute_cdp_cmd("Page.removeScriptToEvaluateOnNewDocument", made)
@@ -181,7 +181,7 @@ def test_what_another_page_left_in_the_store_is_no_decision(desk: Desk, kept: st
         key,
         kept,
     )
-    desk.browser.driver.refresh()
+    desk.browser.reload()
     assert desk.counts()["open"] == 3
     begin(desk)
     choose(desk, 1, "accepted")
@@ -380,7 +380,7 @@ def test_texts_of_people_do_nothing_in_the_page(desk: Desk, words: str) -> None:
     assert desk.browser.run("return document.querySelector('.review-words').textContent") == on_page(shown)
     write(desk, 1, shown)
     choose(desk, 1, "rejected")
-    desk.browser.driver.refresh()
+    desk.browser.reload()
     assert desk.browser.run("return window.hit ?? false") is False
     assert desk.browser.run("return document.querySelectorAll('main script, main img, main a').length") == 0
     made = desk.exported()["decisions"]

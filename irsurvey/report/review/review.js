@@ -391,6 +391,8 @@
     if (data.results.length) new Desk(mount, mount.closest("#review"));
   }
 
-  if (document.readyState === "loading") document.addEventListener("DOMContentLoaded", start);
-  else start();
+  // Not before the page has loaded.  Chromium (156) gives a file:// page that touches localStorage while it loads a store
+  // of its own now and then (about 1 load in 15), so that decisions were gone when the page was opened again.
+  if (document.readyState === "complete") start();
+  else addEventListener("load", () => setTimeout(start));
 })();
