@@ -7,7 +7,7 @@ from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from irsurvey import __version__, pipeline
+from irsurvey import __version__, pipeline, texts
 from irsurvey.analysis.checklist import present_in
 from irsurvey.analysis.conditions import reviewed
 from irsurvey.analysis.decisions import next_measurements
@@ -29,7 +29,7 @@ from irsurvey.heat.sky import SKY_MODELS
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
-from irsurvey.report import WRITERS, frame_files, kept, texts
+from irsurvey.report import WRITERS, frame_files, kept
 from irsurvey.report.review.standing import with_reviews
 from irsurvey.report.review.stored import stored
 from irsurvey.survey.load import Known, load

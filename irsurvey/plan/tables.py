@@ -6,11 +6,10 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from math import floor
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.assess.severity import LEAST_EMISSIVITY
 from irsurvey.model import Estimate
 from irsurvey.plan import ASSUMED, OVER_AMBIENT, Gain, Prospect
-from irsurvey.report import texts
 
 _TOLD_SHARE = 0.1
 """Of the variance: what takes less gains next to nothing."""

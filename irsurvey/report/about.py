@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
+from irsurvey import texts
 from irsurvey.model import Report
 from irsurvey.numbers import SI, Style
-from irsurvey.report import texts
 from irsurvey.report.style import moment
 
 _SETTINGS = {

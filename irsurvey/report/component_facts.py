@@ -5,11 +5,11 @@ from __future__ import annotations
 from collections.abc import Iterator
 from math import inf
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.assess.limits import limits
 from irsurvey.model import Band, ComponentReport, Estimate, JointHeat, TrendReport
 from irsurvey.numbers import SI, Style
-from irsurvey.report import results, texts
+from irsurvey.report import results
 from irsurvey.report.facts import Fact
 from irsurvey.report.sentences import in_style
 

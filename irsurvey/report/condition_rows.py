@@ -4,11 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.assess.conditions import requirement_sets
 from irsurvey.model import ConditionCheck
 from irsurvey.numbers import SI, Style
-from irsurvey.report import texts
 from irsurvey.report.sentences import in_style
 
 _ASSUMED = " (assumed)"

@@ -5,10 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import Estimate, Finding, ReferenceReport, RoomAir, StripReport, SurfaceAtRisk
 from irsurvey.numbers import SI, Style
-from irsurvey.report import results, texts
+from irsurvey.report import results
 from irsurvey.report.sentences import in_style
 
 Record = Finding | ReferenceReport | RoomAir | StripReport

@@ -9,7 +9,7 @@ from functools import cache, partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from irsurvey import files, numbers
+from irsurvey import files, numbers, texts
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
 from irsurvey.numbers import Style
 from irsurvey.report import (
@@ -26,7 +26,6 @@ from irsurvey.report import (
     review,
     season_table,
     strip_plot,
-    texts,
     trend_plot,
 )
 from irsurvey.report.labels import change_mark, component_mark, strip_mark

@@ -6,11 +6,11 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from math import isfinite
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.assess.criteria import Criterion, criteria
 from irsurvey.model import Finding, FrameTask
 from irsurvey.numbers import SI, Style
-from irsurvey.report import results, texts
+from irsurvey.report import results
 from irsurvey.report.axes import RIGHT, TICKS_ACROSS, Axis, Tick
 from irsurvey.report.labels import component_mark
 from irsurvey.report.ranking import Ranked, governing

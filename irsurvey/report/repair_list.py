@@ -6,10 +6,10 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport, FrameTask, RepairItem, Report
 from irsurvey.numbers import SI, Style
-from irsurvey.report import pictures, results, texts
+from irsurvey.report import pictures, results
 from irsurvey.report.labels import component_mark
 from irsurvey.report.pictures import Picture
 from irsurvey.report.ranking import Ranked, governing

@@ -6,8 +6,9 @@ from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
+from irsurvey import texts
 from irsurvey.model import FrameTask, RepairItem, Report
-from irsurvey.report import csv_table, texts
+from irsurvey.report import csv_table
 from irsurvey.report.json import plain
 
 COLUMNS = (

@@ -4,10 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
 from irsurvey.numbers import SI, Style
-from irsurvey.report import texts
 from irsurvey.report.ranking import governing, is_saturated
 
 Item = Finding | ComponentReport

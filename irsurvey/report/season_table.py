@@ -5,10 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import Estimate, Finding, Report, SeasonReport, SeasonRow
 from irsurvey.numbers import SI, Style
-from irsurvey.report import texts
 from irsurvey.report.sentences import in_style
 
 _SMALL_KWH = 1.0

@@ -5,9 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from pathlib import Path
 
+from irsurvey import texts
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask
 from irsurvey.numbers import SI, Style
-from irsurvey.report import histogram_plot, pictures, pressure, texts
+from irsurvey.report import histogram_plot, pictures, pressure
 from irsurvey.report.picture import NUMBERED
 from irsurvey.report.pictures import Picture
 from irsurvey.report.ranking import foremost

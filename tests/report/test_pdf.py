@@ -21,6 +21,7 @@ from PIL import Image
 from pypdf import PdfReader
 from pypdf.generic import Destination, IndirectObject
 
+from irsurvey import texts
 from irsurvey.model import (
     ComponentReport,
     Decision,
@@ -34,7 +35,7 @@ from irsurvey.model import (
     Review,
     ReviewStatus,
 )
-from irsurvey.report import component_facts, facts, frame_files, pdf, repair_list, results, season_table, texts
+from irsurvey.report import component_facts, facts, frame_files, pdf, repair_list, results, season_table
 from irsurvey.report.pdf import FRAMES_IN_A_VOLUME, write
 from irsurvey.report.pdf.letters import MISSING
 from irsurvey.report.ranking import in_order

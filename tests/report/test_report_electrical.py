@@ -15,8 +15,9 @@ from PIL import Image
 from report.pages import Page, section
 from report.test_report_html import HOSTILE, hostile, words
 
+from irsurvey import texts
 from irsurvey.model import ComponentReport, Estimate, FrameTask, Maps, Report
-from irsurvey.report import component_facts, frame_files, texts
+from irsurvey.report import component_facts, frame_files
 from irsurvey.report.html import page
 from irsurvey.report.json import plain, report_schema, text
 from irsurvey.report.results import is_bound, load

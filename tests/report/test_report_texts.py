@@ -9,15 +9,16 @@ from importlib.resources import files
 
 import pytest
 
+from irsurvey import texts
 from irsurvey.analysis.inputs import shown
 from irsurvey.anomalies.cues import Cues
 from irsurvey.assess.conformity import FOUR_WAY, OUTCOMES
 from irsurvey.assess.fragile import FRAGILE
 from irsurvey.assess.severity import BLOCKERS
 from irsurvey.model import ComponentReport, JointHeat, Scene
-from irsurvey.report import WRITERS, texts
+from irsurvey.report import WRITERS
 
-TEXTS = tomllib.loads((files("irsurvey.report") / "texts.toml").read_text(encoding="utf-8"))
+TEXTS = tomllib.loads((files("irsurvey") / "texts.toml").read_text(encoding="utf-8"))
 
 # the words of irsurvey.model: Quantity.source, FrameReport.claim, Finding.sense; urgencies of the specification
 ORIGINS = ["survey", "group", "frame", "surface", "default", "material table", "measured in frame", "log"]

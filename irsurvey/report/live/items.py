@@ -8,6 +8,7 @@ from typing import Any, Final
 
 import numpy as np
 
+from irsurvey import texts
 from irsurvey.assess.electrical import OF_TWINS, OVER_AIR
 from irsurvey.assess.pv import LEAST_IRRADIANCE, STANDARD_IRRADIANCE, neighbours, sound
 from irsurvey.assess.severity import AGAINST_REFERENCE, AUTOMATIC_REFERENCE, MIRRORS, SATURATED
@@ -15,7 +16,6 @@ from irsurvey.assess.twins import ALL_HOT, NO_TWIN, NORMALISED
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import mask
 from irsurvey.model import ComponentReport, Estimate, Finding, FrameReport, FrameTask
-from irsurvey.report import texts
 from irsurvey.report.labels import component_mark
 from irsurvey.report.live.areas import Json, Pixels, whole_and_spot
 from irsurvey.report.ranking import governing

@@ -11,7 +11,7 @@ from typing import Any, Final
 import numpy as np
 from numpy.typing import NDArray
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.analysis.correction import optics_of
 from irsurvey.analysis.exchange import TOTAL, Surroundings, film_of, radiant_of
 from irsurvey.analysis.inputs import domain, in_si, in_unit, named, shown
@@ -19,7 +19,7 @@ from irsurvey.analysis.surroundings import surroundings
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.model import FrameReport, FrameTask, Quantity, Scene
 from irsurvey.numbers import SI, Style
-from irsurvey.report import picture, scale, texts
+from irsurvey.report import picture, scale
 from irsurvey.report.live.areas import Pixels, reference
 from irsurvey.report.live.items import components, findings
 from irsurvey.report.live.tables import band_key

@@ -13,6 +13,7 @@ from typing import Any, Final
 
 import numpy as np
 
+from irsurvey import texts
 from irsurvey.analysis.envelope import LIMIT_RESISTANCE
 from irsurvey.assess.criteria import Criterion, criteria
 from irsurvey.assess.severity import LEAST_EMISSIVITY
@@ -42,7 +43,7 @@ def tables(report: Report, tasks: tuple[FrameTask, ...]) -> dict[str, Any]:
         "colormaps": {name: b64encode(palette(name)[: 3 * LEVELS]).decode() for name in COLORMAPS},
         "inks": b64encode(palette(COLORMAP)[3 * LEVELS :]).decode(),
         "show": _show(asked(report)),
-        "words": words(),
+        "words": texts.tools(),
     }
 
 
@@ -65,13 +66,6 @@ def equations(bands: tuple[Band, ...]) -> dict[str, Any]:
 def band_key(band: Band) -> str:
     """What a band is called in the data of a page: its edges in µm."""
     return "-".join(f"{edge * 1e6:.6g}" for edge in band)
-
-
-@cache
-def words() -> dict[str, str]:
-    """The words of the page's tools, from words.toml."""
-    text = files("irsurvey.report.live").joinpath("words.toml").read_text(encoding="utf-8")
-    return {key: str(value) for key, value in tomllib.loads(text).items()}
 
 
 def _band(band: Band) -> dict[str, Any]:

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import ChecklistItem
-from irsurvey.report import texts
 from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, bullets, heading, paragraph, text
 from irsurvey.report.pdf.layout import Entry, Layout, Piece
 from irsurvey.report.pdf.letters import MISSING
@@ -12,7 +11,7 @@ from irsurvey.report.pdf.parts import chip, short
 from irsurvey.report.pdf.runs import Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
+from irsurvey.texts import say
 
 
 def checklist(story: Story, layout: Layout) -> None:

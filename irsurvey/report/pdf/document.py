@@ -12,7 +12,7 @@ from irsurvey.report.pdf import letters
 from irsurvey.report.pdf.layout import HEIGHT, LEFT, RIGHT, Page
 from irsurvey.report.pdf.paper import FINE, RULE, Paper
 from irsurvey.report.pdf.runs import QUIET, Face, Run, broken, cut
-from irsurvey.report.pdf.words import say
+from irsurvey.texts import say
 
 _HEAD, _FOOT = 12.5, HEIGHT - 13.0
 _SMALL = Face(7, ink=QUIET)

@@ -13,8 +13,8 @@ from irsurvey.report.pdf.blocks import Column, beside, paragraph, text
 from irsurvey.report.pdf.layout import Piece
 from irsurvey.report.pdf.paper import RULE
 from irsurvey.report.pdf.runs import DEEP, QUIET, Colour, Face
-from irsurvey.report.pdf.words import say
 from irsurvey.report.results import Line
+from irsurvey.texts import say
 
 if TYPE_CHECKING:
     from irsurvey.report.pdf.paper import Paper

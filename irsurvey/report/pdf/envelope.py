@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import FrameReport, FrameTask, PairReport
 from irsurvey.numbers import Style
-from irsurvey.report import facts, pictures, pressure, results, strip_plot, texts
+from irsurvey.report import facts, pictures, pressure, results, strip_plot
 from irsurvey.report.facts import Fact
 from irsurvey.report.labels import change_mark, strip_mark
 from irsurvey.report.pdf import drawings
@@ -29,9 +29,9 @@ from irsurvey.report.pdf.parts import chip, dark_mark, finding_place, flags, fra
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
 from irsurvey.report.picture import NUMBERED
 from irsurvey.report.style import spoken
+from irsurvey.texts import say
 
 _PLOT = 78.0  # mm, width of a profile
 _CHANGE = 84.0  # mm, width of a picture of change

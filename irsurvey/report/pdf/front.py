@@ -6,7 +6,8 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from irsurvey.report import pictures, texts
+from irsurvey import texts
+from irsurvey.report import pictures
 from irsurvey.report.facts import Fact
 from irsurvey.report.pdf import drawings
 from irsurvey.report.pdf.blocks import BODY, H1, H2, NOTE, facts, heading, paragraph, picture, space, text
@@ -15,7 +16,7 @@ from irsurvey.report.pdf.layout import BOTTOM, BREADTH, LEFT, TOP, Entry, Layout
 from irsurvey.report.pdf.parts import claim, frame_name, frame_place, short
 from irsurvey.report.pdf.runs import AMBER, DEEP, GAP, QUIET, Face, Run, Runs, broken
 from irsurvey.report.pdf.story import Story, asked
-from irsurvey.report.pdf.words import noun, say
+from irsurvey.texts import noun, say
 
 if TYPE_CHECKING:
     from irsurvey.report.pdf.paper import Paper

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport, Finding
 from irsurvey.numbers import Style
-from irsurvey.report import condition_rows, results, texts
+from irsurvey.report import condition_rows, results
 from irsurvey.report.html import SUMMARY_LENGTH
 from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, text
 from irsurvey.report.pdf.layout import Entry, Layout, Piece
@@ -26,7 +26,7 @@ from irsurvey.report.pdf.parts import (
 from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
+from irsurvey.texts import say
 
 _OF_FINDINGS = ("mean_delta_k", "delta_k", "extreme_c", "area_m2", "excess_heat_w")
 _OF_COMPONENTS = ("max_c", "delta_similar_k", "delta_ambient_k")

@@ -4,17 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport, Finding, FrameReport, Indication
 from irsurvey.numbers import Style
-from irsurvey.report import facts, results, texts
+from irsurvey.report import facts, results
 from irsurvey.report.labels import component_mark
 from irsurvey.report.pdf.blocks import BODY, NOTE, SMALL, emphasis, paragraph, text
 from irsurvey.report.pdf.layout import BREADTH, Piece
 from irsurvey.report.pdf.runs import DEEP, INK, PAPER, Box, Face, Run, Runs
-from irsurvey.report.pdf.words import say
 from irsurvey.report.ranking import Ranked, governing
 from irsurvey.report.sentences import in_style
+from irsurvey.texts import say
 
 Item = Finding | ComponentReport
 

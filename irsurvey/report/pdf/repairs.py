@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport
-from irsurvey.report import season_table, texts
+from irsurvey.report import season_table
 from irsurvey.report.facts import Fact
 from irsurvey.report.pdf.blocks import (
     ASIDE,
@@ -33,8 +33,8 @@ from irsurvey.report.pdf.parts import asks, finding_place, frame_place, item_pla
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
 from irsurvey.report.repair_list import Line
+from irsurvey.texts import say
 
 _RANK = 9.0  # mm, of the column of ranks
 _VIEW = 33.0  # mm, width of a picture

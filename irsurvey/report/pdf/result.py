@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import Assessment, ComponentReport
 from irsurvey.numbers import Style
-from irsurvey.report import component_facts, facts, results, texts, trend_plot
+from irsurvey.report import component_facts, facts, results, trend_plot
 from irsurvey.report.facts import Fact
 from irsurvey.report.pdf import drawings
 from irsurvey.report.pdf.blocks import (
@@ -29,11 +29,10 @@ from irsurvey.report.pdf.parts import Item, flags, found, indication, item_place
 from irsurvey.report.pdf.runs import DEEP, GAP, Colour, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
 from irsurvey.report.ranking import Ranked, governing
-from irsurvey.report.review.words import words
 from irsurvey.report.sentences import in_style
 from irsurvey.report.style import moment, spoken
+from irsurvey.texts import say
 
 _TEXT = Face(7.8)
 _SMALL = Face(6.8, ink=NOTE.ink)
@@ -104,7 +103,7 @@ def _reviews(item: Item, story: Story) -> list[Piece]:
     pieces: list[Piece] = []
     x, width = ASIDE, BREADTH - ASIDE
     for said in story.reviews.said(item.key):
-        by = words()["by"].format(decision=said.what, reviewer=said.reviewer, date=moment(said.date, style=story.style))
+        by = texts.review("by", decision=said.what, reviewer=said.reviewer, date=moment(said.date, style=story.style))
         pieces += paragraph((emphasis(f"{by}.", _TEXT.size), Run(f" {said.comment}", _TEXT)), x=x, width=width)
     again = story.reviews.again(item.key)
     pieces += paragraph(text(again, _TEXT), x=x, width=width) if again else []

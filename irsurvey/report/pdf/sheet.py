@@ -5,10 +5,10 @@ from __future__ import annotations
 from collections.abc import Sequence
 from itertools import zip_longest
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport, Estimate, Finding, FrameReport, FrameTask, Input
 from irsurvey.numbers import Style
-from irsurvey.report import facts, pictures, results, texts
+from irsurvey.report import facts, pictures, results
 from irsurvey.report.facts import Fact
 from irsurvey.report.pdf import envelope
 from irsurvey.report.pdf.blocks import (
@@ -45,11 +45,11 @@ from irsurvey.report.pdf.result import result
 from irsurvey.report.pdf.runs import DEEP, GAP, QUIET, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
 from irsurvey.report.picture import NUMBERED
 from irsurvey.report.ranking import Ranked, foremost
 from irsurvey.report.sentences import in_style
 from irsurvey.report.style import day, moment
+from irsurvey.texts import say
 
 _OF_FINDINGS = (
     *("mean_delta_k", "delta_k", "mean_c", "extreme_c", "area_m2"),

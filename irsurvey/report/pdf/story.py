@@ -8,15 +8,16 @@ from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 
+from irsurvey import texts
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
 from irsurvey.numbers import Style
-from irsurvey.report import about, repair_list, season_table, style, texts
+from irsurvey.report import about, repair_list, season_table, style
 from irsurvey.report.html import Open, gathered, not_cleared
 from irsurvey.report.pdf.parts import asks, chip
 from irsurvey.report.pdf.runs import Run
-from irsurvey.report.pdf.words import say
 from irsurvey.report.ranking import Ranked, in_order
 from irsurvey.report.review.words import InWords
+from irsurvey.texts import say
 
 _DAY = re.compile(r"\d{4}-\d\d-\d\d")
 

@@ -5,8 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
 
+from irsurvey import texts
 from irsurvey.model import AssetReport, ComponentReport, Finding
-from irsurvey.report import texts
 from irsurvey.report.html import SUMMARY_LENGTH
 from irsurvey.report.pdf.blocks import (
     BODY,
@@ -40,11 +40,10 @@ from irsurvey.report.pdf.parts import (
 )
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
-from irsurvey.report.pdf.words import noun, say
 from irsurvey.report.ranking import Ranked
 from irsurvey.report.repair_list import Line
-from irsurvey.report.review.words import words
 from irsurvey.report.sentences import in_style
+from irsurvey.texts import noun, say
 
 _CHIPS = 41.0  # mm, of the column of what a result asks for
 _NAMED_FRAMES = 12  # of one claim; of more, their number
@@ -120,7 +119,7 @@ def _closing(story: Story) -> list[Piece]:
         lines.append((Run(say("checklist_short", stated=stated, all=len(report.checklist)), link="checklist"),))
     if report.reviews:
         who = ", ".join(dict.fromkeys(short(review.reviewer, 60) for review in report.reviews))
-        lines.append(text(f"{words()['summary'].format(reviewers=who)} {story.reviews.counts()}"))
+        lines.append(text(f"{texts.review('summary', reviewers=who)} {story.reviews.counts()}"))
     return [*heading(say("claim_by_frame")), *bullets(lines)] if lines else []
 
 

@@ -17,7 +17,7 @@ from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.sheet import sheet
 from irsurvey.report.pdf.story import Story, asked, made_on
 from irsurvey.report.pdf.tables import Head, table
-from irsurvey.report.pdf.words import say
+from irsurvey.texts import say
 
 _SECTION = Face(8.6, "B", DEEP)
 

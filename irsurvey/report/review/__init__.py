@@ -10,12 +10,12 @@ from functools import cache
 from importlib.resources import files
 from typing import TYPE_CHECKING, Any
 
+from irsurvey import texts
 from irsurvey.assess.criteria import URGENCIES, criteria
 from irsurvey.model import Estimate, FrameReport, FrameTask, Report, Review
-from irsurvey.report import texts
 from irsurvey.report.review.decisions import LONGEST
 from irsurvey.report.review.standing import DECIDED, Reviewable, identity, numbers_of, reviewable, title
-from irsurvey.report.review.words import InWords, Said, words
+from irsurvey.report.review.words import InWords, Said
 
 if TYPE_CHECKING:
     from markupsafe import Markup
@@ -42,17 +42,17 @@ class Desk:
                 f"{review.reviewer} ({self._told.day(review.date)})" for review in self._report.reviews
             )
             told += Markup("<p>{}</p>").format(self._told.counts())
-            told += Markup('<p dir="auto">{}</p>').format(words()["summary"].format(reviewers=", ".join(names)))
+            told += Markup('<p dir="auto">{}</p>').format(texts.review("summary", reviewers=", ".join(names)))
         if lost := self._told.gone():
             lines = Markup("").join(
                 Markup("<li><bdi>{}</bdi>{}</li>").format(f"{status.frame} {status.id}", self._said(status.key))
                 for status in lost
             )
-            told += Markup('<p>{}</p><ul class="flags">{}</ul>').format(words()["lost"], lines)
+            told += Markup('<p>{}</p><ul class="flags">{}</ul>').format(texts.review("lost"), lines)
         return Markup(
             '<section id="review" class="card" aria-labelledby="review-heading"{}><h2 id="review-heading">{}</h2>'
             '{}<div id="review-desk"></div></section>'
-        ).format(Markup("") if told else Markup(" hidden"), words()["review"], told)
+        ).format(Markup("") if told else Markup(" hidden"), texts.review("review"), told)
 
     def result(self, key: str) -> Markup:
         """What was decided about one finding or component, and the place of its form, to end its section."""
@@ -60,7 +60,7 @@ class Desk:
 
         told = self._said(key)
         if status := self._told.status(key):
-            line = words()["standing"].format(status=status)
+            line = texts.review("standing", status=status)
             told = Markup('<p class="review-status"><b>{}</b> {}</p>').format(line, self._told.again(key)) + told
         return Markup('<div class="review" data-review="{}">{}</div>').format(self._places[key], told)
 
@@ -77,7 +77,7 @@ class Desk:
             )
             for finding in left
         )
-        title = words()["rest"].format(count=len(left))
+        title = texts.review("rest", count=len(left))
         return Markup('<details class="review-rest"><summary>{}</summary>{}</details>').format(title, lines)
 
     def data(self, frames: Collection[str] | None = None) -> str:
@@ -94,7 +94,7 @@ class Desk:
                 "survey": title(report),
                 "report": identity(report),
                 "longest": LONGEST,
-                "words": words(),
+                "words": texts.of_review(),
                 "urgencies": {str(level): texts.urgency(level) for level in URGENCIES},
                 "criteria": {
                     name: [[kind.name, kind.urgency] for kind in self._known[name].classes]
@@ -117,7 +117,7 @@ class Desk:
 
         who = Markup("<bdi>{}</bdi>").format(said.reviewer)
         day = Markup('<span class="nowrap">{}</span>').format(self._told.day(said.date))
-        line = Markup(words()["by"]).format(decision=Markup("<b>{}</b>").format(said.what), reviewer=who, date=day)
+        line = Markup(texts.review("by")).format(decision=Markup("<b>{}</b>").format(said.what), reviewer=who, date=day)
         comment = (
             Markup(': <span class="review-words" dir="auto">{}</span>').format(said.comment) if said.comment else ""
         )

@@ -2,16 +2,12 @@
 
 from __future__ import annotations
 
-import tomllib
 from collections import Counter, defaultdict
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import cache
-from importlib.resources import files
 
-from irsurvey import numbers
+from irsurvey import numbers, texts
 from irsurvey.model import Decision, Estimate, Report, ReviewStatus
-from irsurvey.report import texts
 from irsurvey.report.review.standing import ASKED_AGAIN, COMMENTED, GONE, OPEN, URGENCY, Item, number, reviewable
 from irsurvey.report.style import asked, moment
 
@@ -49,20 +45,20 @@ class InWords:
     def status(self, key: str) -> str:
         """How it stands in one or two words."""
         status = self.statuses.get(key)
-        return words()[status.status] if status else ""
+        return texts.review(status.status) if status else ""
 
     def again(self, key: str) -> str:
         """Which numbers moved since the decision on it, then and now; "" where it is not asked again."""
         changes = self._changes(key)
-        return words()["again"].format(changes=changes) if changes else ""
+        return texts.review("again", changes=changes) if changes else ""
 
     def how_open(self, status: ReviewStatus) -> str:
         """Why something is still open, in half a sentence."""
         if changes := self._changes(status.key):
-            return words()["asked"].format(changes=changes, reviewer=status.reviewer, date=self.day(status.date))
+            return texts.review("asked", changes=changes, reviewer=status.reviewer, date=self.day(status.date))
         if status.reviewer is None:
-            return words()["undecided"]
-        return words()["taken_back"].format(reviewer=status.reviewer, date=self.day(status.date))
+            return texts.review("undecided")
+        return texts.review("taken_back", reviewer=status.reviewer, date=self.day(status.date))
 
     def day(self, date: str | None) -> str:
         """The day of a review as the survey asks days to be written."""
@@ -73,7 +69,7 @@ class InWords:
         found = Counter(status.status for status in self.statuses.values())
         decided = {name: found[name] for name in ("accepted", "rejected", "reclassified")}
         open_ = found[OPEN] + found[ASKED_AGAIN]
-        sentence = words()["counts_again" if found[ASKED_AGAIN] else "counts"]
+        sentence = texts.review("counts_again" if found[ASKED_AGAIN] else "counts")
         return sentence.format(**decided, open=open_, again=found[ASKED_AGAIN]) if found else ""
 
     def gone(self) -> tuple[ReviewStatus, ...]:
@@ -88,33 +84,26 @@ class InWords:
         item = self._items[key]
         changed = ((name, then.get(name), number(item, name)) for name in status.moved)
         return "; ".join(
-            words()["moved"].format(name=_name(name), then=self._shown(old, name), now=self._shown(new, name))
+            texts.review("moved", name=_name(name), then=self._shown(old, name), now=self._shown(new, name))
             for name, old, new in changed
         )
 
     def _shown(self, estimate: Estimate | None, name: str) -> str:
-        return words()["none"] if estimate is None else numbers.measured(estimate, name, style=self.style)
-
-
-@cache
-def words() -> dict[str, str]:
-    """All words, by key."""
-    text = files("irsurvey.report.review").joinpath("words.toml").read_text(encoding="utf-8")
-    return {key: str(value) for key, value in tomllib.loads(text).items()}
+        return texts.review("none") if estimate is None else numbers.measured(estimate, name, style=self.style)
 
 
 def _decided(decision: Decision) -> str:
-    given = words()[f"by_{decision.decision}"]
+    given = texts.review(f"by_{decision.decision}")
     if decision.decision != "reclassified":
         return given
     if decision.class_ is None:
-        as_ = words()["as_urgency"].format(urgency=decision.urgency, words=texts.urgency(decision.urgency))
+        as_ = texts.review("as_urgency", urgency=decision.urgency, words=texts.urgency(decision.urgency))
     else:
-        as_ = words()["as_class"].format(
-            urgency=decision.urgency, criterion=decision.criterion, **{"class": decision.class_}
+        as_ = texts.review(
+            "as_class", urgency=decision.urgency, criterion=decision.criterion, **{"class": decision.class_}
         )
     return given.format(**{"class": as_})
 
 
 def _name(name: str) -> str:
-    return words()["urgency_name"] if name == URGENCY else texts.inside(name)
+    return texts.review("urgency_name") if name == URGENCY else texts.inside(name)

@@ -1,4 +1,6 @@
-"""The words of the documents, from texts.toml; what has no entry there is shown as it is."""
+"""The words of the documents, from texts.toml: what is said by its key, and what codes of the records are called.
+
+A code without an entry there is shown as it is; `say` of an unknown key is a KeyError."""
 
 from __future__ import annotations
 
@@ -15,6 +17,34 @@ _OF_AREAS = ("noise", "outline")
 """Inputs that each area of a frame has of its own."""
 _PARTS = ("spot", "whole", "undisturbed")
 """Parts of a finding, a component or a strip that are measured."""
+
+
+def say(key: str, /, **values: object) -> str:
+    """A word or sentence, with values in its gaps."""
+    text: str = _texts()["said"][key]
+    return text.format(**values) if values else text
+
+
+def noun(number: int, key: str) -> str:
+    """The word for one or for several: "frame", "frames"."""
+    one, several = _texts()["counted"][key]
+    return str(one if number == 1 else several)
+
+
+def tools() -> dict[str, str]:
+    """The words of the tools on the live page, by key."""
+    return dict(_texts()["tools"])
+
+
+def review(key: str, /, **values: object) -> str:
+    """A word or sentence of the review, with values in its gaps."""
+    text: str = _texts()["review"][key]
+    return text.format(**values) if values else text
+
+
+def of_review() -> dict[str, str]:
+    """All words of the review, by key."""
+    return dict(_texts()["review"])
 
 
 def flag(code: str) -> str:
@@ -220,4 +250,4 @@ def _word(table: str, key: str) -> str:
 
 @cache
 def _texts() -> dict[str, Any]:
-    return tomllib.loads((files("irsurvey.report") / "texts.toml").read_text(encoding="utf-8"))
+    return tomllib.loads((files("irsurvey") / "texts.toml").read_text(encoding="utf-8"))
