@@ -27,11 +27,13 @@ from irsurvey.heat.convection import CONVECTION
 from irsurvey.heat.season import degree_days
 from irsurvey.heat.sky import SKY_MODELS
 from irsurvey.model import AssetReport, FrameReport, FrameTask, Quantity, Report, Survey
+from irsurvey.numbers import Style
 from irsurvey.radiometry.emissivity import materials
 from irsurvey.readers import read
 from irsurvey.report import WRITERS, frame_files, kept
 from irsurvey.report.review.standing import with_reviews
 from irsurvey.report.review.stored import stored
+from irsurvey.report.style import asked_by
 from irsurvey.survey.load import Known, load
 from irsurvey.survey.outside import areas, is_drawn_on, polygon_faults
 from irsurvey.survey.places import OUTPUT_MARKER
@@ -48,6 +50,7 @@ class Job:
     out: str
     maps: tuple[str, ...]
     uncertainty: str
+    style: Style
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +96,8 @@ def run(
     _claim_folder(out, {task.id for task in survey.tasks})
     reviews = stored(out)
     frames = []
-    made = [Job(task, str(out), maps, uncertainty) for task in _resolved(survey)]
+    style = asked_by(json.loads(survey.as_read))
+    made = [Job(task, str(out), maps, uncertainty, style) for task in _resolved(survey)]
     for frame in execute(analyse_file, made, jobs):
         frames.append(frame)
         if on_frame:
@@ -147,7 +151,7 @@ def analyse_file(job: Job) -> FrameReport:
             task = _with_window(task)
         partner = read(Path(task.pair.partner.path), task.pair.partner.read) if task.pair else None
         report, maps = pipeline.analyse(frame, task, partner=partner, maps=job.maps, uncertainty=job.uncertainty)
-        frame_files.write(report, maps, Path(job.out))
+        frame_files.write(report, maps, Path(job.out), style=job.style)
         kept.keep_photograph(task, Path(job.out))
     except FrameError as error:
         return pipeline.failed(task, str(error))

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import html
 import json
+import re
 import shutil
 from pathlib import Path
 
@@ -10,6 +12,7 @@ import jsonschema
 import numpy as np
 import pytest
 import tifffile
+from PIL import Image
 from samples import HOUSE, PUMP_STATION
 
 from irsurvey import run as runs
@@ -69,6 +72,17 @@ def test_a_run_writes_what_it_promises_into_a_folder_beside_the_survey(site):
     for frame in ("one", "two"):
         assert {f"frames/{frame}/{name}" for name in ("temperature.tif", "findings.tif", "annotated.png")} <= names
     assert not [name for name in names if ".part-" in name]
+
+
+def test_pictures_are_lettered_in_the_units_of_the_survey_wherever_they_are_shown(site):
+    site.write_text(SURVEY.replace("[survey]", '[survey]\ndisplay_units = "us"\ndecimal_comma = true'), "utf-8")
+    run(site)
+    with Image.open(site.parent / "report" / "frames" / "one" / "annotated.png") as picture:
+        words = picture.info["Description"]
+    # the wall reads about 18 °C = 64 °F, the patch 15 °C = 59 °F
+    low, high = (float(end.replace(",", ".")) for end in re.search(r"scale (\S+) to (\S+) °F", words).groups())
+    assert 57 < low < 60 < 63 < high < 66
+    assert words in html.unescape((site.parent / "report" / "report.html").read_text("utf-8"))
 
 
 def test_one_corrupt_frame_never_stops_the_others(site):

@@ -9,8 +9,9 @@ import cv2
 import numpy as np
 from numpy.typing import NDArray
 
+from irsurvey import numbers
 from irsurvey.model import FrameReport
-from irsurvey.numbers import decimals
+from irsurvey.numbers import SI, Style
 from irsurvey.report import outlines, picture, scale
 from irsurvey.report.inks import UNMEASURABLE, palette
 from irsurvey.report.labels import Label, change_mark, place
@@ -24,8 +25,10 @@ LEAST_SPAN_K = 1.0
 """Either end of a scale is at least this far from nought, so that noise does not look like a change."""
 
 
-def changed(frame: FrameReport, change: NDArray[np.float32]) -> Image.Image:
-    """Differences with pressure minus without [K], NaN where the frames do not overlap, as a palette image."""
+def changed(frame: FrameReport, change: NDArray[np.float32], *, style: Style = SI) -> Image.Image:
+    """Differences with pressure minus without [K], NaN where the frames do not overlap, as a palette image.
+
+    Its scale is lettered in the style."""
     end = display_end(change)
     factor = picture.enlargement(change.shape)
     canvas = picture.enlarged(picture.shades(change, -end, end), factor)
@@ -44,11 +47,10 @@ def changed(frame: FrameReport, change: NDArray[np.float32]) -> Image.Image:
     for tag, (x, y) in place(labels, busy):
         canvas[y : y + tag.shape[0], x : x + tag.shape[1]] = tag
     beyond = bool((change < -end).any()), bool((change > end).any())
-    strip = scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), -end, end, beyond, unit="K")
+    strip = scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), -end, end, beyond, unit="K", style=style)
     image = picture.side_by_side(canvas, strip)
     image.putpalette(palette(COLORMAP))
-    image.info["Scale"] = picture.scale_of(-end, end, beyond, "K")
-    image.info["Description"] = _in_words(frame, end)
+    image.info["Description"] = _in_words(frame, end, style)
     return image
 
 
@@ -59,11 +61,13 @@ def display_end(change: NDArray[np.float32]) -> float:
     return max(LEAST_SPAN_K, ceil(most * 10) / 10)
 
 
-def _in_words(frame: FrameReport, end: float) -> str:
+def _in_words(frame: FrameReport, end: float, style: Style) -> str:
     """What the picture shows, for those who cannot see it."""
     with_ = frame.pair.with_ if frame.pair else ""
     changes = frame.pair.changes if frame.pair else ()
     listed = ", ".join(f"{change_mark(n)} ({one.sense})" for n, one in enumerate(changes, 1))
-    ends = f"colour scale {decimals(-end, 1)} to {decimals(end, 1)} K ({COLORMAP})"
+    shown = numbers.converted(end, "change_k", style=style)
+    ends = " to ".join(numbers.decimals(one, 1, style=style) for one in (-shown, shown))
+    scale = f"colour scale {ends} {numbers.unit('change_k', style=style)} ({COLORMAP})"
     drawn = f"outlined changes: {listed}" if listed else "no changes"
-    return f"Change of surface temperature from frame {with_} to frame {frame.id}, {ends}; {drawn}."
+    return f"Change of surface temperature from frame {with_} to frame {frame.id}, {scale}; {drawn}."

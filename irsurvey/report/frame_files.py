@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from irsurvey import files
 from irsurvey.model import FrameReport, Maps
+from irsurvey.numbers import SI, Style
 from irsurvey.report import change_picture, picture
 from irsurvey.report.inks import COLORMAP
 from irsurvey.report.links import SHEET
@@ -20,10 +21,11 @@ NAMES = (
 """Every file that a run may write into a frame's folder: these here, and the frame's page in a report of many files."""
 
 
-def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP) -> Path:
+def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP, style: Style = SI) -> Path:
     """Write OUT/frames/<id>/temperature.tif, findings.tif, annotated.png, and the maps made on request.
 
-    change.png: what pressure changed, where an accepted pair of frames left a map of it.
+    change.png: what pressure changed, where an accepted pair of frames left a map of it; the scales of both pictures
+    are lettered in the style.
     temperature.tif: float32 °C, NaN where not measurable; findings.tif: uint16, 0 none, k = finding k.  On request
     heat_flux.tif: float32 W m⁻², and u_temperature.tif: float32 K, the standard uncertainty of each pixel of
     temperature.tif, NaN where none exists.  Each file is written whole or not at all; returns the frame's folder."""
@@ -36,12 +38,12 @@ def write(frame: FrameReport, maps: Maps, out: Path, *, colormap: str = COLORMAP
         else:
             _write_tiff(folder / name, on_request.astype(np.float32, copy=False))
     with files.whole(folder / "annotated.png") as part:
-        picture.save(picture.annotated(frame, maps, colormap=colormap), part)
+        picture.save(picture.annotated(frame, maps, colormap=colormap, style=style), part)
     if maps.change is None:
         (folder / "change.png").unlink(missing_ok=True)
     else:
         with files.whole(folder / "change.png") as part:
-            picture.save(change_picture.changed(frame, maps.change), part)
+            picture.save(change_picture.changed(frame, maps.change, style=style), part)
     return folder
 
 

@@ -11,13 +11,13 @@ import cv2
 import numpy as np
 from numpy.typing import NDArray
 
+from irsurvey import numbers
 from irsurvey.model import FrameReport, Maps
-from irsurvey.numbers import Style, decimals
+from irsurvey.numbers import SI, Style
 from irsurvey.report import outlines, scale
 from irsurvey.report.inks import COLORMAP, DARK, LEVELS, LIGHT, UNMEASURABLE, Pixels, palette
 from irsurvey.report.labels import Box, Label, Point, component_mark, place, strip_mark
 from irsurvey.report.ranking import foremost
-from irsurvey.report.sentences import in_style
 
 if TYPE_CHECKING:
     from PIL import Image
@@ -36,12 +36,12 @@ _CLEARANCE = 2  # pixels between an extreme and a tag
 _EXTREME_COST = 100_000  # of hiding an extreme: more than any number of outlined pixels
 
 
-def annotated(frame: FrameReport, maps: Maps, *, colormap: str = COLORMAP) -> Image.Image:
+def annotated(frame: FrameReport, maps: Maps, *, colormap: str = COLORMAP, style: Style = SI) -> Image.Image:
     """The picture as a palette image (mode "P"): temperatures are entries below `LEVELS`, everything drawn is above.
 
     Each pixel of the frame is a square of whole pixels.  Outlines run just outside a finding; neither they
     nor the numbers cover the hottest or the coldest pixel of the frame, of a finding or of a component.
-    What the picture shows is said in words in `info["Description"]`."""
+    Its scale is lettered in the style; what the picture shows is said in words in `info["Description"]`."""
     temperature = maps.temperature_c
     low, high = display_range(temperature, maps.labels)
     factor = enlargement(temperature.shape)
@@ -55,47 +55,22 @@ def annotated(frame: FrameReport, maps: Maps, *, colormap: str = COLORMAP) -> Im
         square = slice(y * factor, (y + 1) * factor), slice(x * factor, (x + 1) * factor)
         canvas[square] = plain[square]
     beyond = bool((temperature < low).any()), bool((temperature > high).any())
-    image = side_by_side(canvas, scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), low, high, beyond))
+    height = max(canvas.shape[0], scale.LEAST_HEIGHT)
+    image = side_by_side(canvas, scale.strip(height, low, high, beyond, style=style))
     image.putpalette(palette(colormap))
-    image.info["Scale"] = scale_of(low, high, beyond, "°C")
-    image.info["Description"] = _in_words(frame, low, high, colormap)
+    image.info["Description"] = _in_words(frame, low, high, colormap, style)
     return image
 
 
 def save(image: Image.Image, path: Path | BytesIO) -> None:
-    """Write the picture as PNG, its description and the ends of its scale with it.
+    """Write the picture as PNG, its description with it.
 
     Level 1: half the time of the usual level for the same size, because noise hardly compresses."""
     from PIL.PngImagePlugin import PngInfo
 
     words = PngInfo()
-    for name in ("Description", "Scale"):
-        words.add_itxt(name, str(image.info.get(name, "")))
+    words.add_itxt("Description", str(image.info["Description"]))
     image.save(path, format="PNG", compress_level=1, pnginfo=words)
-
-
-def scale_of(low: float, high: float, beyond: tuple[bool, bool], unit: str) -> str:
-    """The scale beside a picture, as `restyled` reads it: its ends, whether the frame goes beyond them, its unit."""
-    return f"{low!r} {high!r} {beyond[0]:d} {beyond[1]:d} {unit}"
-
-
-def restyled(image: Image.Image, style: Style) -> Image.Image:
-    """A picture that was saved, its scale and its description in a style; as it is where it does not tell its scale."""
-    from PIL import Image
-
-    written = str(image.info.get("Scale", "")).split()
-    if image.mode != "P" or len(written) != 5:  # low, high, below, above, unit
-        return image
-    low, high = (float(end) for end in written[:2])
-    pixels = np.asarray(image).copy()
-    beyond = written[2] == "1", written[3] == "1"
-    strip = scale.strip(pixels.shape[0], low, high, beyond, unit=written[4], style=style)
-    pixels[:, -strip.shape[1] :] = strip
-    changed = Image.frombytes("P", image.size, pixels.tobytes())
-    changed.putpalette(image.getpalette() or [])
-    drawn, semicolon, rest = str(image.info.get("Description", "")).partition(";")
-    changed.info |= {"Scale": image.info["Scale"], "Description": in_style(drawn, style) + semicolon + rest}
-    return changed
 
 
 def display_range(temperature: Temperatures, labels: NDArray[np.uint16]) -> tuple[float, float]:
@@ -228,9 +203,10 @@ def corners(polygon: tuple[tuple[float, float], ...], factor: int) -> NDArray[np
     return np.rint((np.asarray(polygon) + 0.5) * factor - 0.5).astype(np.int32)
 
 
-def _in_words(frame: FrameReport, low: float, high: float, colormap: str) -> str:
+def _in_words(frame: FrameReport, low: float, high: float, colormap: str, style: Style) -> str:
     """What the picture shows, for those who cannot see it."""
-    scale = f"colour scale {decimals(low, 1)} to {decimals(high, 1)} °C ({colormap})"
+    ends = (numbers.decimals(numbers.converted(end, "min_c", style=style), 1, style=style) for end in (low, high))
+    scale = f"colour scale {' to '.join(ends)} {numbers.unit('min_c', style=style)} ({colormap})"
     findings = ", ".join(f"{finding.label} ({finding.sense})" for finding in frame.findings)
     components = ", ".join(f"{component_mark(n)} ({c.name[:40]})" for n, c in enumerate(frame.components, 1))
     drawn = [f"outlined findings: {findings}" if findings else "no findings"]

@@ -11,8 +11,6 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from irsurvey.model import FrameReport, FrameTask
-from irsurvey.numbers import SI, Style
-from irsurvey.report import picture
 from irsurvey.report.labels import Box
 from irsurvey.report.picture import box, enlargement
 
@@ -42,8 +40,8 @@ class Picture:
     words: str
 
 
-def stored(frame: FrameReport, out: Path, name: str, *, style: Style = SI) -> Picture | None:
-    """A picture that the run left in the folder of a frame, its scale in a style; None where there is none."""
+def stored(frame: FrameReport, out: Path, name: str) -> Picture | None:
+    """A picture that the run left in the folder of a frame; None where there is none."""
     from PIL import Image
 
     path = out / "frames" / frame.id / name
@@ -51,14 +49,8 @@ def stored(frame: FrameReport, out: Path, name: str, *, style: Style = SI) -> Pi
         return None
     data = path.read_bytes()
     with Image.open(io.BytesIO(data)) as image:
-        shown: Image.Image = image
-        if (style.units, style.decimal_comma) != (SI.units, SI.decimal_comma):
-            shown = picture.restyled(image, style)
-            stream = io.BytesIO()
-            picture.save(shown, stream)
-            data = stream.getvalue()
-        words = str(shown.info.get("Description", ""))
-        return Picture(f"data:image/png;base64,{b64encode(data).decode()}", *shown.size, words)
+        words = str(image.info.get("Description", ""))
+        return Picture(f"data:image/png;base64,{b64encode(data).decode()}", *image.size, words)
 
 
 def around(frame: FrameReport, polygon: tuple[tuple[float, float], ...], words: str, out: Path) -> Picture | None:

@@ -63,9 +63,9 @@ def sheet(frame: FrameReport, task: FrameTask | None, out: Path, *, style: Style
         task,
         findings=shown,
         more=len(frame.findings) - len(shown),
-        picture=pictures.stored(frame, out, "annotated.png", style=style),
+        picture=pictures.stored(frame, out, "annotated.png"),
         photo=pictures.photograph(task, pictures.PHOTOGRAPH_SIDE) if task and frame.status != "failed" else None,
-        change=pictures.stored(frame, out, "change.png", style=style),
+        change=pictures.stored(frame, out, "change.png"),
         pair=pressure.told(frame, task),
         histogram=histogram_plot.plot(frame, out, style=style),
     )

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Mapping
 from datetime import date
 from functools import partial
 from inspect import isfunction, signature
@@ -18,8 +19,13 @@ _TIME = re.compile(r"(\d{4}-\d\d-\d\d)(?:T(\d\d:\d\d)(?::\d\d(?:\.\d+)?)?(.*))?"
 
 def asked(report: Report) -> Style:
     """The style that [survey] asks for, as far as it is one there is."""
-    survey = report.survey.get("survey")
-    said = survey if isinstance(survey, dict) else {}
+    return asked_by(report.survey)
+
+
+def asked_by(survey: Mapping[str, Any]) -> Style:
+    """The same of a survey file as it was read."""
+    said = survey.get("survey")
+    said = said if isinstance(said, dict) else {}
     written = said.get("date_format")
     return Style(
         units="us" if said.get("display_units") == "us" else SI.units,
