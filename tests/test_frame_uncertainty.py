@@ -9,7 +9,12 @@ import pytest
 import tasks
 
 from irsurvey import pipeline
+from irsurvey.analysis.correction import correct
+from irsurvey.analysis.measurand import names, reach, stacked
+from irsurvey.analysis.planning import planned
+from irsurvey.analysis.regions import screen
 from irsurvey.model import Frame, Signal, Surface
+from irsurvey.uncertainty import propagate
 
 SHAPE = (120, 160)
 
@@ -299,3 +304,25 @@ def test_a_foil_read_in_the_same_frame_errs_with_the_camera_and_not_on_its_own()
     offset = 1.0 / 3**0.5
     assert other.u_c == pytest.approx(2 * offset, rel=0.25)  # shading of the lens adds to it
     assert one.u_c < 0.75 * other.u_c
+
+
+def test_what_belongs_to_one_anomaly_moves_no_other_number():
+    # every input moved by itself, through the whole frame, gives the same budgets
+    t = wall()
+    for row, column in ((5, 60), (5, 100), (95, 90)):
+        t[row : row + 15, column : column + 20] -= 4
+    task = tasks.task()
+    corrected = correct(tasks.frame(t), task)
+    measured = planned(corrected, screen(corrected, task), task)
+    assert len(measured.plan.regions) == 4
+    numbers = names(measured.plan, measured.scene)
+    reached = reach(measured.plan, numbers)
+    assert {name.partition(":")[0] for name in reached} == {"noise", "outline"}
+    assert len(reached) >= 3 * 4  # of each its spot, its whole and its outline
+
+    def model(values):
+        return stacked(measured.plan, values)
+
+    together, alone = propagate(model, measured.scene, reached), propagate(model, measured.scene)
+    # to rounding of sums over different numbers of scenes
+    np.testing.assert_allclose(together.half_swings, alone.half_swings, rtol=1e-9, atol=1e-12)

@@ -6,7 +6,7 @@ stored values, so thousands of scenes cost no more than a few hundred values eac
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -174,6 +174,20 @@ def stacked(plan: Plan, values: Columns) -> NDArray[np.float64]:
 def names(plan: Plan, scene: Scene) -> tuple[tuple[str, str], ...]:
     """(region, number) of each result of `stacked`."""
     return tuple(measure(plan, {name: np.full((1, 1), value) for name, value in scene.values().items()}))
+
+
+def reach(plan: Plan, numbers: Sequence[tuple[str, str]]) -> dict[str, list[int]]:
+    """Names of a scene that move the numbers of one anomaly alone, the noise of its pixels and its outline → where
+    these stand among the results `numbers`."""
+    of_region: dict[str, list[int]] = {}
+    for place, (region, _) in enumerate(numbers):
+        of_region.setdefault(region, []).append(place)
+    return {
+        name: of_region[region.name]
+        for region in plan.regions
+        for name in (region.outline, *(shift for one in (region.spot, region.whole) for shift, _ in one.shifts))
+        if name and name.partition(":")[0] in ("noise", "outline")
+    }
 
 
 class _Temperatures:

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from irsurvey.analysis.budgets import terms
 from irsurvey.analysis.exchange import Columns
-from irsurvey.analysis.measurand import names, stacked
+from irsurvey.analysis.measurand import names, reach, stacked
 from irsurvey.analysis.planning import Planned
 from irsurvey.model import BudgetTerm, Estimate
 from irsurvey.uncertainty import Budget, Drawn, differ, monte_carlo, propagate
@@ -66,10 +66,10 @@ def propagated(measured: Planned, how: str, seed: str) -> Propagated:
     def model(values: Columns) -> NDArray[np.float64]:
         return stacked(measured.plan, values)
 
-    budget = propagate(model, measured.scene)
+    numbers = names(measured.plan, measured.scene)
+    budget = propagate(model, measured.scene, reach(measured.plan, numbers))
     drawn = monte_carlo(model, measured.scene, seed=tuple(seed.encode())) if how == DRAWN else None
     estimates = budget.estimates() if drawn is None else drawn.estimates()
-    numbers = names(measured.plan, measured.scene)
     return Propagated(
         results=dict(zip(numbers, estimates, strict=True)),
         budgets={name: terms(budget, index) for index, name in enumerate(numbers) if name[1] in BUDGETED},

@@ -13,8 +13,9 @@ from irsurvey import pipeline
 from irsurvey.analysis.correction import correct
 from irsurvey.analysis.measurand import stacked
 from irsurvey.analysis.planning import planned
+from irsurvey.analysis.propagation import FIRST_ORDER, propagated
 from irsurvey.analysis.regions import screen
-from irsurvey.uncertainty import monte_carlo, propagate
+from irsurvey.uncertainty import monte_carlo
 
 PLACES = ((60, 250), (60, 400), (250, 250), (250, 400), (400, 300))
 
@@ -44,7 +45,7 @@ def test_what_uncertainty_adds_to_a_frame_with_five_findings(capsys):
         return stacked(measured.plan, values)
 
     whole = seconds(lambda: pipeline.analyse(frame, task))
-    first_order = seconds(lambda: propagate(model, measured.scene))
+    first_order = seconds(lambda: propagated(measured, FIRST_ORDER, seed=""))
     drawn = seconds(lambda: monte_carlo(model, measured.scene, seed=1, draws_at_most=10_000), repeats=3)
     with capsys.disabled():
         print(f"\nframe with five findings: {1e3 * whole:.1f} ms; first order {1e3 * first_order:.1f} ms of it,")

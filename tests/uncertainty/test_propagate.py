@@ -152,3 +152,35 @@ def test_a_rectangular_input_moves_by_its_standard_uncertainty_like_any_other():
     half_width = 1.0
     scene = Scene((Quantity("a", 19.9, half_width / np.sqrt(3), distribution="rectangular"),))
     assert propagate(lambda v: v["a"], scene).u[0] == pytest.approx(0.58, abs=0.005)
+
+
+@given(seed=st.integers(0, 10_000))
+def test_inputs_that_reach_none_of_the_same_results_may_move_together(seed):
+    # What each input does is the same to the last bit; only the number of scenes is smaller.
+    rng = np.random.default_rng(seed)
+    groups = [list(places) for places in np.array_split(rng.permutation(6), rng.integers(1, 4))]
+    quantities = [Quantity("shared", 1.0, 0.1), Quantity("edge", 0.99, 0.05, high=1.0)]
+    reach = {}
+    for number, places in enumerate(groups):
+        for k in range(rng.integers(1, 3)):
+            name = f"own {number} {k}"
+            quantities.append(Quantity(name, float(rng.normal()), 0.2, high=float(rng.choice([np.inf, 0.1]))))
+            reach[name] = places
+    order = rng.permutation(len(quantities))
+    scene = Scene(tuple(quantities[k] for k in order), correlations=(("shared", quantities[-1].name, 0.5),))
+    gaps = rng.random(6) < 0.2  # results without a solution
+    scenes = []
+
+    def model(v):
+        scenes.append(v["shared"].size)
+        results = np.repeat(v["shared"] * v["edge"], 6, axis=1)
+        for name, places in reach.items():
+            results[:, places] += np.sin(v[name]) * v["shared"]
+        return np.where(gaps, np.nan, results)
+
+    plain, together = propagate(model, scene), propagate(model, scene, reach)
+    np.testing.assert_array_equal(together.half_swings, plain.half_swings)
+    np.testing.assert_array_equal(together.u, plain.u)
+    assert scenes[1] <= scenes[0]
+    most = max(sum(1 for own in reach.values() if own == places) for places in groups)
+    assert scenes[1] == 2 * (2 + most) + 1
