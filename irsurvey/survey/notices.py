@@ -26,6 +26,10 @@ _ASSUMED = {
     "window_ambient": "what the window mirrors not stated: the air temperature assumed",
 }
 
+_HUMIDITIES = {"relative_humidity": "", "indoor_humidity": "indoor ", "outdoor_humidity": "outdoor "}
+_DRIEST = 0.03
+"""Relative humidity below which air is drier than in a desert: rather a fraction than percent (common practice)."""
+
 _WITHOUT_LOAD = ("voltage-driven", "pv")
 """Methods for what is warm by its voltage or by the sun: no load law holds, and a load clears nothing."""
 
@@ -54,6 +58,10 @@ def _of(task: FrameTask, bands: Mapping[str, tuple[float, float]]) -> Iterator[s
     for name, text in _ASSUMED.items():
         if name in assumed:
             yield text.format(assumed[name])
+    for name, whose in _HUMIDITIES.items():
+        if name in task.scene and task.scene[name].value < _DRIEST:
+            percent = 100 * task.scene[name].value
+            yield f"{whose}relative humidity of {percent:.2g} %: was a fraction stated? the key wants percent"
     if task.kind == "building":
         if "total_emissivity" in assumed:
             yield "total emissivity, for the exchange of heat, not stated: that in the camera's band assumed"

@@ -215,6 +215,17 @@ def test_a_surface_is_a_wall_unless_stated_and_that_is_no_notice(minimal: str, l
     assert not [notice for notice in survey.notices if "tilt" in notice]
 
 
+@pytest.mark.parametrize(("stated", "is_asked"), [("0.5", True), ("2.9", True), ("3", False), ("50", False)])
+def test_a_humidity_that_looks_like_a_fraction_is_asked_about(
+    stated: str, is_asked: bool, minimal: str, load_text: Load
+) -> None:
+    # even the air of deserts is seldom below 5 % (common practice); 0.5 as a fraction is an ordinary room
+    survey = load_text(minimal.replace("[conditions]", f"[conditions]\nindoor_relative_humidity_percent = {stated}"))
+    asked = [notice for notice in survey.notices if "was a fraction stated?" in notice]
+    assert bool(asked) == is_asked
+    assert all(notice.startswith(f"indoor relative humidity of {stated} %") for notice in asked)
+
+
 # --- what a face sees outside ----------------------------------------------------------------------------------
 
 
