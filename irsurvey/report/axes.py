@@ -1,7 +1,8 @@
 """What small drawings in the documents share: their size, where their axes stand, ticks at round numbers.
 
 They are places in the coordinates of a drawing, which the page sets as SVG and the paper as lines: one look, lettering
-that stays text, and quick.  Histograms of 27 frames took 0.1 s so and 7.0 s as SVG from matplotlib.
+that stays text, and quick.  A histogram takes 3 ms and 2 kB so, 65 ms and 18 kB as SVG from matplotlib (its figure used
+again and again), which is what the whole analysis of a frame takes.
 """
 
 from __future__ import annotations
