@@ -158,7 +158,7 @@ def analyse_file(job: Job) -> FrameReport:
     except OutputError:
         raise
     except Exception as error:  # one frame that trips over a fault of ours must not cost the others their report
-        return pipeline.failed(task, f"unexpected {type(error).__name__}: {error}; please report this as a bug")
+        return pipeline.failed(task, texts.state("unexpected", kind=type(error).__name__, error=error))
     return report
 
 
@@ -277,5 +277,5 @@ def _assets(survey: Survey, frames: tuple[FrameReport, ...]) -> Iterator[AssetRe
     """Every asset of the round, inspected where an analysed frame shows it."""
     for asset in survey.assets:
         shown = tuple(frame.id for frame in frames if frame.asset == asset.id and frame.status == "analysed")
-        reason = asset.not_inspected or (None if shown else "no analysed frame shows it")
+        reason = asset.not_inspected or (None if shown else texts.state("no_frame_shows_it"))
         yield AssetReport(asset.id, asset.description, asset.location, asset.criticality, reason is None, reason, shown)

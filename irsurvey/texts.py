@@ -42,6 +42,18 @@ def review(key: str, /, **values: object) -> str:
     return text.format(**values) if values else text
 
 
+def state(key: str, /, **values: object) -> str:
+    """A sentence of the analysis, or a part of one, with values in its gaps; a code, as sentences name it."""
+    text: str = _texts()["statements"][key]
+    return text.format(**values) if values else text
+
+
+def of_table(words: str) -> str:
+    """What stands for words of a data file (a class, a requirement, a recommended action); without an entry, they."""
+    found: str = _texts()["tables"].get(words, words)
+    return found
+
+
 def of_review() -> dict[str, str]:
     """All words of the review, by key."""
     return dict(_texts()["review"])

@@ -187,7 +187,8 @@ def test_links_and_paths_of_the_documents_lead_somewhere() -> None:
 def test_the_tree_of_the_developers_guide_is_the_tree() -> None:
     (tree,) = (block for block in blocks(DEVELOPERS, "text") if block.startswith("irsurvey/"))
     inside = tree.split("tests/")[0].splitlines()[1:]
-    named = {word.rstrip("/") for line in inside for word in re.findall(r"[\w.]+(?:\.py|/)", line.split("  ")[1])}
-    other = ("py.typed", "__pycache__", "texts.toml")  # a table stands with its module
-    real = {path.name for path in (ROOT / "irsurvey").iterdir() if path.name not in other}
+    named = {
+        word.rstrip("/") for line in inside for word in re.findall(r"[\w.]+(?:\.py|\.toml|/)", line.split("  ")[1])
+    }
+    real = {path.name for path in (ROOT / "irsurvey").iterdir() if path.name not in ("py.typed", "__pycache__")}
     assert named == real

@@ -15,19 +15,16 @@ from irsurvey.assess.envelope import INCREASE, Face, given
 from irsurvey.assess.severity import AUTOMATIC_REFERENCE, MIRRORS, SATURATED
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.model import Estimate, RoomAir, Strip, StripReport
+from irsurvey.texts import state
 
 DISTURBED = "ends still have a gradient"
 
-_NOT_ENVELOPE = "a thermal transmittance belongs to an envelope survey of a steady wall: look by that method, no fan on"
 _AGAINST = {
-    MIRRORS: "what it shows may be mirrored: look again from another side, or with matt tape on it",
-    SATURATED: "its reading is a bound: look again with a temperature range that holds it",
-    AUTOMATIC_REFERENCE: "nobody confirmed the reference area: draw it, and run again",
+    MIRRORS: "may_be_mirrored",
+    SATURATED: "is_bound",
+    AUTOMATIC_REFERENCE: "reference_not_confirmed",
 }
-"""Flags that leave a region without a thermal transmittance, and what would make it possible."""
-_NEEDS_AIR = "indoor and outdoor air temperature are not both stated: state indoor_air_c and outdoor_air_c"
-_NEEDS_SCALE = "nothing gives the scale: state distance_m and ifov_mrad, or draw a known_length"
-_UNREADABLE = "not every pixel along it can be measured: draw it elsewhere"
+"""Flags that leave a region without a thermal transmittance → what would make it possible, a key of `texts.state`."""
 
 _TRANSMITTANCES = {
     "u_value_w_m2k": "u_value",
@@ -65,12 +62,12 @@ def transmittances(
     if task.kind != "building":
         return dict.fromkeys(found), {}
     if task.method != "envelope" or task.pair is not None:
-        return dict.fromkeys(found), {key: _NOT_ENVELOPE for key, number in found.items() if number is not None}
+        return dict.fromkeys(found), _refused(found, state("not_envelope"))
     if evidence.planned.plan.air is None:
-        return dict.fromkeys(found), {"u_value_w_m2k": _NEEDS_AIR}
+        return dict.fromkeys(found), {"u_value_w_m2k": state("needs_air")}
     for flag in (*flags, *((AUTOMATIC_REFERENCE,) if task.reference is None else ())):
         if flag in _AGAINST:
-            return dict.fromkeys(found), {key: _AGAINST[flag] for key, number in found.items() if number is not None}
+            return dict.fromkeys(found), _refused(found, state(_AGAINST[flag]))
     numbers, refusals = given(found, face(evidence))
     return withheld(evidence, numbers, refusals, unless="quantitative")
 
@@ -82,8 +79,13 @@ def withheld(
     level, reason = evidence.claim
     if evidence.task.kind != "building" or LEVELS.index(level) >= LEVELS.index(unless):
         return dict(numbers), refusals
-    why = f"the conditions allow no such number (claim: {level}): {reason}"
-    return dict.fromkeys(numbers), refusals | {key: why for key, number in numbers.items() if number is not None}
+    why = state("conditions_forbid", claim=state(level), reason=reason)
+    return dict.fromkeys(numbers), refusals | _refused(numbers, why)
+
+
+def _refused(numbers: Mapping[str, Estimate | None], why: str) -> dict[str, str]:
+    """Why each of the numbers that there are is not given."""
+    return {key: why for key, number in numbers.items() if number is not None}
 
 
 def envelope_of_finding(evidence: Evidence, name: str, sense: str, flags: Collection[str]) -> dict[str, Any]:
@@ -125,11 +127,11 @@ def _heat(
     """
     found = {key: evidence.numbers.results.get((name, number)) for key, number in _HEAT.items()}
     if MIRRORS in flags:
-        return dict.fromkeys(found), refusals | dict.fromkeys(found, _AGAINST[MIRRORS])
+        return dict.fromkeys(found), refusals | dict.fromkeys(found, state(_AGAINST[MIRRORS]))
     heat, told = withheld(evidence, found, {}, unless="qualitative")
     if increase is None and heat["excess_heat_w_k"] is not None:
         heat["excess_heat_w_k"] = None
-        told["excess_heat_w_k"] = refusals.get(INCREASE, _NEEDS_AIR)
+        told["excess_heat_w_k"] = refusals.get(INCREASE, state("needs_air"))
     return heat, refusals | told
 
 
@@ -151,7 +153,7 @@ def room_air(evidence: Evidence) -> RoomAir | None:
         return None
     results = evidence.numbers.results
     return RoomAir(
-        how=f"humidity class {humidity.humidity_class}" if humidity.humidity_class else "measured",
+        how=state("humidity_class", number=humidity.humidity_class) if humidity.humidity_class else "measured",
         vapour_pressure_pa=results.get(("", "vapour_pressure")),
         dew_point_c=celsius(results.get(("", "dew_point"))),
         mould_surface_c=celsius(results.get(("", "mould_surface"))),
@@ -165,7 +167,7 @@ def strip_reports(evidence: Evidence) -> Iterator[StripReport]:
         if strip.name in drawn:
             yield _measured(drawn[strip.name], evidence)
         else:
-            why = _UNREADABLE if evidence.planned.plan.air else _NEEDS_AIR
+            why = state("strip_unreadable" if evidence.planned.plan.air else "needs_air")
             yield _report(strip, {}, {"incidence_factor": why}, (), ())
 
 
@@ -175,7 +177,7 @@ def _measured(drawn: Drawn, evidence: Evidence) -> StripReport:
     ratios = {"u_value_w_m2k": "u_value", "incidence_factor": "incidence_factor"}  # over what little the wall lets pass
     numbers, refusals = given({key: results.get((owner, name)) for key, name in ratios.items()}, face(evidence))
     if length is None:
-        refusals["linear_transmittance_w_mk"] = _NEEDS_SCALE
+        refusals["linear_transmittance_w_mk"] = state("needs_scale")
     measured = {
         "linear_transmittance_w_mk": results.get((owner, "linear_transmittance")),
         **numbers,

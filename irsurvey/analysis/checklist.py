@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Collection, Iterable, Mapping
 
 from irsurvey.model import FrameReport, FrameTask, Survey
+from irsurvey.texts import state
 
 _ABOUT = {
     "test": "test_description",
@@ -29,8 +30,6 @@ _CONDITIONS: Mapping[str, Collection[str]] = {
 }
 """Item → the quantities of the Scene that state it; each must be recorded for every frame, not assumed."""
 
-_INPUTS = "inputs of the frames"
-
 
 def present_in(survey: Survey, frames: Iterable[FrameReport]) -> Mapping[str, str]:
     """Where the report of a survey states each item of assess/checklist.toml; what it does not state is left out.
@@ -45,21 +44,22 @@ def present_in(survey: Survey, frames: Iterable[FrameReport]) -> Mapping[str, st
     if not tasks:
         return said
     recorded = [{quantity.name for quantity in task.scene.quantities if quantity.source != "default"} for task in tasks]
+    inputs, sheets = state("in_inputs"), state("in_sheets")
     of_frames = {
-        "when": ("sheets of the frames", all(task.taken for task in tasks)),
-        "pressure": (_INPUTS, any(_has_pressure(task) for task in tasks)),
-        "parts": ("sheets of the frames", all(task.label or task.asset for task in tasks)),
-        "defects": ("findings", all(one.indication for frame in analysed.values() for one in frame.findings)),
-        "orientation": ("sheets of the frames", all(task.orientation for task in tasks)),
-        "equipment": ("cameras of the survey", all(task.camera.serial for task in tasks)),
-        "sun": (_INPUTS, all({"hours_since_sun", "irradiance"} & names for names in recorded)),
-        "views": ("sheets of the frames", all(task.photo for task in tasks)),
-        "thermograms": ("sheets of the frames", True),
+        "when": (sheets, all(task.taken for task in tasks)),
+        "pressure": (inputs, any(_has_pressure(task) for task in tasks)),
+        "parts": (sheets, all(task.label or task.asset for task in tasks)),
+        "defects": (state("in_findings"), all(one.indication for frame in analysed.values() for one in frame.findings)),
+        "orientation": (sheets, all(task.orientation for task in tasks)),
+        "equipment": (state("in_cameras"), all(task.camera.serial for task in tasks)),
+        "sun": (inputs, all({"hours_since_sun", "irradiance"} & names for names in recorded)),
+        "views": (sheets, all(task.photo for task in tasks)),
+        "thermograms": (sheets, True),
     }
     return {
         **said,
         **{item: where for item, (where, is_there) in of_frames.items() if is_there},
-        **{item: _INPUTS for item, names in _CONDITIONS.items() if all(of.issuperset(names) for of in recorded)},
+        **{item: inputs for item, names in _CONDITIONS.items() if all(of.issuperset(names) for of in recorded)},
     }
 
 

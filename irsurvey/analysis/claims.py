@@ -7,6 +7,7 @@ import numpy as np
 from irsurvey.analysis.correction import Corrected
 from irsurvey.analysis.regions import Screened
 from irsurvey.assess.conditions import LEVELS
+from irsurvey.texts import state
 
 
 def limited(claim: tuple[str, str], corrected: Corrected, screened: Screened) -> tuple[str, str]:
@@ -17,14 +18,14 @@ def limited(claim: tuple[str, str], corrected: Corrected, screened: Screened) ->
     """
     if np.isnan(corrected.t).all():
         counts = (
-            (corrected.saturated_pixels, "saturated"),
-            (corrected.unsolved_pixels, "without physical solution"),
-            (corrected.without_data_pixels, "without data"),
+            (corrected.saturated_pixels, "pixels_saturated"),
+            (corrected.unsolved_pixels, "pixels_unsolved"),
+            (corrected.without_data_pixels, "pixels_without_data"),
         )
-        told = ", ".join(f"{pixels} {words}" for pixels, words in counts if pixels)
-        return _lower(claim, "not valid", f"no pixel of the frame could be measured: {told}")
+        told = ", ".join(state(key, pixels=pixels) for pixels, key in counts if pixels)
+        return _lower(claim, "not valid", state("nothing_measured", pixels=told))
     if screened.reference is None:
-        return _lower(claim, "qualitative", "no reference area: nothing could be compared with one")
+        return _lower(claim, "qualitative", state("nothing_compared"))
     return claim
 
 

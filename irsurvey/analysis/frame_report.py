@@ -15,7 +15,7 @@ from irsurvey.analysis.findings import findings, reference_emissivity
 from irsurvey.analysis.regions import ENOUGH_REFERENCE, SMALL_REFERENCE, Screened, has_small_reference, stretch_of
 from irsurvey.analysis.risk import surfaces_at_risk
 from irsurvey.analysis.surroundings import surroundings_flags
-from irsurvey.assess.severity import LEAST_EMISSIVITY, REFLECTIVE
+from irsurvey.assess.severity import LEAST_EMISSIVITY, NO_SOLUTION, REFLECTIVE, SATURATED
 from irsurvey.assess.twins import TwinPlan
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import outline
@@ -23,6 +23,7 @@ from irsurvey.heat.humid_air import dew_point, vapour_density
 from irsurvey.model import Detectable, Frame, FrameReport, FrameTask, ReferenceReport, Source, TemperatureSummary
 from irsurvey.radiometry.atmosphere import transmittance, validity_notes
 from irsurvey.radiometry.band import band_table
+from irsurvey.texts import state
 
 _STRONG_AMPLIFICATION = 3.0
 """∂T/∂T_app from which a reader is warned."""
@@ -77,7 +78,7 @@ def failed(task: FrameTask, reason: str) -> FrameReport:
         reason=reason,
         kind=task.kind,
         claim="not valid",
-        claim_reason="the frame could not be analysed",
+        claim_reason=state("not_analysed"),
         group=task.group,
         label=task.label,
         asset=task.asset,
@@ -191,31 +192,30 @@ def _flags(evidence: Evidence) -> Iterator[str]:
     task, corrected = evidence.task, evidence.corrected
     scene, values = corrected.scene, corrected.scene.values()
     if evidence.screened.reference is None:
-        yield "no reference area found: nothing can be compared in this frame"
+        yield state("flag_no_reference")
     elif task.reference is None:
         yield "automatic reference"
     if has_small_reference(evidence.screened):
-        yield f"{SMALL_REFERENCE}: fewer than {ENOUGH_REFERENCE} pixels"
+        yield f"{SMALL_REFERENCE}: {state('flag_small_reference', pixels=ENOUGH_REFERENCE)}"
     if reference_emissivity(evidence) < LEAST_EMISSIVITY:
-        yield f"{REFLECTIVE}: the reference area"
-    for pixels, words in (
-        (corrected.saturated_pixels, "saturated: {} pixels at or beyond the range"),
-        (corrected.unsolved_pixels, "no physical solution: {} pixels"),
-        (corrected.without_data_pixels, "without data: {} pixels"),
-    ):
-        if pixels:
-            yield words.format(pixels)
+        yield f"{REFLECTIVE}: {state('flag_reflective_reference')}"
+    if pixels := corrected.saturated_pixels:
+        yield f"{SATURATED}: {state('flag_saturated', pixels=pixels)}"
+    if pixels := corrected.unsolved_pixels:
+        yield f"{NO_SOLUTION}: {state('flag_unsolved', pixels=pixels)}"
+    if pixels := corrected.without_data_pixels:
+        yield state("flag_without_data", pixels=pixels)
     if (stretch := stretch_of(corrected, task, 0)) > _STRONG_AMPLIFICATION:
-        yield f"errors of the reading are amplified {stretch:.1f} times"
+        yield state("flag_amplified", times=f"{stretch:.1f}")
     if "wind" in scene and scene["wind"].source == "default":
-        yield "wind not recorded, assumed"
+        yield state("flag_wind_assumed")
     if task.has_window and scene["window_temperature"].source == "default":
         yield "window temperature assumed"
     yield from surroundings_flags(task, evidence.planned.scene)
     if corrected.quantised_to > _COARSE:
-        yield f"numbers read in steps of {corrected.quantised_to:.3f} K: a far-off one stretches their range"
+        yield state("flag_coarse", step=f"{corrected.quantised_to:.3f}")
     if any(_is_curved(corrected, task, index) for index in range(len(corrected.optics_names))):
-        yield "strongly curved: run again with --uncertainty monte-carlo"
+        yield f"strongly curved: {state('flag_curved')}"
     yield from validity_notes(values["distance"], values["air"], values["pressure"])
 
 

@@ -34,6 +34,7 @@ from irsurvey.model import (
 )
 from irsurvey.radiometry.lookup import look_up
 from irsurvey.radiometry.measurement import object_temperature, object_temperatures
+from irsurvey.texts import state
 from irsurvey.uncertainty import propagate
 
 LEAST_CHANGE = 0.5
@@ -101,7 +102,7 @@ def compared(corrected: Corrected, screened: Screened, task: FrameTask, partner:
     try:
         before = correct(partner, task.pair.partner)
     except FrameError as error:
-        return _not_compared(task, screened, f"nothing in it can be measured: {error}")
+        return _not_compared(task, screened, state("pair_unreadable", error=error))
     return _compared(corrected, before, screened, task)
 
 
@@ -189,11 +190,9 @@ def _not_compared(task: FrameTask, screened: Screened, reason: str, registration
 
 
 def _unsteady(found: Changes) -> str:
-    remedy = "draw the reference on wall that no leak reaches, or keep people and heaters out of the view"
     if np.isnan(found.drift):
-        return f"the two frames share no pixel that can be measured in both; {remedy}"
-    away = f"{found.elsewhere - found.drift:+.1f} K"
-    return f"most of the view changed by {away} against the reference, which is no longer one; {remedy}"
+        return state("pair_no_common_pixel")
+    return state("pair_reference_changed", change=f"{found.elsewhere - found.drift:+.1f}")
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -13,6 +13,7 @@ from irsurvey.analysis.exchange import Columns
 from irsurvey.analysis.measurand import names, reach, stacked
 from irsurvey.analysis.planning import Planned
 from irsurvey.model import BudgetTerm, Estimate
+from irsurvey.texts import state
 from irsurvey.uncertainty import Budget, Drawn, differ, monte_carlo, propagate
 
 FIRST_ORDER, DRAWN = "first-order", "monte-carlo"
@@ -82,10 +83,10 @@ def propagated(measured: Planned, how: str, seed: str) -> Propagated:
 def _doubts(budget: Budget, drawn: Drawn | None) -> Iterator[str]:
     """Where the propagation itself is in doubt."""
     if budget.adjusted > _ROUNDING:
-        yield f"declared correlations contradict each other: coefficients changed by up to {budget.adjusted:.2f}"
+        yield state("flag_contradiction", most=f"{budget.adjusted:.2f}")
     if drawn is None:
         return
     if count := int(np.count_nonzero(differ(budget, drawn))):
-        yield f"first order differs by more than 20 % from Monte Carlo, in u or an arm of the interval: {count} numbers"
+        yield state("flag_not_first_order", count=count)
     if count := int(np.count_nonzero(~drawn.converged & np.isfinite(drawn.u))):
-        yield f"not settled after {drawn.draws} draws: {count} numbers"
+        yield state("flag_not_settled", draws=drawn.draws, count=count)

@@ -9,6 +9,7 @@ from irsurvey.assess.conformity import ACT, NOT_SETTLED
 from irsurvey.assess.criteria import Criterion, criteria
 from irsurvey.assess.repairs import action, confidence, inspect_again, repairs, situation
 from irsurvey.model import Assessment, AssetReport, ComponentReport, Estimate, Finding, FrameReport, RepairItem
+from irsurvey.texts import state
 
 SIMILAR, AMBIENT, REFERENCE = "similar", "ambient", "reference"
 _COMPARED = {
@@ -111,5 +112,5 @@ def _in_question(first: str) -> Iterator[str]:
 def _what(item: Item) -> str:
     if isinstance(item, ComponentReport):
         told = f"{item.name} ({item.group})" if item.group else item.name
-        return f"{told}, found by the program" if item.is_found else told
-    return f"region {item.label}, {'warmer' if item.sense == 'hot' else 'colder'} than its reference"
+        return state("found_by_program", part=told) if item.is_found else told
+    return state("region_warmer" if item.sense == "hot" else "region_colder", number=item.label)

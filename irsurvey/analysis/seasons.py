@@ -9,6 +9,7 @@ from irsurvey.assess.indication import MOISTURE, REFLECTION
 from irsurvey.assess.severity import AUTOMATIC_REFERENCE, CONDITIONS, REFLECTIVE
 from irsurvey.heat.season import cost, season_energy
 from irsurvey.model import Element, Estimate, Finding, FrameReport, Season, SeasonReport, SeasonRow
+from irsurvey.texts import state
 
 _SURE_ENOUGH = 0.5
 """Relative standard uncertainty above which no more than the order of magnitude is told (house rule)."""
@@ -17,8 +18,6 @@ _STATED_U = 0.2
 
 _NO_LOSS = (REFLECTION, MOISTURE)
 """Patterns that are no heat through the wall: mirrored, stored, or drawn by evaporation."""
-
-FINDINGS, ELEMENTS = "all findings", "all elements"
 
 
 def seasons_of(
@@ -51,8 +50,8 @@ def _season(season: Season, frames: Sequence[FrameReport], elements: Sequence[El
         currency=season.currency,
         findings=tuple(findings),
         elements=tuple(walls),
-        findings_total=_total(season, FINDINGS, findings),
-        elements_total=_total(season, ELEMENTS, walls),
+        findings_total=_total(season, state("all_findings"), findings),
+        elements_total=_total(season, state("all_elements"), walls),
     )
 
 

@@ -11,6 +11,7 @@ from irsurvey.analysis.exchange import Surroundings, temperature_of
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.heat.surface import outward_sign
 from irsurvey.model import FrameTask, Scene
+from irsurvey.texts import state
 
 SUNLIT_IRRADIANCE = 50.0
 """Irradiance [W m⁻²] from which a face counts as sunlit: a north face under an overcast sky gets about as much
@@ -75,7 +76,7 @@ def surroundings_flags(task: FrameTask, scene: Scene) -> Iterator[str]:
         if "sky" not in scene:
             values = {name: np.float64(value) for name, value in scene.values().items()}
             sky = temperature_of("sky", surroundings(task, scene), values) - ZERO_CELSIUS
-            yield f"{MODELLED_SKY}: {float(sky):.0f} °C by {task.sky_model}"
+            yield f"{MODELLED_SKY}: {state('flag_sky', sky=f'{float(sky):.0f}', model=task.sky_model)}"
         elif scene["sky"].value > scene[surroundings(task, scene).air].value:
             yield WARM_SKY
     humidity = humidity_of(task, scene)

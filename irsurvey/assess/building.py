@@ -25,6 +25,7 @@ from irsurvey.assess.severity import (
 )
 from irsurvey.model.quantities import Estimate
 from irsurvey.model.report import Assessment
+from irsurvey.texts import state
 
 AT_LIMIT: Final = "temperature_factor_at_0_25"
 """The temperature factor at the film resistance [m² K W⁻¹] that its limits assume; seen is another one."""
@@ -99,23 +100,22 @@ def _assess(criterion: Criterion, values: Mapping[str, Estimate | None], blocked
     estimate = values.get(criterion.quantity)
     if estimate is None:
         against = criterion.quantity in AGAINST_REFERENCE
-        words = "against the reference area" if against else f"({criterion.quantity})"
+        words = state("against_reference") if against else f"({criterion.quantity})"
         return assess(criterion, None, words, blocked)
     on_axis = judged(criterion, estimate)
     number = Estimate(on_axis.value, on_axis.u if isfinite(on_axis.u) else None)
     if criterion.quantity in AGAINST_REFERENCE:
-        words = f"{'colder' if estimate.value < 0 else 'warmer'} than the reference area"
+        words = state("colder_than_reference" if estimate.value < 0 else "warmer_than_reference")
         return _until_confirmed(assess(criterion, number, words, blocked), blocked)
     seen = values.get("temperature_factor")
     if criterion.quantity != AT_LIMIT or seen is None:
         return assess(criterion, number, f"({criterion.quantity})", blocked)
-    words = f"temperature factor at the film resistance of 0.25 m² K/W the limit assumes ({seen.value:.2f} as seen)"
-    return assess(criterion, number, words, blocked)
+    return assess(criterion, number, state("factor_at_limit", seen=f"{seen.value:.2f}"), blocked)
 
 
 def _until_confirmed(assessment: Assessment, blocked: Sequence[str]) -> Assessment:
     """The assessment, or without class and urgency where the reference area is only a suggestion."""
     if AUTOMATIC_REFERENCE not in blocked:
         return assessment
-    statement = "A suggestion: the reference area was found automatically, no severity until it is confirmed."
-    return replace(assessment, class_=None, urgency=None, probabilities={}, statement=statement, verdict=None)
+    blank = replace(assessment, class_=None, urgency=None, probabilities={}, verdict=None)
+    return replace(blank, statement=state("suggestion"))

@@ -10,6 +10,7 @@ from importlib.resources import files
 from typing import Final
 
 from irsurvey.model.conclusions import ChecklistItem
+from irsurvey.texts import of_table
 
 REPORTS: Final = ("simplified report", "full report")
 """Kinds of report an item may be asked by; a full one states what a simplified one does, and more."""
@@ -29,7 +30,9 @@ class Asked:
 def asked() -> tuple[Asked, ...]:
     """All items of a complete report, those of a simplified one first (EN 13187 as applied [S])."""
     table = tomllib.loads((files("irsurvey.assess") / "checklist.toml").read_text("utf-8"))
-    return tuple(Asked(**row) for row in table["item"])
+    return tuple(
+        Asked(row["name"], of_table(row["item"]), row["asked_by"], of_table(row["stated_by"])) for row in table["item"]
+    )
 
 
 def checklist(present: Mapping[str, str]) -> tuple[ChecklistItem, ...]:

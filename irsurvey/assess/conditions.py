@@ -9,10 +9,11 @@ from difflib import get_close_matches
 from functools import cache
 from importlib.resources import files
 from math import isfinite, isnan
-from typing import Final
+from typing import Any, Final
 
 from irsurvey.errors import Fault, SurveyError
 from irsurvey.model.conclusions import ConditionCheck
+from irsurvey.texts import of_table, state
 
 LEVELS: Final = ("not valid", "qualitative", "quantitative")
 """What a survey may claim, from least to most."""
@@ -123,7 +124,7 @@ def requirement_sets() -> tuple[RequirementSet, ...]:
             name=table["name"],
             kind=table["kind"],
             methods=tuple(table["methods"]),
-            requirements=tuple(Requirement(**row) for row in table["requirement"]),
+            requirements=tuple(_requirement(row) for row in table["requirement"]),
         )
         for table in tables
     ]
@@ -176,21 +177,28 @@ def claim(standards: Sequence[str], kind: str, method: str, recorded: Recorded) 
     """
     names = suited(standards, kind, method)
     if not names:
-        return "qualitative", f"no requirements on the conditions are held for the method {method}"
+        return "qualitative", state("no_requirements", method=method)
     judged = [(one, verdict) for one, verdict in _judged(names, recorded) if verdict != "met"]
     level = min((one.allows(verdict) or LEVELS[-1] for one, verdict in judged), key=LEVELS.index, default=LEVELS[-1])
     deciding = [(one, verdict) for one, verdict in judged if one.allows(verdict) == level]
     failed = [
-        f"{_check(one, recorded)}: {_given(recorded, one.key):.4g} {one.unit}, required {one.text(recorded)}"
+        state(
+            "requirement_not_met",
+            check=_check(one, recorded),
+            value=f"{_given(recorded, one.key):.4g} {one.unit}",
+            bound=one.text(recorded),
+        )
         for one, verdict in deciding
         if verdict == "not met"
     ]
     missing = dict.fromkeys(_named(one) for one, verdict in deciding if verdict == "not recorded")
-    reasons = [*dict.fromkeys(failed), *([f"not recorded: {', '.join(missing)}"] if missing else ())]
+    unknown = [state("requirement_not_recorded", what=", ".join(missing))] if missing else []
+    reasons = [*dict.fromkeys(failed), *unknown]
     if level != LEVELS[-1]:
         return level, "; ".join(reasons)
-    met = "what was recorded meets the requirements on the conditions"
-    return level, f"{met}; {reasons[0]}" if missing else "all requirements on the conditions are met"
+    if missing:
+        return level, state("requirements_met_as_recorded", missing=reasons[0])
+    return level, state("requirements_met")
 
 
 def overall(frames: Iterable[tuple[str, str, str]]) -> tuple[str, str]:
@@ -202,7 +210,7 @@ def overall(frames: Iterable[tuple[str, str, str]]) -> tuple[str, str]:
     """
     frames = tuple(frames)
     if not frames:
-        return "not valid", "no frame could be analysed"
+        return "not valid", state("none_analysed")
     ordered = sorted((claimed for _, claimed, _ in frames), key=LEVELS.index)
     level = ordered[(len(ordered) - 1) // 2]
     told: dict[tuple[str, str], list[str]] = {}
@@ -214,7 +222,9 @@ def overall(frames: Iterable[tuple[str, str, str]]) -> tuple[str, str]:
     if len(told) == 1 and len(next(iter(told.values()))) == len(frames):
         return level, next(iter(told))[1]
     exceptions = [
-        f"{_listed(ids)}{'' if claimed == level else f' {claimed}'}: {reason}"
+        f"{_listed(ids)}: {reason}"
+        if claimed == level
+        else state("frames_claim", frames=_listed(ids), claim=state(claimed), reason=reason)
         for (claimed, reason), ids in sorted(told.items(), key=lambda one: LEVELS.index(one[0][0]))
     ]
     return level, "; ".join(exceptions)
@@ -225,8 +235,14 @@ _LISTED = 6
 
 
 def _listed(ids: Sequence[str]) -> str:
-    more = f" and {len(ids) - _LISTED} more" if len(ids) > _LISTED else ""
-    return ", ".join(ids[:_LISTED]) + more
+    listed = ", ".join(ids[:_LISTED])
+    return state("frames_and_more", frames=listed, count=len(ids) - _LISTED) if len(ids) > _LISTED else listed
+
+
+def _requirement(row: Mapping[str, Any]) -> Requirement:
+    """One row of a file, its words as the table of texts has them."""
+    words = {key: of_table(row[key]) for key in ("check", "short", "stated_by", "unit", "source") if key in row}
+    return Requirement(**{**row, **words})
 
 
 def _judged(standards: Sequence[str], recorded: Recorded) -> Iterator[tuple[Requirement, str]]:
@@ -251,7 +267,7 @@ def _given(recorded: Recorded, key: str, otherwise: float | None = None) -> floa
 
 
 def _check(one: Requirement, recorded: Recorded) -> str:
-    return f"{one.check} (assumed)" if one.is_assumed(recorded) else one.check
+    return state("check_assumed", check=one.check) if one.is_assumed(recorded) else one.check
 
 
 def _named(one: Requirement) -> str:

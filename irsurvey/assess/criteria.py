@@ -18,6 +18,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from irsurvey.errors import Fault, SurveyError
 from irsurvey.model.report import ComponentReport, Finding
+from irsurvey.texts import of_table
 
 URGENCIES: Final[Mapping[int, str]] = {
     0: "none",
@@ -199,6 +200,7 @@ def load_criterion(text: str, where: str) -> Criterion:
     if faults:
         raise SurveyError(*faults)
     table["methods"] = tuple(table["methods"])
+    table |= {key: of_table(table[key]) for key in ("source", "edition")}
     if "classed_from" in table:
         table["classed_from"] = (table["classed_from"]["quantity"], float(table["classed_from"]["at_least"]))
     return Criterion(**table, classes=classes)
@@ -321,7 +323,7 @@ def _row_faults(row: dict[str, Any], where: str) -> Iterator[Fault]:
 def _severity_class(row: dict[str, Any]) -> SeverityClass:
     return SeverityClass(
         name=row["name"],
-        statement=row["statement"],
+        statement=of_table(row["statement"]),
         urgency=row["urgency"],
         low=float(row.get("at_least", row.get("above", -inf))),
         high=float(row.get("at_most", row.get("below", inf))),

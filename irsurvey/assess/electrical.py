@@ -52,6 +52,7 @@ from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.model.quantities import Estimate
 from irsurvey.model.report import Assessment
 from irsurvey.numbers import number, unit, with_symbol
+from irsurvey.texts import state
 
 MOST_LOAD: Final = 1.05
 """Of rated load; above it the part is overloaded whatever its joints are like, and nothing is cleared [house]: a clamp
@@ -190,8 +191,8 @@ def _worst(
     """One criterion applied to its number as it reads and, where there is one, in calm: the more urgent of the two."""
     if not _is_graded(criterion, values):
         key, least = criterion.classed_from or ("", nan)
-        told = f"{with_symbol(number(least), unit(key))} {_words(key, member, plan, limit)}"
-        return unclassed(criterion, f"Not classed by this scheme, which grades from {told} on.")
+        told, words = with_symbol(number(least), unit(key)), _words(key, member, plan, limit)
+        return unclassed(criterion, state("not_graded", least=told, words=words))
     # a part and a twin that are both too small give a difference that is no bound
     both_small = criterion.quantity in OF_TWINS and TWIN_SIZE_LIMITED in plan.flags
     found = [
@@ -237,39 +238,39 @@ def _surely_below(values: Mapping[str, Estimate | None], rise: float) -> bool:
 
 
 def _words(quantity: str, member: Member, plan: TwinPlan, limit: Limit | None) -> str:
-    calm = " when brought to 1 m/s of wind" if quantity in IN_CALM.values() else ""
+    is_calm = quantity in IN_CALM.values()
     if quantity in OVER_AIR:
-        return f"above ambient air{calm}"
+        return state("above_air_in_calm" if is_calm else "above_air")
+    if quantity == "relative_difference_percent":
+        return state("of_rise", words=_beyond(plan))
     if quantity in OF_TWINS:
-        of_rise = "of its rise over ambient air, " if quantity == "relative_difference_percent" else ""
-        return f"{of_rise}{_beyond(plan)}{calm}"
+        return state("in_calm", words=_beyond(plan)) if is_calm else _beyond(plan)
     if quantity == "above_limit_k" and limit is not None:
-        return f"against its limit of {limit.t_max - ZERO_CELSIUS:.0f} °C ({limit.name})"
+        return state("against_limit", limit=f"{limit.t_max - ZERO_CELSIUS:.0f}", name=limit.name)
     if quantity == "above_allowed_k" and limit is not None:
-        at_rated = f"{limit.rise:.0f} K at rated load, {limit.name}"
-        return f"against what its limit allows at this load and ambient air ({at_rated})"
+        return state("against_allowed", rise=f"{limit.rise:.0f}", name=limit.name)
     if quantity == "delta_neighbours_k":
-        return f"above the median of its {member.neighbours} neighbours, {_sun(member)}"
+        return state("above_neighbours", count=member.neighbours, sun=_sun(member))
     return f"({quantity})"
 
 
 def _sun(member: Member) -> str:
     """At which irradiance a difference between modules is told."""
     if member.irradiance is None:
-        return "as it reads, the irradiance unknown"
+        return state("sun_unknown")
     if member.irradiance < LEAST_IRRADIANCE:
-        return f"brought to 1000 W/m² only as from {LEAST_IRRADIANCE:.0f}, in full sun at least as much"
-    return "as it reads" if member.irradiance >= STANDARD_IRRADIANCE else "at 1000 W/m²"
+        return state("sun_low", least=f"{LEAST_IRRADIANCE:.0f}")
+    return state("sun_full" if member.irradiance >= STANDARD_IRRADIANCE else "sun_scaled")
 
 
 def _beyond(plan: TwinPlan) -> str:
     if plan.twin is None:
-        return "above a twin (none can be compared)"
+        return state("above_no_twin")
     if plan.is_coolest:
-        return "by definition, being the coolest of its group"
+        return state("is_twin")
     if NORMALISED in plan.flags:
-        return f"above “{plan.name}”, its rise first brought to {plan.load_ratio:.2f} times its load"
-    return f"above “{plan.name}”, the coolest comparable one of its group"
+        return state("above_twin_at_load", twin=plan.name, times=f"{plan.load_ratio:.2f}")
+    return state("above_twin", twin=plan.name)
 
 
 def _state(member: Member, plan: TwinPlan, only_warm: bool) -> str:
@@ -279,32 +280,27 @@ def _state(member: Member, plan: TwinPlan, only_warm: bool) -> str:
     by_load = member.method == CONTACT
     if ALL_HOT in plan.flags:
         if not by_load:
-            return "The whole group is alike and warm: sun, soiling, or ageing that all of it shares."
-        overload = f" at {load_ratio(member):.0%} of its rating" if load_ratio(member) > MOST_LOAD else ""
-        first = f"The whole group is alike and warm{overload}, which is not the matter of one joint"
-        return f"{first}: check load, harmonics and ambient air before the joints."
+            return state("group_warm_shared")
+        load = load_ratio(member)
+        return state("group_overloaded", load=f"{load:.0%}") if load > MOST_LOAD else state("group_warm")
     if plan.twin is None:
-        rest = (
-            "this may be its load or the ambient air: check these as well." if by_load else "nothing can be told of it."
-        )
-        return f"{_alone(member, plan)} {rest}"
+        return _alone(member, plan, by_load)
     told = []
     if TWIN_LOAD_UNKNOWN in plan.flags:
-        told.append(f"The load of “{plan.name}” is not known: a comparison with it clears nothing.")
+        told.append(state("twin_load_unknown", twin=plan.name))
     if UNBALANCED in plan.flags:
-        told.append("The loads of its group differ, rises were brought to one load before they were compared.")
+        told.append(state("loads_differ"))
     if only_warm:
-        shared = "load and ambient air" if by_load else "sun, soiling and ageing"
-        told.append(f"What it shares with its twins, {shared}, is not cleared by comparing them.")
+        told.append(state("shared_load" if by_load else "shared_sun"))
     return " ".join(told)
 
 
-def _alone(member: Member, plan: TwinPlan) -> str:
+def _alone(member: Member, plan: TwinPlan, by_load: bool) -> str:
     if member.group is None:
-        return "With no twin to compare with"
+        return state("no_twin_by_load" if by_load else "no_twin")
     if plan.others == 0:
-        return f"As the only one of its group “{member.group}”, with no twin to compare with,"
-    return f"As no other of its group “{member.group}” can be compared with it,"
+        return state("only_one_by_load" if by_load else "only_one", group=member.group)
+    return state("no_other_by_load" if by_load else "no_other", group=member.group)
 
 
 def _at_rated(member: Member, values: Mapping[str, Estimate | None]) -> str:
@@ -312,4 +308,4 @@ def _at_rated(member: Member, values: Mapping[str, Estimate | None]) -> str:
     if delta is None or not 0 < load_ratio(member) < 1:
         return ""
     low, high = rated_band(delta.value, load_ratio(member))
-    return f"At rated load it would be {low:.0f} to {high:.0f} K above ambient air."
+    return state("at_rated", low=f"{low:.0f}", high=f"{high:.0f}")

@@ -8,24 +8,13 @@ from math import isfinite
 from typing import Final
 
 from irsurvey.model.quantities import Estimate
+from irsurvey.texts import state
 
 LEAST_KNOWN: Final = 1.0
 """Expanded uncertainty (k = 2) over the value, above which a thermal transmittance is no number any more."""
 
 INCREASE: Final = "u_value_increase_w_m2k"
 SIMPLE: Final = "u_value_simple_w_m2k"
-
-_KNOWN_SURFACE = (
-    "a matt surface of known temperature in the frame (role known-temperature) takes the camera's offset out, "
-    "and a larger difference between indoors and outdoors makes the rest smaller"
-)
-
-
-_OPEN_SKY = "a face under an open sky may be colder than the air: look again under an overcast sky, or from inside"
-_UNKNOWN_SKY = (
-    "neither the sky nor what the face sees as a whole was measured with the wind: state sky_c or mean_radiant_c "
-    "and wind_m_s, or look from inside"
-)
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,20 +33,19 @@ def refusal(key: str, estimate: Estimate, face: Face) -> str | None:
     What two areas share cancels in the increase over a reference area: the sky does not make it invalid.
     """
     if face.is_sunlit:
-        return "the sun warms the face, or did so lately: look again before sunrise or on an overcast day"
+        return state("face_sunlit")
     if face.viewed_from == "outside" and key != INCREASE and not face.is_overcast:
         if key == SIMPLE:
-            return _OPEN_SKY
+            return state("face_open_sky")
         if not face.sky_is_known:
-            return _UNKNOWN_SKY
+            return state("face_unknown_sky")
     if not estimate.value > 0 and key != INCREASE:
-        return f"by this reading no heat passes through it: {_KNOWN_SURFACE}"
+        return state("no_heat_passes")
     if estimate.u is None or not isfinite(estimate.u):
-        return "its uncertainty does not exist"
+        return state("no_uncertainty")
     if 2 * estimate.u > LEAST_KNOWN * abs(estimate.value):
         share = 200 * estimate.u / abs(estimate.value) if estimate.value else float("inf")
-        told = f"{share:.0f} % of the value" if share < 1000 else "more than ten times the value"
-        return f"its expanded uncertainty is {told}: {_KNOWN_SURFACE}"
+        return state("too_uncertain", share=f"{share:.0f}") if share < 1000 else state("far_too_uncertain")
     return None
 
 

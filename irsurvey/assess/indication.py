@@ -12,6 +12,7 @@ from typing import Any, Final
 
 from irsurvey.assess.severity import LEAST_EMISSIVITY
 from irsurvey.model.report import Indication
+from irsurvey.texts import of_table, state
 
 NO_PATTERN: Final = "no typical pattern"
 REFLECTION: Final = "possible reflection"
@@ -124,7 +125,8 @@ def _said(what: str, evidence: Mapping[str, float]) -> Indication:
 
 def _indication(pattern: str, says: str, verify_by: str, evidence: Mapping[str, float]) -> Indication:
     measured = {name: float(value) for name, value in evidence.items() if isfinite(value)}
-    return Indication(pattern, f"Consistent with {says}; verify by {verify_by}.", measured, verify_by)
+    how = of_table(verify_by)
+    return Indication(pattern, state("consistent", says=of_table(says), how=how), measured, how)
 
 
 @cache

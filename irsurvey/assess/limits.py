@@ -16,6 +16,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.errors import Fault, SurveyError
+from irsurvey.texts import of_table
 
 LOAD_EXPONENTS: Final = (1.6, 2.0)
 """A rise grows as load^n: 2 for a constant resistance with linear loss, 1.6 for free convection alone [S]."""
@@ -102,12 +103,12 @@ def _limit(row: Mapping[str, Any]) -> Limit:
     least, most = row.get("cooler_k", (0.0, 0.0))
     return Limit(
         name=row["name"],
-        what=row["what"],
+        what=of_table(row["what"]),
         t_max=row["max_c"] - least + ZERO_CELSIUS,
         t_sure=row["max_c"] - most + ZERO_CELSIUS,
         rise=float(row["rise_k"]) if "rise_k" in row else None,
-        source=row["source"],
-        edition=row["edition"],
+        source=of_table(row["source"]),
+        edition=of_table(row["edition"]),
         mark=row["mark"],
         notes=row.get("notes", ""),
     )

@@ -14,6 +14,7 @@ from irsurvey.assess.conformity import GUARD, accepted, action_probability
 from irsurvey.assess.judged import Judged
 from irsurvey.assess.severity import AGAINST_REFERENCE, AUTOMATIC_REFERENCE
 from irsurvey.model.conclusions import NextMeasurement
+from irsurvey.texts import of_table, state
 
 SURE: Final = 0.95
 """Probability from which an action counts as certain [house]; a clearance needs guarded acceptance."""
@@ -57,8 +58,8 @@ def measurements() -> tuple[Measurement, ...]:
     table = tomllib.loads((files("irsurvey.assess") / "measurements.toml").read_text("utf-8"))
     return tuple(
         Measurement(
-            how=row["how"],
-            gives=row["gives"],
+            how=of_table(row["how"]),
+            gives=of_table(row["gives"]),
             lifts=tuple(row["lifts"]),
             measured_anew=row["measured_anew"],
             leaves=tuple(Residual(**residual) for residual in row.get("leaves", ())),
@@ -131,10 +132,18 @@ def _settled(judged: Judged, u: float, blockers: Collection[str]) -> bool:
 def _why(measurement: Measurement, settled: Sequence[Decision]) -> str:
     """What it changes for the decisions it settles, in one sentence."""
     inputs = [one for decision in settled for judged in decision.judged for one in judged.sensitivities]
-    lifted = [f"lifts “{flag}”" for flag in measurement.lifts if any(flag in one.blockers for one in settled)]
+    lifted = [
+        state("lifts", flag=state(flag)) for flag in measurement.lifts if any(flag in one.blockers for one in settled)
+    ]
     known = [
-        f"{residual.term.replace('_', ' ')} to ±{GUARD * residual.u:g} {residual.unit}".rstrip()
+        state("leaves", input=of_table(residual.term.replace("_", " ")), uncertainty=_left(residual))
         for residual in measurement.leaves
         if any(one.name.partition(":")[0] == residual.term and one.u > residual.u for one in inputs)
     ]
-    return f"Gives {measurement.gives}: {', '.join([*lifted, *known])}{' (k = 2)' if known else ''}."
+    key = "measurement_gives_known" if known else "measurement_gives"
+    return state(key, gives=measurement.gives, what=", ".join([*lifted, *known]))
+
+
+def _left(residual: Residual) -> str:
+    """The expanded uncertainty that a measurement leaves, with its unit."""
+    return f"±{GUARD * residual.u:g} {of_table(residual.unit)}".rstrip()

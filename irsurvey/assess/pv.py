@@ -14,6 +14,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from irsurvey.assess.indication import CueBounds
 from irsurvey.model.report import Indication
+from irsurvey.texts import of_table, state
 
 STANDARD_IRRADIANCE: Final = 1000.0
 """Irradiance [W m⁻²] that rises are brought to."""
@@ -80,8 +81,8 @@ def pv_indication(shares: Mapping[str, float]) -> Indication:
     words = row if _fit(row, cues) >= _table()["least_fit"] else _table()["none"]
     used = [cue["name"] for cue in words.get("cue", ())] or list(shares)
     evidence = {name: float(cues[name]) for name in used if isfinite(cues.get(name, nan))}
-    statement = f"Consistent with {words['says']}; verify by {words['verify_by']}."
-    return Indication(words["pattern"], statement, evidence, words["verify_by"])
+    how = of_table(words["verify_by"])
+    return Indication(words["pattern"], state("consistent", says=of_table(words["says"]), how=how), evidence, how)
 
 
 def _fit(row: Mapping[str, Any], cues: Mapping[str, float]) -> float:

@@ -26,6 +26,7 @@ from irsurvey.assess.severity import (
 from irsurvey.assess.twins import ALL_HOT
 from irsurvey.model.conclusions import RepairItem
 from irsurvey.model.report import Assessment
+from irsurvey.texts import of_table, state
 
 DOUBTFUL: Final = (REFLECTIVE, MIRRORS, NO_SOLUTION, BELOW_AIR)
 """Flags under which the reading itself is in question: it is confirmed before anything is repaired."""
@@ -91,30 +92,31 @@ def action(urgency: int | None, of: str, flags: Iterable[str]) -> str:
     `of`: a situation.  Without an urgency, or one that asks for nothing, only how to look again.
     """
     words = _words()
-    look_again = [BLOCKERS[flag] for flag in flags if flag in BLOCKERS]
+    look_again = [state(BLOCKERS[flag]) for flag in flags if flag in BLOCKERS]
     told = []
     if urgency:
-        told.append(f"{words['when'][str(urgency)]}: {words['situation'][of]['find' if urgency == 1 else 'repair']}.")
+        what = words["situation"][of]["find" if urgency == 1 else "repair"]
+        told.append(f"{of_table(words['when'][str(urgency)])}: {of_table(what)}.")
     elif not look_again:
-        told.append(words["open"])
+        told.append(of_table(words["open"]))
     told += (f"{text[0].upper()}{text[1:]}." for text in dict.fromkeys(look_again))
-    return " ".join((*told, words["caution"]))
+    return " ".join((*told, of_table(words["caution"])))
 
 
 def inspect_again(urgency: int | None, of: str, flags: Collection[str]) -> str:
     """When to inspect a part again; `of`: a situation."""
-    again = _words()["again"]
+    again = {key: of_table(words) for key, words in _words()["again"].items()}
     if urgency:
         if of in _UNLOADED:
-            return str(again["unloaded"])
-        return str(again["investigated" if urgency == 1 or of == DOUBT else "repaired"])
+            return again["unloaded"]
+        return again["investigated" if urgency == 1 or of == DOUBT else "repaired"]
     if of in _UNLOADED:
-        return str(again["unloaded_open"])
+        return again["unloaded_open"]
     unreadable = any(flag in BLOCKERS and flag not in OF_LOAD for flag in flags)
     told = [again["load"]] if set(flags) & set(OF_LOAD) else []
     if unreadable:
         told.append(again["readable"])
-    return "; ".join(told) or str(again["open"])
+    return "; ".join(told) or again["open"]
 
 
 @cache

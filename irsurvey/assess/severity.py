@@ -20,6 +20,7 @@ from irsurvey.assess.criteria import Criterion, class_of
 from irsurvey.model.quantities import Estimate
 from irsurvey.model.report import Assessment
 from irsurvey.numbers import shown, unit, with_symbol
+from irsurvey.texts import state
 
 SATURATED: Final = "saturated"
 SIZE_LIMITED: Final = "size-limited"
@@ -43,25 +44,25 @@ NOT_CLEARED: Final = "cannot be cleared"
 NO_CRITERION: Final = "no criterion for this method"
 
 BLOCKERS: Final[Mapping[str, str]] = {
-    SATURATED: "look again with a temperature range that holds it",
-    SIZE_LIMITED: "look again from closer or with a longer lens, so that a whole measurement spot lies on it",
-    REFLECTIVE: "look again with matt tape or paint on it (on electrical parts by qualified persons, part dead)",
-    MIRRORS: "look again from another side, as a reflection moves with the camera, or with matt tape on it",
-    NO_SOLUTION: "look again after checking emissivity and reflected temperature, best with matt tape on it",
-    LOW_LOAD: "look again at load, 40 % of its rating or more",
-    LOAD_UNKNOWN: "look again with its load measured and its rating noted; a mild reading proves nothing",
-    LOAD_ABOVE_RATING: "look again with its load brought down to its rating, both checked first",
-    UNSTEADY: "look again when its load has been steady for three of its thermal time constants",
-    WINDY: "look again in 5 m/s of wind or less",
-    LOW_SUN: "look again at 600 W/m² or more in the plane of the modules",
-    SUN_UNKNOWN: "look again with the irradiance in the plane of the modules measured",
-    FEW_NEIGHBOURS: "look again with six or more modules of its kind around it in the frame",
-    BELOW_AIR: "look again after checking ambient air, emissivity and reflected temperature: a part gives off heat",
-    CONDITIONS: "look again under conditions that allow the claim",
-    AUTOMATIC_REFERENCE: "confirm the reference area and run again",
-    HOTTER_BESIDE: "draw its outline around all of it, or name what lies beside it, and run again",
+    SATURATED: "again_range",
+    SIZE_LIMITED: "again_closer",
+    REFLECTIVE: "again_taped",
+    MIRRORS: "again_elsewhere",
+    NO_SOLUTION: "again_inputs",
+    LOW_LOAD: "again_loaded",
+    LOAD_UNKNOWN: "again_load_measured",
+    LOAD_ABOVE_RATING: "again_load_lowered",
+    UNSTEADY: "again_steady",
+    WINDY: "again_calm",
+    LOW_SUN: "again_sunny",
+    SUN_UNKNOWN: "again_sun_measured",
+    FEW_NEIGHBOURS: "again_neighbours",
+    BELOW_AIR: "again_air",
+    CONDITIONS: "again_conditions",
+    AUTOMATIC_REFERENCE: "again_reference",
+    HOTTER_BESIDE: "again_outline",
 }
-"""Flags that never clear anything and may always raise it, and how to look again."""
+"""Flags that never clear anything and may always raise it → how to look again, a key of `texts.state`."""
 
 BOUNDING: Final = (SATURATED, SIZE_LIMITED)
 """Blockers that make a number a bound: the truth is at least as bad."""
@@ -115,21 +116,20 @@ def assess(
     blank = unclassed(criterion, "", quantity=quantity)
     kind = None if estimate is None else class_of(estimate.value, criterion)
     if estimate is None or kind is None:
-        return replace(blank, statement=f"No value {words}: it could not be measured here.")
+        return replace(blank, statement=state("no_value", words=words))
     bound = bool(set(bounding) & set(blocked))
     sign = ("≥ " if criterion.worse >= 0 else "≤ ") if bound else ""
-    measured = f"{sign}{_shown(estimate, criterion)} {words}"
+    number = f"{sign}{_shown(estimate, criterion)}"
     if MIRRORS in blocked:
-        return replace(blank, statement=f"{measured}: it {MIRRORS}, neither class nor urgency is given.")
+        return replace(blank, statement=state("mirrors", number=number, words=words))
     if REFLECTIVE in blocked:
-        statement = f"{measured}: the surface is {REFLECTIVE}, no class is given."
-        return replace(blank, urgency=kind.urgency, statement=statement)
+        return replace(blank, urgency=kind.urgency, statement=state("reflects", number=number, words=words))
     probabilities = {} if bound else _probabilities(estimate, criterion)
     return replace(
         blank,
         class_=kind.name,
         urgency=kind.urgency,
-        statement=f"{measured}: {kind.statement}.",
+        statement=state("classed", number=number, words=words, meaning=kind.statement),
         probabilities=probabilities,
         verdict=_verdict(estimate, criterion, blocked),
     )
@@ -168,8 +168,8 @@ def governed(
 
 def remedy(blocked: Iterable[str]) -> str:
     """One sentence that says what is not cleared and how to look again; empty where nothing blocks."""
-    told = "; ".join(f"{flag}, {BLOCKERS[flag]}" for flag in blocked)
-    return f"It {NOT_CLEARED}: {told}." if told else ""
+    told = "; ".join(f"{state(flag)}, {state(BLOCKERS[flag])}" for flag in blocked)
+    return state("not_cleared", blockers=told) if told else ""
 
 
 def _verdict(estimate: Estimate, criterion: Criterion, blocked: Collection[str]) -> str | None:

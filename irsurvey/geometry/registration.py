@@ -10,6 +10,8 @@ import cv2
 import numpy as np
 from numpy.typing import NDArray
 
+from irsurvey.texts import state
+
 Image = NDArray[np.float32]
 
 RESIDUAL = 0.3
@@ -43,9 +45,6 @@ _ROUNDS = 3
 _STEPS = (cv2.TERM_CRITERIA_EPS | cv2.TERM_CRITERIA_COUNT, 30, 1e-7)
 """When a fit ends: a hundred steps down to 1e-10 place no picture of the tests otherwise by more than 1e-5 px."""
 
-MARKS = "put two small foil marks or warm or cold targets on the wall and keep the camera on a tripod"
-SAME_VIEW = "take both frames from one place with the camera on a tripod"
-
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Registration:
@@ -76,17 +75,16 @@ def register(moving: NDArray[Any], fixed: NDArray[Any]) -> Registration:
     of the frame or 5°.
     """
     if moving.shape != fixed.shape:
-        sizes = f"{_size(moving.shape)} and {_size(fixed.shape)} pixels"
-        return _refused(f"the two frames have {sizes}; take both with one camera and one image size")
+        return _refused(state("view_sizes", moving=_size(moving.shape), fixed=_size(fixed.shape)))
     if min(fixed.shape) < _SMALLEST:
-        return _refused(f"frames of {_size(fixed.shape)} pixels are too small to lay over each other; take larger ones")
+        return _refused(state("view_small", size=_size(fixed.shape)))
     if not np.isfinite(moving).any() or not np.isfinite(fixed).any():
-        return _refused("one of the two frames holds no temperatures; take it again")
+        return _refused(state("view_no_temperatures"))
     shape = (fixed.shape[0], fixed.shape[1])
     raw_move, raw_fix = (np.asarray(image - np.nanmedian(image), np.float32) for image in (moving, fixed))
     move, fix, cut = _comparable(raw_move, raw_fix)
     if cut <= 0:
-        return _refused(f"the frames show nothing to lay over each other; {MARKS}")
+        return _refused(state("view_nothing", marks=state("marks")))
     try:
         matrix = _coarse_to_fine(move, fix, _start(move, fix))
         for _ in range(_ROUNDS):
@@ -94,7 +92,7 @@ def register(moving: NDArray[Any], fixed: NDArray[Any]) -> Registration:
             alike = _alike(move, fix)
             matrix = _after(_ecc(move, fix, np.eye(2, 3), alike), matrix)
     except cv2.error:  # the iteration lost all correlation
-        return _refused(f"the two frames show no common structure; {SAME_VIEW}, or {MARKS}")
+        return _refused(state("view_not_alike", same_view=state("same_view"), marks=state("marks")))
     move, fix, cut = _comparable(_warped(raw_move, matrix, shape), raw_fix)
     alike = _alike(move, fix)
     correlation = float(np.corrcoef(move[alike > 0], fix[alike > 0])[0, 1])
@@ -113,18 +111,28 @@ def _judged(matrix: NDArray[np.float64], correlation: float, open_by: float, sha
     centre = np.array([(columns - 1) / 2, (rows - 1) / 2, 1.0])
     dx, dy = (matrix @ centre - centre[:2]).tolist()
     rotation = degrees(np.arctan2(matrix[1, 0], matrix[0, 0]))
-    reason = ""
+    reason = _against(correlation, open_by, hypot(dx, dy), abs(rotation), most=_LARGEST_SHIFT * min(rows, columns))
+    return Registration(matrix, correlation, (dx, dy), rotation, reason is None, reason or "")
+
+
+def _against(correlation: float, open_by: float, shift: float, rotation: float, *, most: float) -> str | None:
+    """Why two frames laid over each other are not compared, and what would help; None where nothing speaks against it.
+
+    `shift` [px], `most` is what it may be, and `rotation` [°] are magnitudes.
+    """
+    same_view, marks = state("same_view"), state("marks")
     if not correlation >= LEAST_CORRELATION:
-        reason = f"the two frames correlate by {correlation:.2f} only, {LEAST_CORRELATION:g} is needed; {SAME_VIEW}"
+        told, least = f"{correlation:.2f}", f"{LEAST_CORRELATION:g}"
         if not open_by <= RESIDUAL:
-            reason += f", and on a wall without features {MARKS}"
-    elif not open_by <= RESIDUAL:
-        reason = f"the wall shows too little for its place to be found against noise; {MARKS}"
-    elif hypot(dx, dy) > _LARGEST_SHIFT * min(rows, columns):
-        reason = f"the view moved by {hypot(dx, dy):.0f} px, more than a tenth of the frame; {SAME_VIEW}"
-    elif abs(rotation) > _LARGEST_ROTATION:
-        reason = f"the view turned by {abs(rotation):.1f}°, more than {_LARGEST_ROTATION:g}°; {SAME_VIEW}"
-    return Registration(matrix, correlation, (dx, dy), rotation, not reason, reason)
+            return state("view_correlation_bare", correlation=told, least=least, same_view=same_view, marks=marks)
+        return state("view_correlation", correlation=told, least=least, same_view=same_view)
+    if not open_by <= RESIDUAL:
+        return state("view_bare", marks=marks)
+    if shift > most:
+        return state("view_moved", shift=f"{shift:.0f}", same_view=same_view)
+    if rotation > _LARGEST_ROTATION:
+        return state("view_turned", angle=f"{rotation:.1f}", most=f"{_LARGEST_ROTATION:g}", same_view=same_view)
+    return None
 
 
 def _refused(reason: str) -> Registration:

@@ -25,6 +25,7 @@ from numpy.typing import ArrayLike
 
 from irsurvey.constants import STANDARD_PRESSURE, ZERO_CELSIUS
 from irsurvey.radiometry.planck import Array, Band, numbers
+from irsurvey.texts import state
 
 ABSORPTANCE_U: Final = 0.15
 """Relative standard uncertainty of the absorptance 1 − tau in a fitted band (judgement)."""
@@ -126,9 +127,9 @@ def absorptance_u(band: Band) -> float:
 def validity_notes(distance: float, t_air: float, pressure: float) -> tuple[str, ...]:
     """What to tell people where a path [m], air temperature [K] or pressure [Pa] lies beyond the fit; () within it."""
     notes = (
-        (distance > 500, f"path of {distance:.0f} m: the air model is fitted to 500 m and checked to 200 m"),
-        (t_air > ZERO_CELSIUS + 50, f"air at {t_air - ZERO_CELSIUS:.0f} °C: the air model holds to 50 °C"),
-        (pressure < 70_000, f"air at {pressure / 100:.0f} hPa: the air model holds down to 700 hPa"),
+        (distance > 500, state("flag_long_path", distance=f"{distance:.0f}")),
+        (t_air > ZERO_CELSIUS + 50, state("flag_hot_air", air=f"{t_air - ZERO_CELSIUS:.0f}")),
+        (pressure < 70_000, state("flag_thin_air", pressure=f"{pressure / 100:.0f}")),
     )
     return tuple(note for beyond, note in notes if beyond)
 
