@@ -245,6 +245,20 @@ def test_each_ill_module_is_told_by_its_pattern_and_the_healthy_ones_by_none(sta
             assert one.urgency
 
 
+def test_a_line_of_the_repair_list_shows_a_number_of_its_part_under_its_own_name(station):
+    # what a difference was taken against must be true of the number beside it
+    own = {
+        "similar": "delta_similar_k",
+        "ambient": "delta_ambient_k",
+        "reference": "delta_k",
+        "neighbours": "delta_neighbours_k",
+    }
+    items = {item.key: item for frame in station.frames for item in (*frame.components, *frame.findings)}
+    assert {line.delta_basis for line in station.repairs} >= {"similar", "ambient", "neighbours"}
+    for line in station.repairs:
+        assert line.delta_k == getattr(items[line.key], own[line.delta_basis])
+
+
 # ---- found parts ----------------------------------------------------------------------------------------------
 
 

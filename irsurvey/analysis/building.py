@@ -61,7 +61,9 @@ def transmittances(
     found = {key: results.get((region, name)) for key, name in _TRANSMITTANCES.items()}
     if task.kind != "building":
         return dict.fromkeys(found), {}
-    if task.method != "envelope" or task.pair is not None:
+    if task.pair is not None:
+        return dict.fromkeys(found), _refused(found, state("with_a_fan"))
+    if task.method != "envelope":
         return dict.fromkeys(found), _refused(found, state("not_envelope"))
     if evidence.planned.plan.air is None:
         return dict.fromkeys(found), {"u_value_w_m2k": state("needs_air")}

@@ -11,10 +11,10 @@ from irsurvey.assess.repairs import action, confidence, inspect_again, repairs, 
 from irsurvey.model import Assessment, AssetReport, ComponentReport, Estimate, Finding, FrameReport, RepairItem
 from irsurvey.texts import state
 
-SIMILAR, AMBIENT, REFERENCE = "similar", "ambient", "reference"
+SIMILAR, AMBIENT, REFERENCE, NEIGHBOURS = "similar", "ambient", "reference", "neighbours"
 _COMPARED = {
     "delta_similar_k": SIMILAR,
-    "delta_neighbours_k": SIMILAR,
+    "delta_neighbours_k": NEIGHBOURS,
     "delta_ambient_k": AMBIENT,
     "delta_k": REFERENCE,
 }

@@ -6,7 +6,7 @@ import tomllib
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from difflib import get_close_matches
-from functools import cache
+from functools import cache, reduce
 from importlib.resources import files
 from math import isfinite, isnan
 from typing import Any, Final
@@ -173,7 +173,7 @@ def claim(standards: Sequence[str], kind: str, method: str, recorded: Recorded) 
 
     Of the named sets those count that suit the kind and method (see `suited`); `recorded` as for `review`.  Where no
     requirements exist, the claim is qualitative.  The reason names what fails at the level that decides, then what
-    nobody recorded, with the keys that would state it.
+    nobody recorded, with the keys that would state it; what several sets ask of one thing is told together.
     """
     names = suited(standards, kind, method)
     if not names:
@@ -181,19 +181,18 @@ def claim(standards: Sequence[str], kind: str, method: str, recorded: Recorded) 
     judged = [(one, verdict) for one, verdict in _judged(names, recorded) if verdict != "met"]
     level = min((one.allows(verdict) or LEVELS[-1] for one, verdict in judged), key=LEVELS.index, default=LEVELS[-1])
     deciding = [(one, verdict) for one, verdict in judged if one.allows(verdict) == level]
-    failed = [
-        state(
-            "requirement_not_met",
-            check=_check(one, recorded),
-            value=f"{_given(recorded, one.key):.4g} {one.unit}",
-            bound=one.text(recorded),
-        )
-        for one, verdict in deciding
-        if verdict == "not met"
+    failed: dict[tuple[str, str], list[str]] = {}
+    for one, verdict in deciding:
+        if verdict == "not met":
+            told = _check(one, recorded), f"{_given(recorded, one.key):.4g} {one.unit}"
+            failed.setdefault(told, []).append(one.text(recorded))
+    not_met = [
+        state("requirement_not_met", check=check, value=value, bound=reduce(_both, dict.fromkeys(bounds)))
+        for (check, value), bounds in failed.items()
     ]
     missing = dict.fromkeys(_named(one) for one, verdict in deciding if verdict == "not recorded")
     unknown = [state("requirement_not_recorded", what=", ".join(missing))] if missing else []
-    reasons = [*dict.fromkeys(failed), *unknown]
+    reasons = [*not_met, *unknown]
     if level != LEVELS[-1]:
         return level, "; ".join(reasons)
     if missing:
@@ -268,6 +267,10 @@ def _given(recorded: Recorded, key: str, otherwise: float | None = None) -> floa
 
 def _check(one: Requirement, recorded: Recorded) -> str:
     return state("check_assumed", check=one.check) if one.is_assumed(recorded) else one.check
+
+
+def _both(one: str, other: str) -> str:
+    return state("bounds", one=one, other=other)
 
 
 def _named(one: Requirement) -> str:

@@ -94,7 +94,7 @@ class RepairItem:
     class_: str | None
     confidence: float | None  # probability of that urgency or a higher one
     delta_k: Estimate | None
-    delta_basis: str  # "similar" | "ambient" | "reference"
+    delta_basis: str  # "similar" | "ambient" | "reference" | "neighbours"
     load_a: float | None
     rated_a: float | None
     action: str

@@ -37,7 +37,7 @@ _WORDS = {
     "ChecklistItem.asked_by": ["simplified report", "full report"],
     "SeasonReport.sense": ["heating", "cooling"],
     "PressureChange.sense": ["hot", "cold"],
-    "RepairItem.delta_basis": ["similar", "ambient", "reference"],
+    "RepairItem.delta_basis": ["similar", "ambient", "reference", "neighbours"],
     "PopulationAlarm.how": ["median", "mean"],
 }
 """Record and key → all it may hold."""

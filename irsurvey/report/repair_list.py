@@ -14,7 +14,12 @@ from irsurvey.report.labels import component_mark
 from irsurvey.report.pictures import Picture
 from irsurvey.report.ranking import Ranked, governing
 
-_JUDGED = {"similar": "delta_similar_k", "ambient": "delta_ambient_k", "reference": "delta_k"}
+_JUDGED = {
+    "similar": "delta_similar_k",
+    "ambient": "delta_ambient_k",
+    "reference": "delta_k",
+    "neighbours": "delta_neighbours_k",
+}
 """Basis of a difference → the number of a component or finding that it is."""
 
 

@@ -310,6 +310,14 @@ def test_a_reason_names_each_thing_that_is_missing_once() -> None:
     )
 
 
+def test_what_two_standards_ask_of_one_thing_is_told_together() -> None:
+    # EN 13187 as applied asks 2 h without sun on an inner face, ASTM C1060 3 h (both secondary texts)
+    level, reason = envelope({**INSIDE, "hours_since_sun": 0.5}, (*EN, *C1060))
+    assert level == "not valid"
+    assert reason.count("0.5 h") == 1
+    assert reason.endswith("0.5 h, required ≥ 2 h and ≥ 3 h")
+
+
 def test_the_worst_requirement_decides() -> None:
     level, reason = envelope({**INSIDE, "wind_m_s": 9.0, "air_difference_k": 3.0, "hours_since_rain": None})
     assert level == "not valid"
