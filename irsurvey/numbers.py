@@ -7,7 +7,9 @@ from decimal import ROUND_CEILING, ROUND_HALF_EVEN, Context, Decimal
 from math import copysign, isfinite, log10
 from typing import Final
 
+from irsurvey import texts
 from irsurvey.model import Estimate, Input
+from irsurvey.units import UNITS
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,38 +41,6 @@ _ANY_SIZE = Context(prec=700, rounding=ROUND_HALF_EVEN)  # the digits of any flo
 
 NOTHING = "–"
 """What stands where there is no number."""
-
-UNITS = {
-    "m2k_w": "m²·K/W",
-    "w_m2k": "W/(m²·K)",
-    "w_m2": "W/m²",
-    "w_mk": "W/(m·K)",
-    "w_k": "W/K",
-    "kwh": "kWh",
-    "kd": "K·d",
-    "g_m3": "g/m³",
-    "m_s": "m/s",
-    "k_per_m": "K/m",
-    "k_per_px": "K/px",
-    "per_pixel": "1/px",
-    "percent": "%",
-    "k_per_year": "K/year",
-    "uohm": "µΩ",
-    "mv": "mV",
-    "mrad": "mrad",
-    "hpa": "hPa",
-    "m2": "m²",
-    "deg": "°",
-    "pa": "Pa",
-    "px": "px",
-    "um": "µm",
-    "a": "A",
-    "c": "°C",
-    "k": "K",
-    "m": "m",
-    "w": "W",
-}
-"""The ending of a key → the unit as people write it; longer endings first."""
 
 _FOOT, _INCH, _MILE = 0.3048, 0.0254, 1609.344  # m, exact (NIST SP 811, 2008, B.8)
 _BTU = 1055.05585262 / 3600  # W of 1 Btu/h, International Table (NIST SP 811, B.8)
@@ -188,11 +158,12 @@ def magnitude(estimate: Estimate | None, *, style: Style = SI) -> str:
         return NOTHING
     if estimate.u < abs(estimate.value):
         power = Decimal(1).scaleb(round(log10(abs(estimate.value))))
-        return f"of the order of {_rounded(copysign(float(power), estimate.value), min(power.adjusted(), 0), style)}"
+        nearest = copysign(float(power), estimate.value)
+        return texts.say("order_of", value=_rounded(nearest, min(power.adjusted(), 0), style))
     most = estimate.value + COVERAGE_FACTOR * estimate.u
     if most <= 0:
         return NOTHING
-    return f"at most about {_upwards(most, 1, style)}"
+    return texts.say("at_most_about", value=_upwards(most, 1, style))
 
 
 def interval(estimate: Estimate | None, *, style: Style = SI) -> str:
@@ -210,7 +181,7 @@ def interval(estimate: Estimate | None, *, style: Style = SI) -> str:
     if estimate.u and abs(arms[0] - arms[1]) <= 1e-3 * expanded and max(arms) <= expanded:
         return ""
     place = _place(expanded, 2)
-    return f"{_rounded(low, place, style)} to {_rounded(high, place, style)} (95\u00a0%)"
+    return texts.say("interval_95", low=_rounded(low, place, style), high=_rounded(high, place, style))
 
 
 def signed(value: float, digits: int = 2, *, style: Style = SI) -> str:
@@ -283,7 +254,7 @@ def area_range(value: float, low: float, high: float, *, style: Style = SI) -> s
     to = expressed("cm²" if is_small else "m²", style)
     factor = to.factor * (1e4 if is_small else 1.0)
     middle, lowest, most = (number(area * factor, 2, style=style) for area in (value, low, high))
-    return f"{with_symbol(middle, to.symbol)} ({lowest} to {with_symbol(most, to.symbol)})"
+    return f"{with_symbol(middle, to.symbol)} ({texts.say('from_to', low=lowest, high=with_symbol(most, to.symbol))})"
 
 
 def decimals(value: float | None, places: int, *, style: Style = SI) -> str:
@@ -310,7 +281,7 @@ def with_unit(text: str, key: str, *, style: Style = SI) -> str:
 def with_symbol(text: str, symbol: str) -> str:
     """The number, a space that does not break, and a unit; the number alone where there is no unit."""
     space = "" if symbol == "°" else "\u00a0"
-    return f"{text}{space}{symbol}" if symbol and text != NOTHING else text
+    return f"{text}{space}{texts.symbol(symbol)}" if symbol and text != NOTHING else text
 
 
 def _symbol(stem: str) -> str:

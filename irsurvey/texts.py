@@ -11,12 +11,22 @@ from importlib.resources import files
 from typing import Any
 
 from irsurvey.model import FrameReport
-from irsurvey.numbers import UNITS
+from irsurvey.units import UNITS
 
 _OF_AREAS = ("noise", "outline")
-"""Inputs that each area of a frame has of its own."""
+_OF_OWNERS = ("slope_x", "slope_y", "selection", "size_of_source")
+"""Inputs that each area of a frame has of its own; those that only what is measured has."""
 _PARTS = ("spot", "whole", "undisturbed")
 """Parts of a finding, a component or a strip that are measured."""
+_ASSUMED = ("default", "material table")
+_MEASURED = ("log", "measured in frame")
+"""Where an input may come from, if nobody stated it."""
+
+
+def language() -> str:
+    """The language of these words, as documents name it."""
+    code: str = _texts()["document"]["language"]
+    return code
 
 
 def say(key: str, /, **values: object) -> str:
@@ -54,6 +64,11 @@ def of_table(words: str) -> str:
     return found
 
 
+def class_name(class_: str | None) -> str:
+    """What a class of a criterion is called, or that there is none."""
+    return of_table(class_) if class_ else say("no_class")
+
+
 def of_review() -> dict[str, str]:
     """All words of the review, by key."""
     return dict(_texts()["review"])
@@ -63,6 +78,12 @@ def flag(code: str) -> str:
     """What a flag means to the reader, or the flag itself; after a colon it may give detail ("saturated: 3 pixels")."""
     meaning: str = _texts()["flags"].get(code.partition(":")[0], code)
     return meaning
+
+
+def flag_name(code: str) -> str:
+    """A flag in a few words, with the detail it may have."""
+    stem, colon, detail = code.partition(":")
+    return f"{_word('flagged', stem)}{colon}{detail}"
 
 
 def urgency(level: int | None) -> str:
@@ -75,9 +96,19 @@ def to_do(level: int | None, outcome: str) -> str:
     return _word("urgency", "open") if level == 0 and outcome == "not cleared" else urgency(level)
 
 
+def outcome_name(kind: str) -> str:
+    """An outcome in a word or two."""
+    return _word("outcomes", kind)
+
+
 def outcome(kind: str) -> str:
     """What an outcome means."""
     return _word("outcome", kind)
+
+
+def verdict_name(kind: str) -> str:
+    """A verdict in a word or two."""
+    return _word("verdicts", kind)
 
 
 def verdict(kind: str) -> str:
@@ -88,6 +119,11 @@ def verdict(kind: str) -> str:
 def uncertainty(kind: str) -> str:
     """How uncertainty was propagated."""
     return _word("uncertainty", kind)
+
+
+def claim_name(kind: str) -> str:
+    """A claim in a word or two."""
+    return _word("claims", kind)
 
 
 def claim(kind: str) -> str:
@@ -112,7 +148,22 @@ def origin(source: str) -> str:
 
 def founded(source: str) -> str:
     """The same in one word: "stated", "measured" or "assumed"."""
-    return origin(source).partition(" ")[0]
+    return _word("founded", "assumed" if is_assumed(source) else "measured" if source in _MEASURED else "stated")
+
+
+def is_assumed(source: str) -> bool:
+    """Whether nobody stated or measured an input."""
+    return source in _ASSUMED
+
+
+def condition(verdict: str) -> str:
+    """How a condition of the survey was kept."""
+    return _word("conditions", verdict)
+
+
+def symbol(unit: str) -> str:
+    """A unit as people write it: most are the same in every language."""
+    return _word("units", unit)
 
 
 def sense(kind: str) -> str:
@@ -122,8 +173,8 @@ def sense(kind: str) -> str:
 
 def pattern(name: str) -> str:
     """A pattern in half a sentence: "consistent with …", or that there is none."""
-    words: str = _texts()["pattern"].get(name, f"consistent with {name}")
-    return words
+    words: str | None = _texts()["pattern"].get(name)
+    return words or say("consistent_with", pattern=of_table(name))
 
 
 def cue(key: str) -> str:
@@ -140,8 +191,8 @@ def term(key: str) -> str:
 
 def risk(kind: str) -> str:
     """What a surface temperature is held against."""
-    words: str = _texts()["risk"].get(kind, f"Limit of {kind}")
-    return words
+    words: str | None = _texts()["risk"].get(kind)
+    return words or say("limit_of", kind=kind)
 
 
 def air(how: str) -> str:
@@ -155,7 +206,7 @@ def asked_by(report: str) -> str:
 
 
 def season(sense: str) -> str:
-    """Heating or cooling."""
+    """Heating or cooling, as a heading."""
     return _word("season", sense)
 
 
@@ -205,7 +256,9 @@ def name(key: str) -> str:
     found = names.get(stem) or names.get(bare) or _plain(bare)
     if not owner:
         return found
-    return f"{found}, {_area(bare, owner) if bare in _OF_AREAS else owner}"
+    if bare in _OF_AREAS:
+        owner = _area(bare, owner)
+    return f"{found}, {_owner(owner) if bare in _OF_OWNERS else owner}"
 
 
 def inside(key: str) -> str:
@@ -243,7 +296,14 @@ def _area(kind: str, owner: str) -> str:
     if owner == "reference":
         return areas["reference"]
     whose, _, part = owner.rpartition(" ")
-    return areas[part].replace("{name}", whose) if kind == "noise" and part in _PARTS else owner
+    return areas[part].replace("{name}", _owner(whose)) if kind == "noise" and part in _PARTS else _owner(owner)
+
+
+def _owner(named: str) -> str:
+    """What an area belongs to, in words: a finding by its id, a component or strip by its name."""
+    kind, _, name = named.partition(" ")
+    areas: dict[str, str] = _texts()["areas"]
+    return areas[kind].replace("{name}", name) if kind in ("component", "strip") and name else named
 
 
 def _without_unit(key: str) -> str:

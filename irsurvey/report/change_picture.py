@@ -15,6 +15,7 @@ from irsurvey.numbers import SI, Style
 from irsurvey.report import outlines, picture, scale
 from irsurvey.report.inks import UNMEASURABLE, palette
 from irsurvey.report.labels import Label, change_mark, place
+from irsurvey.texts import say
 
 if TYPE_CHECKING:
     from PIL import Image
@@ -65,9 +66,10 @@ def _in_words(frame: FrameReport, end: float, style: Style) -> str:
     """What the picture shows, for those who cannot see it."""
     with_ = frame.pair.with_ if frame.pair else ""
     changes = frame.pair.changes if frame.pair else ()
-    listed = ", ".join(f"{change_mark(n)} ({one.sense})" for n, one in enumerate(changes, 1))
+    listed = ", ".join(f"{change_mark(n)} ({picture.in_colour(one.sense)})" for n, one in enumerate(changes, 1))
     shown = numbers.converted(end, "change_k", style=style)
-    ends = " to ".join(numbers.decimals(one, 1, style=style) for one in (-shown, shown))
-    scale = f"colour scale {ends} {numbers.unit('change_k', style=style)} ({COLORMAP})"
-    drawn = f"outlined changes: {listed}" if listed else "no changes"
-    return f"Change of surface temperature from frame {with_} to frame {frame.id}, {scale}; {drawn}."
+    first, last = (numbers.decimals(one, 1, style=style) for one in (-shown, shown))
+    drawn = say("change_drawn", listed=listed) if listed else say("change_none")
+    unit = numbers.unit("change_k", style=style)
+    told = {"low": first, "high": last, "unit": unit, "colours": COLORMAP, "drawn": drawn}
+    return say("change_is", before=with_, frame=frame.id, **told)

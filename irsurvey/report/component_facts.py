@@ -12,13 +12,13 @@ from irsurvey.numbers import SI, Style
 from irsurvey.report import results
 from irsurvey.report.facts import Fact
 from irsurvey.report.sentences import in_style
+from irsurvey.texts import say
 
 _CALM = {"delta_similar_in_calm_k": "delta_similar_k", "delta_ambient_in_calm_k": "delta_ambient_k"}
 """A difference brought to 1 m/s of wind → as it was measured."""
 _MARGINS = ("above_limit_k", "above_allowed_k")
 _AT_LEAST = ("excess_resistance_uohm", "voltage_drop_mv", "yearly_loss_kwh")
 """Of the heat of a joint: what heat that flows off along the conductor makes larger still."""
-_ESTIMATE = "an estimate"
 
 
 def of_component(item: ComponentReport, *, style: Style = SI) -> tuple[Fact, ...]:
@@ -27,7 +27,7 @@ def of_component(item: ComponentReport, *, style: Style = SI) -> tuple[Fact, ...
     Nothing where there is but the load, which the table of components tells."""
     told = (*_rated(item, style), *_in_calm(item, style), *_compared(item, style), *_limit(item, style))
     load = results.load(item, item.load_a, item.rated_a, style=style)
-    return (Fact("Load", load), *told) if told and load else told
+    return (Fact(say("load"), load), *told) if told and load else told
 
 
 def of_joint(item: ComponentReport, *, style: Style = SI) -> tuple[Fact, ...]:
@@ -49,7 +49,7 @@ def _rated(item: ComponentReport, style: Style) -> Iterator[Fact]:
             if band and not band.low == band.high == 0  # the coolest twin itself
         ]
         if told:
-            yield Fact("Rise at rated load", "; ".join(told), in_style(texts.remark("rated"), style))
+            yield Fact(say("rise_at_rated_load"), "; ".join(told), in_style(texts.remark("rated"), style))
 
 
 def _in_calm(item: ComponentReport, style: Style) -> Iterator[Fact]:
@@ -57,7 +57,8 @@ def _in_calm(item: ComponentReport, style: Style) -> Iterator[Fact]:
         if getattr(item, key):
             as_read = results.reading(item, measured, style=style)
             name = in_style(texts.name(key), style)
-            yield Fact(name, _reading(item, key, style), f"{as_read} as measured; {texts.remark('wind')}")
+            note = say("as_measured", delta=as_read, remark=texts.remark("wind"))
+            yield Fact(name, _reading(item, key, style), note)
 
 
 def _compared(item: ComponentReport, style: Style) -> Iterator[Fact]:
@@ -69,13 +70,14 @@ def _compared(item: ComponentReport, style: Style) -> Iterator[Fact]:
 def _limit(item: ComponentReport, style: Style) -> Iterator[Fact]:
     if limit := item.limit:
         rise = limit.rise_k
-        allowed = f"{numbers.told(rise, 'rise_k', style=style)} above ambient air at rated load; " if rise else ""
+        told = numbers.told(rise, "rise_k", style=style)
+        source = say("allowed_rise", rise=told, source=limit.source) if rise else limit.source
         text = numbers.told(limit.max_c, "max_c", style=style)
         known = limits().get(limit.name)
-        yield Fact("Absolute limit", f"{text}, {known.what if known else limit.name}", f"{allowed}{limit.source}")
+        yield Fact(say("absolute_limit"), f"{text}, {known.what if known else limit.name}", source)
         if limit.allowed_now_c:
             yield Fact(
-                "Allowed now",
+                say("allowed_now"),
                 _band(limit.allowed_now_c, "allowed_now_c", 3, style),
                 in_style(texts.remark("allowed"), style),
             )
@@ -97,13 +99,14 @@ def _side(item: ComponentReport, key: str, margin: Estimate) -> str:
 
 def _joint(joint: JointHeat, item: ComponentReport, style: Style) -> Iterator[Fact]:
     is_bound = results.is_bound(item, "max_c")
-    yield Fact("Taken for", texts.form(joint.form))
+    yield Fact(say("taken_for"), texts.form(joint.form))
     for key in ("power_w", "excess_power_w", *_AT_LEAST, "film_coefficient_w_m2k"):
         text = numbers.measured(getattr(joint, key), key, style=style)
         if text == numbers.NOTHING:
             continue
-        at_least = "at least " if key in _AT_LEAST or (is_bound and key != "film_coefficient_w_m2k") else ""
-        yield Fact(texts.name(key), f"{at_least}{text}, {_ESTIMATE}")
+        if key in _AT_LEAST or (is_bound and key != "film_coefficient_w_m2k"):
+            text = say("at_least", value=text)
+        yield Fact(texts.name(key), say("estimate_of", what=text))
 
 
 def _trend(trend: TrendReport, style: Style) -> Iterator[Fact]:
@@ -113,7 +116,8 @@ def _trend(trend: TrendReport, style: Style) -> Iterator[Fact]:
         ends = ""
         if low is not None and high is not None:
             way = "rises" if low > 0 else "falls" if high < 0 else "level"
-            ends = f"{_band(Band(low, high), 'slope_k_per_year', 2, style)} (95\u00a0%): {texts.remark(way)}"
+            first, last = _ends(Band(low, high), "slope_k_per_year", 2, style)
+            ends = say("slope_ends", low=first, high=last, remark=texts.remark(way))
         yield Fact(texts.name("trend_slope"), slope, ends)
     change = numbers.measured(trend.change_k, "change_k", style=style)
     if change != numbers.NOTHING:
@@ -123,9 +127,16 @@ def _trend(trend: TrendReport, style: Style) -> Iterator[Fact]:
 
 def _band(band: Band, key: str, digits: int, style: Style) -> str:
     """A range with the unit of its key: "32.1 to 35.9 °C"."""
-    low, high = (numbers.converted(end, key, style=style) for end in (band.low, band.high))
-    text = f"{numbers.number(low, digits, style=style)} to {numbers.number(high, digits, style=style)}"
-    return numbers.with_unit(text, key, style=style)
+    low, high = _ends(band, key, digits, style)
+    return say("from_to", low=low, high=high)
+
+
+def _ends(band: Band, key: str, digits: int, style: Style) -> tuple[str, str]:
+    """The ends of a range, the unit behind the last."""
+    low, high = (
+        numbers.number(numbers.converted(end, key, style=style), digits, style=style) for end in (band.low, band.high)
+    )
+    return low, numbers.with_unit(high, key, style=style)
 
 
 def _reading(item: ComponentReport, key: str, style: Style) -> str:

@@ -10,8 +10,6 @@ from irsurvey.model import ConditionCheck
 from irsurvey.numbers import SI, Style
 from irsurvey.report.sentences import in_style
 
-_ASSUMED = " (assumed)"
-"""What a check ends in that is asked under circumstances nobody recorded."""
 _KEPT = ("W/m²",)
 """Units of a condition that are the same in every style: of irradiance."""
 _WORST_FIRST = ("not met", "not recorded", "met")
@@ -40,8 +38,13 @@ def rows(review: tuple[ConditionCheck, ...], *, style: Style = SI) -> tuple[Row,
 
 def _row(same: list[ConditionCheck], groups: int, style: Style) -> Row:
     check = same[0]
-    known = {one.check: one for group in requirement_sets() for one in group.requirements}
-    requirement = known.get(check.check.removesuffix(_ASSUMED))
+    known = {
+        words: one
+        for group in requirement_sets()
+        for one in group.requirements
+        for words in (one.check, texts.state("check_assumed", check=one.check))
+    }
+    requirement = known.get(check.check)
     values = sorted(one.value for one in same if one.value is not None)
     to = (
         numbers.Scale(symbol)
@@ -54,14 +57,19 @@ def _row(same: list[ConditionCheck], groups: int, style: Style) -> Row:
     return Row(
         replace(check, check=in_style(check.check, style), requirement=in_style(check.requirement, style)),
         groups=_listed([one.group for one in same], groups),
-        recorded=numbers.with_symbol(" to ".join(ends) or numbers.NOTHING, to.symbol),
+        recorded=numbers.with_symbol(_ends(tuple(ends)), to.symbol),
         to_record=((requirement and requirement.stated_by) or check.check) if check.verdict == "not recorded" else "",
         leaves=texts.kept(check.limits_to),
     )
 
 
+def _ends(told: tuple[str, ...]) -> str:
+    """A value, or the least and the largest of several."""
+    return texts.say("from_to", low=told[0], high=told[1]) if len(told) > 1 else (told or (numbers.NOTHING,))[0]
+
+
 def _listed(named: list[str], groups: int) -> str:
     """Groups by name, "all" where it is all of several; a frame outside every group has none."""
     if len(set(named)) == groups > 1:
-        return "all"
+        return texts.say("all_groups")
     return ", ".join(name for name in dict.fromkeys(named) if name)

@@ -10,11 +10,11 @@ from irsurvey.model import Estimate, Finding, ReferenceReport, RoomAir, StripRep
 from irsurvey.numbers import SI, Style
 from irsurvey.report import results
 from irsurvey.report.sentences import in_style
+from irsurvey.texts import say
 
 Record = Finding | ReferenceReport | RoomAir | StripReport
 
 _YES_OR_NO = ("changed_with_pressure",)
-_NOT_GIVEN = "not given"
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,23 +28,23 @@ class Fact:
 
 def of_reference(reference: ReferenceReport, *, style: Style = SI) -> tuple[Fact, ...]:
     """Heat flux, film resistance and U-values of a reference area."""
-    flux = _fact(reference, "heat_flux_w_m2", "an estimate", style=style)
+    flux = _fact(reference, "heat_flux_w_m2", "estimate_of", style=style)
     return (
         *([Fact(flux.name, flux.text, terms(reference.heat_flux_terms_w_m2, style=style))] if flux else []),
         *_told(reference, ("film_resistance_m2k_w",), style=style),
-        *_told(reference, ("u_value_w_m2k", "u_value_simple_w_m2k"), "an estimate from one moment", style=style),
+        *_told(reference, ("u_value_w_m2k", "u_value_simple_w_m2k"), "estimate_from_moment", style=style),
         *_refused(reference.refusals, style),
     )
 
 
 def of_finding(item: Finding, *, style: Style = SI) -> tuple[Fact, ...]:
     """What a finding means for the envelope: heat, U-values, temperature factors, moisture, pressure."""
-    heat = Fact("Heat flux goes", terms(item.heat_flux_terms_w_m2, style=style))
+    heat = Fact(say("heat_flux_goes"), terms(item.heat_flux_terms_w_m2, style=style))
     return (
         *([heat] if heat.text else []),
         *_told(item, ("excess_heat_w_k",), style=style),
         *_told(
-            item, ("u_value_w_m2k", "u_value_increase_w_m2k", "u_value_from_contrast_w_m2k"), "an estimate", style=style
+            item, ("u_value_w_m2k", "u_value_increase_w_m2k", "u_value_from_contrast_w_m2k"), "estimate_of", style=style
         ),
         *_told(item, ("temperature_factor", "temperature_factor_at_0_25"), style=style),
         *_margin(item, "dew_point_margin_k", "condensation_probability", style),
@@ -60,7 +60,7 @@ def of_strip(strip: StripReport, *, style: Style = SI) -> tuple[Fact, ...]:
     judged = ("incidence_factor", "linear_transmittance_w_mk", "u_value_w_m2k")
     return (
         *_told(strip, keys, style=style),
-        *_told(strip, judged, "an estimate", style=style),
+        *_told(strip, judged, "estimate_of", style=style),
         *_refused(strip.refusals, style),
     )
 
@@ -73,7 +73,7 @@ def of_room(room: RoomAir, *, style: Style = SI) -> tuple[Fact, ...]:
 def share(risk: SurfaceAtRisk) -> str:
     """Share of the surface at risk, and what it may be: "3 % (1 % to 8 %)"."""
     value, low, high = (numbers.percent(part) for part in (risk.share, risk.share_low, risk.share_high))
-    return f"{value} ({low} to {high})"
+    return f"{value} ({say('from_to', low=low, high=high)})"
 
 
 def area(risk: SurfaceAtRisk, *, style: Style = SI) -> str:
@@ -101,16 +101,16 @@ def cues(evidence: dict[str, float], *, style: Style = SI) -> tuple[Fact, ...]:
 
 def _cue(key: str, value: float, style: Style) -> str:
     if key in _YES_OR_NO:
-        return "yes" if value else "no"
+        return say("yes") if value else say("no")
     return numbers.told(value, key, 2, style=style)
 
 
-def _told(record: Record, keys: Iterable[str], word: str = "", *, style: Style) -> list[Fact]:
-    return [fact for key in keys if (fact := _fact(record, key, word, style=style))]
+def _told(record: Record, keys: Iterable[str], kind: str = "", *, style: Style) -> list[Fact]:
+    return [fact for key in keys if (fact := _fact(record, key, kind, style=style))]
 
 
-def _fact(record: Record, key: str, word: str = "", *, style: Style) -> Fact | None:
-    """One number that exists, with its interval and what kind of number it is."""
+def _fact(record: Record, key: str, kind: str = "", *, style: Style) -> Fact | None:
+    """One number that exists, with its interval; `kind` is the key of what says what kind of number it is."""
     if getattr(record, key) is None:
         return None
     if isinstance(record, Finding):
@@ -122,7 +122,7 @@ def _fact(record: Record, key: str, word: str = "", *, style: Style) -> Fact | N
     if text == numbers.NOTHING:
         return None
     told = f"{text}; {drawn}" if drawn else text
-    return Fact(in_style(texts.name(key), style), f"{told}, {word}" if word else told)
+    return Fact(in_style(texts.name(key), style), say(kind, what=told) if kind else told)
 
 
 def _margin(item: Finding, key: str, probability: str, style: Style) -> list[Fact]:
@@ -130,11 +130,10 @@ def _margin(item: Finding, key: str, probability: str, style: Style) -> list[Fac
     fact, chance = _fact(item, key, style=style), results.chance(getattr(item, probability))
     if not chance:
         return [fact] if fact else []
-    bound = "at least " if results.is_bound(item, key) else ""
-    name = texts.inside(probability)
+    told = say("at_least", value=chance) if results.is_bound(item, key) else chance
     if not fact:
-        return [Fact(texts.name(probability), f"{bound}{chance}")]
-    return [Fact(fact.name, fact.text, f"{name} at the moment of the survey: {bound}{chance}")]
+        return [Fact(texts.name(probability), told)]
+    return [Fact(fact.name, fact.text, say("at_the_moment", name=texts.inside(probability), chance=told))]
 
 
 def _refused(refusals: dict[str, str], style: Style) -> list[Fact]:
@@ -148,4 +147,4 @@ def _refused(refusals: dict[str, str], style: Style) -> list[Fact]:
 
 def _not_given(remedy: str, same: list[tuple[str, str]]) -> Fact:
     names, reasons = ("; ".join(dict.fromkeys(parts)) for parts in zip(*same, strict=True))
-    return Fact(names, _NOT_GIVEN, reasons if remedy == reasons else f"{reasons}: {remedy}")
+    return Fact(names, say("not_given"), reasons if remedy == reasons else f"{reasons}: {remedy}")

@@ -13,6 +13,7 @@ from irsurvey import numbers
 from irsurvey.model import FrameReport
 from irsurvey.numbers import SI, Style
 from irsurvey.report.axes import BOTTOM, LEFT, RIGHT, TICKS_ACROSS, TOP, Axis, Tick
+from irsurvey.texts import say
 
 _BINS = 64
 _LEAST_SPAN_K = 2.0
@@ -106,11 +107,12 @@ def _in_words(
         numbers.decimals(numbers.converted(float(end), "min_c", style=style), 1, style=style)
         for end in (values.min(), values.max())
     )
-    told = [f"{numbers.grouped(values.size)} pixels from {low} to {numbers.with_unit(high, 'max_c', style=style)}"]
-    told += [f"{numbers.grouped(found)} of them in anomalies"] if found else []
+    high = numbers.with_unit(high, "max_c", style=style)
+    told = [say("histogram_pixels", count=numbers.grouped(values.size), low=low, high=high)]
+    told += [say("histogram_found", count=numbers.grouped(found))] if found else []
     if level is not None:
         median = numbers.decimals(numbers.converted(level, "median_c", style=style), 1, style=style)
-        told.append(f"reference {numbers.with_unit(median, 'median_c', style=style)}")
+        told.append(say("histogram_reference", value=numbers.with_unit(median, "median_c", style=style)))
     if counts_from is not None and level is not None:
-        told.append(f"a deviation counts from {numbers.least(counts_from, 'threshold_k', style=style)} on")
-    return f"Histogram of temperatures: {'; '.join(told)}"
+        told.append(say("histogram_counts", value=numbers.least(counts_from, "threshold_k", style=style)))
+    return say("histogram_is", told="; ".join(told))

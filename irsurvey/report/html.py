@@ -17,6 +17,7 @@ from irsurvey.report import (
     axes,
     component_facts,
     condition_rows,
+    explained,
     facts,
     live,
     pictures,
@@ -35,9 +36,11 @@ from irsurvey.report.ranking import Ranked, foremost, governing, in_order
 from irsurvey.report.sentences import in_style
 from irsurvey.report.sheets import Sheet, entry, is_compared, sheet
 from irsurvey.report.style import asked, day, moment, spoken
+from irsurvey.texts import noun, say
 
 if TYPE_CHECKING:
     from jinja2 import Environment
+    from markupsafe import Markup
 
 SUMMARY_LENGTH = 12
 """Results named on the first page; the table behind it has all of them."""
@@ -56,6 +59,7 @@ _MODULES = {
     "r": results,
     "f": facts,
     "c": component_facts,
+    "w": explained,
     "strip_plot": strip_plot,
     "trend_plot": trend_plot,
 }
@@ -111,7 +115,7 @@ class _Pages:
         style = asked(report)
         shared = {
             "report": report,
-            "title": about.said(report).get("title") or "Thermographic survey",
+            "title": about.said(report).get("title") or say("untitled"),
             "shown": {finding.id for frame in report.frames for finding in foremost(frame, NUMBERED)},
             "frame_ids": {frame.id for frame in report.frames},
             "style": style,
@@ -194,14 +198,14 @@ def not_cleared(report: Report) -> Iterator[Open]:
         if frame.status == "failed":
             continue
         if frame.claim == "not valid":
-            yield Open(frame, "the whole frame", frame.claim_reason)
+            yield Open(frame, say("the_whole_frame"), frame.claim_reason)
         elif not is_compared(frame):
-            yield Open(frame, "the whole frame", "nothing in it could be compared with a reference area")
+            yield Open(frame, say("the_whole_frame"), say("no_reference_area"))
         if frame.temperature and (lost := frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels):
-            yield Open(frame, f"{lost} pixels", "no temperature could be measured there")
+            yield Open(frame, say("pixels", count=lost), say("no_temperature"))
         for finding in frame.findings:
             if finding.outcome == "not cleared":
-                yield Open(frame, f"finding {finding.id}", _why(finding))
+                yield Open(frame, say("finding_id", id=finding.id), _why(finding))
         for component in frame.components:
             if component.outcome == "not cleared":
                 yield Open(frame, component.name, _why(component))
@@ -215,7 +219,7 @@ def gathered(points: Iterable[Open]) -> list[Open]:
     return [
         replace(same[0], what=", ".join(point.what for point in same))
         if len(same) <= _NAMED
-        else replace(same[0], what=f"{len(same)} of its results")
+        else replace(same[0], what=say("of_its_results", count=len(same)))
         for same in alike.values()
     ]
 
@@ -252,7 +256,7 @@ def _why(item: Finding | ComponentReport) -> str:
     assessment = governing(item.assessments)
     if assessment and assessment.statement:
         return assessment.statement
-    return " ".join(texts.flag(flag) for flag in item.flags) or "no criterion applies"
+    return " ".join(texts.flag(flag) for flag in item.flags) or say("no_criterion")
 
 
 def _small_side(frames: int) -> int:
@@ -268,6 +272,20 @@ def _upper_first(text: str) -> str:
     return text[:1].upper() + text[1:]
 
 
+def _within(tag: str, text: str) -> Markup:
+    """A text in an element."""
+    from markupsafe import Markup
+
+    return Markup(f"<{tag}>{{}}</{tag}>").format(text)
+
+
+def _marked(key: str, /, **values: object) -> Markup:
+    """What `say` gives as markup: values that are markup stay so, all others are text like the words around them."""
+    from markupsafe import Markup, escape
+
+    return Markup(escape(say(key))).format(**values)
+
+
 @cache
 def _environment() -> Environment:
     from jinja2 import Environment, PackageLoader, StrictUndefined
@@ -279,13 +297,19 @@ def _environment() -> Environment:
         trim_blocks=True,
         lstrip_blocks=True,
     )
-    environment.filters |= {"short": _short, "upper_first": _upper_first}
+    environment.filters |= {"flag_name": texts.flag_name, "short": _short, "upper_first": _upper_first}
     environment.globals |= {
         "axes": axes,
+        **{tag: partial(_within, tag) for tag in ("bdi", "code")},
+        "bold": partial(_within, "b"),
         "change_mark": change_mark,
         "component_mark": component_mark,
         "governing": governing,
+        "language": texts.language,
+        "marked": _marked,
+        "noun": noun,
         "numbered": NUMBERED,
+        "say": say,
         "strip_mark": strip_mark,
         "summary_length": SUMMARY_LENGTH,
         "t": texts,

@@ -18,6 +18,7 @@ from irsurvey.report import outlines, scale
 from irsurvey.report.inks import COLORMAP, DARK, LEVELS, LIGHT, UNMEASURABLE, Pixels, palette
 from irsurvey.report.labels import Box, Label, Point, component_mark, place, strip_mark
 from irsurvey.report.ranking import foremost
+from irsurvey.texts import say
 
 if TYPE_CHECKING:
     from PIL import Image
@@ -103,6 +104,11 @@ def shades(temperature: Temperatures, low: float, high: float) -> Pixels:
 def enlargement(shape: tuple[int, ...]) -> int:
     """Whole factor that makes a small frame legible; 1 for one that is large enough."""
     return ceil(LEGIBLE_SIDE / max(shape))
+
+
+def in_colour(sense: str) -> str:
+    """What is said of a colour: hot or cold."""
+    return say("picture_cold" if sense == "cold" else "picture_hot")
 
 
 def _draw(canvas: Pixels, frame: FrameReport, maps: Maps, *, factor: int, extremes: list[Point]) -> None:
@@ -205,13 +211,15 @@ def corners(polygon: tuple[tuple[float, float], ...], factor: int) -> NDArray[np
 
 def _in_words(frame: FrameReport, low: float, high: float, colormap: str, style: Style) -> str:
     """What the picture shows, for those who cannot see it."""
-    ends = (numbers.decimals(numbers.converted(end, "min_c", style=style), 1, style=style) for end in (low, high))
-    scale = f"colour scale {' to '.join(ends)} {numbers.unit('min_c', style=style)} ({colormap})"
-    findings = ", ".join(f"{finding.label} ({finding.sense})" for finding in frame.findings)
+    findings = ", ".join(f"{finding.label} ({in_colour(finding.sense)})" for finding in frame.findings)
     components = ", ".join(f"{component_mark(n)} ({c.name[:40]})" for n, c in enumerate(frame.components, 1))
-    drawn = [f"outlined findings: {findings}" if findings else "no findings"]
-    drawn += [f"components: {components}"] if components else []
+    drawn = [say("picture_findings", listed=findings) if findings else say("picture_no_findings")]
+    drawn += [say("picture_components", listed=components)] if components else []
     strips = ", ".join(f"{strip_mark(n)} ({strip.name[:40]})" for n, strip in enumerate(frame.strips, 1))
-    drawn += [f"strips: {strips}"] if strips else []
-    drawn += ["dashed: reference area"] if frame.reference else []
-    return f"Surface temperatures of frame {frame.id}, {scale}; " + "; ".join(drawn) + "."
+    drawn += [say("picture_strips", listed=strips)] if strips else []
+    drawn += [say("picture_reference")] if frame.reference else []
+    low, high = (numbers.converted(end, "min_c", style=style) for end in (low, high))
+    first, last = (numbers.decimals(end, 1, style=style) for end in (low, high))
+    unit = numbers.unit("min_c", style=style)
+    told = {"low": first, "high": last, "unit": unit, "colours": colormap, "drawn": "; ".join(drawn)}
+    return say("picture_is", frame=frame.id, **told)

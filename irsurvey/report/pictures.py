@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING
 from irsurvey.model import FrameReport, FrameTask
 from irsurvey.report.labels import Box
 from irsurvey.report.picture import box, enlargement
+from irsurvey.texts import say
 
 if TYPE_CHECKING:
     from PIL import Image
@@ -68,7 +69,7 @@ def small(frame: FrameReport, side: int, out: Path) -> Picture | None:
         return None
     factor = enlargement(frame.source.shape)
     whole = (0, 0, frame.source.shape[1] * factor, frame.source.shape[0] * factor)
-    words = f"Thermal picture of frame {frame.id}"
+    words = say("thermal_picture", frame=frame.id)
     return _reduced(out / "frames" / frame.id / "annotated.png", side, words, lambda image: image.crop(whole))
 
 
@@ -80,7 +81,7 @@ def photograph(task: FrameTask, side: int) -> Picture | None:
 
     if task.photo_path is None:
         return None
-    return _reduced(Path(task.photo_path), side, f"Photograph of frame {task.id}", ImageOps.exif_transpose)
+    return _reduced(Path(task.photo_path), side, say("photograph", frame=task.id), ImageOps.exif_transpose)
 
 
 def _reduced(

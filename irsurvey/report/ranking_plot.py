@@ -96,7 +96,7 @@ def _plot(name: str, quantity: str, entries: list[Ranked], known: Mapping[str, C
     reach = max([reach, *(kind.low for kind in classes[:1])]) * _ROOM
     x = Axis(0.0, factor * reach, LEFT_END, RIGHT)
     edges = tuple(
-        Edge(x.at(factor * kind.low), numbers.number(factor * kind.low, 3, style=style), kind.name)
+        Edge(x.at(factor * kind.low), numbers.number(factor * kind.low, 3, style=style), texts.class_name(kind.name))
         for kind in classes
         if 0 < kind.low <= reach
     )
@@ -141,4 +141,4 @@ def _name(entry: Ranked) -> str:
 
 def _in_words(rows: tuple[Row, ...], quantity: str) -> str:
     told = ", ".join(f"{row.name} {row.reading}" for row in rows[:6])
-    return f"{texts.name(quantity)}, the largest first: {told}{' …' if len(rows) > 6 else ''}"
+    return texts.say("ranking_is", quantity=texts.name(quantity), told=f"{told}{' …' if len(rows) > 6 else ''}")

@@ -13,6 +13,7 @@ from irsurvey.report import pictures, results
 from irsurvey.report.labels import component_mark
 from irsurvey.report.pictures import Picture
 from irsurvey.report.ranking import Ranked, governing
+from irsurvey.texts import say
 
 _JUDGED = {
     "similar": "delta_similar_k",
@@ -93,7 +94,7 @@ def _line(item: RepairItem, entry: Ranked | None, style: Style) -> Line:
 def _pictured(line: Line, photo: Picture | None, out: Path) -> Line:
     if line.entry is None:
         return replace(line, photo=photo)
-    words = f"Thermal picture of {line.item.what[:80]}, marked {line.mark}, in frame {line.item.frame}"
+    words = say("thermal_picture_of", what=line.item.what[:80], mark=line.mark, frame=line.item.frame)
     thermal = pictures.around(line.entry.frame, line.entry.item.polygon, words, out)
     return replace(line, thermal=thermal, photo=photo)
 
@@ -116,4 +117,4 @@ def _basis(item: RepairItem, entry: Ranked | None, style: Style) -> str:
     if entry is None or decides is None or not decides.quantity.endswith("_in_calm_k"):
         return words
     calm = numbers.measured(getattr(entry.item, decides.quantity), "delta_k", style=style)
-    return f"{words}; {calm} brought to 1 m/s of wind, which decides"
+    return say("calm_decides", basis=words, delta=calm)

@@ -8,6 +8,7 @@ from irsurvey import numbers, texts
 from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
 from irsurvey.numbers import SI, Style
 from irsurvey.report.ranking import governing, is_saturated
+from irsurvey.texts import say
 
 Item = Finding | ComponentReport
 
@@ -111,7 +112,7 @@ def rated(item: ComponentReport, *, style: Style = SI) -> str:
     if band is None or band.low == band.high == 0:
         return ""
     low, high = (numbers.converted(end, "delta_similar_k", style=style) for end in (band.low, band.high))
-    return f"{numbers.number(low, 2, style=style)} to {numbers.number(high, 2, style=style)}"
+    return say("from_to", low=numbers.number(low, 2, style=style), high=numbers.number(high, 2, style=style))
 
 
 def load(item: Item | None, load_a: float | None, rated_a: float | None, *, style: Style = SI) -> str:
@@ -120,10 +121,10 @@ def load(item: Item | None, load_a: float | None, rated_a: float | None, *, styl
         return ""
     stated, rating = (numbers.with_symbol(numbers.number(current, style=style), "A") for current in (load_a, rated_a))
     if load_a is None:
-        return "not recorded" if rated_a is None else f"not recorded; rated {rating}"
+        return say("not_recorded") if rated_a is None else say("load_rating_only", rated=rating)
     if not rated_a:
-        return f"{stated}, rating not recorded"
-    return f"{stated} of {rating} rated ({numbers.percent(load_a / rated_a)})"
+        return say("load_without_rating", load=stated)
+    return say("load_of_rating", load=stated, rated=rating, share=numbers.percent(load_a / rated_a))
 
 
 def budgets(item: Item, *, style: Style = SI) -> tuple[Shown, ...]:
@@ -136,14 +137,14 @@ def budgets(item: Item, *, style: Style = SI) -> tuple[Shown, ...]:
 def changes(item: Item, *, style: Style = SI) -> tuple[Change, ...]:
     """What would change the class, by the class it would become."""
     return tuple(
-        Change(class_, tuple(_told(flip, style) for flip in item.flips if flip.class_ == class_))
+        Change(texts.class_name(class_), tuple(_told(flip, style) for flip in item.flips if flip.class_ == class_))
         for class_ in dict.fromkeys(flip.class_ for flip in item.flips)
     )
 
 
 def probabilities(assessment: Assessment) -> dict[str, float]:
     """The classes that come into question where an edge is near; nothing where one class is as good as certain."""
-    told = {name: p for name, p in assessment.probabilities.items() if p >= _LEAST_SHARE}
+    told = {texts.class_name(name): p for name, p in assessment.probabilities.items() if p >= _LEAST_SHARE}
     return told if max(told.values(), default=1.0) < _NEAR_EDGE else {}
 
 
@@ -160,7 +161,7 @@ def _shown(item: Item, key: str, terms: tuple[BudgetTerm, ...], style: Style) ->
         key=key,
         name=texts.name(key),
         reading=reading(item, key, style=style),
-        unit=numbers.difference_unit(key, style=style),
+        unit=texts.symbol(numbers.difference_unit(key, style=style)),
         lines=(*listed, *_rest([term for term in terms if abs(term.share) >= _LEAST_SHARE])),
         chart=(*(_line(term, key, style) for term in charted), *_rest(charted)),
     )
@@ -184,7 +185,7 @@ def _rest(named: list[BudgetTerm]) -> tuple[Line, ...]:
     share = 1 - sum(term.share for term in named)
     if abs(share) < 1e-3:  # nothing a whole percent could show
         return ()
-    return (Line("All other inputs together", "", "", "", numbers.percent(share), _bar(share)),)
+    return (Line(say("other_inputs"), "", "", "", numbers.percent(share), _bar(share)),)
 
 
 def _bar(share: float) -> int:
@@ -192,11 +193,12 @@ def _bar(share: float) -> int:
 
 
 def _per(of_number: str, of_input: str) -> str:
-    return f"{of_number} per {of_input.removesuffix('s')}".strip() if of_input else of_number
+    number = texts.symbol(of_number)
+    return say("per", number=number, unit=texts.symbol(of_input.removesuffix("s"))).strip() if of_input else number
 
 
 def _told(flip: Flip, style: Style) -> str:
     """A change of one input in words: "−1.3 K in reflected apparent temperature"."""
     to = numbers.difference_scale(flip.input, style)
     change = numbers.with_symbol(numbers.signed(flip.change * to.factor, style=style), to.symbol)
-    return f"{change} in {texts.inside(flip.input)}"
+    return say("change_in", change=change, input=texts.inside(flip.input))

@@ -9,10 +9,12 @@ from irsurvey import numbers, texts
 from irsurvey.model import Estimate, Finding, Report, SeasonReport, SeasonRow
 from irsurvey.numbers import SI, Style
 from irsurvey.report.sentences import in_style
+from irsurvey.texts import say
 
 _SMALL_KWH = 1.0
 """Several findings that surely take less a season share one line."""
-_NOT_MEASURED = "not measured: its U-value as stated"
+_IN_SEASON = {"heating": "in_heating_season", "cooling": "in_cooling_season"}
+_PATCH = {"hot": "warmer_patch", "cold": "colder_patch"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,7 +75,7 @@ def in_short(report: Report, *, style: Style = SI) -> dict[str, str]:
     for row, season in rows:
         cost = _cost(row, season, style)
         price = f" ({cost})" if cost != numbers.NOTHING else ""
-        told[row.of] = f"in a {texts.season(season.sense).lower()} season {_energy(row, style)}{price}"
+        told[row.of] = f"{say(_IN_SEASON[season.sense], energy=_energy(row, style))}{price}"
     return told
 
 
@@ -87,24 +89,24 @@ def _table(report: Report, season: SeasonReport, style: Style) -> Table:
     if len(small) > 1:
         lines.append(_gathered(small, season, style))
     whole = tuple(
-        _line(row, season, described.get(row.of, row.of), labels.get(row.frame or "", _NOT_MEASURED), style=style)
+        _line(row, season, described.get(row.of, row.of), labels.get(row.frame or "", say("not_measured")), style=style)
         for row in season.elements
     )
     return Table(
         sense=season.sense,
-        heading=f"{texts.season(season.sense)} season",
+        heading=texts.season(season.sense),
         basis=_basis(season, style),
         has_cost=season.price is not None,
         parts=tuple(
             part
             for part in (
                 Part(
-                    *("Extra heat of single places", "Place", "Where"),
+                    *(say("single_places"), say("place"), say("where")),
                     tuple(lines),
                     _total(season.findings_total, season, style),
                 ),
                 Part(
-                    *("All heat through parts of the building", "Part", "Measured at"),
+                    *(say("whole_parts"), say("part"), say("measured_at")),
                     whole,
                     _total(season.elements_total, season, style),
                 ),
@@ -124,7 +126,7 @@ def _of_finding(row: SeasonRow, season: SeasonReport, finding: Finding | None, w
     if finding is None:
         return line
     note = texts.pattern(finding.indication.pattern) if finding.indication else ""
-    return replace(line, what=f"{texts.sense(finding.sense).capitalize()} patch {row.of}", note=note, finding=row.of)
+    return replace(line, what=say(_PATCH[finding.sense], id=row.of), note=note, finding=row.of)
 
 
 def _is_small(row: SeasonRow) -> bool:
@@ -139,16 +141,16 @@ def _gathered(small: list[SeasonRow], season: SeasonReport, style: Style) -> Lin
         sum(estimate.value for row in small if (estimate := getattr(row, name))) for name in ("energy_kwh", "cost")
     )
     return Line(
-        f"{len(small)} places that take less than {numbers.number(_SMALL_KWH)} kWh each",
+        say("small_places", count=len(small), energy=numbers.number(_SMALL_KWH)),
         "",
         "",
-        f"about {numbers.with_symbol(numbers.number(energy, 2, style=style), 'kWh')}",
-        f"about {numbers.with_symbol(numbers.number(cost, 2, style=style), season.currency)}",
+        say("about", value=numbers.with_symbol(numbers.number(energy, 2, style=style), "kWh")),
+        say("about", value=numbers.with_symbol(numbers.number(cost, 2, style=style), season.currency)),
     )
 
 
 def _total(row: SeasonRow | None, season: SeasonReport, style: Style) -> Line | None:
-    return _line(row, season, "Together", style=style) if row else None
+    return _line(row, season, say("together"), style=style) if row else None
 
 
 def _energy(row: SeasonRow, style: Style) -> str:
@@ -178,14 +180,16 @@ def _basis(season: SeasonReport, style: Style) -> str:
     """What the estimate rests on, in a sentence or two."""
     days = numbers.measured(season.degree_days_kd, "degree_days_kd", unit=False, style=style)
     performance = (
-        f"{numbers.percent(season.efficiency)} efficiency of the heating"
+        say("heating_efficiency", share=numbers.percent(season.efficiency))
         if season.sense == "heating"
-        else f"a performance factor of {numbers.number(season.efficiency, 2, style=style)} of the cooling"
+        else say("cooling_performance", factor=numbers.number(season.efficiency, 2, style=style))
     )
-    price = (
-        f", {numbers.with_symbol(numbers.number(season.price, 3, style=style), season.currency)} per kWh"
-        if season.price is not None
-        else ""
-    )
-    kind = "Fahrenheit degree days" if style.units == "us" else "degree days"
-    return f"It rests on {days} {kind} ({in_style(season.how, style)}), {performance}{price}."
+    told = {
+        "days": say("degree_days_fahrenheit" if style.units == "us" else "degree_days", count=days),
+        "how": in_style(season.how, style),
+        "performance": performance,
+    }
+    if season.price is None:
+        return say("rests_on", **told)
+    price = numbers.with_symbol(numbers.number(season.price, 3, style=style), season.currency)
+    return say("rests_on_price", **told, price=price)

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import re
 from datetime import date
+from functools import cache
 from typing import Final
 
 from irsurvey import numbers
 from irsurvey.numbers import SI, Style
 from irsurvey.report.style import day
+from irsurvey.texts import say
 
 _UNITS: Final = {
     **{symbol: symbol for symbol in ("°C", "K", "m²", "cm²", "m/s", "m", "W/K", "W/(m²·K)", "m²·K/W")},
@@ -19,11 +21,6 @@ _NUMBER = r"(?<![\w.,])[-\u2212]?\d+(?:\.\d+)?"
 _QUOTED = r"“[^”]*”"
 _BOUND = r"[\d.]+/U = "
 """How a bound was worked out of U in SI units."""
-_QUANTITY = re.compile(
-    rf"{_QUOTED}|{_BOUND}"
-    rf"|(?P<first>{_NUMBER})(?:(?P<joint>[ \u00a0]±[ \u00a0]| to | and )(?P<second>{_NUMBER}))?[ \u00a0]"
-    rf"(?P<unit>{'|'.join(re.escape(unit) for unit in sorted(_UNITS, key=len, reverse=True))})(?![\w/²·])"
-)
 _DECIMAL = re.compile(rf"{_QUOTED}|(?P<number>(?<![\w.,:])\d+\.\d+)(?!\.?\w)")
 _DAY = re.compile(rf"{_QUOTED}|(?<![\w.-])(?P<day>\d{{4}}-\d\d-\d\d)(?!\.?\w|-)")
 _LEAST_DIGITS, _DIGITS_OF_U = 3, 2
@@ -34,12 +31,23 @@ def in_style(text: str, style: Style = SI) -> str:
 
     A number keeps its significant digits, at least three, and U its two.  What already is in that style stays."""
     if style.units == "us":
-        text = _QUANTITY.sub(lambda found: _requantified(found, style), text)
+        text = _quantity().sub(lambda found: _requantified(found, style), text)
     if style.decimal_comma:
         text = _DECIMAL.sub(lambda found: found[0].replace(".", ",") if found["number"] else found[0], text)
     if style.date_format != SI.date_format:
         text = _DAY.sub(lambda found: _dated(found, style), text)
     return text
+
+
+@cache
+def _quantity() -> re.Pattern[str]:
+    """A quantity, or two with one unit: a range in the words of the records or of the documents."""
+    between = re.escape(say("from_to", low="\n", high="\n").split("\n")[1])
+    return re.compile(
+        rf"{_QUOTED}|{_BOUND}"
+        rf"|(?P<first>{_NUMBER})(?:(?P<joint>[ \u00a0]±[ \u00a0]| to | and |{between})(?P<second>{_NUMBER}))?[ \u00a0]"
+        rf"(?P<unit>{'|'.join(re.escape(unit) for unit in sorted(_UNITS, key=len, reverse=True))})(?![\w/²·])"
+    )
 
 
 def _dated(found: re.Match[str], style: Style) -> str:

@@ -47,11 +47,12 @@ def entry(frame: FrameReport, small: Picture | None = None) -> Entry:
     to_do = texts.to_do(urgency, "not cleared" if is_open else "")
     chip = "weak" if to_do != texts.urgency(urgency) else "ux" if urgency is None else f"u{urgency}"
     if frame.status == "failed":
-        to_do, chip = "not readable", "weak"
+        to_do, chip = texts.say("not_readable"), "weak"
     elif not items and frame.claim == "not valid":
-        to_do, chip = frame.claim, "weak"
+        to_do, chip = texts.claim_name(frame.claim), "weak"
     elif not items:
-        to_do, chip = ("nothing found", "") if is_compared(frame) else ("nothing compared", "weak")
+        compared = is_compared(frame)
+        to_do, chip = texts.say("nothing_found" if compared else "nothing_compared"), "" if compared else "weak"
     return Entry(frame, to_do, chip, small)
 
 

@@ -9,6 +9,7 @@ from irsurvey import numbers
 from irsurvey.model import StripReport
 from irsurvey.numbers import SI, Style
 from irsurvey.report.axes import LEFT, RIGHT, TICKS_ACROSS, TICKS_UP, Axis, Tick, upwards
+from irsurvey.texts import say
 
 _LEAST_SPAN_K = 0.5
 """A temperature axis never spans less, so that noise does not look like a bridge."""
@@ -64,5 +65,7 @@ def _scale(strip: StripReport, style: Style) -> tuple[float, str]:
 def _in_words(temperatures: list[float], over: str, level: float | None, style: Style) -> str:
     symbol = numbers.unit("extreme_c", style=style)
     low, high = (numbers.decimals(end, 1, style=style) for end in (min(temperatures), max(temperatures)))
-    told = f"Temperature along the strip, {low} to {high} {symbol} over {over}"
-    return told if level is None else f"{told}; undisturbed wall {numbers.decimals(level, 1, style=style)} {symbol}"
+    told = {"low": low, "high": high, "unit": symbol, "length": over}
+    if level is None:
+        return say("strip_is", **told)
+    return say("strip_is_level", **told, level=numbers.decimals(level, 1, style=style))

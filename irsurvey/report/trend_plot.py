@@ -13,6 +13,7 @@ from irsurvey.model import TrendReport
 from irsurvey.numbers import SI, Style
 from irsurvey.report.axes import LEFT, RIGHT, TICKS_UP, Axis, Tick, upwards
 from irsurvey.report.style import day as day_in
+from irsurvey.texts import say
 
 DAYS_PER_YEAR = 365.2425
 """Of the Gregorian calendar."""
@@ -101,4 +102,4 @@ def _in_words(points: list[tuple[int, float]], symbol: str, style: Style) -> str
         f"{numbers.with_symbol(numbers.number(rise, 2, style=style), symbol)}"
         for day, rise in told
     )
-    return f"Rise over ambient air, {len(points)} surveys: {listed}"
+    return say("trend_is", count=len(points), told=listed)

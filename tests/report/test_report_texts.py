@@ -5,10 +5,13 @@ from __future__ import annotations
 import re
 import tomllib
 from dataclasses import fields
+from fnmatch import fnmatch
 from importlib.resources import files
+from pathlib import Path
 
 import pytest
 
+import irsurvey
 from irsurvey import texts
 from irsurvey.analysis.inputs import shown
 from irsurvey.anomalies.cues import Cues
@@ -18,7 +21,57 @@ from irsurvey.assess.severity import BLOCKERS
 from irsurvey.model import ComponentReport, JointHeat, Scene
 from irsurvey.report import WRITERS
 
+ROOT = Path(irsurvey.__file__).parent
+SOURCES = {
+    place.relative_to(ROOT).as_posix(): place.read_text(encoding="utf-8")
+    for place in sorted(ROOT.rglob("*"))
+    if place.suffix in (".py", ".j2", ".js")
+}
 TEXTS = tomllib.loads((files("irsurvey") / "texts.toml").read_text(encoding="utf-8"))
+
+@pytest.mark.parametrize("table", ["said", "counted", "tools", "review"])
+def test_every_word_is_said_somewhere(table: str) -> None:
+    text = "\n".join(SOURCES.values())
+    quoted = set(re.findall(r"[\"']([a-z0-9][a-z0-9_ ]*)[\"']", text))
+    made = () if table == "said" else tuple(re.findall(r"\b(?:say\(`|review\(f\")([a-z]+_)\$?\{", text))
+    assert [key for key in TEXTS[table] if key not in quoted and not key.startswith(made)] == []
+
+
+@pytest.mark.parametrize(
+    ("table", "call", "suffixes"),
+    [
+        ("said", r"\b(?:say|marked|worded)\(\s*", (".py", ".j2")),
+        ("counted", r"\bnoun\([^,]+,\s*", (".py", ".j2")),
+        ("review", r"\breview\(\s*", (".py", ".j2")),
+        ("tools", r"\bsay\(", ("live/*.js",)),
+        ("review", r"\bsay\(", ("review/*.js",)),
+    ],
+)
+def test_whatever_is_said_has_its_words(table: str, call: str, suffixes: tuple[str, ...]) -> None:
+    sources = [text for name, text in SOURCES.items() if any(fnmatch(name, f"*{suffix}") for suffix in suffixes)]
+    said = {key for text in sources for key in re.findall(rf"{call}[\"']([a-z0-9_ ]+)[\"']", text)}
+    choices = {
+        key
+        for text in sources
+        for pair in re.findall(rf"{call}\"([a-z0-9_]+)\" if [^\"()]+ else \"([a-z0-9_]+)\"", text)
+        for key in pair
+    }
+    assert len(said) > 3
+    assert sorted((said | choices) - set(TEXTS[table])) == []
+
+
+def test_every_gap_of_a_sentence_is_filled() -> None:
+    # a key with gaps is never said without values
+    with_gaps = {key for key, words in TEXTS["said"].items() if "{" in words}
+    sources = [text for name, text in SOURCES.items() if not name.endswith(".js")]
+    bare = {key for text in sources for key in re.findall(r"\b(?:say|marked|worded)\(\"([a-z0-9_]+)\"\)", text)}
+    assert bare & with_gaps == set()
+
+
+def test_every_flag_has_a_name_and_a_meaning() -> None:
+    assert set(TEXTS["flagged"]) == set(TEXTS["flags"])
+    assert texts.flag_name("saturated: 40 pixels") == "saturated: 40 pixels"
+
 
 # the words of irsurvey.model: Quantity.source, FrameReport.claim, Finding.sense; urgencies of the specification
 ORIGINS = ["survey", "group", "frame", "surface", "default", "material table", "measured in frame", "log"]
@@ -98,7 +151,7 @@ def test_every_number_of_a_component_and_its_joint_has_a_name_of_its_own(record:
 
 
 def test_bases_and_shapes_have_words() -> None:
-    assert set(TEXTS["basis"]) == {"similar", "ambient", "reference"}
+    assert set(TEXTS["basis"]) == {"similar", "ambient", "reference", "neighbours"}
     assert set(TEXTS["form"]) == {"cylinder", "plate", "sphere", "area"}
     assert set(TEXTS["usual"]) == {"median", "mean"}
 

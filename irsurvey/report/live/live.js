@@ -365,8 +365,9 @@ const Live = (() => {
 
   function start() {
     const tables = document.getElementById("live-tables");
-    if (!tables || typeof DecompressionStream === "undefined") return;
+    if (!tables) return;
     Object.assign(shared, JSON.parse(tables.textContent));
+    if (typeof DecompressionStream === "undefined") return;
     for (const node of document.querySelectorAll("script.live-data")) {
       const data = JSON.parse(node.textContent);
       const image = document.getElementById(`picture-${data.id}`);

@@ -3,18 +3,7 @@
 // The tables of all results: put in order by their headings, narrowed by words and by what the results ask for.
 // On paper each is whole and in the order of the report, whatever is chosen here.
 const Tables = (() => {
-  const { el, labelled } = Page;
-  const WORDS = {
-    tools: "Choose and sort rows",
-    words: "Rows with the words",
-    which: "Urgency or outcome",
-    any: "any",
-    urgency: "Asks for",
-    outcome: "Outcome",
-    all: "All rows, as in the report",
-    rising: "rising",
-    falling: "falling",
-  };
+  const { el, labelled, say } = Page;
   const NOTHING = "–";
   const texts = new Intl.Collator(document.documentElement.lang || "en", { numeric: true, sensitivity: "base" });
 
@@ -65,12 +54,12 @@ const Tables = (() => {
     tools() {
       const show = () => this.show();
       this.words = el("input", { type: "search", autocomplete: "off", spellcheck: "false", on: { input: show } });
-      this.which = el("select", { autocomplete: "off", on: { change: show } }, el("option", { value: "" }, WORDS.any),
+      this.which = el("select", { autocomplete: "off", on: { change: show } }, el("option", { value: "" }, say("rows_any")),
         this.choices("urgency"), this.choices("outcome"));
       this.count = el("p", { class: "live-count", "aria-live": "polite" });
-      const whole = el("button", { type: "button", on: { click: () => this.reset() } }, WORDS.all);
-      return el("div", { class: "live live-rows", role: "group", "aria-label": WORDS.tools },
-        el("div", { class: "live-bar" }, labelled(WORDS.words, this.words), labelled(WORDS.which, this.which), whole),
+      const whole = el("button", { type: "button", on: { click: () => this.reset() } }, say("rows_all"));
+      return el("div", { class: "live live-rows", role: "group", "aria-label": say("rows") },
+        el("div", { class: "live-bar" }, labelled(say("rows_words"), this.words), labelled(say("rows_which"), this.which), whole),
         this.count);
     }
 
@@ -80,7 +69,7 @@ const Tables = (() => {
       const ranked = [...this.rows].sort((a, b) => b.values[last] - a.values[last]);
       const found = new Set(ranked.map(({ row }) => row.dataset[kind === "urgency" ? "asks" : "outcome"]));
       const options = [...found].map((name) => el("option", { value: `${kind}:${name}` }, name));
-      return el("optgroup", { label: WORDS[kind] }, ...options);
+      return el("optgroup", { label: say(`rows_${kind}`) }, ...options);
     }
 
     sort(column) {
@@ -108,7 +97,7 @@ const Tables = (() => {
         entry.row.classList.toggle("live-left-out", !isKept);
         return isKept;
       });
-      this.count.textContent = `${kept.length} of ${this.rows.length} shown${this.wordsOfOrder()}`;
+      this.count.textContent = this.told(kept.length);
     }
 
     isChosen({ dataset }) {
@@ -116,10 +105,12 @@ const Tables = (() => {
       return !chosen || chosen === `urgency:${dataset.asks}` || chosen === `outcome:${dataset.outcome}`;
     }
 
-    wordsOfOrder() {
-      if (!this.order) return "";
+    // How many rows are seen, and in which order.
+    told(count) {
+      const all = this.rows.length;
+      if (!this.order) return say("rows_shown", { count, all });
       const { column, sign } = this.order;
-      return `, by “${this.names[column]}”, ${sign > 0 ? WORDS.rising : WORDS.falling}`;
+      return say(sign > 0 ? "rows_rising" : "rows_falling", { count, all, column: this.names[column] });
     }
 
     // Rows without a value come last both ways; equal ones stay in the order of the report.

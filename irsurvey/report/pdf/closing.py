@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from irsurvey import numbers, texts
 from irsurvey.model import ChecklistItem
+from irsurvey.report import explained
 from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, bullets, heading, paragraph, text
 from irsurvey.report.pdf.layout import Entry, Layout, Piece
 from irsurvey.report.pdf.letters import MISSING
@@ -28,7 +29,7 @@ def checklist(story: Story, layout: Layout) -> None:
             text(item.item, SMALL_STRONG),
             text(texts.asked_by(item.asked_by), SMALL),
             (chip(say("present"), "ok") if item.present else chip(say("is_missing"), "weak"),),
-            text(f"{'' if item.present or not item.where else say('to_be_stated')}{_where(item)}", SMALL),
+            text(_where(item), SMALL),
         ]
         for item in items
     ]
@@ -41,23 +42,23 @@ def checklist(story: Story, layout: Layout) -> None:
 
 def cautions(story: Story, layout: Layout) -> None:
     """The standing cautions, how the numbers are to be read, and what else was written."""
-    temperature, difference = (numbers.unit(key, style=story.style) for key in ("air_c", "delta_k"))
     pieces: list[Piece] = [
         *heading(say("cautions"), H2, gap=9, entry=Entry(say("cautions"), 0), place="cautions"),
         *bullets((text(caution) for caution in story.cautions), gap=1.4),
         *heading(say("how_numbers_read")),
-        *paragraph(text(say("numbers_how", temperature=temperature, difference=difference))),
+        *paragraph(text(explained.numbers_how(style=story.style))),
         *paragraph(text(say("substitute", box=MISSING), NOTE)),
-        *paragraph(text(say("beside_files", files=_files(story)), NOTE)),
+        *paragraph(text(say(explained.beside_files(style=story.style), files=_files(story)), NOTE)),
     ]
     layout.go_on(say("cautions"), 120)
     layout.add(pieces)
 
 
 def _where(item: ChecklistItem) -> str:
-    return short(item.where) or numbers.NOTHING
+    where = short(item.where) or numbers.NOTHING
+    return say("to_be_stated", where=where) if item.where and not item.present else where
 
 
 def _files(story: Story) -> str:
-    repairs = say("repairs_file") if story.report.repairs else ""
-    return f"report.json, findings.csv{repairs}"
+    files = "report.json, findings.csv"
+    return say("repairs_file", files=files, repairs="repairs.csv") if story.report.repairs else files

@@ -12,7 +12,7 @@ from irsurvey.report.pdf import letters
 from irsurvey.report.pdf.layout import HEIGHT, LEFT, RIGHT, Page
 from irsurvey.report.pdf.paper import FINE, RULE, Paper
 from irsurvey.report.pdf.runs import QUIET, Face, Run, broken, cut
-from irsurvey.texts import say
+from irsurvey.texts import language, say
 
 _HEAD, _FOOT = 12.5, HEIGHT - 13.0
 _SMALL = Face(7, ink=QUIET)
@@ -45,7 +45,7 @@ def drawn(pages: Sequence[Page], about: About) -> bytes:
         (pdf.set_creator, about.creator),
     ):
         set_(letters.shown(text)[:_MOST_LETTERS])
-    pdf.set_lang("en")
+    pdf.set_lang(language())
     pdf.set_creation_date(about.made)
     paper = Paper(pdf, places(pages))
     for number, page in enumerate(pages, 1):

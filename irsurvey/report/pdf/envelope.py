@@ -25,7 +25,17 @@ from irsurvey.report.pdf.blocks import (
 from irsurvey.report.pdf.blocks import facts as in_columns
 from irsurvey.report.pdf.images import image
 from irsurvey.report.pdf.layout import BREADTH, Piece
-from irsurvey.report.pdf.parts import chip, dark_mark, finding_place, flags, frame_place, head, joined, light_mark
+from irsurvey.report.pdf.parts import (
+    chip,
+    dark_mark,
+    finding_place,
+    flags,
+    frame_place,
+    head,
+    joined,
+    light_mark,
+    worded,
+)
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
@@ -73,7 +83,7 @@ def strips(frame: FrameReport, style: Style) -> list[Piece]:
         told = in_columns(facts.of_strip(strip, style=style), columns=2 if plot else 3, width=width)
         columns = [Column(0, told)]
         if plot:
-            level = say("strip_level") if plot.level is not None else ""
+            level = f" {say('strip_level')}" if plot.level is not None else ""
             caption = f"{say('strip_caption', pixels=strip.width_px)}{level}"
             drawn = [drawings.profile(plot, numbers.unit("air_c", style=style), width + _GUTTER, _PLOT)]
             drawn += paragraph(text(caption, NOTE), x=width + _GUTTER, width=_PLOT, gap=0.4)
@@ -88,12 +98,8 @@ def pair(frame: FrameReport, story: Story) -> list[Piece]:
     if not told:
         return []
     difference = numbers.told(abs(told.pressure_pa), "pressure_pa", 3, style=story.style)
-    side = say("below" if told.pressure_pa < 0 else "above_side")
-    first: Runs = (
-        Run(say("compared_with")),
-        Run(f" {told.with_}", Face(BODY.size, ink=DEEP), link=frame_place(told.with_)),
-        Run(say("pressure_was", pressure=difference, side=side)),
-    )
+    other = Run(told.with_, Face(BODY.size, ink=DEEP), link=frame_place(told.with_))
+    first = worded("pressure_below" if told.pressure_pa < 0 else "pressure_above", frame=other, pressure=difference)
     pieces = [*heading(say("pair")), *paragraph(first, keep=True)]
     if not told.accepted:
         refused: Runs = (chip(say("not_compared"), "weak"), Run(f" {told.reason} {say('nothing_concluded')}"))
@@ -103,7 +109,7 @@ def pair(frame: FrameReport, story: Story) -> list[Piece]:
     x = _CHANGE + _GUTTER if shown else 0.0
     columns = [Column(0, _changes(frame, story.tasks.get(frame.id), told, x, BREADTH - x, style=story.style))]
     if shown:
-        letters_ = say("change_letters") if told.changes else ""
+        letters_ = f" {say('change_letters')}" if told.changes else ""
         unit = numbers.unit("change_k", style=story.style)
         caption = f"{say('change_caption', unit=unit)}{letters_} {say('change_hatched')}"
         drawn = [picture(shown.data, shown.size(_CHANGE, 110)), *paragraph(text(caption, NOTE), width=_CHANGE, gap=0)]
@@ -117,15 +123,15 @@ def _likeness(told: PairReport, style: Style) -> list[Fact]:
         lines.append(Fact(say("likeness"), say("correlation", r=numbers.number(told.correlation, 2, style=style))))
     if told.shift_px:
         x, y = told.shift_px
-        turn = "" if told.rotation_deg is None else numbers.told(told.rotation_deg, "rotation_deg", 2, style=style)
         where = say(
-            "shift",
+            "shift" if told.rotation_deg is None else "shift_turned",
             x=numbers.number(abs(x), 2, style=style),
             side=say("left" if x < 0 else "right"),
             y=numbers.number(abs(y), 2, style=style),
             height=say("above_it" if y < 0 else "below_it"),
+            by=numbers.told(told.rotation_deg, "rotation_deg", 2, style=style),
         )
-        lines.append(Fact(say("middle_lies"), where + (say("turned", by=turn) if turn else "")))
+        lines.append(Fact(say("middle_lies"), where))
     if told.threshold_k is not None:
         lines.append(Fact(say("least_change"), numbers.least(told.threshold_k, "threshold_k", style=style)))
     return lines
@@ -154,26 +160,29 @@ def _changes(
         ]
         pieces += table(heads, rows, caption=text(say("changed_with"), NOTE), x=x, width=width)
         more = len(told.changes) - NUMBERED
-        pieces += paragraph(text(say("more_in_json", count=more), NOTE), x=x, width=width) if more > 0 else []
+        rest = text(say("more_in_json", count=more, file="report.json"), NOTE)
+        pieces += paragraph(rest, x=x, width=width) if more > 0 else []
         for sense in dict.fromkeys(change.sense for change in told.changes):
             pieces += paragraph(_meaning(sense, shown), x=x, width=width)
     else:
         pieces += paragraph(text(say("nothing_changed")), x=x, width=width)
-    for ids, before, after in ((shown.construction, "did_not_change", "construction"), (shown.open, "not_told", "end")):
+    for ids, key in ((shown.construction, "did_not_change"), (shown.open, "not_told")):
         if ids:
-            runs: Runs = (Run(say(before)), *joined([_finding(id_) for id_ in ids]), Run(say(after)))
+            runs = worded(key, findings=tuple(joined([_finding(id_) for id_ in ids])))
             pieces += paragraph(runs, x=x, width=width)
     return [*pieces, *paragraph(text(say("other_side"), NOTE), x=x, width=width)]
 
 
 def _meaning(sense: str, shown: pressure.Told) -> Runs:
     """What a change of that sense means at this pressure on the side seen."""
-    changed = Run(say("sense_changed", sense=texts.sense(sense).capitalize()))
+    meaning: str | Run = say("leak_no_trace")
     if shown.is_leak(sense):
-        return (changed, emphasis(say("leakage")))
-    if shown.leak is None:
-        return (changed, Run(say("leak_not_told")))
-    return (changed, Run(say("leak_otherwise", sense=texts.sense(shown.leak)) if shown.leak else say("leak_no_trace")))
+        meaning = emphasis(say("leakage"))
+    elif shown.leak is None:
+        meaning = say("leak_not_told")
+    elif shown.leak:
+        meaning = say("leak_otherwise", sense=texts.sense(shown.leak))
+    return worded("sense_changed", sense=texts.sense(sense).capitalize(), meaning=meaning)
 
 
 def _finding(id_: str) -> Run:

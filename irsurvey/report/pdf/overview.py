@@ -22,6 +22,7 @@ from irsurvey.report.pdf.parts import (
     short,
     title,
     unbroken,
+    worded,
 )
 from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
@@ -62,7 +63,7 @@ def _conditions(story: Story) -> list[Piece]:
                 text(short(row.groups, 400) or numbers.NOTHING, SMALL),
                 text(unbroken(check.requirement) if len(check.requirement) < _BRIEF else check.requirement, SMALL),
                 text(recorded, SMALL),
-                (chip(check.verdict, "ok" if check.verdict == "met" else "weak"),),
+                (chip(texts.condition(check.verdict), "ok" if check.verdict == "met" else "weak"),),
                 text(row.leaves or numbers.NOTHING, SMALL),
                 text(check.source, Face(6.4, ink=NOTE.ink)),
             ]
@@ -99,13 +100,14 @@ def _roof(story: Story) -> list[Piece]:
     for entry in areas:
         item = entry.item
         verify = item.indication.verify_by if item.indication else ""
+        by = f" {say('verified_by', how=short(verify))}" if verify else ""
         rows.append(
             [
                 (title(entry, SMALL),),
                 text(short(entry.frame.label) or numbers.NOTHING, SMALL),
                 text(results.reading(item, "area_m2", unit=False, style=story.style), SMALL),
                 text(results.reading(item, "mean_delta_k", unit=False, style=story.style), SMALL),
-                (chip(say("needs_verification"), "weak"), Run(say("by", how=short(verify)) if verify else "", SMALL)),
+                (chip(say("needs_verification"), "weak"), Run(by, SMALL)),
             ]
         )
     heads = [
@@ -114,7 +116,8 @@ def _roof(story: Story) -> list[Piece]:
         Head(say("status")),
     ]
     caption = text(say("roof_caption", count=len(areas)), NOTE)
-    return [*paragraph(text(say("roof_how"))), *table(heads, rows, caption=caption)] if rows else []
+    how = say("roof_how", needs_verification=say("needs_verification"))
+    return [*paragraph(text(how)), *table(heads, rows, caption=caption)] if rows else []
 
 
 def _components(story: Story) -> list[Piece]:
@@ -150,14 +153,16 @@ def _populations(story: Story) -> list[Piece]:
             words = f"{entry.frame.id} {entry.item.name}" if entry and isinstance(entry.item, ComponentReport) else key
             names.append(Run(short(words), Face(SMALL.size, ink=DEEP), link=item_place(entry) if entry else ""))
         more = len(group.exceeding) - SUMMARY_LENGTH
-        rest = say("and_more", count=more) if more > 0 else ""
+        listed = tuple(joined(names, SMALL))
         rows.append(
             [
                 text(short(group.group) or numbers.NOTHING, SMALL_STRONG),
                 text(str(group.count), SMALL),
                 text(_alarm(group.alarm_k, story.style), SMALL),
                 text(texts.usual(group.how), SMALL),
-                (*joined(names, SMALL), Run(rest, SMALL)) if names else text(say("none"), SMALL),
+                (worded("and_more", SMALL, names=listed, count=more) if more > 0 else listed)
+                if names
+                else text(say("none"), SMALL),
             ]
         )
     heads = [

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from string import Formatter
 
 from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport, Finding, FrameReport, Indication
@@ -63,7 +64,7 @@ def to_do(item: Item) -> Run:
 
 def claim(kind: str) -> Run:
     """What may be claimed."""
-    return chip(kind, {"not valid": "weak", "quantitative": "ok"}.get(kind, ""))
+    return chip(texts.claim_name(kind), {"not valid": "weak", "quantitative": "ok"}.get(kind, ""))
 
 
 def asked_for(item: Item) -> Runs:
@@ -91,8 +92,24 @@ def light_mark(words: str) -> Run:
 
 def outcome(item: Item, face: Face = SMALL) -> Run:
     """Its outcome, and whether one plausible change would make it another."""
-    words = f"{item.outcome}{say('fragile') if item.flips else ''}"
+    name = texts.outcome_name(item.outcome)
+    words = say("fragile", outcome=name) if item.flips else name
     return Run(words, Face(face.size, "B" if item.outcome == "act" else "", face.ink))
+
+
+def worded(key: str, /, face: Face = BODY, **values: object) -> Runs:
+    """What `say` gives as runs: values that are runs stay so, all others are text like the words around them."""
+    runs: list[Run] = []
+    plain = ""
+    for words, name, _, _ in Formatter().parse(say(key)):
+        plain += words
+        value = values[name] if name else ""
+        if isinstance(value, Run | tuple):
+            runs += [*([Run(plain, face)] if plain else []), *((value,) if isinstance(value, Run) else value)]
+            plain = ""
+        else:
+            plain += str(value)
+    return (*runs, Run(plain, face)) if plain else tuple(runs)
 
 
 def found(item: ComponentReport) -> Runs:
@@ -131,7 +148,7 @@ def frame_name(frame: FrameReport, face: Face = BODY) -> Run:
 def class_of(item: Item) -> str:
     """Its class by the criterion that governs."""
     assessment = governing(item.assessments)
-    return assessment.class_ if assessment and assessment.class_ else say("no_class")
+    return texts.class_name(assessment.class_ if assessment else None)
 
 
 def headline(entry: Ranked, style: Style) -> str:
@@ -154,8 +171,8 @@ def headline(entry: Ranked, style: Style) -> str:
         told.append(say("than_reference", sense=texts.sense(item.sense)))
         if item.delta_k or item.mean_delta_k:
             delta = results.reading(item, "mean_delta_k" if item.mean_delta_k else "delta_k", style=style)
-            over = say("over_area", area=results.reading(item, "area_m2", style=style)) if item.area_m2 else ""
-            told.append(f"ΔT {delta}{over}")
+            area = results.reading(item, "area_m2", style=style)
+            told.append(say("delta_over_area" if item.area_m2 else "delta_of", delta=delta, area=area))
         elif item.extreme_c:
             told.append(results.reading(item, "extreme_c", style=style))
     return ", ".join(told)
@@ -174,18 +191,18 @@ def meaning(item: Finding, cost: str, style: Style) -> str:
 def indication(one: Indication, style: Style) -> list[Piece]:
     """What the pattern of a finding is consistent with, and the cues it was read from."""
     statement = one.statement or upper_first(texts.pattern(one.pattern))
-    verify = say("verify_by", how=one.verify_by) if one.verify_by and one.verify_by not in one.statement else ""
+    verify = f" {say('verify_by', how=one.verify_by)}" if one.verify_by and one.verify_by not in one.statement else ""
     told: Runs = (
         emphasis(say("indication")),
         Run(f" {statement}{verify} "),
         Run(say("no_proof"), NOTE),
     )
     cues = facts.cues(one.evidence, style=style)
-    read: list[Run] = [Run(say("read_from"), NOTE)]
+    read: list[Run] = []
     for number, cue in enumerate(cues):
-        end = "; " if number < len(cues) - 1 else "."
-        read += [Run(f"{cue.name} ", NOTE), emphasis(cue.text, NOTE.size), Run(end, NOTE)]
-    return [*paragraph(told), *(paragraph(tuple(read), gap=0.4) if cues else ())]
+        read += [Run(f"{'; ' if number else ''}{cue.name} ", NOTE), emphasis(cue.text, NOTE.size)]
+    read_from = worded("read_from", NOTE, cues=tuple(read))
+    return [*paragraph(told), *(paragraph(read_from, gap=0.4) if cues else ())]
 
 
 def flags(codes: Sequence[str], style: Style) -> list[Piece]:
@@ -193,7 +210,7 @@ def flags(codes: Sequence[str], style: Style) -> list[Piece]:
     pieces = []
     for code in codes:
         meaning_ = in_style(texts.flag(code), style)
-        told: Runs = (emphasis(code, 7.6), Run(f": {meaning_}" if meaning_ != code else "", Face(7.6)))
+        told: Runs = (emphasis(texts.flag_name(code), 7.6), Run(f": {meaning_}" if meaning_ != code else "", Face(7.6)))
         pieces += paragraph(told, gap=0.8)
     return pieces
 

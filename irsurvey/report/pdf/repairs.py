@@ -29,7 +29,7 @@ from irsurvey.report.pdf.blocks import (
 from irsurvey.report.pdf.images import image
 from irsurvey.report.pdf.layout import BREADTH, Entry, Layout, Piece
 from irsurvey.report.pdf.paper import HAIR, STRONG_RULE
-from irsurvey.report.pdf.parts import asks, finding_place, frame_place, item_place, quiet, short
+from irsurvey.report.pdf.parts import asks, finding_place, frame_place, item_place, quiet, short, worded
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
@@ -58,7 +58,7 @@ def repair_list(story: Story, layout: Layout) -> None:
         layout.add(heading(say("look_again"), entry=Entry(say("look_again"), 1), place="look again"))
         layout.add(paragraph(text(texts.repairs("again")), keep=True))
         layout.add(_again(story.repairs.again))
-    layout.add(quiet(f"{texts.repairs('moment')} {say('repairs_csv')}"))
+    layout.add(quiet(f"{texts.repairs('moment')} {say('repairs_csv', file='repairs.csv')}"))
 
 
 def season_costs(story: Story, layout: Layout) -> None:
@@ -113,22 +113,21 @@ def _where(line: Line, face: Face) -> Runs:
     item = line.item
     parts = [short(item.location)] if item.location else []
     parts += [say("asset", name=short(item.asset))] if item.asset else []
-    marked: Runs = (Run(say("marked"), face), emphasis(line.mark, face.size, face.ink)) if line.mark else ()
     before = "".join(f"{part} · " for part in parts)
-    return (
-        Run(f"{before}{say('frame')} ", face),
-        Run(item.frame, Face(face.size, ink=DEEP), link=frame_place(item.frame)),
-        *marked,
-    )
+    frame = Run(item.frame, Face(face.size, ink=DEEP), link=frame_place(item.frame))
+    named = (Run(before, face), *worded("frame", face, name=frame))
+    if not line.mark:
+        return named
+    return (*named, Run(", ", face), *worded("marked", face, mark=emphasis(line.mark, face.size, face.ink)))
 
 
 def _facts(line: Line) -> list[Fact]:
     spot = "spot_maximum" if line.entry and isinstance(line.entry.item, ComponentReport) else "spot_extreme"
     told = [
-        ("ΔT", f"{line.delta} {short(line.basis)}" if line.delta else ""),
+        (say("delta"), f"{line.delta} {short(line.basis)}" if line.delta else ""),
         (say(spot), line.spot),
         (say("load"), line.load),
-        (say("class"), short(line.item.class_ or say("no_class"))),
+        (say("class"), short(texts.class_name(line.item.class_))),
         (say("how_sure"), line.sure),
     ]
     return [Fact(name, words) for name, words in told if words]

@@ -78,9 +78,10 @@ def result(entry: Ranked, story: Story) -> list[Piece]:
 def _decision(item: Item, style: Style) -> list[Piece]:
     """What is done about it and how sure that is."""
     assessment = governing(item.assessments)
-    told = [Fact(say("outcome"), f"{item.outcome}: {texts.outcome(item.outcome)}")]
+    told = [Fact(say("outcome"), f"{texts.outcome_name(item.outcome)}: {texts.outcome(item.outcome)}")]
     if assessment and assessment.verdict:
-        told.append(Fact(say("at_the_edge"), f"{assessment.verdict}: {texts.verdict(assessment.verdict)}"))
+        verdict = assessment.verdict
+        told.append(Fact(say("at_the_edge"), f"{texts.verdict_name(verdict)}: {texts.verdict(verdict)}"))
     if results.exceeds(item):
         told.append(Fact(say("truly_beyond"), say("probability", p=results.exceeds(item))))
     pieces = in_columns(told)
@@ -88,8 +89,8 @@ def _decision(item: Item, style: Style) -> list[Piece]:
         ways = []
         for change in results.changes(item, style=style):
             listed = say("or_of").join(change.inputs)
-            comma = "," if len(change.inputs) > 1 else ""
-            ways.append(say("would_make", inputs=listed, comma=comma, name=change.class_))
+            key = "would_make_any" if len(change.inputs) > 1 else "would_make"
+            ways.append(say(key, inputs=listed, name=change.class_))
         fragile: Runs = (
             emphasis(say("fragile_head"), _TEXT.size),
             Run(f" {' '.join(ways)} {say('within_its_u')}", _TEXT),
@@ -114,7 +115,7 @@ def _assessment(one: Assessment, style: Style) -> list[Piece]:
     x, width = ASIDE, BREADTH - ASIDE
     named: Runs = (
         emphasis(one.criterion, _TEXT.size),
-        Run(f": {one.class_ or say('no_class')}  ", _TEXT),
+        Run(f": {texts.class_name(one.class_)}  ", _TEXT),
         urgency(one.urgency),
     )
     pieces = paragraph(named, x=x, width=width, gap=1.8, keep=True)
@@ -152,7 +153,7 @@ def _trend(item: ComponentReport, style: Style) -> list[Piece]:
     ]
     if not plot:
         return told
-    caption = f"{say('trend_caption')}{say('trend_slope') if plot.line else ''}"
+    caption = " ".join((say("trend_caption"), *([say("trend_slope")] if plot.line else [])))
     drawn = [
         drawings.trend(plot, numbers.unit("delta_k", style=style), 0.0, _PLOT),
         *paragraph(text(caption, _SMALL), width=_PLOT, gap=0),
@@ -166,13 +167,14 @@ def _budgets(item: Item, style: Style) -> list[Piece]:
     pieces: list[Piece] = []
     for number, shown in enumerate(results.budgets(item, style=style)):
         if number == 0:
-            named = say("where_from", number=texts.inside(shown.key))
+            named = say("where_from", number=in_style(texts.inside(shown.key), style))
             pieces += heading(text(named, Face(7.8, "B", DEEP)), Face(7.8), gap=2.6)
             pieces += drawings.bars(shown.chart, width=_BARS)
             contribution = f"{say('contribution')}, {shown.unit}" if shown.unit else say("contribution")
             heads = [
                 Head(say("input")),
-                *(Head(words, at_right=True) for words in ("u", say("sensitivity"), contribution, say("share"))),
+                *(Head(say(key), at_right=True) for key in ("standard_uncertainty", "sensitivity")),
+                *(Head(words, at_right=True) for words in (contribution, say("share"))),
             ]
             face = Face(6.6)
             rows = [

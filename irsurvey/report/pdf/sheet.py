@@ -85,7 +85,7 @@ def sheet(frame: FrameReport, story: Story, layout: Layout, above: Sequence[Piec
 
 
 def _analysed(frame: FrameReport, task: FrameTask | None, story: Story) -> list[list[Piece]]:
-    why = f" {say('why', reason=in_style(frame.claim_reason, story.style))}" if frame.claim_reason else ""
+    why = f" {say('why_claimed', reason=in_style(frame.claim_reason, story.style))}" if frame.claim_reason else ""
     shown = foremost(frame, NUMBERED)
     entries = [Ranked(frame, finding, finding.label) for finding in shown]
     entries += [Ranked(frame, component, place) for place, component in enumerate(frame.components, 1)]
@@ -112,10 +112,8 @@ def bound(frame: FrameReport, style: Style) -> str:
         area = say("pixels", count=d.min_pixels)
         if d.min_area_m2:
             area = f"{numbers.least_area(d.min_area_m2, style=style)} ({area})"
-        end = "." if frame.findings or frame.components else say("none_found")
-        told = [
-            say("would_have_shown", delta=numbers.least(d.min_delta_k, "min_delta_k", style=style), area=area, end=end)
-        ]
+        key = "would_have_shown" if frame.findings or frame.components else "none_found"
+        told = [say(key, delta=numbers.least(d.min_delta_k, "min_delta_k", style=style), area=area)]
     else:
         told = [say("not_known_what")]
     if _lost(frame):
@@ -170,8 +168,8 @@ def _evidence(frame: FrameReport, task: FrameTask | None, story: Story, shown: i
 def _caption(frame: FrameReport, shown: int, style: Style) -> str:
     told = [say("picture_caption", unit=numbers.unit("min_c", style=style))]
     if frame.findings:
-        rest = say("foremost", shown=shown, all=len(frame.findings)) if shown < len(frame.findings) else ""
-        told.append(say("numbers_are", rest=rest))
+        count = len(frame.findings)
+        told.append(say("numbers_are_foremost" if shown < count else "numbers_are", shown=shown, all=count))
     told += [say("letters_are")] if frame.components else []
     told += [say("lines_are")] if frame.strips else []
     told += [say("dashed_is")] if frame.reference else []
@@ -183,8 +181,8 @@ def _shown(frame: FrameReport, style: Style) -> list[tuple[str, Runs]]:
     told = []
     if t := frame.temperature:
         low, high, median = (_degrees(value, style) for value in (t.min_c, t.max_c, t.median_c))
-        unit = numbers.unit("min_c", style=style)
-        told.append((say("whole_frame"), say("range", low=low, high=high, median=median, unit=unit)))
+        high, median = (numbers.with_unit(value, "min_c", style=style) for value in (high, median))
+        told.append((say("whole_frame"), say("range", low=low, high=high, median=median)))
         if _lost(frame):
             lost = say("lost", unmeasurable=t.unmeasurable_pixels, saturated=t.saturated_pixels)
             told.append((say("left_out"), lost))
@@ -193,11 +191,13 @@ def _shown(frame: FrameReport, style: Style) -> list[tuple[str, Runs]]:
         value = numbers.measured(Estimate(r.median_c, r.u_c), "median_c", style=style) if r.u_c else bare
         how = say("drawn" if r.how == "polygon" else "suggested")
         spread, gradient = (_difference(one, style) for one in (r.spread_k, r.gradient_k))
-        reference = say("reference_is", value=value, how=how, pixels=r.pixels, spread=spread)
-        told.append((say("reference"), f"{reference}{say('gradient', gradient=gradient) if r.gradient_k else ''}"))
+        key = "reference_slopes" if r.gradient_k else "reference_is"
+        reference = say(key, value=value, how=how, pixels=r.pixels, spread=spread, gradient=gradient)
+        told.append((say("reference"), reference))
     if (d := frame.detectable) and d.noise_k is not None:
-        more = say("corners", more=_difference(d.shading_allowance_k, style)) if d.shading_allowance_k else ""
-        told.append((say("noise"), f"{_difference(d.noise_k, style)}{more}"))
+        noise, more = (_difference(one, style) for one in (d.noise_k, d.shading_allowance_k))
+        noise = say("noise_and_corners", noise=noise, more=more) if d.shading_allowance_k else noise
+        told.append((say("noise"), noise))
     return [(name, text(words, Face(7.6))) for name, words in told]
 
 
@@ -226,7 +226,7 @@ def _findings(frame: FrameReport, shown: tuple[Finding, ...], style: Style) -> l
     return [
         *heading(say("anomalies_here")),
         *table(heads, rows, caption=text(say("anomalies_here_caption"), NOTE)),
-        *(quiet(say("more_less_important", count=more)) if more else ()),
+        *(quiet(say("more_less_important", count=more, records="report.json", table="findings.csv")) if more else ()),
     ]
 
 
@@ -254,8 +254,9 @@ def _component(item: ComponentReport, place: int, style: Style) -> list[Runs]:
     group = f"{item.group or numbers.NOTHING}{f', {item.phase}' if item.phase else ''}"
     load = say("not_recorded")
     if item.load_a is not None:
-        rated = "" if item.rated_a is None else say("of", rated=numbers.number(item.rated_a, style=style))
-        load = f"{numbers.number(item.load_a, style=style)}{rated}"
+        load = numbers.number(item.load_a, style=style)
+        if item.rated_a is not None:
+            load = say("of", load=load, rated=numbers.number(item.rated_a, style=style))
     return [
         (mark(item, place), Run(f" {item.name}", SMALL), *found(item)),
         text(group, SMALL),
@@ -287,7 +288,7 @@ def _input(key: str, entry: Input, style: Style) -> list[Runs]:
     """An input, and where its value comes from and, where that is less or better founded, its uncertainty."""
     face = Face(6.8)
     of_value, of_u = texts.origin(entry.from_), texts.founded(entry.u_from)
-    assumed = of_value.startswith("assumed")
+    assumed = texts.is_assumed(entry.from_)
     origin = Run(unbroken(of_value), Face(6.8, "B" if assumed else "", (85, 70, 29) if assumed else face.ink))
     beside_it = f", {unbroken(f'± {of_u}')}" if entry.u > 0 and of_u != texts.founded(entry.from_) else ""
     return [
@@ -300,8 +301,9 @@ def _input(key: str, entry: Input, style: Style) -> list[Runs]:
 def _known(frame: FrameReport, task: FrameTask | None, style: Style) -> list[Fact]:
     told = []
     if frame.uncertainty:
-        draws = say("draws", count=numbers.grouped(frame.draws)) if frame.draws else ""
-        told.append(Fact(say("uncertainty"), f"{texts.uncertainty(frame.uncertainty)}{draws}"))
+        how = texts.uncertainty(frame.uncertainty)
+        how = say("draws", how=how, count=numbers.grouped(frame.draws)) if frame.draws else how
+        told.append(Fact(say("uncertainty"), how))
     if frame.atmosphere_transmittance is not None:
         told.append(
             Fact(say("air_path"), say("transmittance", tau=numbers.number(frame.atmosphere_transmittance, style=style)))
@@ -310,14 +312,11 @@ def _known(frame: FrameReport, task: FrameTask | None, style: Style) -> list[Fac
     if task:
         camera = task.camera
         low, high = (numbers.number(edge * 1e6, style=style) for edge in camera.band)
-        ifov = say("ifov", mrad=numbers.number(camera.ifov * 1e3, style=style)) if camera.ifov else ""
-        accuracy = say(
-            "accuracy",
-            k=numbers.told(camera.accuracy, "accuracy_k", style=style),
-            percent=numbers.number(camera.accuracy_fraction * 100, style=style),
-        )
-        calibrated = say("calibrated", on=day(camera.calibrated_on, style=style)) if camera.calibrated_on else ""
-        told.append(
-            Fact(say("camera"), f"{camera.name}: {say('band', low=low, high=high)}{ifov}{accuracy}{calibrated}")
-        )
+        parts = [say("band", low=low, high=high)]
+        parts += [say("ifov", mrad=numbers.number(camera.ifov * 1e3, style=style))] if camera.ifov else []
+        accuracy = numbers.told(camera.accuracy, "accuracy_k", style=style)
+        share = numbers.number(camera.accuracy_fraction * 100, style=style)
+        parts.append(say("accuracy", k=accuracy, percent=share))
+        parts += [say("calibrated", on=day(camera.calibrated_on, style=style))] if camera.calibrated_on else []
+        told.append(Fact(say("camera"), f"{camera.name}: {', '.join(parts)}"))
     return told

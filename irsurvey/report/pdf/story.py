@@ -139,7 +139,7 @@ def asked(frame: FrameReport) -> Run:
         is_open = any(item.outcome == "not cleared" for item in items)
         return asks(urgency, "not cleared" if is_open else "")
     if frame.claim == "not valid":
-        return chip(frame.claim, "weak")
+        return chip(texts.claim_name(frame.claim), "weak")
     return chip(say("nothing_found")) if is_compared(frame) else chip(say("nothing_compared"), "weak")
 
 

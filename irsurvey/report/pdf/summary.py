@@ -37,6 +37,7 @@ from irsurvey.report.pdf.parts import (
     short,
     title,
     to_do,
+    worded,
 )
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
@@ -112,7 +113,8 @@ def _closing(story: Story) -> list[Piece]:
         )
     if report.conditions_review:
         verdicts = [check.verdict for check in report.conditions_review]
-        told = ", ".join(f"{verdicts.count(verdict)} {verdict}" for verdict in ("met", "not met", "not recorded"))
+        kinds = ("met", "not met", "not recorded")
+        told = ", ".join(f"{verdicts.count(kind)} {texts.condition(kind)}" for kind in kinds)
         lines.append((Run(say("conditions_short", told=told), link="conditions"),))
     if report.checklist:
         stated = sum(item.present for item in report.checklist)
@@ -151,7 +153,7 @@ def _of_repair(line: Line) -> list[Piece]:
 def _of_result(entry: Ranked, story: Story) -> list[Piece]:
     """A finding or component in a line or two."""
     label = f", {short(entry.frame.label)}" if entry.frame.label else ""
-    flags = f" ({short('; '.join(entry.item.flags))})" if entry.item.flags else ""
+    flags = f" ({short('; '.join(map(texts.flag_name, entry.item.flags)))})" if entry.item.flags else ""
     named: Runs = (title(entry), Run(f"{label}: {headline(entry, story.style)}"), Run(flags, NOTE))
     item = entry.item
     told = meaning(item, story.season_costs.get(item.id, ""), story.style) if isinstance(item, Finding) else ""
@@ -211,14 +213,14 @@ def _next_visit(story: Story) -> list[Piece]:
         return []
     pieces = [*heading(say("next_visit")), *quiet(say("next_visit_how"))]
     for number, measurement in enumerate(story.report.next_visit, 1):
-        settled = joined(list(_settled(story, measurement.settles[:SUMMARY_LENGTH])), NOTE)
+        settled = tuple(joined(list(_settled(story, measurement.settles[:SUMMARY_LENGTH])), NOTE))
         more = len(measurement.settles) - SUMMARY_LENGTH
-        rest = say("and_more", count=more) if more > 0 else ""
+        listed = worded("and_more", NOTE, names=settled, count=more) if more > 0 else settled
         told: Runs = (
             emphasis(f"{number}{GAP}{measurement.measurement}."),
             Run(f" {in_style(measurement.why, story.style)}"),
         )
-        settles: Runs = (Run(say("settles", count=len(measurement.settles)), NOTE), *settled, Run(rest, NOTE))
+        settles = worded("settles", NOTE, count=len(measurement.settles), names=listed)
         pieces += [*paragraph(told, gap=1.8, keep=True), *paragraph(settles, x=4, width=BREADTH - 4, gap=0.2)]
     return pieces
 

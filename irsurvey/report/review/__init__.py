@@ -113,11 +113,12 @@ class Desk:
         return Markup('<ul class="review-said">{}</ul>').format(lines) if lines else lines
 
     def _line(self, said: Said) -> Markup:
-        from markupsafe import Markup
+        from markupsafe import Markup, escape
 
         who = Markup("<bdi>{}</bdi>").format(said.reviewer)
         day = Markup('<span class="nowrap">{}</span>').format(self._told.day(said.date))
-        line = Markup(texts.review("by")).format(decision=Markup("<b>{}</b>").format(said.what), reviewer=who, date=day)
+        what = Markup("<b>{}</b>").format(said.what)
+        line = Markup(escape(texts.review("by"))).format(decision=what, reviewer=who, date=day)
         comment = (
             Markup(': <span class="review-words" dir="auto">{}</span>').format(said.comment) if said.comment else ""
         )

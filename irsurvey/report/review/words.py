@@ -99,9 +99,8 @@ def _decided(decision: Decision) -> str:
     if decision.class_ is None:
         as_ = texts.review("as_urgency", urgency=decision.urgency, words=texts.urgency(decision.urgency))
     else:
-        as_ = texts.review(
-            "as_class", urgency=decision.urgency, criterion=decision.criterion, **{"class": decision.class_}
-        )
+        class_ = texts.of_table(decision.class_)
+        as_ = texts.review("as_class", urgency=decision.urgency, criterion=decision.criterion, **{"class": class_})
     return given.format(**{"class": as_})
 
 
