@@ -14,6 +14,9 @@ from PIL import Image
 from report.translation import ENGLISH, Seen, labels, told_by, translated, untranslated
 
 from irsurvey import texts
+from irsurvey.assess.conditions import requirement_sets
+from irsurvey.assess.criteria import criteria
+from irsurvey.assess.limits import limits
 from irsurvey.model import Decision, FrameReport, FrameTask, Maps, Report, Review
 from irsurvey.report import change_picture, frame_files, html, picture, pictures
 from irsurvey.report.kept import kept
@@ -22,6 +25,7 @@ from irsurvey.report.pdf.runs import Run
 from irsurvey.report.pdf.story import gather
 from irsurvey.report.pdf.volumes import summary_of, volume_of, whole
 from irsurvey.report.review.standing import numbers_of, reviewable, with_reviews
+from irsurvey.report.sentences import _quantity
 
 Told = tuple[Report, tuple[FrameTask, ...], Path]
 
@@ -68,7 +72,9 @@ def alt(told: Told) -> list[str]:
 
 
 def translate(monkeypatch: pytest.MonkeyPatch) -> None:
-    """From here on all words are in another script."""
+    """From here on all words are in another script, save those of the tables of data, which the records hold, too."""
+    for english in (criteria, limits, requirement_sets, _quantity):
+        english()  # read once, and kept
     monkeypatch.setattr(texts, "_texts", lambda: OTHER)
 
 

@@ -99,7 +99,8 @@ def told_by(report: Report, tasks: Collection[FrameTask], more: Iterable[str] = 
     Codes that the table of words has a word for are not among it, nor are single words that stand there, too, unless
     they are names."""
     codes = {code for name in _OF_CODES for code in ENGLISH[name]}
-    vocabulary = set(_WORD.findall(" ".join(_leaves(ENGLISH))))
+    of_documents = {name: words for name, words in ENGLISH.items() if name not in ("statements", "tables")}
+    vocabulary = set(_WORD.findall(" ".join(_leaves(of_documents))))
     style = asked(report)
     units = {symbol for unit in (*UNITS.values(), "cm²") for symbol in (unit, expressed(unit, style).symbol)}
     told = {*_leaves(report), *_leaves(list(tasks)), *_standards(), *more}
@@ -142,8 +143,8 @@ def _rest(piece: str, told: list[str]) -> str:
 
 
 def _names(report: Report) -> Iterator[str]:
-    """Names that may be words as well: of the program, criteria, classes, frames, places, what an input belongs to; and
-    the details of flags."""
+    """Names that may be words as well: of the program, criteria, classes, patterns, frames, places, what an input
+    belongs to; and the details of flags."""
     yield report.tool["name"]
     yield from (asset.location for asset in report.assets if asset.location)
     for frame in report.frames:
@@ -152,6 +153,7 @@ def _names(report: Report) -> Iterator[str]:
         yield from (flag.partition(": ")[2] for flag in frame.flags)
         for item in (*frame.findings, *frame.components):
             yield from (flag.partition(": ")[2] for flag in item.flags)
+            yield from ([item.indication.pattern] if item.indication else [])
             for one in item.assessments:
                 yield from (one.criterion, one.class_ or one.criterion, *one.probabilities)
 
