@@ -6,15 +6,29 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 
 from irsurvey import numbers, texts
-from irsurvey.model import Estimate, Finding, ReferenceReport, RoomAir, StripReport, SurfaceAtRisk
+from irsurvey.assess.severity import AUTOMATIC_REFERENCE
+from irsurvey.model import (
+    Estimate,
+    Finding,
+    FrameReport,
+    ReferenceReport,
+    Report,
+    RoomAir,
+    StripReport,
+    SurfaceAtRisk,
+)
 from irsurvey.numbers import SI, Style
 from irsurvey.report import results
 from irsurvey.report.sentences import in_style
+from irsurvey.report.style import short
 from irsurvey.texts import say
 
 Record = Finding | ReferenceReport | RoomAir | StripReport
 
 _YES_OR_NO = ("changed_with_pressure",)
+_PATTERN = 90  # letters of a pattern in one line with what it takes
+_LIKELY = 0.5
+"""Probability from which a risk is told in the summary: more likely than not."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,6 +65,32 @@ def of_finding(item: Finding, *, style: Style = SI) -> tuple[Fact, ...]:
         *_margin(item, "mould_margin_k", "mould_probability", style),
         *_told(item, ("pressure_change_k",), style=style),
         *_refused(item.refusals, style),
+    )
+
+
+def meaning(item: Finding, frame: FrameReport, cost: str, *, style: Style = SI) -> str:
+    """What a finding of a frame is consistent with, what it risks and what it takes, in a line; `cost` in words.
+
+    Heat is told where numbers may be relied on and the reference is confirmed; a risk where it is likely."""
+    told = [short(texts.pattern(item.indication.pattern), _PATTERN)] if item.indication else []
+    for key, probability in (("mould_likely", item.mould_probability), ("wet_likely", item.condensation_probability)):
+        if probability is not None and probability >= _LIKELY:
+            told.append(say(key, probability=results.chance(probability)))
+    if item.excess_heat_w and frame.claim == "quantitative" and AUTOMATIC_REFERENCE not in item.flags:
+        told.append(say("excess_heat", heat=results.reading(item, "excess_heat_w", style=style)))
+    if cost:
+        told.append(say("estimate_of", what=cost))
+    line = "; ".join(told)
+    return line[:1].upper() + line[1:]
+
+
+def mouldy(report: Report) -> tuple[FrameReport, ...]:
+    """Frames in which the coldest spot of a finding, or of all that was inspected, likely has mould conditions."""
+    return tuple(
+        frame
+        for frame in report.frames
+        if any((finding.mould_probability or 0.0) >= _LIKELY for finding in frame.findings)
+        or any(risk.risk == "mould" and (risk.probability or 0.0) >= _LIKELY for risk in frame.surface_at_risk)
     )
 
 

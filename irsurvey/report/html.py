@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cache, partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -20,6 +19,7 @@ from irsurvey.report import (
     explained,
     facts,
     live,
+    open_points,
     pictures,
     ranking_plot,
     repair_list,
@@ -34,8 +34,8 @@ from irsurvey.report.links import REPORT, SHEET, Links
 from irsurvey.report.picture import NUMBERED
 from irsurvey.report.ranking import Ranked, foremost, governing, in_order
 from irsurvey.report.sentences import in_style
-from irsurvey.report.sheets import Sheet, entry, is_compared, sheet
-from irsurvey.report.style import asked, day, moment, spoken
+from irsurvey.report.sheets import Sheet, entry, sheet
+from irsurvey.report.style import asked, day, moment, short, spoken
 from irsurvey.texts import noun, say
 
 if TYPE_CHECKING:
@@ -64,18 +64,8 @@ _MODULES = {
     "trend_plot": trend_plot,
 }
 """What the templates call a module whose words depend on the style."""
-_LONG = 140  # characters of a free text that the summary and the tables show; the sheet of its frame has it all
 _NAMED = 3  # findings or components of one frame named when they are not cleared for one reason; of more, their number
 _CONTROLS = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
-
-
-@dataclass(frozen=True, slots=True)
-class Open:
-    """Something that could not be cleared, and why."""
-
-    frame: FrameReport
-    what: str
-    why: str
 
 
 def write(report: Report, tasks: tuple[FrameTask, ...], out: Path) -> Path:
@@ -163,11 +153,11 @@ class _Pages:
             roof=_warm_areas(ranked, self.tasks),
             conditions=condition_rows.rows(report.conditions_review, style=style),
             seasons=seasons,
-            season_notes=season_table.notes(seasons),
+            season_notes=season_table.notes(seasons, report),
             season_costs=season_table.in_short(report, style=style),
             named={_name(entry): entry for entry in ranked},
-            not_cleared=sum(1 for _ in not_cleared(report)),
-            open_points=gathered(not_cleared(report)),
+            open_points=open_points.beside_repairs(report),
+            mouldy=facts.mouldy(report),
             repairs=repair_list.shown(
                 report, ranked, self.tasks, out, style=style, pictured=MOST_PICTURED if self.is_split else None
             ),
@@ -190,38 +180,6 @@ class _Pages:
     def _rendered(self, template: str, links: Links, **told: Any) -> str:
         text = _environment().get_template(template).render(**self.shared, to=links, **told)
         return _CONTROLS.sub("\ufffd", text)
-
-
-def not_cleared(report: Report) -> Iterator[Open]:
-    """What must not be taken for sound: results that are not cleared, pixels and frames without a claim."""
-    for frame in report.frames:
-        if frame.status == "failed":
-            continue
-        if frame.claim == "not valid":
-            yield Open(frame, say("the_whole_frame"), frame.claim_reason)
-        elif not is_compared(frame):
-            yield Open(frame, say("the_whole_frame"), say("no_reference_area"))
-        if frame.temperature and (lost := frame.temperature.unmeasurable_pixels + frame.temperature.saturated_pixels):
-            yield Open(frame, say("pixels", count=lost), say("no_temperature"))
-        for finding in frame.findings:
-            if finding.outcome == "not cleared":
-                yield Open(frame, say("finding_id", id=finding.id), _why(finding))
-        for component in frame.components:
-            if component.outcome == "not cleared":
-                yield Open(frame, component.name, _why(component))
-
-
-def gathered(points: Iterable[Open]) -> list[Open]:
-    """Points of one frame that are open for the same reason as one point, in the order of the first of each."""
-    alike: dict[tuple[str, str], list[Open]] = {}
-    for point in points:
-        alike.setdefault((point.frame.id, point.why), []).append(point)
-    return [
-        replace(same[0], what=", ".join(point.what for point in same))
-        if len(same) <= _NAMED
-        else replace(same[0], what=say("of_its_results", count=len(same)))
-        for same in alike.values()
-    ]
 
 
 def _warm_areas(ranked: tuple[Ranked, ...], tasks: dict[str, FrameTask]) -> list[Ranked]:
@@ -251,21 +209,9 @@ def _place(entry: Ranked) -> tuple[str, str]:
     return entry.frame.id, entry.item.key
 
 
-def _why(item: Finding | ComponentReport) -> str:
-    """Why something is not cleared: what its governing assessment says, else what its flags mean."""
-    assessment = governing(item.assessments)
-    if assessment and assessment.statement:
-        return assessment.statement
-    return " ".join(texts.flag(flag) for flag in item.flags) or say("no_criterion")
-
-
 def _small_side(frames: int) -> int:
     """Longer side [px] of the small pictures of a report of so many frames; 0: none."""
     return next((side for most, side in _SMALL_SIDES if frames <= most), 0)
-
-
-def _short(text: str, length: int = _LONG) -> str:
-    return text if len(text) <= length else f"{text[: length - 1].rstrip()}…"
 
 
 def _upper_first(text: str) -> str:
@@ -297,7 +243,7 @@ def _environment() -> Environment:
         trim_blocks=True,
         lstrip_blocks=True,
     )
-    environment.filters |= {"flag_name": texts.flag_name, "short": _short, "upper_first": _upper_first}
+    environment.filters |= {"flag_name": texts.flag_name, "short": short, "upper_first": _upper_first}
     environment.globals |= {
         "axes": axes,
         **{tag: partial(_within, tag) for tag in ("bdi", "code")},

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Collection, Iterable, Iterator, Mapping
 from dataclasses import dataclass, replace
 
 from irsurvey import numbers, texts
@@ -14,6 +14,7 @@ from irsurvey.texts import say
 _SMALL_KWH = 1.0
 """Several findings that surely take less a season share one line."""
 _IN_SEASON = {"heating": "in_heating_season", "cooling": "in_cooling_season"}
+_NAMED = 12  # findings without a row named one by one
 _PATCH = {"hot": "warmer_patch", "cold": "colder_patch"}
 
 
@@ -57,12 +58,22 @@ def tables(report: Report, *, style: Style = SI) -> tuple[Table, ...]:
     return tuple(_table(report, season, style) for season in report.seasons if season.findings or season.elements)
 
 
-def notes(shown: tuple[Table, ...]) -> tuple[str, ...]:
-    """How to read these tables, in sentences."""
+def notes(shown: tuple[Table, ...], report: Report) -> tuple[str, ...]:
+    """How to read these tables, and what is not in them, in sentences."""
     told = [table.sense for table in shown] + ["estimate", "plus_minus", "twice"]
     told += ["both"] if any(len(table.parts) > 1 for table in shown) else []
     told += ["price"] if any(table.has_cost for table in shown) else []
-    return tuple(texts.owner(note) for note in told)
+    return (*_left_out(report), *(texts.owner(note) for note in told))
+
+
+def _left_out(report: Report) -> Iterator[str]:
+    """Which findings have no row in any season."""
+    counted = {row.of for season in report.seasons for row in season.findings}
+    found = (finding.id for frame in report.frames if frame.kind == "building" for finding in frame.findings)
+    left = [id_ for id_ in found if id_ not in counted]
+    if left:
+        names = ", ".join(left[:_NAMED]) + (" …" if len(left) > _NAMED else "")
+        yield say("not_in_the_table" if len(left) > 1 else "one_not_in_the_table", count=len(left), names=names)
 
 
 def in_short(report: Report, *, style: Style = SI) -> dict[str, str]:
@@ -88,10 +99,8 @@ def _table(report: Report, season: SeasonReport, style: Style) -> Table:
     lines = [_of_finding(row, season, findings.get(row.of), labels.get(row.frame or "", ""), style) for row in kept]
     if len(small) > 1:
         lines.append(_gathered(small, season, style))
-    whole = tuple(
-        _line(row, season, described.get(row.of, row.of), labels.get(row.frame or "", say("not_measured")), style=style)
-        for row in season.elements
-    )
+    doubtful = {frame.id for frame in report.frames if any(one.outcome == "not cleared" for one in frame.findings)}
+    whole = tuple(_of_element(row, season, described, labels, doubtful, style) for row in season.elements)
     return Table(
         sense=season.sense,
         heading=texts.season(season.sense),
@@ -127,6 +136,20 @@ def _of_finding(row: SeasonRow, season: SeasonReport, finding: Finding | None, w
         return line
     note = texts.pattern(finding.indication.pattern) if finding.indication else ""
     return replace(line, what=say(_PATCH[finding.sense], id=row.of), note=note, finding=row.of)
+
+
+def _of_element(
+    row: SeasonRow,
+    season: SeasonReport,
+    described: Mapping[str, str],
+    labels: Mapping[str, str],
+    doubtful: Collection[str],
+    style: Style,
+) -> Line:
+    """A part of the building; a note where the frame it was measured in holds something that is not cleared."""
+    where = labels.get(row.frame or "", say("not_measured"))
+    line = _line(row, season, described.get(row.of, row.of), where, style=style)
+    return replace(line, note=say("measured_where_open", frame=row.frame)) if row.frame in doubtful else line
 
 
 def _is_small(row: SeasonRow) -> bool:

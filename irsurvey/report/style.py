@@ -13,6 +13,9 @@ from typing import Any
 from irsurvey.model import Report
 from irsurvey.numbers import SI, Style
 
+LONG = 140
+"""Letters of a free text that the summary and the tables show; the sheet of its frame has it all."""
+
 _DIRECTIVE = re.compile("%[dmYy]")
 _TIME = re.compile(r"(\d{4}-\d\d-\d\d)(?:T(\d\d:\d\d)(?::\d\d(?:\.\d+)?)?(.*))?")
 
@@ -58,6 +61,11 @@ def moment(taken: str, *, style: Style = SI) -> str:
     except ValueError:
         return taken
     return " ".join(part for part in (first, *behind) if part)
+
+
+def short(text: str, length: int = LONG) -> str:
+    """A text cut to so many letters."""
+    return text if len(text) <= length else f"{text[: length - 1].rstrip()}…"
 
 
 def _bound(value: Any, style: Style) -> Any:

@@ -17,7 +17,8 @@ from report.pages import Page
 from irsurvey.model import Estimate, FrameTask, Maps, Report
 from irsurvey.numbers import shown
 from irsurvey.report import frame_files
-from irsurvey.report.html import Open, gathered, not_cleared, page, write
+from irsurvey.report.html import page, write
+from irsurvey.report.open_points import Open, gathered, not_cleared
 
 RTL = "\u202eשלום עולם مرحبا\u202c"
 HOSTILE = [
@@ -225,7 +226,7 @@ def test_a_failed_frame_is_shown_with_its_reason(report: Report, shown_page: Pag
 
 
 def test_what_could_not_be_cleared_is_listed(report: Report) -> None:
-    found = [(point.frame.id, point.what, point.why) for point in not_cleared(report)]
+    found = [(point.frames[0].id, point.what, point.why) for point in not_cleared(report)]
     assert found == [
         ("S01", "40 pixels", "no temperature could be measured there"),
         ("S01", "phase 3 bare bar", "Too reflective for a claim."),
@@ -242,8 +243,8 @@ def test_a_finding_that_asks_for_nothing_is_still_not_cleared(report: Report) ->
 
 def test_results_of_a_frame_that_are_open_for_one_reason_are_one_line(report: Report) -> None:
     wall = report.frames[0]
-    many = [Open(wall, f"finding F01-{k}", "automatic reference") for k in range(1, 40)]
-    other = [Open(report.frames[3], "bar", "too reflective"), Open(wall, "40 pixels", "not measured")]
+    many = [Open((wall,), f"finding F01-{k}", "automatic reference", f"k{k}") for k in range(1, 40)]
+    other = [Open((report.frames[3],), "bar", "too reflective", "b"), Open((wall,), "40 pixels", "not measured")]
     lines = [(point.what, point.why) for point in gathered([*many, *other])]
     assert lines == [
         ("39 of its results", "automatic reference"),
@@ -251,6 +252,18 @@ def test_results_of_a_frame_that_are_open_for_one_reason_are_one_line(report: Re
         ("40 pixels", "not measured"),
     ]
     assert [point.what for point in gathered(many[:2])] == ["finding F01-1, finding F01-2"]
+
+
+def test_results_of_many_frames_that_are_open_for_one_reason_are_one_line(report: Report) -> None:
+    frames = [replace(report.frames[0], id=f"W{k}") for k in range(5)]
+    results = [Open((frame,), f"finding {frame.id}-1", "automatic reference", frame.id) for frame in frames]
+    blind = [Open((frame,), "the whole frame", "no reference") for frame in frames]
+    lost = [Open((frame,), f"{k} pixels", "not measured") for k, frame in enumerate(frames)]
+    found = gathered([*results, *blind, *lost])
+    told = [(len(point.frames), point.what) for point in found[:2]]
+    assert told == [(5, "5 of their results"), (5, "the whole frame")]
+    assert [point.what for point in found[2:]] == [f"{k} pixels" for k in range(5)]  # each its own number
+    assert [len(point.frames) for point in gathered(results[:3])] == [1, 1, 1]  # of a few, each by name
 
 
 def test_what_is_not_cleared_is_never_labelled_no_action(report: Report, out: Path) -> None:
@@ -309,7 +322,7 @@ def test_every_finding_and_component_says_what_is_done_about_it_and_how_sure_tha
     assert "At the edge where action begins pass: short of that edge by more than U" in text
     assert "ΔT truly beyond the least that counts probability > 99 %" in text
     assert text.count("At the edge where action begins") == 4  # one of six has no class, one no assessment
-    assert "4 to act on 2 not cleared 1 cleared" in text
+    assert "4 to act on 1 not cleared 1 cleared" in text
 
 
 def test_a_fragile_class_says_which_changes_would_flip_it(shown_page: Page) -> None:

@@ -74,7 +74,7 @@ def figures(story: Story) -> list[Piece]:
         (len(story.findings), "anomaly", False),
         *([(len(story.components), "component", False)] if story.components else []),
         (outcomes.count("act"), "to_act_on", True),
-        (story.not_cleared, "open_result", True),
+        (outcomes.count("not cleared"), "open_result", True),
         *([(outcomes.count("cleared"), "cleared", False)] if story.components else []),
         *([(missed, "not_inspected", True)] if missed else []),
     ]

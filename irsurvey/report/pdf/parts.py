@@ -178,16 +178,6 @@ def headline(entry: Ranked, style: Style) -> str:
     return ", ".join(told)
 
 
-def meaning(item: Finding, cost: str, style: Style) -> str:
-    """What a finding is consistent with, and what it takes, in a line."""
-    told = [short(texts.pattern(item.indication.pattern), 90)] if item.indication else []
-    if item.excess_heat_w:
-        told.append(say("excess_heat", heat=results.reading(item, "excess_heat_w", style=style)))
-    if cost:
-        told.append(say("estimate_of", what=cost))
-    return upper_first("; ".join(told))
-
-
 def indication(one: Indication, style: Style) -> list[Piece]:
     """What the pattern of a finding is consistent with, and the cues it was read from."""
     statement = one.statement or upper_first(texts.pattern(one.pattern))

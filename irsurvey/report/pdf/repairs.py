@@ -73,7 +73,7 @@ def season_costs(story: Story, layout: Layout) -> None:
         for part in season.parts:
             layout.add(_costs(season, part))
     layout.add(heading(say("how_to_read")))
-    layout.add(bullets(text(told) for told in season_table.notes(story.seasons)))
+    layout.add(bullets(text(told) for told in season_table.notes(story.seasons, story.report)))
 
 
 def _item(line: Line) -> list[Piece]:

@@ -12,7 +12,7 @@ from irsurvey import texts
 from irsurvey.model import ComponentReport, Finding, FrameReport, FrameTask, Report
 from irsurvey.numbers import Style
 from irsurvey.report import about, repair_list, season_table, style
-from irsurvey.report.html import Open, gathered, not_cleared
+from irsurvey.report.open_points import Open, beside_repairs
 from irsurvey.report.pdf.parts import asks, chip
 from irsurvey.report.pdf.runs import Run
 from irsurvey.report.ranking import Ranked, in_order
@@ -33,7 +33,6 @@ class Story:
     about: dict[str, str]  # heading → text
     ranked: tuple[Ranked, ...]
     open_points: list[Open]
-    not_cleared: int
     repairs: repair_list.Shown
     seasons: tuple[season_table.Table, ...]
     season_costs: dict[str, str]
@@ -91,7 +90,6 @@ def gather(report: Report, tasks: Iterable[FrameTask], out: Path) -> Story:
     by_id = {task.id: task for task in tasks}
     ranked = in_order(report)
     asked_style = style.asked(report)
-    points = list(not_cleared(report))
     standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
     return Story(
         report=report,
@@ -100,8 +98,7 @@ def gather(report: Report, tasks: Iterable[FrameTask], out: Path) -> Story:
         title=about.said(report).get("title") or say("untitled"),
         about=about.headed(report, style=asked_style),
         ranked=ranked,
-        open_points=gathered(points),
-        not_cleared=len(points),
+        open_points=beside_repairs(report),
         repairs=repair_list.shown(report, ranked, by_id, out, style=asked_style),
         seasons=season_table.tables(report, style=asked_style),
         season_costs=season_table.in_short(report, style=asked_style),

@@ -7,6 +7,7 @@ from dataclasses import replace
 
 from irsurvey import texts
 from irsurvey.model import AssetReport, ComponentReport, Finding
+from irsurvey.report import condition_rows, facts
 from irsurvey.report.html import SUMMARY_LENGTH
 from irsurvey.report.pdf.blocks import (
     BODY,
@@ -32,7 +33,6 @@ from irsurvey.report.pdf.parts import (
     headline,
     item_place,
     joined,
-    meaning,
     quiet,
     short,
     title,
@@ -97,7 +97,18 @@ def _opening(story: Story) -> list[Piece]:
         *paragraph(told),
         space(2),
         *figures(story),
+        *_mouldy(story),
     ]
+
+
+def _mouldy(story: Story) -> list[Piece]:
+    """Where mould conditions are likely."""
+    frames = facts.mouldy(story.report)
+    if not frames:
+        return []
+    rest = " …" if len(frames) > _NAMED_FRAMES else ""
+    named = (*joined([frame_name(frame) for frame in frames[:_NAMED_FRAMES]]), Run(rest))
+    return paragraph((emphasis(f"{say('mould_likely_at')} "), *named))
 
 
 def _closing(story: Story) -> list[Piece]:
@@ -112,7 +123,7 @@ def _closing(story: Story) -> list[Piece]:
             (claim(kind), Run(f" {texts.claim(kind)} {len(frames)} {noun(len(frames), 'frame')}: "), *names, Run(rest))
         )
     if report.conditions_review:
-        verdicts = [check.verdict for check in report.conditions_review]
+        verdicts = [row.check.verdict for row in condition_rows.rows(report.conditions_review)]
         kinds = ("met", "not met", "not recorded")
         told = ", ".join(f"{verdicts.count(kind)} {texts.condition(kind)}" for kind in kinds)
         lines.append((Run(say("conditions_short", told=told), link="conditions"),))
@@ -156,7 +167,8 @@ def _of_result(entry: Ranked, story: Story) -> list[Piece]:
     flags = f" ({short('; '.join(map(texts.flag_name, entry.item.flags)))})" if entry.item.flags else ""
     named: Runs = (title(entry), Run(f"{label}: {headline(entry, story.style)}"), Run(flags, NOTE))
     item = entry.item
-    told = meaning(item, story.season_costs.get(item.id, ""), story.style) if isinstance(item, Finding) else ""
+    cost = story.season_costs.get(item.id, "") if isinstance(item, Finding) else ""
+    told = facts.meaning(item, entry.frame, cost, style=story.style) if isinstance(item, Finding) else ""
     return _entry(to_do(entry.item), named, told)
 
 
@@ -197,8 +209,8 @@ def _not_cleared(story: Story) -> list[Piece]:
     shown = points[: 2 * SUMMARY_LENGTH]
     lines: list[Runs] = [
         (
-            frame_name(point.frame),
-            Run(", "),
+            *joined([frame_name(frame) for frame in point.frames[:_NAMED_FRAMES]]),
+            Run(" …, " if len(point.frames) > _NAMED_FRAMES else ", "),
             emphasis(short(point.what)),
             Run(f": {short(in_style(point.why, story.style), 320)}"),
         )
