@@ -249,7 +249,7 @@ def test_colours_follow_range_and_map_at_once_and_leave_what_is_inked(browser: B
     canvas_of(browser, "kitchen-bays")
     colours = figure.find_element(By.CSS_SELECTOR, ".live-colours")
     assert not colours.is_displayed()
-    ends = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[type="number"]')
+    ends = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[inputmode="decimal"]')
     for field, value in zip(ends, ("12", "20"), strict=True):
         field.clear()
         field.send_keys(value)
@@ -303,7 +303,7 @@ def test_sliders_and_fields_tell_the_same_range_and_refuse_what_is_none(browser:
     browser.open(house.page)
     canvas_of(browser, "kitchen-bays")
     figure = figure_of(browser, "kitchen-bays")
-    low, high = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[type="number"]')
+    low, high = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[inputmode="decimal"]')
     slide_low, _ = figure.find_elements(By.CSS_SELECTOR, 'input[type="range"]')
     before = float(low.get_attribute("value"))
     slide_low.send_keys(Keys.ARROW_RIGHT)

@@ -292,7 +292,7 @@ def test_a_what_if_is_marked_and_back_to_the_report_restores_everything(browser:
     browser.run("await Live.sheets.get('bedroom-gable').open();")
     told = figure.text
     assert "What if: these are not the results of the report." in told
-    assert "Emissivity 0.7 instead of 0.93" in told
+    assert "Emissivity: 0.7 instead of 0.93" in told
     assert "clears nothing" in told
     assert figure.find_element(By.CSS_SELECTOR, ".live-badge").is_displayed()
     assert "live-what-if" in figure.find_element(By.CSS_SELECTOR, ".live").get_attribute("class")
