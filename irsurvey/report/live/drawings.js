@@ -85,14 +85,26 @@ const Drawings = (() => {
       text([left, bottom + 34], "start", Page.say("start")),
       text([right, bottom + 34], "end", Page.say("length")),
     );
-    if (level) {
-      const isHigh = y(level.at(-1)) < top + 14;
-      plot.append(svg("path", { class: "live-level", d: pathOf(level) }),
-        text([right, y(level.at(-1)) + (isHigh ? 13 : -4)], "end", Page.say("level", { level: shown(level.at(-1)) })));
-    }
     plot.append(svg("path", { class: "live-curve", d: pathOf(along) }));
+    if (level) {
+      const { isLast, isBelow } = roomBeside(along, level);
+      const [place, t] = isLast ? [right - 4, level.at(-1)] : [left + 10, level[0]];
+      const under = y(t) + 4 > bottom - 12 ? -5 : 12;
+      plot.append(svg("path", { class: "live-level", d: pathOf(level) }),
+        text([place, y(t) + (isBelow || y(t) < top + 12 ? under : -5)], isLast ? "end" : "start", Page.say("level", { level: shown(t) })));
+    }
     if (!Number.isNaN(along[0])) plot.append(svg("circle", { class: "live-start", cx: left, cy: y(along[0]).toFixed(1), r: 4 }));
     return plot;
+  }
+
+  // At which end of the reference, and on which side of it, the curve leaves room for a word.
+  function roomBeside(along, level) {
+    const above = along.map((t, k) => t - level[k]);
+    const share = Math.ceil(above.length * 0.45);
+    const meanOf = (values) => values.reduce((sum, one) => sum + (one || 0), 0) / values.length;
+    const [first, last] = [meanOf(above.slice(0, share)), meanOf(above.slice(-share))];
+    const isLast = Math.abs(last) > Math.abs(first);
+    return { isLast, isBelow: (isLast ? last : first) > 0 };
   }
 
   // Round lengths from the start of the line.

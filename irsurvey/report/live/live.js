@@ -366,6 +366,7 @@ const Live = (() => {
       this.readout.textContent = told || "\u00a0";
       if (isSpoken) this.spoken.textContent = told || say("at", { x: cursor[0], y: cursor[1] });
       this.sure.textContent = (reading?.at && this.wordsOfSureness(reading)) || "\u00a0";
+      this.sure.hidden = tool !== "read";
       const hasProfile = reading?.along && reading.missing < reading.pixels;
       this.profile.replaceChildren(...(hasProfile ? [Drawings.profile(reading)] : []));
       const isDrawing = !isClosed && (points.length > 0 || document.activeElement === this.ink);
