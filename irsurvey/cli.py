@@ -223,6 +223,8 @@ def apply_review(out: Path, decisions: Path) -> int:
         _print_table(("frame", "still open", "why"), ((one.frame, one.id, told.how_open(one)) for one in done.open))
     said = f"{len(done.review.decisions)} of {done.review.reviewer}, {done.review.date}"
     _tell(f"decisions: {said}{'' if done.is_new else '; they were in the report already'}")
+    if bare := done.without_reason:
+        _tell(f"without a reason: {bare} rejected or reclassified")
     _tell(f"{out}: {len(done.open)} still open of {len(done.report.review_status) - len(done.gone)}")
     return ALL_DONE
 

@@ -49,6 +49,13 @@ class Applied:
         return self.standing(OPEN, ASKED_AGAIN)
 
     @property
+    def without_reason(self) -> int:
+        """How many of the decisions put in reject or reclassify, and do not say why."""
+        return sum(
+            one.decision in ("rejected", "reclassified") and not one.comment.strip() for one in self.review.decisions
+        )
+
+    @property
     def gone(self) -> tuple[ReviewStatus, ...]:
         """What was decided, and is no longer in the report."""
         return self.standing(GONE)

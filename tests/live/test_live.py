@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 import tifffile
 from live.browser import Browser
+from live.hands import canvas_of, choose, figure_of, mouse, point
 from live.pages import document, sheets
 from live.runs import Run
 from selenium.webdriver.common.action_chains import ActionChains
@@ -30,47 +31,6 @@ return given[1].map((pixel) => sheet.readingAt(pixel)).map((one) => [one.tempera
 
 def stored(run: Run, frame: str, name: str = "temperature") -> np.ndarray[Any, Any]:
     return np.asarray(tifffile.imread(run.out / "frames" / frame / f"{name}.tif"), float)
-
-
-def figure_of(browser: Browser, frame: str) -> Any:
-    return browser.one(f'article[data-frame="{frame}"]')
-
-
-def canvas_of(browser: Browser, frame: str) -> Any:
-    canvas = figure_of(browser, frame).find_element(By.CSS_SELECTOR, ".live-ink")
-    browser.driver.execute_script("arguments[0].scrollIntoView({block: 'center', behavior: 'instant'})", canvas)
-    browser.run("await Live.sheets.get(given[0]).open();", frame)
-    return canvas
-
-
-def point(browser: Browser, frame: str, x: int, y: int) -> tuple[int, int]:
-    """Where the middle of a pixel lies in the window; a pixel is wider than rounding may move it."""
-    body = """
-    const { ink, data } = Live.sheets.get(given[0]);
-    const box = ink.getBoundingClientRect();
-    const scale = box.width / data.picture.width * data.picture.factor;
-    return [box.left + (given[1] + 0.5) * scale, box.top + (given[2] + 0.5) * scale];
-    """
-    across, down = browser.run(body, frame, x, y)
-    return round(across), round(down)
-
-
-def mouse(browser: Browser, *steps: tuple[int, int] | str) -> None:
-    """Move through places of the window, the button pressed and released in between."""
-    actions = ActionChains(browser.driver, duration=20)
-    pointer = actions.w3c_actions.pointer_action
-    for step in steps:
-        if step == "press":
-            pointer.pointer_down()
-        elif step == "release":
-            pointer.pointer_up()
-        else:
-            pointer.move_to_location(*step)
-    actions.perform()
-
-
-def choose(browser: Browser, frame: str, tool: str) -> None:
-    figure_of(browser, frame).find_element(By.CSS_SELECTOR, f'input[value="{tool}"]').click()
 
 
 def number(text: str) -> float:
@@ -249,7 +209,7 @@ def test_colours_follow_range_and_map_at_once_and_leave_what_is_inked(browser: B
     canvas_of(browser, "kitchen-bays")
     colours = figure.find_element(By.CSS_SELECTOR, ".live-colours")
     assert not colours.is_displayed()
-    ends = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[type="number"]')
+    ends = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[inputmode="decimal"]')
     for field, value in zip(ends, ("12", "20"), strict=True):
         field.clear()
         field.send_keys(value)
@@ -303,7 +263,7 @@ def test_sliders_and_fields_tell_the_same_range_and_refuse_what_is_none(browser:
     browser.open(house.page)
     canvas_of(browser, "kitchen-bays")
     figure = figure_of(browser, "kitchen-bays")
-    low, high = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[type="number"]')
+    low, high = figure.find_elements(By.CSS_SELECTOR, '.live-colour-bar input[inputmode="decimal"]')
     slide_low, _ = figure.find_elements(By.CSS_SELECTOR, 'input[type="range"]')
     before = float(low.get_attribute("value"))
     slide_low.send_keys(Keys.ARROW_RIGHT)

@@ -28,8 +28,7 @@ return given[1].map((pixel) => sheet.readingAt(pixel).temperature);
 TEXT_AT = """
 const sheet = Live.sheets.get(given[0]);
 await sheet.open();
-sheet.cursor = given[1];
-sheet.tell();
+sheet.keep(given[1]);
 return sheet.readout.textContent;
 """
 UNITS = {"display_units": "us", "decimal_comma": True}

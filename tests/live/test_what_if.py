@@ -16,7 +16,7 @@ from live.runs import Run
 from samples import HOUSE, PUMP_STATION
 from selenium.webdriver.common.by import By
 
-from irsurvey import pipeline
+from irsurvey import pipeline, texts
 from irsurvey.assess.criteria import class_of, criteria
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.model import FrameReport, FrameTask
@@ -292,7 +292,7 @@ def test_a_what_if_is_marked_and_back_to_the_report_restores_everything(browser:
     browser.run("await Live.sheets.get('bedroom-gable').open();")
     told = figure.text
     assert "What if: these are not the results of the report." in told
-    assert "Emissivity 0.7 instead of 0.93" in told
+    assert "Emissivity: 0.7 instead of 0.93" in told
     assert "clears nothing" in told
     assert figure.find_element(By.CSS_SELECTOR, ".live-badge").is_displayed()
     assert "live-what-if" in figure.find_element(By.CSS_SELECTOR, ".live").get_attribute("class")
@@ -350,3 +350,72 @@ def test_a_what_if_leaves_the_other_frames_and_the_data_alone(browser: Browser, 
     browser.run(ASSUME, "bedroom-gable", {"emissivity": 0.5})
     assert browser.run(data) == before
     assert browser.run("const other = Live.sheets.get('kitchen-bays'); await other.open(); return other.view.isStored")
+
+
+def test_emissivity_is_told_apart_from_that_of_parts_which_have_their_own(browser: Browser, pumps: Run) -> None:
+    """Its field says what it changes, and a row that it leaves alone says why; nothing else does."""
+    browser.open(pumps.page)
+    sheet = "Live.sheets.get('pump-one')"
+    labels = dict(browser.run(f"return {sheet}.panel.fields.map((one) => [one.assumption.name, one.assumption.label])"))
+    assert labels["emissivity"] == "Emissivity, where a part has none of its own"
+    assert labels["emissivity:pump 1 lugs"] == "Emissivity, pump 1 lugs"
+    assert labels["reflected"] == "Reflected apparent temperature"
+    notes = f"return [...{sheet}.panel.table.querySelectorAll('tbody tr')].map((row) => " + (
+        "[row.dataset.item, row.querySelector('.live-own')?.textContent ?? null])"
+    )
+    own = "unchanged: an emissivity of its own"
+    keys = [component.key for component in pumps.frame("pump-one").components]
+    browser.run(ASSUME, "pump-one", {"emissivity": 0.7})
+    assert dict(browser.run(notes)) == {**dict.fromkeys(keys, own), "reference": None}
+    browser.run(ASSUME, "pump-one", {"emissivity": 0.7, "distance": 9})  # then something has changed
+    assert set(dict(browser.run(notes)).values()) == {None}
+    browser.run(ASSUME, "pump-one", {"emissivity:pump 1 lugs": 0.7})
+    assert set(dict(browser.run(notes)).values()) == {None}
+
+
+def test_a_frame_of_one_emissivity_asks_for_it_by_its_name(browser: Browser, house: Run) -> None:
+    browser.open(house.page)
+    body = "return Live.sheets.get('bedroom-gable').panel.fields.map((one) => one.assumption.label)"
+    assert browser.run(body)[0] == "Emissivity"
+
+
+@pytest.mark.parametrize(("id_", "emissivity", "reflected"), [("busbars", 1.0, 22.0), ("pump-one", 0.8, 0.0)])
+def test_beside_a_class_stands_what_its_urgency_asks_for_and_nothing_is_cleared(
+    browser: Browser, pumps: Run, id_: str, emissivity: float, reflected: float
+) -> None:
+    """As the report says it, then as it follows; urgency 0 is to look again unless the report has cleared the part."""
+    browser.open(pumps.page)
+    chips = """
+    const rows = Live.sheets.get(given[0]).panel.table.querySelectorAll("tbody tr[data-item]");
+    return [...rows].map((row) => [row.dataset.item,
+      [...row.querySelectorAll("td[data-column=class] .chip")].map((one) => [one.textContent, one.className])]);
+    """
+    components = pumps.frame(id_).components
+    browser.run("await Live.sheets.get(given[0]).open();", id_)
+    before = dict(browser.run(chips, id_))
+    for component in components:
+        assert [words for words, _ in before[component.key]] == [texts.to_do(component.urgency, component.outcome)]
+    own = dict.fromkeys({component.emissivity for component in pumps.task(id_).components}, emissivity)
+    found = {one["id"]: one for one in browser.run(ASSUME, id_, own | {"reflected": reflected})}
+    after = dict(browser.run(chips, id_))
+    moved = []
+    for component in components:
+        urgency = found[component.key]["urgency"]
+        is_open = urgency == 0 and component.outcome != "cleared"
+        kind = "weak" if is_open else f"u{urgency}"
+        words = "look again" if is_open else texts.urgency(urgency)
+        assert after[component.key][1] == [words, f"chip {kind}"]
+        moved.append(urgency != component.urgency)
+    assert any(moved)
+
+
+def test_what_stays_as_in_the_report_is_said_while_a_what_if_holds(browser: Browser, house: Run) -> None:
+    browser.open(house.page)
+    browser.run("const s = Live.sheets.get('bedroom-gable'); await s.open(); s.panel.node.open = true;")
+    told = "stays as in the report, its histogram"
+    figure = browser.one('article[data-frame="bedroom-gable"]')
+    assert told not in figure.text
+    browser.run(ASSUME, "bedroom-gable", {"emissivity": 0.8})
+    assert told in figure.text
+    browser.run("const s = Live.sheets.get('bedroom-gable'); s.reset(); await s.open();")
+    assert told not in figure.text

@@ -9,7 +9,7 @@ from markupsafe import Markup
 
 from irsurvey import report
 from irsurvey.model import ComponentReport, FrameTask, Report
-from irsurvey.report import review
+from irsurvey.report import live, review
 from irsurvey.report.review.standing import reviewable
 
 REPORT_CSS = Path(report.__file__).parent / "templates" / "report.css"
@@ -46,13 +46,15 @@ def page(
         )
         sheet = Markup('<article class="card sheet"><h2>{}</h2>{}{}</article>')
         body.append(sheet.format(frame.id, sections, desk.rest(frame, with_section)))
-    policy = f"default-src 'none'; img-src data:; style-src 'unsafe-inline'; script-src {review.script_hash()}"
+    hashes = f"{live.script_hash()} {review.script_hash()}"
+    policy = f"default-src 'none'; img-src data:; style-src 'unsafe-inline'; script-src {hashes}"
     written = (
         '<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8">'
         f'<meta http-equiv="Content-Security-Policy" content="{policy}">'
         '<meta name="viewport" content="width=device-width, initial-scale=1"><title>Review</title>'
         f"<style>{REPORT_CSS.read_text('utf-8')}\n{review.style()}</style></head><body><main>{''.join(body)}</main>"
         f'<script type="application/json" id="review-data">{desk.data(frames)}</script>'
+        f"<script>{live.script()}</script>"
         f"<script>{review.script() if script is None else script}</script></body></html>"
     )
     return _CONTROLS.sub("\ufffd", written)  # as the page of the report does

@@ -24,7 +24,7 @@ def begin(desk: Desk, reviewer: str = "A. Reviewer", date: str = "2026-02-03") -
     """Open the desk and say who reviews."""
     desk.browser.one("#review-desk button").click()
     desk.browser.run(
-        "const [name, date] = document.querySelectorAll('.review-bar input');"
+        "const [name, date] = document.querySelectorAll('.review-who input');"
         "for (const [field, value] of [[name, given[0]], [date, given[1]]])"
         " { field.value = value; field.dispatchEvent(new Event('input')); }",
         reviewer,
@@ -233,7 +233,7 @@ def test_only_what_is_open_hides_what_is_decided_but_not_on_paper(desk: Desk) ->
         desk.browser.driver.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": ""})
     choose(desk, 1, "accepted")
     assert shown[1].is_displayed()  # while one is at it
-    desk.browser.one(".review-bar input[type=text]").click()
+    desk.browser.one(".review-who input[type=text]").click()
     desk.browser.run("await new Promise((done) => setTimeout(done, 20));")
     assert not shown[1].is_displayed()
 

@@ -17,7 +17,7 @@ from irsurvey.report.live.tables import tables
 
 _SCRIPTS = (
     *("physics.js", "frame.js", "shapes.js", "assumptions.js"),  # numbers
-    *("page.js", "painter.js", "drawings.js", "panel.js", "live.js"),  # what is seen of them
+    *("page.js", "scale.js", "painter.js", "drawings.js", "panel.js", "live.js"),  # what is seen of them
     "tables.js",  # the tables of all results
 )
 _MARKUP = str.maketrans({mark: f"\\u{ord(mark):04x}" for mark in "<>&\u2028\u2029"})

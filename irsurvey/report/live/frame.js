@@ -2,6 +2,8 @@
 
 // One frame as the page carries it: its map unpacked, and every number of it under assumptions other than those stored.
 const Frames = (() => {
+  const ALIKE = 5; // temperatures this near are about equally uncertain on one surface [K]
+
   function bytesOf(base64) {
     return Uint8Array.from(atob(base64), (letter) => letter.charCodeAt(0));
   }
@@ -175,7 +177,8 @@ const Frames = (() => {
     const t = pixels.map(([x, y]) => temperatureAt(frame, x, y));
     const measured = t.filter((value) => !Number.isNaN(value));
     const mean = (values) => values.reduce((sum, value) => sum + value, 0) / values.length; // NaN of none
-    const deltas = reference ? pixels.map(([x, y], k) => t[k] - reference.at(x, y)) : null;
+    const level = reference ? pixels.map(([x, y]) => reference.at(x, y)) : null;
+    const deltas = level && level.map((one, k) => t[k] - one);
     return {
       pixels: pixels.length,
       missing: pixels.length - measured.length,
@@ -183,8 +186,28 @@ const Frames = (() => {
       mean: mean(measured),
       max: measured.reduce((one, other) => Math.max(one, other), measured[0] ?? NaN),
       delta: deltas && mean(deltas.filter((value) => !Number.isNaN(value))),
-      along: isLine ? t : null,
+      ...(isLine ? { along: t, level, length: lengthOf(pixels) } : {}),
     };
+  }
+
+  function lengthOf(pixels) {
+    const [[x1, y1], [x2, y2]] = [pixels[0], pixels[pixels.length - 1]];
+    return Math.hypot(x2 - x1, y2 - y1);
+  }
+
+  // What the report is sure of to ± U that is likest a reading: on a surface of the same optics, the nearest in
+  // temperature; null where nothing is alike.
+  function likest(view, t, optics) {
+    const { reference, findings, components } = view.frame.data;
+    const zero = view.frame.shared.constants.zero_celsius;
+    const stated = [...findings, ...components].filter((item) => item.areas && item.expanded)
+      .map((item) => ({ name: item.name, u: item.expanded, t: item.reported.mean_c + zero, parts: item.areas.whole }));
+    if (reference?.expanded) {
+      stated.push({ name: null, u: reference.expanded, t: reference.level, parts: reference.parts });
+    }
+    const away = (one) => Math.abs(one.t - t);
+    return stated.filter((one) => away(one) <= ALIKE && one.parts.every((part) => part.optics === optics))
+      .reduce((best, one) => (best && away(best) <= away(one) ? best : one), null);
   }
 
   // The coldest and the hottest pixel [x, y]; none where nothing has a temperature.
@@ -212,6 +235,6 @@ const Frames = (() => {
 
   return {
     open, under, lookUpOf, temperatureAt, fluxAt, emissivityAt, functional, referenceOf, aroundOf, opticsAt, over,
-    extremes, lost,
+    extremes, lost, likest,
   };
 })();

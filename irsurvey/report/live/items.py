@@ -8,7 +8,7 @@ from typing import Any, Final
 
 import numpy as np
 
-from irsurvey import texts
+from irsurvey import numbers, texts
 from irsurvey.assess.electrical import OF_TWINS, OVER_AIR
 from irsurvey.assess.pv import LEAST_IRRADIANCE, STANDARD_IRRADIANCE, neighbours, sound
 from irsurvey.assess.severity import AGAINST_REFERENCE, AUTOMATIC_REFERENCE, MIRRORS, SATURATED
@@ -16,6 +16,7 @@ from irsurvey.assess.twins import ALL_HOT, NO_TWIN, NORMALISED
 from irsurvey.constants import ZERO_CELSIUS
 from irsurvey.geometry.polygons import mask
 from irsurvey.model import ComponentReport, Estimate, Finding, FrameReport, FrameTask
+from irsurvey.numbers import SI, Style
 from irsurvey.report.labels import component_mark
 from irsurvey.report.live.areas import Json, Pixels, whole_and_spot
 from irsurvey.report.ranking import governing
@@ -33,12 +34,12 @@ _OF_COMPONENTS: Final = (
 Item = Finding | ComponentReport
 
 
-def findings(frame: FrameReport, task: FrameTask, pixels: Pixels) -> list[Json]:
+def findings(frame: FrameReport, task: FrameTask, pixels: Pixels, *, style: Style = SI) -> list[Json]:
     """The findings of a frame in the order of their labels; without areas where one is only a bound."""
-    return [_finding(finding, task, pixels) for finding in frame.findings]
+    return [_finding(finding, task, pixels) | sureness(finding.mean_c, frame, style) for finding in frame.findings]
 
 
-def components(frame: FrameReport, task: FrameTask, pixels: Pixels) -> list[Json]:
+def components(frame: FrameReport, task: FrameTask, pixels: Pixels, *, style: Style = SI) -> list[Json]:
     """The components of a frame in the order of the survey; without areas where one is only a bound."""
     ambient = "ambient_c" if "ambient_c" in frame.inputs else "air_c"
     t_ambient = frame.inputs[ambient].value
@@ -46,8 +47,19 @@ def components(frame: FrameReport, task: FrameTask, pixels: Pixels) -> list[Json
     by_name = {component.name: component for component in frame.components}
     return [
         _component(place, component, by_name, t_ambient, irradiance, task, pixels)
+        | sureness(component.mean_c, frame, style)
         for place, component in enumerate(frame.components, 1)
     ]
+
+
+def sureness(temperature: Estimate | None, frame: FrameReport, style: Style) -> Json:
+    """The expanded uncertainty of a temperature in words, `expanded`; None where numbers may not be relied on."""
+    u = temperature.u if temperature and frame.claim == "quantitative" else None
+    if u is None or not isfinite(u) or u <= 0:
+        return {"expanded": None}
+    to = numbers.difference_scale("mean_c", style)
+    expanded = numbers.number(numbers.COVERAGE_FACTOR * u * to.factor, 2, style=style)
+    return {"expanded": f"±\u00a0{numbers.with_symbol(expanded, to.symbol)}"}
 
 
 def _finding(finding: Finding, task: FrameTask, pixels: Pixels) -> Json:
@@ -116,6 +128,7 @@ def _common(item: Item, quantities: tuple[str, ...]) -> Json:
         ],
         "class": None if told is None else told.class_,
         "urgency": item.urgency,
+        "cleared": item.outcome == "cleared",
         "by": _judged_by(item),
         "unconfirmed": AUTOMATIC_REFERENCE in item.flags,
         "mirrors": MIRRORS in item.flags,

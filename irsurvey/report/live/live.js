@@ -8,7 +8,8 @@ const Live = (() => {
   const TOOLS = ["read", "box", "outline", "line"];
   const STEPS = { ArrowLeft: [-1, 0], ArrowRight: [1, 0], ArrowUp: [0, -1], ArrowDown: [0, 1] };
 
-  const { shared, say, shown, el, labelled, markInvalid } = Page;
+  const { shared, say, shown, rounded, el, labelled, numberField, numberOf, written, markInvalid } = Page;
+  const FIGURES = 3; // of a heat flux: its film coefficient is not known to more
   const sheets = new Map();
 
   function clamp(value, low, high) {
@@ -20,7 +21,9 @@ const Live = (() => {
       this.data = data;
       this.image = image;
       this.tool = "read";
-      this.cursor = [data.columns >> 1, data.rows >> 1];
+      this.cursor = [data.columns >> 1, data.rows >> 1]; // where the keyboard begins; marked once somebody points
+      this.isOver = false; // the pointer, over the map
+      this.kept = null; // where the reader pressed, or went by keys: read on when the pointer is gone
       this.points = [];
       this.isClosed = false;
       this.range = [data.picture.low, data.picture.high];
@@ -47,10 +50,12 @@ const Live = (() => {
       this.panel = new Panels.Panel(this.data, () => this.refresh());
       this.hint = el("p", { class: "live-hint", id: hint });
       this.readout = el("p", { class: "live-readout" });
+      this.sure = el("p", { class: "live-sure" });
+      this.scale = new Scales.Narrow();
       this.spoken = el("p", { class: "live-spoken", "aria-live": "polite" });
       this.profile = el("div", { class: "live-profile" });
       this.tools = el("section", { class: "live", "aria-label": `${say("tools")}: ${id}` },
-        this.toolBar(), this.hint, this.readout, this.profile, this.colourBar(), this.panel.node, this.spoken);
+        this.scale.node, this.toolBar(), this.hint, this.readout, this.sure, this.profile, this.colourBar(), this.panel.node, this.spoken);
       stage.after(this.tools);
       this.listen();
       this.chooseTool("read");
@@ -75,13 +80,11 @@ const Live = (() => {
     colourBar() {
       const { factor, shift, symbol } = shared.show.temperature;
       this.toShown = (kelvin) => (kelvin * factor + shift).toFixed(1);
-      this.toKelvin = (text) => (Number(text) - shift) / factor;
+      this.toKelvin = (number) => (number - shift) / factor;
       const options = Object.keys(shared.colormaps).map((name) => el("option", { value: name }, name));
       this.select = el("select", { on: { change: () => this.recolour() } }, ...options);
-      this.ends = this.range.map((end) => el("input", {
-        type: "number", step: "0.1", value: this.toShown(end),
-        on: { input: () => this.rerange(this.ends, this.sliders) },
-      }));
+      this.ends = this.range.map((end) =>
+        numberField(written(this.toShown(end)), 0.1, () => this.rerange(this.ends, this.sliders)));
       this.sliders = ["slide_lowest", "slide_highest"].map((key) => el("input", {
         type: "range", step: "0.1", "aria-label": say(key), on: { input: () => this.rerange(this.sliders, this.ends) },
       }));
@@ -98,13 +101,15 @@ const Live = (() => {
       act("pointermove", this.moved);
       act("pointerup", this.released);
       act("pointercancel", this.released);
+      act("pointerleave", () => this.pointAt(null));
       this.ink.addEventListener("keydown", (event) => {
         const key = event.key === " " ? "Enter" : event.key;
         if (!(key in STEPS) && !["Enter", "Escape"].includes(key)) return;
         event.preventDefault();
         this.open().then(() => this.typed(key, event.shiftKey));
       });
-      this.ink.addEventListener("focus", () => this.open());
+      act("focus", () => this.tell());
+      act("blur", () => this.tell());
       this.tools.addEventListener("focusin", () => this.open());
       new IntersectionObserver((seen, observer) => {
         if (!seen.some((entry) => entry.isIntersecting)) return;
@@ -125,7 +130,7 @@ const Live = (() => {
         this.sliders.forEach((slider, end) => {
           slider.min = this.toShown(Math.min(frame.levels[1], this.range[0]) - 1);
           slider.max = this.toShown(Math.max(frame.levels[last], this.range[1]) + 1);
-          slider.value = this.ends[end].value;
+          slider.value = this.toShown(this.range[end]);
         });
         this.look();
       });
@@ -150,7 +155,9 @@ const Live = (() => {
         this.spoken.textContent = this.panel.banner.textContent;
       }
       this.colours.hidden = !this.isRepainted();
-      if (this.isRepainted()) this.painter.paint(this.frame, this.range, this.colormap);
+      const beyond = Scales.beyondOf(this.frame, this.range);
+      if (this.isRepainted()) this.painter.paint(this.frame, this.range, beyond, this.colormap);
+      this.scale.show(this.range, beyond, Painting.packedColours(shared.colormaps[this.colormap]));
       this.tell();
     }
 
@@ -186,6 +193,7 @@ const Live = (() => {
     clear() {
       this.points = [];
       this.isClosed = false;
+      this.kept = null;
       this.tell();
     }
 
@@ -199,14 +207,14 @@ const Live = (() => {
       [this.colormap] = Object.keys(shared.colormaps);
       this.select.value = this.colormap;
       this.range = [this.data.picture.low, this.data.picture.high];
-      for (const inputs of [this.ends, this.sliders]) {
-        inputs.forEach((input, end) => {
-          input.value = this.toShown(this.range[end]);
-          markInvalid(input, false);
-        });
-      }
+      this.ends.forEach((input, end) => {
+        input.value = written(this.toShown(this.range[end]));
+        this.sliders[end].value = this.toShown(this.range[end]);
+        markInvalid(input, false);
+      });
       this.points = [];
       this.isClosed = false;
+      this.kept = null;
       this.spoken.textContent = "";
       this.refresh();
     }
@@ -217,12 +225,14 @@ const Live = (() => {
     }
 
     rerange(changed, others) {
-      const wanted = changed.map((input) => this.toKelvin(input.value));
-      const isGood = changed.every((input) => input.value !== "") && wanted[0] < wanted[1];
+      const numbers = changed.map((input) => numberOf(input.value));
+      const isGood = numbers[0] < numbers[1];
       this.ends.forEach((input) => markInvalid(input, !isGood));
       if (!isGood) return;
-      this.range = wanted;
-      others.forEach((input, end) => { input.value = changed[end].value; });
+      this.range = numbers.map(this.toKelvin);
+      others.forEach((input, end) => {
+        input.value = others === this.ends ? written(numbers[end].toFixed(1)) : numbers[end];
+      });
       this.refresh();
     }
 
@@ -240,8 +250,9 @@ const Live = (() => {
       const pixel = this.pixelOf(event);
       if (!pixel || event.button > 0) return;
       this.cursor = pixel;
-      if (this.tool === "outline") this.addCorner(pixel);
-      else if (this.tool !== "read") {
+      if (this.tool === "read") this.kept = pixel;
+      else if (this.tool === "outline") this.addCorner(pixel);
+      else {
         const isSecond = this.points.length === 1;
         this.points = isSecond ? [this.points[0], pixel] : [pixel];
         this.isClosed = isSecond;
@@ -261,10 +272,26 @@ const Live = (() => {
 
     moved(event) {
       const pixel = this.pixelOf(event, Boolean(this.pressedAt));
-      if (this.pressedAt) this.points = [this.points[0], pixel];
-      else if (this.tool === "read" && pixel) this.cursor = pixel;
-      else return;
+      if (!this.pressedAt) {
+        this.pointAt(pixel);
+        return;
+      }
+      this.points = [this.points[0], pixel];
       this.tell();
+    }
+
+    // Read where the pointer is; where it is over no pixel of the map, what was kept.
+    pointAt(pixel) {
+      if (this.tool !== "read") return;
+      this.isOver = pixel !== null;
+      this.cursor = pixel ?? this.kept ?? this.cursor;
+      this.tell();
+    }
+
+    // Read at a pixel until something else is read.
+    keep(pixel) {
+      this.kept = pixel;
+      this.pointAt(null);
     }
 
     released(event) {
@@ -291,6 +318,7 @@ const Live = (() => {
       const { columns, rows } = this.data;
       this.cursor = [clamp(this.cursor[0] + dx, 0, columns - 1), clamp(this.cursor[1] + dy, 0, rows - 1)];
       if (key === "Escape") this.clear();
+      else if (this.tool === "read") this.kept = this.cursor;
       if (key === "Enter" && this.tool === "outline") this.addCorner(this.cursor);
       else if (key === "Enter" && this.tool !== "read") {
         this.isClosed = this.points.length === 1;
@@ -301,11 +329,15 @@ const Live = (() => {
 
     // ---- readings
 
-    // What is read where the reader points or has drawn, in SI units; null where nothing is drawn yet.
+    // What is read where the reader points or has drawn, in SI units; null where nobody points and nothing is drawn.
     reading() {
-      if (this.tool === "read") return { at: this.cursor, ...this.readingAt(this.cursor) };
+      if (this.tool === "read") return this.isPointed() ? { at: this.cursor, ...this.readingAt(this.cursor) } : null;
       const pixels = this.pixels();
       return pixels.length ? Frames.over(this.frame, this.reference, pixels, this.tool === "line") : null;
+    }
+
+    isPointed() {
+      return this.isOver || this.kept !== null || document.activeElement === this.ink;
     }
 
     pixels() {
@@ -333,12 +365,15 @@ const Live = (() => {
       const told = words && !this.view.isStored ? `${say("what_if")}: ${words}` : words;
       this.readout.textContent = told || "\u00a0";
       if (isSpoken) this.spoken.textContent = told || say("at", { x: cursor[0], y: cursor[1] });
-      this.profile.replaceChildren(...(reading?.along ? [Drawings.profile(reading)] : []));
-      const isMarked = tool === "read" || !isClosed;
-      const mark = isMarked ? cursor : null;
+      this.sure.textContent = (reading?.at && this.wordsOfSureness(reading)) || "\u00a0";
+      this.sure.hidden = tool !== "read";
+      const hasProfile = reading?.along && reading.missing < reading.pixels;
+      this.profile.replaceChildren(...(hasProfile ? [Drawings.profile(reading)] : []));
+      const isDrawing = !isClosed && (points.length > 0 || document.activeElement === this.ink);
+      const mark = (tool === "read" ? this.isPointed() : isDrawing) ? cursor : null;
       Drawings.drawShape(this.ink, this.data.picture.factor, { tool, points, isClosed, cursor: mark });
       this.closeButton.hidden = tool !== "outline" || isClosed || points.length < 3;
-      this.clearButton.hidden = !points.length;
+      this.clearButton.hidden = !points.length && !this.kept;
       this.backButton.disabled = !this.isRepainted() && !points.length;
     }
 
@@ -347,9 +382,18 @@ const Live = (() => {
       if (Number.isNaN(temperature)) return `${say("not_measurable")} · ${place}`;
       const parts = [shown("temperature", temperature)];
       parts.push(delta === null ? say("no_reference") : say("to_reference", { delta: shown("delta", delta) }));
-      if (!Number.isNaN(flux)) parts.push(say("leaving", { flux: shown("flux", flux) }));
+      if (!Number.isNaN(flux)) parts.push(say("leaving", { flux: rounded("flux", flux, FIGURES) }));
       if (reflective) parts.push(say("reflective"));
       return [...parts, place].join(" · ");
+    }
+
+    // How uncertain such a reading is, by what the report says of the likest of its results; under other assumptions,
+    // of shiny surfaces and where nothing is like it, nothing is said.
+    wordsOfSureness({ at: [x, y], temperature, reflective }) {
+      if (!this.view.isStored || reflective) return "";
+      const { frame } = this;
+      const like = Frames.likest(this.view, temperature, Frames.opticsAt(frame, y * frame.data.columns + x));
+      return like ? say("sure", { u: like.u, name: like.name ?? say("the_reference") }) : "";
     }
 
     wordsOfArea({ pixels, missing, min, mean, max, delta, along }) {

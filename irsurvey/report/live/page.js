@@ -18,6 +18,14 @@ const Page = (() => {
     return symbol ? `${typeset(signed)}\u00a0${symbol}` : typeset(signed);
   }
 
+  // A number as people read it, to at most so many significant digits.
+  function rounded(kind, value, digits) {
+    const { factor, shift, places } = shared.show[kind];
+    const number = Number((value * factor + shift).toPrecision(digits));
+    const needed = number === 0 ? 0 : digits - 1 - Math.floor(Math.log10(Math.abs(number)));
+    return shown(kind, (number - shift) / factor, Math.min(Math.max(needed, 0), places));
+  }
+
   function typeset(number) {
     return number.replace("-", "−").replace(".", shared.show.decimal);
   }
@@ -44,10 +52,37 @@ const Page = (() => {
     return el("div", { class: "live-field" }, el("label", { for: input.id }, text), input, ...behind);
   }
 
+  // What was typed as a number: a point and a comma are both understood; NaN where it is none.
+  function numberOf(text) {
+    const plain = text.trim().replace("−", "-").replace(",", ".");
+    return /^[-+]?(\d+\.?\d*|\.\d+)$/.test(plain) ? Number(plain) : NaN;
+  }
+
+  // A number as it stands in a field: with the survey's decimal mark, and a minus as keyboards have it.
+  function written(number) {
+    return String(number).replace(".", shared.show.decimal);
+  }
+
+  // A field for a number, of text so that it can show the survey's decimal mark; the arrow keys step.
+  function numberField(value, step, change) {
+    const input = el("input", { type: "text", inputmode: "decimal", autocomplete: "off", value, on: { input: change } });
+    input.addEventListener("keydown", (event) => {
+      const sign = { ArrowUp: 1, ArrowDown: -1 }[event.key];
+      const now = numberOf(input.value);
+      if (!sign || Number.isNaN(now)) return;
+      event.preventDefault();
+      input.value = written(Number((now + sign * step).toFixed(6)));
+      change();
+    });
+    return input;
+  }
+
   function markInvalid(input, isInvalid) {
     if (isInvalid) input.setAttribute("aria-invalid", "true");
     else input.removeAttribute("aria-invalid");
   }
 
-  return { shared, say, shown, typeset, el, uniqueId, labelled, markInvalid };
+  return {
+    shared, say, shown, rounded, typeset, el, uniqueId, labelled, numberOf, written, numberField, markInvalid,
+  };
 })();

@@ -3,9 +3,8 @@
 // A frame's picture again from its data, in other colours, over another range, or under other assumptions.  What is
 // inked in the picture, outlines and numbers, stays where it is.
 const Painting = (() => {
-  const BAR = { left: 12, right: 28, top: 34, bottom: 10, tick: 5, text: 37 }; // of the colour scale [px]
+  const BAR = { left: 12, right: 28, top: 34, bottom: 10, tick: 5, text: 37, room: 24 }; // of the colour scale [px]
   const INK = "rgb(18, 24, 33)";
-  const TALL = 300; // height from which the scale has room for more numbers
 
   // Colours of a table as they lie in the bytes of an image: red, green, blue, opaque.
   function packedColours(base64) {
@@ -19,7 +18,8 @@ const Painting = (() => {
       Object.assign(this, { data, image, canvas });
     }
 
-    paint(frame, [low, high], colormap) {
+    // `beyond`: whether the frame goes on below and above the range.
+    paint(frame, [low, high], beyond, colormap) {
       const { picture, columns, rows } = this.data;
       const pen = this.canvas.getContext("2d", { willReadFrequently: true });
       const palette = packedColours(Page.shared.colormaps[colormap]);
@@ -40,7 +40,7 @@ const Painting = (() => {
         }
       }
       pen.putImageData(image, 0, 0);
-      this.paintScale(pen, [low, high], palette);
+      this.paintScale(pen, [low, high], beyond, palette);
     }
 
     // The picture with everything but its inks made transparent; empty where it is not the picture that was described.
@@ -59,7 +59,7 @@ const Painting = (() => {
       return data;
     }
 
-    paintScale(pen, [low, high], palette) {
+    paintScale(pen, ends, beyond, palette) {
       const { picture, columns } = this.data;
       const left = columns * picture.factor;
       const rows = picture.height - BAR.top - BAR.bottom;
@@ -76,16 +76,13 @@ const Painting = (() => {
       pen.font = "15px system-ui, sans-serif";
       pen.textBaseline = "middle";
       pen.fillText(Page.shared.show.temperature.symbol, left + BAR.left, BAR.top / 2 - 2);
-      const steps = picture.height > TALL ? 6 : 3;
-      const { factor, shift } = Page.shared.show.temperature;
-      for (let k = 0; k <= steps; k += 1) {
-        const y = BAR.top + (rows - 1) * k / steps;
-        const t = (high - (high - low) * k / steps) * factor + shift;
-        pen.fillRect(left + BAR.right, Math.round(y), BAR.tick, 1);
-        pen.fillText(Page.typeset(t.toFixed(1)), left + BAR.text, Math.min(y, picture.height - 9));
+      for (const { at, text } of Scales.marks(ends, beyond, BAR.room / rows)) {
+        const y = BAR.top + Math.round((rows - 1) * (1 - at));
+        pen.fillRect(left + BAR.right, y, BAR.tick, 1);
+        pen.fillText(text, left + BAR.text, y, picture.width - left - BAR.text);
       }
     }
   }
 
-  return { Painter };
+  return { Painter, packedColours };
 })();

@@ -17,11 +17,11 @@ from irsurvey.analysis.exchange import TOTAL, Surroundings, film_of, radiant_of
 from irsurvey.analysis.inputs import domain, in_si, in_unit, named, shown
 from irsurvey.analysis.surroundings import surroundings
 from irsurvey.constants import ZERO_CELSIUS
-from irsurvey.model import FrameReport, FrameTask, Quantity, Scene
+from irsurvey.model import Estimate, FrameReport, FrameTask, Quantity, Scene
 from irsurvey.numbers import SI, Style
 from irsurvey.report import picture, scale
 from irsurvey.report.live.areas import Pixels, reference
-from irsurvey.report.live.items import components, findings
+from irsurvey.report.live.items import components, findings, sureness
 from irsurvey.report.live.tables import band_key
 
 STEP_K: Final = 0.01
@@ -58,6 +58,7 @@ def payload(frame: FrameReport, task: FrameTask, out: Path, *, style: Style = SI
     scene = scene_of(frame)
     if not set(scene.values()) >= _NEEDED:
         return None
+    follows = _follows(task, scene)
     around = surroundings(task, scene)
     values = {name: np.float64(value) for name, value in scene.values().items()}
     low, high = picture.display_range(t, labels)
@@ -75,17 +76,17 @@ def payload(frame: FrameReport, task: FrameTask, out: Path, *, style: Style = SI
         ],
         "band": band_key(task.camera.band),
         "scene": _scene(scene, task, around, values, optics_names),
-        "follows": _follows(task, scene),
-        "assumptions": _assumptions(frame, scene, optics_names, style),
+        "follows": follows,
+        "assumptions": _assumptions(frame, scene, optics_names, follows, style),
         "around": {
             "air": around.air,
             "radiant": around.radiant[0] if len(around.radiant) == 1 else _FACED,
             "sign": around.sign,
             "film": _film(pixels.t, around, values) if _tells_heat(frame) else _NO_FILM,
         },
-        "reference": reference(pixels, frame, task),
-        "findings": findings(frame, task, pixels),
-        "components": components(frame, task, pixels),
+        "reference": _reference(pixels, frame, task, style),
+        "findings": findings(frame, task, pixels, style=style),
+        "components": components(frame, task, pixels, style=style),
         "picture": {
             "factor": factor,
             "width": t.shape[1] * factor + scale.strip(scale.LEAST_HEIGHT, low, high, (False, False)).shape[1],
@@ -104,6 +105,14 @@ def scene_of(frame: FrameReport) -> Scene:
             for key, entry in frame.inputs.items()
         )
     )
+
+
+def _reference(pixels: Pixels, frame: FrameReport, task: FrameTask, style: Style) -> Json | None:
+    """The reference area, with how uncertain its level is."""
+    found = reference(pixels, frame, task)
+    if found is None or frame.reference is None:
+        return None
+    return found | sureness(Estimate(frame.reference.median_c, frame.reference.u_c), frame, style)
 
 
 def _read(path: Path) -> NDArray[Any]:
@@ -168,7 +177,11 @@ def _follows(task: FrameTask, scene: Scene) -> dict[str, str]:
 
 
 def _assumptions(
-    frame: FrameReport, scene: Scene, optics_names: tuple[tuple[str, str], ...], style: Style
+    frame: FrameReport,
+    scene: Scene,
+    optics_names: tuple[tuple[str, str], ...],
+    follows: dict[str, str],
+    style: Style,
 ) -> list[Json]:
     """The inputs a reader may change, as they are shown: words, unit, limits in that unit, value as reported."""
     used = {name for pair in optics_names for name in pair} | set(_ASSUMED)
@@ -178,10 +191,12 @@ def _assumptions(
         for quantity in scene.quantities
         if quantity.name.partition(":")[0] == base and quantity.name in used
     ]
-    return [_assumption(name, frame, scene, style) for name in names]
+    own = {base for name in names if (base := name.partition(":")[0]) != name and follows.get(name) != base}
+    return [_assumption(name, frame, scene, style, is_of_rest=name in own) for name in names]
 
 
-def _assumption(name: str, frame: FrameReport, scene: Scene, style: Style) -> Json:
+def _assumption(name: str, frame: FrameReport, scene: Scene, style: Style, *, is_of_rest: bool) -> Json:
+    """One input; `is_of_rest`: some parts of the frame have a value of their own, which it does not change."""
     key, factor = shown(name)
     stem = key.partition(":")[0]
     to = numbers.scale(stem, style)
@@ -189,7 +204,7 @@ def _assumption(name: str, frame: FrameReport, scene: Scene, style: Style) -> Js
     least, most = domain(name)
     return {
         "name": name,
-        "label": texts.name(key),
+        "label": texts.tools()["of_the_rest"].format(name=texts.name(key)) if is_of_rest else texts.name(key),
         "unit": to.symbol,
         "factor": factor,
         "shift": shift,

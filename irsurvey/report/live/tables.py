@@ -15,7 +15,7 @@ import numpy as np
 
 from irsurvey import texts
 from irsurvey.analysis.envelope import LIMIT_RESISTANCE
-from irsurvey.assess.criteria import Criterion, criteria
+from irsurvey.assess.criteria import URGENCIES, Criterion, criteria
 from irsurvey.assess.severity import LEAST_EMISSIVITY
 from irsurvey.constants import STANDARD_PRESSURE, STEFAN_BOLTZMANN, ZERO_CELSIUS
 from irsurvey.heat.humid_air import GAS_CONSTANT
@@ -44,6 +44,7 @@ def tables(report: Report, tasks: tuple[FrameTask, ...]) -> dict[str, Any]:
         "inks": b64encode(palette(COLORMAP)[3 * LEVELS :]).decode(),
         "show": _show(asked(report)),
         "words": texts.tools(),
+        "urgencies": _urgencies(),
     }
 
 
@@ -130,6 +131,12 @@ def _criterion(criterion: Criterion) -> dict[str, Any]:
             for kind in criterion.classes
         ],
     }
+
+
+def _urgencies() -> dict[str, str]:
+    """What each urgency asks for; "none": of what cannot be classed; "open": of 0 where nothing is cleared."""
+    asked_for = {str(level): texts.urgency(level) for level in URGENCIES}
+    return {**asked_for, "none": texts.urgency(None), "open": texts.to_do(0, "not cleared")}
 
 
 def _show(style: Style) -> dict[str, Any]:

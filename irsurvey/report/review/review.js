@@ -1,31 +1,20 @@
 "use strict";
 
 // The reviewer's desk: a form for each result, kept in this browser while one works, exported as one file.
-// Texts of people only ever become the text or the value of an element.
+// Texts of people only ever become the text or the value of an element.  Page is that of the page's tools.
 (() => {
+  const { el } = Page;
   const CHOICES = [["", "keep"], ["accepted", "accept"], ["rejected", "reject"], ["reclassified", "reclassify"], ["open", "reopen"]];
   const COUNTED = ["open", "accepted", "rejected", "reclassified"];
+  const EXPLAINED = ["rejected", "reclassified"]; // decisions that need a reason
   let data;
-  let serial = 0;
 
   function say(key, values = {}) {
     return data.words[key].replace(/\{(\w+)\}/g, (_, name) => values[name]);
   }
 
-  function el(tag, attributes = {}, ...children) {
-    const node = document.createElement(tag);
-    for (const [name, value] of Object.entries(attributes)) {
-      if (name === "on") Object.entries(value).forEach(([event, act]) => node.addEventListener(event, act));
-      else if (value === true) node.setAttribute(name, "");
-      else if (value !== false && value !== null) node.setAttribute(name, value);
-    }
-    node.append(...children);
-    return node;
-  }
-
   function labelled(text, input) {
-    serial += 1;
-    input.id = `review-${serial}`;
+    input.id = Page.uniqueId();
     return el("div", { class: "review-field" }, el("label", { for: input.id }, text), input);
   }
 
@@ -136,20 +125,20 @@
       this.date.value = typeof this.who.date === "string" ? this.who.date : todayHere();
       this.onlyOpen = el("input", { type: "checkbox", on: { change: () => this.filter() } });
       this.counted = el("p", { class: "review-counts" });
+      this.tally = el("p", { class: "review-tally" });
       this.message = el("p", { class: "review-message", role: "status" });
-      this.ofForms = el("div", { class: "review-field" }, labelled(say("only_open"), this.onlyOpen), el("button", { type: "button", on: { click: () => this.next() } }, say("go")));
+      this.ofForms = el("div", { class: "review-field review-steps" }, labelled(say("only_open"), this.onlyOpen), el("button", { type: "button", on: { click: () => this.next() } }, say("go")));
       this.bar = el(
         "div",
         { class: "review-bar", role: "group", "aria-label": say("review") },
-        labelled(say("reviewer"), this.reviewer),
-        labelled(say("date"), this.date),
         this.counted,
         this.ofForms,
         el("button", { type: "button", class: "review-main", on: { click: () => this.export() } }, say("export")),
         this.message,
       );
       this.note = el("p", { class: "review-note" }, say("about"));
-      place.append(this.toggle, this.note);
+      this.signed = el("div", { class: "review-who" }, labelled(say("reviewer"), this.reviewer), labelled(say("date"), this.date), this.tally);
+      place.append(this.toggle, this.note, this.signed);
       place.closest("#review").after(this.bar);
     }
 
@@ -158,8 +147,7 @@
       document.documentElement.classList.toggle("reviewing", isOn);
       this.toggle.textContent = say(isOn ? "end" : "begin");
       this.toggle.setAttribute("aria-expanded", String(isOn));
-      this.bar.hidden = !isOn;
-      this.note.hidden = !isOn;
+      for (const node of [this.bar, this.note, this.signed]) node.hidden = !isOn;
       this.keepWho();
       this.filter();
     }
@@ -171,7 +159,8 @@
     }
 
     warn() {
-      this.note.textContent = this.store.lasts ? say("about") : `${say("about")} ${say("memory")}`;
+      const told = [say("about"), this.store.lasts ? "" : say("memory"), this.then ?? ""];
+      this.note.textContent = told.filter(Boolean).join(" ");
     }
 
     // Where a result stands: what is decided here, else what the report says.
@@ -189,9 +178,11 @@
       const found = { open: 0, accepted: 0, rejected: 0, reclassified: 0 };
       for (const result of this.results.values()) found[this.isOpen(result) ? "open" : this.status(result)] += 1;
       const elsewhere = [...this.store.decisions().keys()].filter((key) => !this.results.has(key)).length;
-      const parts = COUNTED.map((status) => el("span", { "data-count": status }, el("b", {}, String(found[status])), ` ${say(status)}`));
-      if (elsewhere) parts.push(el("span", {}, say("elsewhere", { count: elsewhere })));
-      this.counted.replaceChildren(...parts);
+      for (const node of [this.counted, this.tally]) {
+        const parts = COUNTED.map((status) => el("span", { "data-count": status }, el("b", {}, String(found[status])), ` ${say(status)}`));
+        if (elsewhere) parts.push(el("span", {}, say("elsewhere", { count: elsewhere })));
+        node.replaceChildren(...parts);
+      }
       this.warn();
     }
 
@@ -246,7 +237,11 @@
       const link = el("a", { href: URL.createObjectURL(blob), download: file });
       link.click();
       setTimeout(() => URL.revokeObjectURL(link.href), 60000);
-      this.message.textContent = say("exported", { count: decisions.length, file });
+      const bare = decisions.filter(lacksReason).length;
+      const told = [say("exported", { count: decisions.length, file }), bare ? say(bare === 1 ? "bare_one" : "bare", { count: bare }) : ""];
+      this.then = say("then", { file });
+      this.message.replaceChildren(told.filter(Boolean).join(" "), el("span", { class: "review-next" }, ` ${this.then}`));
+      this.warn();
     }
 
     // What keeps the decisions from being exported, in words, and the field that would mend it.
@@ -273,6 +268,10 @@
     return kept.decision === "reclassified" && class_ === null && urgency === null;
   }
 
+  function lacksReason({ decision, comment }) {
+    return EXPLAINED.includes(decision) && !comment.trim();
+  }
+
   function exported(kept) {
     return kept.decision || "commented";
   }
@@ -291,14 +290,14 @@
       this.result = result;
       this.section = place.closest(".review-one, .result") ?? place;
       const kept = sound(desk.store.get(`key/${result.key}`));
-      serial += 1;
-      const group = `review-group-${serial}`;
+      const group = Page.uniqueId();
       const choices = CHOICES.filter(([decision]) => decision !== "open" || result.decided);
       this.radios = choices.map(([decision]) => el("input", { type: "radio", name: group, value: decision, on: { change: () => this.keep() } }));
       this.select = this.classes();
       this.select.addEventListener("change", () => this.keep());
       this.given = labelled(say("new_class", { name: result.id }), this.select);
       this.comment = el("textarea", { rows: 2, dir: "auto", maxlength: data.longest, on: { input: () => this.keep() } });
+      this.why = el("p", { class: "review-why", role: "status" });
       this.mine = el("p", { class: "review-mine", dir: "auto" });
       this.node = el(
         "fieldset",
@@ -307,6 +306,7 @@
         el("div", { class: "review-choices" }, ...choices.map(([, word], k) => el("label", {}, this.radios[k], ` ${say(word)}`))),
         this.given,
         labelled(say("comment"), this.comment),
+        this.why,
       );
       this.node.addEventListener("focusout", (event) => {
         if (!this.node.contains(event.relatedTarget)) setTimeout(() => desk.filter());
@@ -363,6 +363,8 @@
     show() {
       const kept = sound(this.desk.store.get(`key/${this.result.key}`));
       this.given.hidden = this.decision !== "reclassified";
+      const why = kept && lacksReason(kept) ? say("why") : "";
+      if (this.why.textContent !== why) this.why.textContent = why; // said once, not at every letter
       this.mine.textContent = "";
       if (!kept) return;
       const option = this.options[this.select.selectedIndex];
