@@ -52,7 +52,7 @@ MOST_ROWS = 500
 MOST_PICTURED = 60
 """Parts of a repair list with their pictures in a report of many files: the first."""
 
-_SMALL_SIDES = ((500, 240), (2000, 120))
+_SMALL_SIDES = ((IN_ONE_FILE, 200), (500, 240), (2000, 120))
 """Frames up to which → longer side [px] of their small pictures, so that a report of many files stays below 20 MB."""
 _MODULES = {
     "n": numbers,
@@ -135,7 +135,7 @@ class _Pages:
         seasons = season_table.tables(report, style=style)
         listed = {(item.frame, item.key) for item in report.repairs}
         standing = texts.cautions_for(report.frames, has_season=bool(report.seasons))
-        side = _small_side(len(report.frames)) if self.is_split else 0
+        side = _small_side(len(report.frames))
         return self._rendered(
             "report.html.j2",
             Links(self.is_split),

@@ -70,11 +70,14 @@ def hostile(record: Any, text: str) -> Any:
     return record
 
 
+INSIDE = "#", "data:image/png;base64,", "data:image/jpeg;base64,"
+
+
 def test_nothing_outside_the_file_is_asked_for(shown_page: Page) -> None:
     for tag, attributes in shown_page.elements:
         for name in ("src", "href", "srcset", "poster", "data", "action", "background"):
             value = attributes.get(name)
-            assert value is None or value.startswith(("#", "data:image/png;base64,")), (tag, name, value)
+            assert value is None or value.startswith(INSIDE), (tag, name, value)
     assert not shown_page.all("link", "iframe", "object", "embed", "base", "form")
     assert {script.get("src") for script in shown_page.all("script")} == {None}
 
@@ -113,10 +116,16 @@ def test_every_tag_that_opens_closes(shown_page: Page) -> None:
     assert shown_page.open == []
 
 
+KINDS = "jpeg", "png"  # of the small pictures in the map of frames, and of those on the sheets
+
+
 def test_the_page_can_be_heard(report: Report, shown_page: Page) -> None:
     # WCAG 2.2: 3.1.1 language of page, 1.1.1 text alternatives, 1.3.1 info and relationships, 2.4.1 bypass blocks
     assert shown_page.all("html") == [{"lang": "en"}]
-    pictures = shown_page.all("img")
+    every = shown_page.all("img")
+    small, pictures = ([one for one in every if f"image/{kind}" in (one["src"] or "")] for kind in KINDS)
+    seen = [frame.id for frame in report.frames if frame.status != "failed"]
+    assert [one["alt"] for one in small] == [f"Thermal picture of frame {id_}" for id_ in seen]
     change = pictures.pop(1)
     assert (change["alt"] or "").startswith("Change of surface temperature from frame F02 to frame F01, colour scale")
     for frame, picture in zip((report.frames[0], report.frames[1], report.frames[3]), pictures, strict=True):
@@ -452,7 +461,7 @@ def test_whatever_is_written_into_a_text_is_shown_as_text(
     for tag, attributes in attacked_page.elements:
         assert not [name for name in attributes if name.startswith("on")], tag
         for name in ("src", "href"):
-            assert (attributes.get(name) or "#").startswith(("#", "data:image/png;base64,"))
+            assert (attributes.get(name) or "#").startswith(INSIDE)
 
 
 def test_a_long_text_does_not_push_the_summary_off_its_page(
