@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from string import Formatter
 
 from irsurvey import numbers, texts
@@ -40,15 +41,22 @@ _MARK = Box(PAPER, (18, 24, 33), square=True)
 _DARK_MARK = Box((18, 24, 33), (18, 24, 33), square=True)
 
 
-def chip(words: str, kind: str = "") -> Run:
-    """Words in a box."""
+def chip(words: str, kind: str = "", *, aside: bool = False) -> Run:
+    """Words in a box; of what calls for nothing here, its outline alone."""
     box, ink = _CHIPS[kind]
+    if aside:
+        return Run(words, Face(_CHIP_SIZE), box=replace(box, fill=PAPER))
     return Run(words, Face(_CHIP_SIZE, "B" if kind == "u4" else "", ink), box=box)
 
 
-def urgency(level: int | None) -> Run:
+def urgency(level: int | None, *, aside: bool = False) -> Run:
     """What an urgency asks for."""
-    return chip(texts.urgency(level), "ux" if level is None else f"u{level}")
+    return chip(texts.urgency(level), "ux" if level is None else f"u{level}", aside=aside)
+
+
+def decides(words: str) -> Run:
+    """Marks the assessment that decides."""
+    return Run(words, Face(_CHIP_SIZE, "B", _WHITE), box=Box(DEEP, DEEP, square=True))
 
 
 def asks(level: int | None, outcome: str) -> Run:
