@@ -8,9 +8,11 @@ from pathlib import Path
 
 import pytest
 from pypdf import PdfReader
-from report.pages import Page
+from report.pages import Page, section
 
-from irsurvey.model import Assessment, FrameTask, Report
+from irsurvey.model import Assessment, ConditionCheck, FrameTask, Report
+from irsurvey.numbers import Style
+from irsurvey.report import condition_rows
 from irsurvey.report.html import page
 from irsurvey.report.pdf import write
 from irsurvey.report.pdf.parts import urgency
@@ -61,3 +63,41 @@ def test_what_does_not_decide_stands_below_what_does_and_is_an_outline(
     filled, outline = urgency(2), urgency(2, aside=True)
     assert filled.box
     assert outline.box == replace(filled.box, fill=PAPER) != filled.box
+
+
+def bounds(*requirements: str, verdict: str = "met", check: str = "air difference") -> tuple[ConditionCheck, ...]:
+    return tuple(ConditionCheck("east", check, one, 20.0, verdict, "invented [M]") for one in requirements)
+
+
+def test_bounds_of_several_elements_are_one_row_and_an_unmet_one_is_another() -> None:
+    review = bounds("≥ 3/U = 14.3 K", "≥ 3/U = 8.57 K", "≥ 3/U = 1.07 K") + bounds("≥ 3/U = 25 K", verdict="not met")
+    required = [(row.is_met, row.check.requirement, row.groups) for row in condition_rows.rows(review)]
+    assert required == [(False, "≥ 3/U = 25 K", "east"), (True, "≥ 3/U = 1.07 to 14.3 K", "east")]
+    us = Style(units="us", decimal_comma=True)
+    assert condition_rows.rows(review, style=us)[1].check.requirement == "≥ 1,93 to 25,7\u00a0°F"
+    apart = bounds("≥ 5 K", "≥ 2 K") + bounds("≥ 3 τ = 2 h") + bounds("≥ 3 τ = 6 h", check="steady air")
+    assert len(condition_rows.rows(apart)) == 4
+
+
+def test_what_is_met_is_folded_away_on_the_page_and_small_on_paper(report: Report, tasks: Tasks, tmp_path: Path) -> None:
+    review = (*bounds("≥ 10 K"), *bounds("≤ 5 m/s", verdict="not met", check="wind"))
+    shown = replace(report, conditions_review=review)
+    html = page(shown, tasks, tmp_path)
+    told = section(html, "conditions")
+    folded = re.search(r'<details class="folded met">.*?</details>', html, re.DOTALL)
+    assert folded
+    assert "Requirements that are met: 1" in folded[0]
+    assert "air difference" in folded[0]
+    assert "wind" not in folded[0]
+    assert "wind east ≤ 5 m/s" in told.text
+    paper = on_paper(shown, tasks, tmp_path)
+    assert paper.index(bare("wind east ≤ 5 m/s")) < paper.index(bare("Requirements that are met: 1"))
+    assert paper.index(bare("Requirements that are met: 1")) < paper.index(bare("air difference east ≥ 10 K"))
+
+
+def test_the_marks_behind_sources_are_explained(report: Report, tasks: Tasks, tmp_path: Path) -> None:
+    told = Page(page(report, tasks, tmp_path)).text
+    paper = on_paper(report, tasks, tmp_path)
+    for mark in ("[P] published", "[S] as a secondary", "[M] from memory", "[C] computed", "[house] a rule of our own"):
+        assert mark in told
+        assert bare(mark) in paper

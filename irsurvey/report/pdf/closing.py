@@ -47,6 +47,7 @@ def cautions(story: Story, layout: Layout) -> None:
         *bullets((text(caution) for caution in story.cautions), gap=1.4),
         *heading(say("how_numbers_read")),
         *paragraph(text(explained.numbers_how(style=story.style))),
+        *paragraph(text(say("marks"), NOTE)),
         *paragraph(text(say("substitute", box=MISSING), NOTE)),
         *paragraph(text(say(explained.beside_files(style=story.style), files=_files(story)), NOTE)),
     ]

@@ -7,7 +7,7 @@ from irsurvey.model import ComponentReport, Finding
 from irsurvey.numbers import Style
 from irsurvey.report import condition_rows, results
 from irsurvey.report.html import SUMMARY_LENGTH
-from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, text
+from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, space, text
 from irsurvey.report.pdf.layout import Entry, Layout, Piece
 from irsurvey.report.pdf.parts import (
     asked_for,
@@ -53,23 +53,34 @@ def overview(story: Story, layout: Layout) -> None:
 
 
 def _conditions(story: Story) -> list[Piece]:
-    rows: list[list[Runs]] = []
-    for row in condition_rows.rows(story.report.conditions_review, style=story.style):
-        check = row.check
-        recorded = say("to_record", what=row.to_record) if row.to_record else row.recorded
-        rows.append(
-            [
-                text(check.check, SMALL_STRONG),
-                text(short(row.groups, 400) or numbers.NOTHING, SMALL),
-                text(unbroken(check.requirement) if len(check.requirement) < _BRIEF else check.requirement, SMALL),
-                text(recorded, SMALL),
-                (chip(texts.condition(check.verdict), "ok" if check.verdict == "met" else "weak"),),
-                text(row.leaves or numbers.NOTHING, SMALL),
-                text(check.source, Face(6.4, ink=NOTE.ink)),
-            ]
-        )
-    heads = [Head(say(key)) for key in ("condition", "groups", "required", "recorded", "verdict", "leaves", "source")]
-    return table(heads, rows, caption=text(say("conditions_caption"), NOTE)) if rows else []
+    """What is not met or not recorded; then, in small rows, what is met."""
+    rows = condition_rows.rows(story.report.conditions_review, style=story.style)
+    pieces: list[Piece] = []
+    for is_met in (False, True):
+        same = [row for row in rows if row.is_met == is_met]
+        asked = ("condition", "groups", "required", "recorded", *(() if is_met else ("verdict", "leaves")), "source")
+        caption = say("conditions_met", count=len(same)) if is_met else say("conditions_caption")
+        if same:
+            pieces += [space(3.0)] if pieces else []
+            cells = [_requirement(row) for row in same]
+            heads = [Head(say(key)) for key in asked]
+            pieces += table(heads, cells, caption=text(caption, NOTE), dense=is_met)
+    return [*pieces, *paragraph(text(say("marks"), NOTE), gap=2.0)] if pieces else []
+
+
+def _requirement(row: condition_rows.Row) -> list[Runs]:
+    check, face, strong = row.check, SMALL, SMALL_STRONG
+    verdict: list[Runs] = [(chip(texts.condition(check.verdict), "weak"),), text(row.leaves or numbers.NOTHING, face)]
+    if row.is_met:
+        face, strong, verdict = Face(6.6), Face(6.6, "B"), []
+    return [
+        text(check.check, strong),
+        text(short(row.groups, 400) or numbers.NOTHING, face),
+        text(unbroken(check.requirement) if len(check.requirement) < _BRIEF else check.requirement, face),
+        text(say("to_record", what=row.to_record) if row.to_record else row.recorded, face),
+        *verdict,
+        text(check.source, Face(6.4, ink=NOTE.ink)),
+    ]
 
 
 def _anomalies(story: Story) -> list[Piece]:
