@@ -24,6 +24,8 @@ _OF_SPOT = (
     *("delta_neighbours_k", "above_limit_k", "above_allowed_k"),
 )
 """Numbers that a spot too small, or beyond the range, makes a bound."""
+_NO_DIFFERENCE = Estimate(0.0, 0.0)
+_COLUMNS = ("load_a", "max_c", "mean_c", "delta_similar_k", "delta_ambient_k", "at_rated_load")
 _NO_CHANCE = 1e-9
 _NEAR_EDGE = 0.975
 """A class less probable than that has an edge within about U of the value: Φ(2) = 0.977."""
@@ -86,9 +88,27 @@ def weighed(assessments: tuple[Assessment, ...]) -> tuple[Weighed, ...]:
 
 def reading(item: Item, key: str, *, unit: bool = True, style: Style = SI) -> str:
     """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
+    if key == "delta_similar_k" and is_coolest(item):
+        return say("is_the_reference")
     estimate: Estimate | None = getattr(item, key)
     text = numbers.measured(estimate, key, unit=unit, style=style)
     return text if estimate is None or text == numbers.NOTHING else bounded(item, key, text)
+
+
+def is_coolest(item: Item) -> bool:
+    """Whether it is the twin that all others of its group are held against: its own difference is 0 by definition."""
+    return isinstance(item, ComponentReport) and item.similar_to is None and item.delta_similar_k == _NO_DIFFERENCE
+
+
+def columns(components: tuple[ComponentReport, ...]) -> tuple[str, ...]:
+    """What a table of components has a column for: whatever one of them has at least; no load of a module or arrester.
+
+    Keys of numbers, "load_a" and "at_rated_load"."""
+    told = {
+        "load_a": any(load(item, item.load_a, item.rated_a) for item in components),
+        "at_rated_load": any(rated(item) for item in components),
+    }
+    return tuple(key for key in _COLUMNS if told.get(key, any(getattr(item, key) for item in components)))
 
 
 def bounded(item: Item, key: str, text: str) -> str:

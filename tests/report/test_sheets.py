@@ -12,7 +12,7 @@ from report.pages import Page, section
 
 from irsurvey.model import Assessment, ConditionCheck, FrameTask, Report
 from irsurvey.numbers import Style
-from irsurvey.report import condition_rows
+from irsurvey.report import condition_rows, results
 from irsurvey.report.html import page
 from irsurvey.report.pdf import write
 from irsurvey.report.pdf.parts import urgency
@@ -79,7 +79,9 @@ def test_bounds_of_several_elements_are_one_row_and_an_unmet_one_is_another() ->
     assert len(condition_rows.rows(apart)) == 4
 
 
-def test_what_is_met_is_folded_away_on_the_page_and_small_on_paper(report: Report, tasks: Tasks, tmp_path: Path) -> None:
+def test_what_is_met_is_folded_away_on_the_page_and_small_on_paper(
+    report: Report, tasks: Tasks, tmp_path: Path
+) -> None:
     review = (*bounds("≥ 10 K"), *bounds("≤ 5 m/s", verdict="not met", check="wind"))
     shown = replace(report, conditions_review=review)
     html = page(shown, tasks, tmp_path)
@@ -101,3 +103,39 @@ def test_the_marks_behind_sources_are_explained(report: Report, tasks: Tasks, tm
     for mark in ("[P] published", "[S] as a secondary", "[M] from memory", "[C] computed", "[house] a rule of our own"):
         assert mark in told
         assert bare(mark) in paper
+
+
+def test_the_coolest_twin_is_called_the_reference(switch_room: Report, tasks: Tasks, tmp_path: Path) -> None:
+    coolest, hot, _ = switch_room.frames[0].components
+    assert results.is_coolest(coolest)
+    assert not results.is_coolest(hot)
+    assert not results.is_coolest(replace(coolest, similar_to="phase 2 lug"))  # alike to the last digit, by chance
+    assert results.reading(coolest, "delta_similar_k", unit=False) == "is the reference"
+    item = replace(switch_room.repairs[2], key=coolest.key, delta_k=coolest.delta_similar_k, urgency=0)
+    shown = replace(switch_room, repairs=(item,))
+    html = page(shown, tasks, tmp_path)
+    paper = on_paper(shown, tasks, tmp_path)
+    assert "is the reference" in section(html, "repairs").text
+    assert "is the reference" in section(html, "components").text
+    assert "above a similar part" not in section(html, "repairs").text
+    assert paper.count(bare("is the reference")) == 4  # to look again, all components, its sheet; of neighbours
+
+
+def test_a_table_of_modules_has_no_column_of_loads(switch_room: Report, tasks: Tasks, tmp_path: Path) -> None:
+    board = switch_room.frames[0]
+    modules = tuple(
+        replace(part, load_a=None, rated_a=None, at_rated_load=None, delta_ambient_k=None, flags=())
+        for part in board.components
+    )
+    assert results.columns(modules) == ("max_c", "mean_c", "delta_similar_k")
+    assert results.columns(board.components)[0] == "load_a"
+    assert results.columns(board.components)[-1] == "at_rated_load"
+    shown = replace(switch_room, frames=(replace(board, components=modules, findings=()),), repairs=())
+    sheet = page(shown, tasks, tmp_path).partition('<article id="frame-S01"')[2]
+    table = re.search(r"Components in this frame</h3>.*?</table>", sheet, re.DOTALL)
+    assert table
+    heads = re.sub(r"<[^>]+>", " ", table[0].partition("</thead>")[0])
+    assert "Spot maximum" in heads
+    assert not any(word in heads for word in ("Load", "At rated load", "ambient,"))
+    paper = on_paper(shown, tasks, tmp_path)
+    assert bare("Group, phase Spot maximum, °C") in paper

@@ -59,7 +59,9 @@ def _conditions(story: Story) -> list[Piece]:
     for is_met in (False, True):
         same = [row for row in rows if row.is_met == is_met]
         asked = ("condition", "groups", "required", "recorded", *(() if is_met else ("verdict", "leaves")), "source")
-        caption = say("conditions_met", count=len(same)) if is_met else say("conditions_caption")
+        caption = say("conditions_caption")
+        if is_met:
+            caption = f"{say('conditions_met', count=len(same))}. {say('met_caption')}"
         if same:
             pieces += [space(3.0)] if pieces else []
             cells = [_requirement(row) for row in same]

@@ -55,7 +55,6 @@ _OF_FINDINGS = (
     *("mean_delta_k", "delta_k", "mean_c", "extreme_c", "area_m2"),
     *("heat_flux_w_m2", "reference_heat_flux_w_m2", "excess_heat_w"),
 )
-_OF_COMPONENTS = ("max_c", "mean_c", "delta_similar_k", "delta_ambient_k")
 _PICTURE = 108.0  # mm, width of the thermal picture
 _HIGHEST = 118.0  # mm, of a picture
 _GUTTER = 6.0
@@ -233,36 +232,35 @@ def _findings(frame: FrameReport, shown: tuple[Finding, ...], style: Style) -> l
 def _components(frame: FrameReport, style: Style) -> list[Piece]:
     if not frame.components:
         return []
+    columns = results.columns(frame.components)
+    labels = {key: say(key) for key in columns if key != "at_rated_load"}
+    at_rated = Head(head("delta_similar_k", say("at_rated_over_similar"), style), at_right=True)
     heads = [
         *(Head(say(key)) for key in ("component_head", "group_phase")),
-        Head(head("load_a", say("load_a"), style), at_right=True),
-        *(Head(head(key, say(key), style), at_right=True) for key in _OF_COMPONENTS),
-        Head(head("delta_similar_k", say("at_rated_over_similar"), style), at_right=True),
+        *(Head(head(key, label, style), at_right=True) for key, label in labels.items()),
+        *([at_rated] if "at_rated_load" in columns else []),
         Head(say("outcome")),
     ]
-    return [
-        *heading(say("components_here")),
-        *table(
-            heads,
-            [_component(item, place, style) for place, item in enumerate(frame.components, 1)],
-            caption=text(say("components_here_caption"), NOTE),
-        ),
-    ]
+    rows = [_component(item, place, columns, style) for place, item in enumerate(frame.components, 1)]
+    caption = text(say("components_here_caption"), NOTE)
+    return [*heading(say("components_here")), *table(heads, rows, caption=caption)]
 
 
-def _component(item: ComponentReport, place: int, style: Style) -> list[Runs]:
+def _component(item: ComponentReport, place: int, columns: Sequence[str], style: Style) -> list[Runs]:
     group = f"{item.group or numbers.NOTHING}{f', {item.phase}' if item.phase else ''}"
     load = say("not_recorded")
     if item.load_a is not None:
         load = numbers.number(item.load_a, style=style)
         if item.rated_a is not None:
             load = say("of", load=load, rated=numbers.number(item.rated_a, style=style))
+    own = {
+        "load_a": text(load, SMALL),
+        "at_rated_load": text(results.rated(item, style=style) or numbers.NOTHING, SMALL),
+    }
     return [
-        (mark(item, place), Run(f" {item.name}", SMALL), *found(item)),
+        (mark(item, place), Run(f"\u00a0{item.name}", SMALL), *found(item)),
         text(group, SMALL),
-        text(load, SMALL),
-        *(cell(item, key, style) for key in _OF_COMPONENTS),
-        text(results.rated(item, style=style) or numbers.NOTHING, SMALL),
+        *(own[key] if key in own else cell(item, key, style) for key in columns),
         (outcome(item),),
     ]
 
