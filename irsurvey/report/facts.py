@@ -15,6 +15,8 @@ from irsurvey.texts import say
 Record = Finding | ReferenceReport | RoomAir | StripReport
 
 _YES_OR_NO = ("changed_with_pressure",)
+_LEAST_CUE = 0.01
+"""Of a cue: what is smaller differs from nothing by no more than the pixels do."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,6 +104,8 @@ def cues(evidence: dict[str, float], *, style: Style = SI) -> tuple[Fact, ...]:
 def _cue(key: str, value: float, style: Style) -> str:
     if key in _YES_OR_NO:
         return say("yes") if value else say("no")
+    if 0 < abs(value) < _LEAST_CUE:
+        return f"< {numbers.told(_LEAST_CUE, key, style=style)}"
     return numbers.told(value, key, 2, style=style)
 
 

@@ -80,3 +80,15 @@ def test_the_facts_of_a_repair_stand_in_one_row_of_a_wide_window(
     rows = browser.run(IN_ONE_ROW)
     assert max(facts for facts, _ in rows) == 5
     assert {lines for _, lines in rows} == {1}
+
+
+def test_on_paper_nothing_is_folded_away(browser: Browser, house: Run) -> None:
+    browser.open(house.out / "report.html")
+    folded = "return [...document.querySelectorAll('.folded')].map((one) => one.lastElementChild.checkVisibility())"
+    browser.driver.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "print"})
+    try:
+        on_paper = browser.run(folded)
+    finally:
+        browser.driver.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": ""})
+    assert set(on_paper) == {True}
+    assert set(browser.run(folded)) == {False}

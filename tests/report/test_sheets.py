@@ -12,7 +12,7 @@ from report.pages import Page, section
 
 from irsurvey.model import Assessment, ConditionCheck, FrameTask, Report
 from irsurvey.numbers import Style
-from irsurvey.report import condition_rows, results
+from irsurvey.report import condition_rows, facts, results
 from irsurvey.report.html import page
 from irsurvey.report.pdf import write
 from irsurvey.report.pdf.parts import urgency
@@ -139,3 +139,26 @@ def test_a_table_of_modules_has_no_column_of_loads(switch_room: Report, tasks: T
     assert not any(word in heads for word in ("Load", "At rated load", "ambient,"))
     paper = on_paper(shown, tasks, tmp_path)
     assert bare("Group, phase Spot maximum, °C") in paper
+
+
+@pytest.mark.parametrize(
+    ("value", "told"), [(0.00018, "< 0.01"), (0.0, "0"), (0.0123, "0.012"), (0.98765, "0.99"), (-0.4, "−0.4")]
+)
+def test_a_cue_has_two_digits_and_nothing_below_a_hundredth(value: float, told: str) -> None:
+    assert [cue.text for cue in facts.cues({"raggedness": value})] == [told]
+    comma = facts.cues({"raggedness": value}, style=Style(decimal_comma=True))
+    assert [cue.text for cue in comma] == [told.replace(".", ",")]
+
+
+def test_cues_are_folded_on_the_page_and_a_small_line_on_paper(report: Report, tasks: Tasks, tmp_path: Path) -> None:
+    html = page(report, tasks, tmp_path)
+    folded = re.findall(r'<details class="folded cues">.*?</details>', html, re.DOTALL)
+    found = report.frames[0].findings[0].indication
+    assert found
+    cues = facts.cues(found.evidence)
+    assert cues
+    assert "What it was read from" in folded[0]
+    assert all(bare(f"{cue.name} {cue.text}") in bare(Page(folded[0]).text) for cue in cues)
+    assert "Read from" not in html
+    paper = on_paper(report, tasks, tmp_path)
+    assert bare("Read from: " + "; ".join(f"{cue.name} {cue.text}" for cue in cues)) in paper
