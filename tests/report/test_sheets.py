@@ -9,12 +9,17 @@ from pathlib import Path
 import pytest
 from pypdf import PdfReader
 from report.pages import Page, section
+from report.test_pdf import outline
 
-from irsurvey.model import Assessment, ConditionCheck, FrameTask, Report
+from irsurvey import numbers, texts
+from irsurvey.model import Assessment, ConditionCheck, FrameReport, FrameTask, Input, Maps, Report
 from irsurvey.numbers import Style
-from irsurvey.report import condition_rows, facts, results
+from irsurvey.report import condition_rows, facts, frame_files, results
 from irsurvey.report.html import page
+from irsurvey.report.kept import kept
 from irsurvey.report.pdf import write
+from irsurvey.report.pdf.blocks import space
+from irsurvey.report.pdf.layout import LENGTH, Layout
 from irsurvey.report.pdf.parts import urgency
 from irsurvey.report.pdf.runs import PAPER
 
@@ -162,3 +167,86 @@ def test_cues_are_folded_on_the_page_and_a_small_line_on_paper(report: Report, t
     assert "Read from" not in html
     paper = on_paper(report, tasks, tmp_path)
     assert bare("Read from: " + "; ".join(f"{cue.name} {cue.text}" for cue in cues)) in paper
+
+
+def pages_of(report: Report, tasks: Tasks, out: Path) -> list[tuple[str, str]]:
+    """Each page of the paper: what stands at its head, and all of its text."""
+    texts_ = (page.extract_text() for page in PdfReader(write(report, tasks, out)).pages)
+    return [(text.partition("\n")[0], bare(text)) for text in texts_]
+
+
+def with_inputs(frame: FrameReport) -> FrameReport:
+    """The frame with as many inputs as a building has, seven of them but assumed."""
+    assumed = (
+        "total_emissivity view_angle_deg tilt_deg mean_radiant_c convection_factor atmosphere_relative size_of_source"
+    )
+    given = (
+        "emissivity air_c relative_humidity_percent pressure_hpa distance_m indoor_air_c outdoor_air_c wind_m_s"
+        " indoor_humidity_percent hours_since_sun hours_since_rain hours_furniture_clear irradiance_w_m2 u_value_w_m2k"
+        " outdoor_24h_low_c outdoor_24h_high_c ifov_mrad camera_offset_k camera_gain reflected_c"
+    )
+    inputs = {key: Input(20.0 + place, 0.5, "default") for place, key in enumerate(assumed.split())}
+    inputs |= {key: Input(40.0 + place, 0.5, "group") for place, key in enumerate(given.split())}
+    return replace(frame, inputs=inputs)
+
+
+def test_a_frame_with_nothing_found_is_one_page_with_all_its_inputs(
+    report: Report, tasks: Tasks, wall_maps: Maps, tmp_path: Path
+) -> None:
+    clean = with_inputs(report.frames[1])
+    frame_files.write(clean, wall_maps, tmp_path)
+    shown = replace(report, frames=(clean,), checklist=(), seasons=())
+    own = [text for _, text in pages_of(shown, tasks, tmp_path) if bare("Origin") in text or bare("How sure") in text]
+    assert len(own) == 1
+    assert bare("What it shows") in own[0]
+    for key, entry in clean.inputs.items():
+        assert bare(f"{texts.name(key)} {numbers.with_unit(numbers.stated(entry, key), key)}") in own[0], key
+    assert bare("* its ± is assumed") in own[0]
+    assert own[0].count(bare("assumed (default):")) == 1
+    assert own[0].count(bare("stated (group)")) == 20
+
+
+def test_in_the_sample_house_a_frame_with_nothing_found_is_one_page(
+    sample_runs: dict[str, tuple[Report, Path]],
+) -> None:
+    """A picture is made smaller where that saves a page."""
+    report, out = sample_runs["house"]
+    reader = PdfReader(write(report, kept(out), out))
+    starts = [(title, number) for level, title, number in outline(reader)]
+    for frame in report.frames:
+        if frame.status == "failed" or frame.findings or frame.components:
+            continue
+        place = next(at for at, (title, _) in enumerate(starts) if title.split("\u2002")[0] == frame.id)
+        assert starts[place + 1][1] == starts[place][1] + 1, frame.id
+    assert len(reader.pages) < 72
+
+
+def test_only_a_value_that_somebody_gave_has_the_sign_of_an_assumed_uncertainty(
+    report: Report, tasks: Tasks, tmp_path: Path
+) -> None:
+    inputs = {
+        "emissivity": Input(0.93, 0.02, "survey", "default"),
+        "air_c": Input(21.0, 0.5, "log", "log"),
+        "distance_m": Input(2.0, 0.5, "default", "default"),
+    }
+    paper = on_paper(replace(report, frames=(replace(report.frames[1], inputs=inputs),)), tasks, tmp_path)
+    assert bare("0.930 ± 0.040 * stated (survey)") in paper
+    assert bare("21.0 ± 1.0 °C measured (logger)") in paper
+    assert bare("2.0 ± 1.0 m assumed (default)") in paper
+
+
+def test_a_short_section_stands_below_the_one_before() -> None:
+    """As many mm as are left are enough for what needs no more."""
+    layout = Layout()
+    layout.turn("a")
+    layout.add([space(LENGTH - 30)])
+    assert layout.reach([space(29)]) == (0, pytest.approx(LENGTH - 1))
+    assert layout.reach([space(20), space(20)]) == (1, pytest.approx(20))
+    assert layout.pages[0].placed[1:] == []
+    assert len(layout.pages) == 1
+
+
+def test_assets_follow_the_table_before_them_where_they_fit(report: Report, tasks: Tasks, tmp_path: Path) -> None:
+    told = [text for _, text in pages_of(report, tasks, tmp_path)]
+    (assets,) = [text for text in told if bare("Every asset of the round") in text]
+    assert any(bare(words) in assets for words in ("All components, the most", "All anomalies, the most"))

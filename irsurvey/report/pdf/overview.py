@@ -8,7 +8,7 @@ from irsurvey.numbers import Style
 from irsurvey.report import condition_rows, results
 from irsurvey.report.html import SUMMARY_LENGTH
 from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, space, text
-from irsurvey.report.pdf.layout import Entry, Layout, Piece
+from irsurvey.report.pdf.layout import Entry, Layout, Piece, total
 from irsurvey.report.pdf.parts import (
     asked_for,
     chip,
@@ -26,14 +26,14 @@ from irsurvey.report.pdf.parts import (
 )
 from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
-from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.tables import DENSE, Head, table
 from irsurvey.texts import say
 
 _OF_FINDINGS = ("mean_delta_k", "delta_k", "extreme_c", "area_m2", "excess_heat_w")
 _OF_COMPONENTS = ("max_c", "delta_similar_k", "delta_ambient_k")
 _BRIEF = 12  # letters of a requirement that stays on one line
 _LEAST_ROOM = 60.0
-"""A section begins on a new page where less is left of the last one [mm]."""
+"""A section that does not fit begins on a new page where less is left of the last one [mm]."""
 
 
 def overview(story: Story, layout: Layout) -> None:
@@ -48,8 +48,9 @@ def overview(story: Story, layout: Layout) -> None:
     ):
         if not pieces:
             continue
-        layout.go_on(name, _LEAST_ROOM)
-        layout.add([*heading(name, H2, gap=9, entry=Entry(name, 0), place=place), *pieces])
+        pieces = [*heading(name, H2, gap=9, entry=Entry(name, 0), place=place), *pieces]
+        layout.go_on(name, min(_LEAST_ROOM, total(pieces) + pieces[0].gap))
+        layout.add(pieces)
 
 
 def _conditions(story: Story) -> list[Piece]:
@@ -66,7 +67,7 @@ def _conditions(story: Story) -> list[Piece]:
             pieces += [space(3.0)] if pieces else []
             cells = [_requirement(row) for row in same]
             heads = [Head(say(key)) for key in asked]
-            pieces += table(heads, cells, caption=text(caption, NOTE), dense=is_met)
+            pieces += table(heads, cells, caption=text(caption, NOTE), airy=DENSE if is_met else 1.0)
     return [*pieces, *paragraph(text(say("marks"), NOTE), gap=2.0)] if pieces else []
 
 

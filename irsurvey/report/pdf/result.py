@@ -28,7 +28,7 @@ from irsurvey.report.pdf.paper import HAIR, RULE
 from irsurvey.report.pdf.parts import Item, decides, flags, found, indication, item_place, mark, to_do, urgency
 from irsurvey.report.pdf.runs import DEEP, GAP, Colour, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
-from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.tables import DENSE, Head, table
 from irsurvey.report.ranking import Ranked, governing
 from irsurvey.report.sentences import in_style
 from irsurvey.report.style import moment, spoken
@@ -185,7 +185,7 @@ def _budgets(item: Item, style: Style) -> list[Piece]:
                 for line in shown.lines
             ]
             caption: Runs = (Run(f"{shown.name} ", _SMALL), emphasis(shown.reading, _SMALL.size, _SMALL.ink))
-            pieces += table(heads, rows, caption=caption, width=_BARS, dense=True)
+            pieces += table(heads, rows, caption=caption, width=_BARS, airy=DENSE)
         else:
             listed = ", ".join(f"{line.name} {line.share}" for line in shown.lines)
             line_: Runs = (
