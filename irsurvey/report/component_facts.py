@@ -54,7 +54,7 @@ def _rated(item: ComponentReport, style: Style) -> Iterator[Fact]:
 
 def _in_calm(item: ComponentReport, style: Style) -> Iterator[Fact]:
     for key, measured in _CALM.items():
-        if getattr(item, key):
+        if getattr(item, key) and not (measured == "delta_similar_k" and results.is_coolest(item)):
             as_read = results.reading(item, measured, style=style)
             name = in_style(texts.name(key), style)
             note = say("as_measured", delta=as_read, remark=texts.remark("wind"))
@@ -63,7 +63,7 @@ def _in_calm(item: ComponentReport, style: Style) -> Iterator[Fact]:
 
 def _compared(item: ComponentReport, style: Style) -> Iterator[Fact]:
     for key in ("relative_difference_percent", "delta_neighbours_k"):
-        if getattr(item, key):
+        if getattr(item, key) and not (key == "relative_difference_percent" and results.is_coolest(item)):
             yield Fact(in_style(texts.name(key), style), _reading(item, key, style), in_style(texts.remark(key), style))
 
 

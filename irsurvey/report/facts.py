@@ -29,6 +29,8 @@ _YES_OR_NO = ("changed_with_pressure",)
 _PATTERN = 90  # letters of a pattern in one line with what it takes
 _LIKELY = 0.5
 """Probability from which a risk is told in the summary: more likely than not."""
+_LEAST_CUE = 0.01
+"""Of a cue: what is smaller differs from nothing by no more than the pixels do."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,6 +144,8 @@ def cues(evidence: dict[str, float], *, style: Style = SI) -> tuple[Fact, ...]:
 def _cue(key: str, value: float, style: Style) -> str:
     if key in _YES_OR_NO:
         return say("yes") if value else say("no")
+    if 0 < abs(value) < _LEAST_CUE:
+        return f"< {numbers.told(_LEAST_CUE, key, style=style)}"
     return numbers.told(value, key, 2, style=style)
 
 

@@ -104,11 +104,20 @@ def _delta(item: RepairItem, entry: Ranked | None, style: Style) -> str:
     text = numbers.measured(item.delta_k, "delta_k", style=style)
     if text == numbers.NOTHING:
         return ""
+    if _is_reference(item, entry):
+        return say("is_the_reference")
     return results.bounded(entry.item, _JUDGED.get(item.delta_basis, ""), text) if entry else text
+
+
+def _is_reference(item: RepairItem, entry: Ranked | None) -> bool:
+    """Whether its difference is the one from itself."""
+    return item.delta_basis == "similar" and entry is not None and results.is_coolest(entry.item)
 
 
 def _basis(item: RepairItem, entry: Ranked | None, style: Style) -> str:
     """What a difference was taken against, and the one brought to calm air where that decides."""
+    if _is_reference(item, entry):
+        return ""
     twin = entry.item.similar_to if entry and isinstance(entry.item, ComponentReport) else None
     words = texts.basis(item.delta_basis)
     if twin and item.delta_basis == "similar":

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from irsurvey import numbers, texts
+from irsurvey.assess.electrical import OF_TWINS, OVER_AIR
 from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip
 from irsurvey.numbers import SI, Style
 from irsurvey.report.ranking import governing, is_saturated
@@ -18,13 +19,13 @@ _BARS, _LEAST_BAR = 5, 0.02
 """The longest bars a chart shows, and the share from which a term gets one; the rest together get the last."""
 COLDEST = ("temperature_factor", "temperature_factor_at_0_25", "dew_point_margin_k", "mould_margin_k")
 """Numbers of the coldest spot of a finding."""
-_OF_TWINS = ("delta_similar_k", "delta_similar_in_calm_k", "relative_difference_percent")
-"""Numbers of a component and its twin: where both are too small, which way they err is not known."""
 _OF_SPOT = (
-    *("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_ambient_in_calm_k", *_OF_TWINS),
+    *("extreme_c", "max_c", "delta_k", "delta_ambient_k", "delta_ambient_in_calm_k", *OF_TWINS),
     *("delta_neighbours_k", "above_limit_k", "above_allowed_k"),
 )
 """Numbers that a spot too small, or beyond the range, makes a bound."""
+_NO_DIFFERENCE = Estimate(0.0, 0.0)
+_COLUMNS = ("load_a", "max_c", "mean_c", "delta_similar_k", "delta_ambient_k", "at_rated_load")
 _NO_CHANCE = 1e-9
 _NEAR_EDGE = 0.975
 """A class less probable than that has an edge within about U of the value: Φ(2) = 0.977."""
@@ -62,11 +63,52 @@ class Change:
     inputs: tuple[str, ...]
 
 
+@dataclass(frozen=True, slots=True)
+class Weighed:
+    """One assessment, whether it decides, and in words what it is worth; nothing where there is no other."""
+
+    one: Assessment
+    decides: bool
+    weight: str
+
+    @property
+    def is_aside(self) -> bool:
+        """Whether what it asks for is no call to action here: it is then drawn as an outline."""
+        return bool(self.weight) and not self.decides
+
+
+def weighed(assessments: tuple[Assessment, ...]) -> tuple[Weighed, ...]:
+    """All assessments of a result, the one that decides first."""
+    deciding = next((one for one in assessments if one.governs), None)
+    if len(assessments) < 2:
+        return tuple(Weighed(one, one.governs, "") for one in assessments)
+    ordered = sorted(assessments, key=lambda one: one is not deciding)
+    return tuple(Weighed(one, one is deciding, _weight(one, deciding)) for one in ordered)
+
+
 def reading(item: Item, key: str, *, unit: bool = True, style: Style = SI) -> str:
     """One number of a finding or component ± U, with its unit, and with ≥ or ≤ where the reading is only a bound."""
+    if key == "delta_similar_k" and is_coolest(item):
+        return say("is_the_reference")
     estimate: Estimate | None = getattr(item, key)
     text = numbers.measured(estimate, key, unit=unit, style=style)
     return text if estimate is None or text == numbers.NOTHING else bounded(item, key, text)
+
+
+def is_coolest(item: Item) -> bool:
+    """Whether it is the twin that all others of its group are held against: its own difference is 0 by definition."""
+    return isinstance(item, ComponentReport) and item.similar_to is None and item.delta_similar_k == _NO_DIFFERENCE
+
+
+def columns(components: tuple[ComponentReport, ...]) -> tuple[str, ...]:
+    """What a table of components has a column for: whatever one of them has at least; no load of a module or arrester.
+
+    Keys of numbers, "load_a" and "at_rated_load"."""
+    told = {
+        "load_a": any(load(item, item.load_a, item.rated_a) for item in components),
+        "at_rated_load": any(rated(item) for item in components),
+    }
+    return tuple(key for key in _COLUMNS if told.get(key, any(getattr(item, key) for item in components)))
 
 
 def bounded(item: Item, key: str, text: str) -> str:
@@ -83,7 +125,7 @@ def interval(item: Item, key: str, *, style: Style = SI) -> str:
 
 def is_bound(item: Item, key: str) -> bool:
     """Whether a reading tells only how far the truth lies at least: beyond the range, smaller than the spot."""
-    if key in _OF_TWINS and "twin size-limited" in item.flags:
+    if key in OF_TWINS and "twin size-limited" in item.flags:
         return False
     if key in ("mean_c", "mean_delta_k"):
         return is_saturated(item)
@@ -146,6 +188,19 @@ def probabilities(assessment: Assessment) -> dict[str, float]:
     """The classes that come into question where an edge is near; nothing where one class is as good as certain."""
     told = {texts.class_name(name): p for name, p in assessment.probabilities.items() if p >= _LEAST_SHARE}
     return told if max(told.values(), default=1.0) < _NEAR_EDGE else {}
+
+
+def _weight(one: Assessment, deciding: Assessment | None) -> str:
+    """What an assessment is worth beside the one that decides.
+
+    A joint with a valid twin is judged by that alone; without one, or where all of them are warm, the air decides."""
+    if one is deciding:
+        return say("decides")
+    if deciding and deciding.quantity in OF_TWINS and one.quantity in OVER_AIR:
+        return say("twins_decide")
+    if deciding and deciding.quantity in OVER_AIR and one.quantity in OF_TWINS:
+        return say("air_decides")
+    return say("decides_not")
 
 
 def _judged(item: Item) -> str | None:

@@ -7,7 +7,8 @@ from typing import Any
 
 import pytest
 
-from irsurvey.model import BudgetTerm, ComponentReport, Estimate, Finding, Flip, Report
+from irsurvey.model import Assessment, BudgetTerm, ComponentReport, Estimate, Finding, Flip, Report
+from irsurvey.report import results
 from irsurvey.report.results import budgets, changes, exceeds, interval, probabilities, reading
 
 
@@ -144,3 +145,29 @@ def test_probabilities_are_told_where_an_edge_is_within_u(
     wall_finding: Finding, stated: dict[str, float], shown: dict[str, float]
 ) -> None:
     assert probabilities(replace(wall_finding.assessments[0], probabilities=stated)) == shown
+
+
+def weighed_against(deciding: str, *others: str) -> list[str]:
+    """What is said of assessments of these numbers where the first decides; it stands second among them."""
+    made = [Assessment(key, "hot", 2, "", {}, "", governs=key == deciding, quantity=key) for key in (deciding, *others)]
+    told = results.weighed((*made[1:2], made[0], *made[2:]))
+    assert [one.decides for one in told] == [True, *(False for _ in others)]
+    assert [one.is_aside for one in told] == [False, *(True for _ in others)]
+    return [one.weight for one in told]
+
+
+def test_the_assessment_that_decides_comes_first_and_the_others_say_why_they_do_not() -> None:
+    assert weighed_against("delta_similar_k", "delta_ambient_k", "above_limit_k") == [
+        "Decides",
+        "does not decide here: twins decide",
+        "does not decide here",
+    ]
+    assert weighed_against("delta_ambient_in_calm_k", "relative_difference_percent") == [
+        "Decides",
+        "does not decide here: the rise over air does",
+    ]
+    alone = Assessment("a", "hot", 2, "", {}, "", governs=True)
+    assert [(one.decides, one.weight, one.is_aside) for one in results.weighed((alone,))] == [(True, "", False)]
+    unsettled = results.weighed((replace(alone, governs=False), replace(alone, governs=False)))
+    assert [one.decides for one in unsettled] == [False, False]
+    assert results.weighed(()) == ()

@@ -6,12 +6,13 @@ from irsurvey import numbers, texts
 from irsurvey.model import ChecklistItem
 from irsurvey.report import explained
 from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, bullets, heading, paragraph, text
-from irsurvey.report.pdf.layout import Entry, Layout, Piece
+from irsurvey.report.pdf.layout import Entry, Layout, Piece, total
 from irsurvey.report.pdf.letters import MISSING
-from irsurvey.report.pdf.parts import chip, short
+from irsurvey.report.pdf.parts import chip
 from irsurvey.report.pdf.runs import Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.style import short
 from irsurvey.texts import say
 
 
@@ -47,10 +48,11 @@ def cautions(story: Story, layout: Layout) -> None:
         *bullets((text(caution) for caution in story.cautions), gap=1.4),
         *heading(say("how_numbers_read")),
         *paragraph(text(explained.numbers_how(style=story.style))),
+        *paragraph(text(say("marks"), NOTE)),
         *paragraph(text(say("substitute", box=MISSING), NOTE)),
         *paragraph(text(say(explained.beside_files(style=story.style), files=_files(story)), NOTE)),
     ]
-    layout.go_on(say("cautions"), 120)
+    layout.go_on(say("cautions"), min(120, total(pieces) + pieces[0].gap))
     layout.add(pieces)
 
 

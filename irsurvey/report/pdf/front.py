@@ -13,9 +13,10 @@ from irsurvey.report.pdf import drawings
 from irsurvey.report.pdf.blocks import BODY, H1, H2, NOTE, facts, heading, paragraph, picture, space, text
 from irsurvey.report.pdf.images import image
 from irsurvey.report.pdf.layout import BOTTOM, BREADTH, LEFT, TOP, Entry, Layout, Piece, total
-from irsurvey.report.pdf.parts import claim, frame_name, frame_place, short
+from irsurvey.report.pdf.parts import claim, frame_name, frame_place
 from irsurvey.report.pdf.runs import AMBER, DEEP, GAP, QUIET, Face, Run, Runs, broken
 from irsurvey.report.pdf.story import Story, asked
+from irsurvey.report.style import short
 from irsurvey.texts import noun, say
 
 if TYPE_CHECKING:

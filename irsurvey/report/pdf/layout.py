@@ -78,6 +78,12 @@ class Layout:
         self.pages.append(Page(self.section, plain))
         self.y = TOP
 
+    def reach(self, pieces: Iterable[Piece]) -> tuple[int, float]:
+        """How many pages pieces would still begin if they were added here, and how far down the last would reach."""
+        trial = Layout([Page(self.section)], self.y, self.section)
+        trial.add(pieces)
+        return len(trial.pages) - 1, trial.y - TOP
+
     def go_on(self, section: str, least_room: float) -> None:
         """Begin a section: on the last page, or on a new one where less room is left."""
         self.section = section

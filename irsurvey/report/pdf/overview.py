@@ -7,8 +7,8 @@ from irsurvey.model import ComponentReport, Finding
 from irsurvey.numbers import Style
 from irsurvey.report import condition_rows, results
 from irsurvey.report.html import SUMMARY_LENGTH
-from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, text
-from irsurvey.report.pdf.layout import Entry, Layout, Piece
+from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, SMALL_STRONG, heading, paragraph, space, text
+from irsurvey.report.pdf.layout import Entry, Layout, Piece, total
 from irsurvey.report.pdf.parts import (
     asked_for,
     chip,
@@ -19,21 +19,21 @@ from irsurvey.report.pdf.parts import (
     item_place,
     joined,
     outcome,
-    short,
     title,
     unbroken,
     worded,
 )
 from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
-from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.tables import DENSE, Head, table
+from irsurvey.report.style import short
 from irsurvey.texts import say
 
 _OF_FINDINGS = ("mean_delta_k", "delta_k", "extreme_c", "area_m2", "excess_heat_w")
 _OF_COMPONENTS = ("max_c", "delta_similar_k", "delta_ambient_k")
 _BRIEF = 12  # letters of a requirement that stays on one line
 _LEAST_ROOM = 60.0
-"""A section begins on a new page where less is left of the last one [mm]."""
+"""A section that does not fit begins on a new page where less is left of the last one [mm]."""
 
 
 def overview(story: Story, layout: Layout) -> None:
@@ -48,28 +48,42 @@ def overview(story: Story, layout: Layout) -> None:
     ):
         if not pieces:
             continue
-        layout.go_on(name, _LEAST_ROOM)
-        layout.add([*heading(name, H2, gap=9, entry=Entry(name, 0), place=place), *pieces])
+        pieces = [*heading(name, H2, gap=9, entry=Entry(name, 0), place=place), *pieces]
+        layout.go_on(name, min(_LEAST_ROOM, total(pieces) + pieces[0].gap))
+        layout.add(pieces)
 
 
 def _conditions(story: Story) -> list[Piece]:
-    rows: list[list[Runs]] = []
-    for row in condition_rows.rows(story.report.conditions_review, style=story.style):
-        check = row.check
-        recorded = say("to_record", what=row.to_record) if row.to_record else row.recorded
-        rows.append(
-            [
-                text(check.check, SMALL_STRONG),
-                text(short(row.groups, 400) or numbers.NOTHING, SMALL),
-                text(unbroken(check.requirement) if len(check.requirement) < _BRIEF else check.requirement, SMALL),
-                text(recorded, SMALL),
-                (chip(texts.condition(check.verdict), "ok" if check.verdict == "met" else "weak"),),
-                text(row.leaves or numbers.NOTHING, SMALL),
-                text(check.source, Face(6.4, ink=NOTE.ink)),
-            ]
-        )
-    heads = [Head(say(key)) for key in ("condition", "groups", "required", "recorded", "verdict", "leaves", "source")]
-    return table(heads, rows, caption=text(say("conditions_caption"), NOTE)) if rows else []
+    """What is not met or not recorded; then, in small rows, what is met."""
+    rows = condition_rows.rows(story.report.conditions_review, style=story.style)
+    pieces: list[Piece] = []
+    for is_met in (False, True):
+        same = [row for row in rows if row.is_met == is_met]
+        asked = ("condition", "groups", "required", "recorded", *(() if is_met else ("verdict", "leaves")), "source")
+        caption = say("conditions_caption")
+        if is_met:
+            caption = f"{say('conditions_met', count=len(same))}. {say('met_caption')}"
+        if same:
+            pieces += [space(3.0)] if pieces else []
+            cells = [_requirement(row) for row in same]
+            heads = [Head(say(key)) for key in asked]
+            pieces += table(heads, cells, caption=text(caption, NOTE), airy=DENSE if is_met else 1.0)
+    return [*pieces, *paragraph(text(say("marks"), NOTE), gap=2.0)] if pieces else []
+
+
+def _requirement(row: condition_rows.Row) -> list[Runs]:
+    check, face, strong = row.check, SMALL, SMALL_STRONG
+    verdict: list[Runs] = [(chip(texts.condition(check.verdict), "weak"),), text(row.leaves or numbers.NOTHING, face)]
+    if row.is_met:
+        face, strong, verdict = Face(6.6), Face(6.6, "B"), []
+    return [
+        text(check.check, strong),
+        text(short(row.groups, 400) or numbers.NOTHING, face),
+        text(unbroken(check.requirement) if len(check.requirement) < _BRIEF else check.requirement, face),
+        text(say("to_record", what=row.to_record) if row.to_record else row.recorded, face),
+        *verdict,
+        text(check.source, Face(6.4, ink=NOTE.ink)),
+    ]
 
 
 def _anomalies(story: Story) -> list[Piece]:

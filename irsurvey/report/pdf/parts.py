@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from string import Formatter
 
 from irsurvey import numbers, texts
@@ -15,12 +16,10 @@ from irsurvey.report.pdf.layout import BREADTH, Piece
 from irsurvey.report.pdf.runs import DEEP, INK, PAPER, Box, Face, Run, Runs
 from irsurvey.report.ranking import Ranked, governing
 from irsurvey.report.sentences import in_style
+from irsurvey.report.style import short
 from irsurvey.texts import say
 
 Item = Finding | ComponentReport
-
-LONG = 140
-"""Letters of a free text that summary and tables show; the sheet of its frame has it all."""
 
 _WHITE, _UMBER = (255, 255, 255), (85, 70, 29)
 _CHIPS = {
@@ -40,15 +39,22 @@ _MARK = Box(PAPER, (18, 24, 33), square=True)
 _DARK_MARK = Box((18, 24, 33), (18, 24, 33), square=True)
 
 
-def chip(words: str, kind: str = "") -> Run:
-    """Words in a box."""
+def chip(words: str, kind: str = "", *, aside: bool = False) -> Run:
+    """Words in a box; of what calls for nothing here, its outline alone."""
     box, ink = _CHIPS[kind]
+    if aside:
+        return Run(words, Face(_CHIP_SIZE), box=replace(box, fill=PAPER))
     return Run(words, Face(_CHIP_SIZE, "B" if kind == "u4" else "", ink), box=box)
 
 
-def urgency(level: int | None) -> Run:
+def urgency(level: int | None, *, aside: bool = False) -> Run:
     """What an urgency asks for."""
-    return chip(texts.urgency(level), "ux" if level is None else f"u{level}")
+    return chip(texts.urgency(level), "ux" if level is None else f"u{level}", aside=aside)
+
+
+def decides(words: str) -> Run:
+    """Marks the assessment that decides."""
+    return Run(words, Face(_CHIP_SIZE, "B", _WHITE), box=Box(DEEP, DEEP, square=True))
 
 
 def asks(level: int | None, outcome: str) -> Run:
@@ -224,11 +230,6 @@ def joined(names: Sequence[Run], face: Face = BODY) -> list[Run]:
     for number, name in enumerate(names):
         runs += [name, *([Run(", ", face)] if number < len(names) - 1 else [])]
     return runs
-
-
-def short(words: str, length: int = LONG) -> str:
-    """A text cut to so many letters."""
-    return words if len(words) <= length else f"{words[: length - 1].rstrip()}…"
 
 
 def unbroken(words: str) -> str:

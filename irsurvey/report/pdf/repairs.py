@@ -29,11 +29,12 @@ from irsurvey.report.pdf.blocks import (
 from irsurvey.report.pdf.images import image
 from irsurvey.report.pdf.layout import BREADTH, Entry, Layout, Piece
 from irsurvey.report.pdf.paper import HAIR, STRONG_RULE
-from irsurvey.report.pdf.parts import asks, finding_place, frame_place, item_place, quiet, short, worded
+from irsurvey.report.pdf.parts import asks, finding_place, frame_place, item_place, quiet, worded
 from irsurvey.report.pdf.runs import DEEP, GAP, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
 from irsurvey.report.pdf.tables import Head, table
 from irsurvey.report.repair_list import Line
+from irsurvey.report.style import short
 from irsurvey.texts import say
 
 _RANK = 9.0  # mm, of the column of ranks

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from irsurvey import numbers, texts
-from irsurvey.model import Assessment, ComponentReport
+from irsurvey.model import ComponentReport
 from irsurvey.numbers import Style
 from irsurvey.report import component_facts, facts, results, trend_plot
 from irsurvey.report.facts import Fact
@@ -25,10 +25,10 @@ from irsurvey.report.pdf.blocks import (
 from irsurvey.report.pdf.blocks import facts as in_columns
 from irsurvey.report.pdf.layout import BREADTH, Piece
 from irsurvey.report.pdf.paper import HAIR, RULE
-from irsurvey.report.pdf.parts import Item, flags, found, indication, item_place, mark, to_do, urgency
+from irsurvey.report.pdf.parts import Item, decides, flags, found, indication, item_place, mark, to_do, urgency
 from irsurvey.report.pdf.runs import DEEP, GAP, Colour, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
-from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.tables import DENSE, Head, table
 from irsurvey.report.ranking import Ranked, governing
 from irsurvey.report.sentences import in_style
 from irsurvey.report.style import moment, spoken
@@ -68,7 +68,7 @@ def result(entry: Ranked, story: Story) -> list[Piece]:
         *_decision(item, style),
         *_reviews(item, story),
         *(indication(item.indication, style) if item.indication else ()),
-        *(piece for one in item.assessments for piece in _assessment(one, style)),
+        *(piece for one in results.weighed(item.assessments) for piece in _assessment(one, style)),
         *of_kind,
         *flags(told, style),
         *_budgets(item, style),
@@ -111,12 +111,15 @@ def _reviews(item: Item, story: Story) -> list[Piece]:
     return aside(pieces, DEEP)
 
 
-def _assessment(one: Assessment, style: Style) -> list[Piece]:
+def _assessment(told: results.Weighed, style: Style) -> list[Piece]:
     x, width = ASIDE, BREADTH - ASIDE
+    one = told.one
     named: Runs = (
+        *((decides(told.weight), Run(" ", _TEXT)) if told.decides and told.weight else ()),
         emphasis(one.criterion, _TEXT.size),
         Run(f": {texts.class_name(one.class_)}  ", _TEXT),
-        urgency(one.urgency),
+        urgency(one.urgency, aside=told.is_aside),
+        *((Run(f" {told.weight}", _SMALL),) if told.is_aside else ()),
     )
     pieces = paragraph(named, x=x, width=width, gap=1.8, keep=True)
     pieces += paragraph(text(in_style(one.statement, style), _TEXT), x=x, width=width, gap=0)
@@ -126,7 +129,7 @@ def _assessment(one: Assessment, style: Style) -> list[Piece]:
         pieces += paragraph(text(say("edge_is_near", classes=listed), _SMALL), x=x, width=width, gap=0)
     pieces += paragraph(text(say("source_of", source=one.source), _SMALL), x=x, width=width, gap=0)
     together = [replace(piece, keep=True) for piece in pieces[:-1]] if len(pieces) <= _SHORT else pieces[:-1]
-    return aside([*together, pieces[-1]], DEEP if one.governs else _BESIDE)
+    return aside([*together, pieces[-1]], DEEP if told.decides else _BESIDE)
 
 
 def _of_component(item: ComponentReport, style: Style) -> list[Piece]:
@@ -182,7 +185,7 @@ def _budgets(item: Item, style: Style) -> list[Piece]:
                 for line in shown.lines
             ]
             caption: Runs = (Run(f"{shown.name} ", _SMALL), emphasis(shown.reading, _SMALL.size, _SMALL.ink))
-            pieces += table(heads, rows, caption=caption, width=_BARS, dense=True)
+            pieces += table(heads, rows, caption=caption, width=_BARS, airy=DENSE)
         else:
             listed = ", ".join(f"{line.name} {line.share}" for line in shown.lines)
             line_: Runs = (

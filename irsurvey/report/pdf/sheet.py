@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from itertools import zip_longest
+from itertools import chain, zip_longest
 
 from irsurvey import numbers, texts
 from irsurvey.model import ComponentReport, Estimate, Finding, FrameReport, FrameTask, Input
@@ -38,28 +38,33 @@ from irsurvey.report.pdf.parts import (
     mark,
     outcome,
     quiet,
-    short,
     unbroken,
 )
 from irsurvey.report.pdf.result import result
 from irsurvey.report.pdf.runs import DEEP, GAP, QUIET, Face, Run, Runs
 from irsurvey.report.pdf.story import Story
-from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.pdf.tables import TIGHT, Head, table
 from irsurvey.report.picture import NUMBERED
 from irsurvey.report.ranking import Ranked, foremost
 from irsurvey.report.sentences import in_style
-from irsurvey.report.style import day, moment
+from irsurvey.report.style import day, moment, short
 from irsurvey.texts import say
 
 _OF_FINDINGS = (
     *("mean_delta_k", "delta_k", "mean_c", "extreme_c", "area_m2"),
     *("heat_flux_w_m2", "reference_heat_flux_w_m2", "excess_heat_w"),
 )
-_OF_COMPONENTS = ("max_c", "mean_c", "delta_similar_k", "delta_ambient_k")
 _PICTURE = 108.0  # mm, width of the thermal picture
+_SMALLER_PICTURE = 84.0  # mm, of one that saves a page
+_TAIL = 40.0  # mm, of a last page that a smaller picture may save
+_EVIDENCE = 2  # place of the picture among the parts of a sheet
 _HIGHEST = 118.0  # mm, of a picture
 _GUTTER = 6.0
-_MANY_INPUTS = 8  # from here two of them share a row
+_INPUT = Face(6.4)
+_QUIET_INPUT = Face(6.4, ink=QUIET)
+_ASSUMED = Face(6.4, "B", (85, 70, 29))
+_SIGN = "*"
+_MANY_INPUTS = 8  # from here two of them share a row, and those that are but assumed stand in a paragraph
 
 
 def sheet(frame: FrameReport, story: Story, layout: Layout, above: Sequence[Piece] = ()) -> None:
@@ -78,7 +83,13 @@ def sheet(frame: FrameReport, story: Story, layout: Layout, above: Sequence[Piec
         layout.add(paragraph((chip(say("not_readable"), "weak"), Run(f" {frame.reason}"))))
         layout.add(paragraph(text(say("not_analysed_clears_nothing"))))
     else:
-        for pieces in _analysed(frame, task, story):
+        parts = _analysed(frame, task, story)
+        begun, reached = layout.reach(chain.from_iterable(parts))
+        if begun and reached < _TAIL:  # a little more than its pages hold: perhaps not with a smaller picture
+            smaller = [*parts]
+            smaller[_EVIDENCE] = _evidence(frame, task, story, _SMALLER_PICTURE)
+            parts = smaller if layout.reach(chain.from_iterable(smaller))[0] < begun else parts
+        for pieces in parts:
             layout.add(pieces)
     if frame.notes:
         layout.add([*heading(say("notes")), *paragraph(text(frame.notes))])
@@ -92,7 +103,7 @@ def _analysed(frame: FrameReport, task: FrameTask | None, story: Story) -> list[
     return [
         paragraph((claim(frame.claim), Run(f" {texts.claim(frame.claim)}{why}"))),
         paragraph(text(bound(frame, story.style))),
-        [space(2.2), *_evidence(frame, task, story, len(shown))],
+        _evidence(frame, task, story),
         _findings(frame, shown, story.style),
         _components(frame, story.style),
         heading(say("assessment")) if entries else [],
@@ -139,17 +150,20 @@ def _where(frame: FrameReport, task: FrameTask | None, style: Style) -> str:
     return " · ".join(part for part in parts if part)
 
 
-def _evidence(frame: FrameReport, task: FrameTask | None, story: Story, shown: int) -> list[Piece]:
+def _evidence(
+    frame: FrameReport, task: FrameTask | None, story: Story, picture_width: float = _PICTURE
+) -> list[Piece]:
     """The picture with its caption; beside it what it shows, and the photograph or what its reference tells."""
+    shown = len(foremost(frame, NUMBERED))
     thermal = image(pictures.stored(frame, story.out, "annotated.png"))
     photo = image(pictures.photograph(task, pictures.PHOTOGRAPH_SIDE)) if task else None
     if thermal:
-        size = thermal.size(_PICTURE, _HIGHEST)
+        size = thermal.size(picture_width, _HIGHEST)
         left = [picture(thermal.data, size)]
     else:
-        left = paragraph(text(say("picture_missing")), width=_PICTURE)
-    left += paragraph(text(_caption(frame, shown, story.style), NOTE), width=_PICTURE, gap=0)
-    x, width = _PICTURE + _GUTTER, BREADTH - _PICTURE - _GUTTER
+        left = paragraph(text(say("picture_missing")), width=picture_width)
+    left += paragraph(text(_caption(frame, shown, story.style), NOTE), width=picture_width, gap=0)
+    x, width = picture_width + _GUTTER, BREADTH - picture_width - _GUTTER
     right = [
         *paragraph(text(say("what_it_shows"), Face(9.4, "B", DEEP)), x=x, width=width, gap=0),
         *labelled(_shown(frame, story.style), x=x, width=width),
@@ -162,7 +176,7 @@ def _evidence(frame: FrameReport, task: FrameTask | None, story: Story, shown: i
     elif told:
         named = paragraph(text(say("reference_tells"), Face(9.4, "B", DEEP)), x=x, width=width, gap=4)
         right += [*named, *in_columns(told, columns=1, x=x, width=width)]
-    return [*beside([Column(0, left), Column(0, right)]), *below]
+    return [space(2.2), *beside([Column(0, left), Column(0, right)]), *below]
 
 
 def _caption(frame: FrameReport, shown: int, style: Style) -> str:
@@ -233,69 +247,88 @@ def _findings(frame: FrameReport, shown: tuple[Finding, ...], style: Style) -> l
 def _components(frame: FrameReport, style: Style) -> list[Piece]:
     if not frame.components:
         return []
+    columns = results.columns(frame.components)
+    labels = {key: say(key) for key in columns if key != "at_rated_load"}
+    at_rated = Head(head("delta_similar_k", say("at_rated_over_similar"), style), at_right=True)
     heads = [
         *(Head(say(key)) for key in ("component_head", "group_phase")),
-        Head(head("load_a", say("load_a"), style), at_right=True),
-        *(Head(head(key, say(key), style), at_right=True) for key in _OF_COMPONENTS),
-        Head(head("delta_similar_k", say("at_rated_over_similar"), style), at_right=True),
+        *(Head(head(key, label, style), at_right=True) for key, label in labels.items()),
+        *([at_rated] if "at_rated_load" in columns else []),
         Head(say("outcome")),
     ]
-    return [
-        *heading(say("components_here")),
-        *table(
-            heads,
-            [_component(item, place, style) for place, item in enumerate(frame.components, 1)],
-            caption=text(say("components_here_caption"), NOTE),
-        ),
-    ]
+    rows = [_component(item, place, columns, style) for place, item in enumerate(frame.components, 1)]
+    caption = text(say("components_here_caption"), NOTE)
+    return [*heading(say("components_here")), *table(heads, rows, caption=caption)]
 
 
-def _component(item: ComponentReport, place: int, style: Style) -> list[Runs]:
+def _component(item: ComponentReport, place: int, columns: Sequence[str], style: Style) -> list[Runs]:
     group = f"{item.group or numbers.NOTHING}{f', {item.phase}' if item.phase else ''}"
     load = say("not_recorded")
     if item.load_a is not None:
         load = numbers.number(item.load_a, style=style)
         if item.rated_a is not None:
             load = say("of", load=load, rated=numbers.number(item.rated_a, style=style))
+    own = {
+        "load_a": text(load, SMALL),
+        "at_rated_load": text(results.rated(item, style=style) or numbers.NOTHING, SMALL),
+    }
     return [
-        (mark(item, place), Run(f" {item.name}", SMALL), *found(item)),
+        (mark(item, place), Run(f"\u00a0{item.name}", SMALL), *found(item)),
         text(group, SMALL),
-        text(load, SMALL),
-        *(cell(item, key, style) for key in _OF_COMPONENTS),
-        text(results.rated(item, style=style) or numbers.NOTHING, SMALL),
+        *(own[key] if key in own else cell(item, key, style) for key in columns),
         (outcome(item),),
     ]
 
 
 def _how_sure(frame: FrameReport, task: FrameTask | None, style: Style) -> list[Piece]:
-    pieces = heading(say("how_sure_head"))
-    rows = [_input(key, entry, style) for key, entry in frame.inputs.items()]
+    is_long = len(frame.inputs) > _MANY_INPUTS
+    apart = {key: entry for key, entry in frame.inputs.items() if is_long and texts.is_assumed(entry.from_)}
+    rows = [_input(key, entry, style) for key, entry in frame.inputs.items() if key not in apart]
     heads = [Head(say("input")), Head(say("value"), at_right=True), Head(say("origin"))]
-    if rows:
-        pieces += paragraph(text(say("inputs_caption"), NOTE), keep=True)
-    if len(rows) > _MANY_INPUTS:
+    pieces = heading(say("how_sure_head"), gap=3.0)
+    if rows or apart:
+        caption = say("inputs_caption")
+        if any(_is_less_founded(entry) for entry in frame.inputs.values()):
+            caption = say("inputs_caption_sign", caption=caption, sign=_SIGN)
+        pieces += paragraph(text(caption, NOTE), gap=0.8, keep=True)
+    if rows and is_long:
         half = (len(rows) + 1) // 2
         empty: list[Runs] = [(), (), ()]
         pairs = zip_longest(rows[:half], rows[half:], fillvalue=empty)
-        pieces += table([*heads, *heads], [[*left, *right] for left, right in pairs], dense=True)
+        pieces += table([*heads, *heads], [[*left, *right] for left, right in pairs], airy=TIGHT)
     elif rows:
-        pieces += table(heads, rows, dense=True)
-    told = in_columns(_known(frame, task, style))
-    return [*pieces, *([space(1.5), *told] if told else [])] if rows or told else []
+        pieces += table(heads, rows, airy=TIGHT)
+    for origin in dict.fromkeys(entry.from_ for entry in apart.values()):
+        listed: list[Run] = [Run(f"{texts.origin(origin)}:", _ASSUMED)]
+        for number, (key, entry) in enumerate((key, one) for key, one in apart.items() if one.from_ == origin):
+            value = numbers.with_unit(numbers.stated(entry, key, style=style), key, style=style)
+            listed += [Run(f"{';' if number else ''} {texts.name(key)} ", _QUIET_INPUT), Run(value, _INPUT)]
+        pieces += paragraph(tuple(listed), gap=1.2)
+    told = _known(frame, task, style)
+    known: list[Run] = []
+    for number, fact in enumerate(told):
+        known += [Run(f"{GAP if number else ''}{fact.name} ", _QUIET_INPUT), Run(fact.text, _INPUT)]
+    return [*pieces, *paragraph(tuple(known), gap=1.2)] if frame.inputs or told else []
 
 
 def _input(key: str, entry: Input, style: Style) -> list[Runs]:
-    """An input, and where its value comes from and, where that is less or better founded, its uncertainty."""
-    face = Face(6.8)
-    of_value, of_u = texts.origin(entry.from_), texts.founded(entry.u_from)
+    """An input, and where its value comes from; a sign says that its uncertainty is but assumed."""
     assumed = texts.is_assumed(entry.from_)
-    origin = Run(unbroken(of_value), Face(6.8, "B" if assumed else "", (85, 70, 29) if assumed else face.ink))
-    beside_it = f", {unbroken(f'± {of_u}')}" if entry.u > 0 and of_u != texts.founded(entry.from_) else ""
+    face = _ASSUMED if assumed else _INPUT
+    origin = Run(unbroken(texts.origin(entry.from_)), face)
+    of_u = texts.founded(entry.u_from)
+    is_otherwise = entry.u > 0 and of_u != texts.founded(entry.from_) and not _is_less_founded(entry)
+    value = numbers.with_unit(numbers.stated(entry, key, style=style), key, style=style)
     return [
-        text(texts.name(key), face),
-        text(numbers.with_unit(numbers.stated(entry, key, style=style), key, style=style), face),
-        (origin, Run(beside_it, Face(6.8, ink=QUIET))),
+        text(texts.name(key), _INPUT),
+        text(f"{value}\u00a0{_SIGN}" if _is_less_founded(entry) else value, _INPUT),
+        (origin, *((Run(f", {unbroken(f'± {of_u}')}", _QUIET_INPUT),) if is_otherwise else ())),
     ]
+
+
+def _is_less_founded(entry: Input) -> bool:
+    """Whether a value that somebody stated or measured has an uncertainty that is assumed."""
+    return entry.u > 0 and texts.is_assumed(entry.u_from) and not texts.is_assumed(entry.from_)
 
 
 def _known(frame: FrameReport, task: FrameTask | None, style: Style) -> list[Fact]:

@@ -34,7 +34,6 @@ from irsurvey.report.pdf.parts import (
     item_place,
     joined,
     quiet,
-    short,
     title,
     to_do,
     worded,
@@ -44,6 +43,7 @@ from irsurvey.report.pdf.story import Story
 from irsurvey.report.ranking import Ranked
 from irsurvey.report.repair_list import Line
 from irsurvey.report.sentences import in_style
+from irsurvey.report.style import short
 from irsurvey.texts import noun, say
 
 _CHIPS = 41.0  # mm, of the column of what a result asks for

@@ -24,7 +24,9 @@ _LONGEST_NUMBER = 34.0  # mm: what is longer, with its interval, is broken into 
 _RAGGED = 1.12  # what lines that end where words do take more than their letters
 _NARROWEST = 9.0  # mm, of a column of text
 _ABOVE, _BELOW = 0.9, 0.8  # mm, in a row
-_DENSE = 0.45  # of that, in a dense table
+DENSE, TIGHT = 0.45, 0.2
+"""Of the room above and below what stands in a row: in a table that is read for one row, and in one looked things up
+in."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,9 +45,9 @@ def table(
     x: float = 0.0,
     width: float = BREADTH,
     foot: Sequence[Runs] = (),
-    dense: bool = False,
+    airy: float = 1.0,
 ) -> list[Piece]:
-    """A table; `foot` is its last row, of the same columns; `dense`: with little room between its rows."""
+    """A table; `foot` is its last row, of the same columns; `airy`: how much of the usual room its rows have."""
     all_rows = [*rows, foot] if foot else rows
     places = _places(heads, all_rows, x, width)
     right = places[-1][0] + places[-1][1]
@@ -54,7 +56,7 @@ def table(
     pieces = [*paragraph(caption, x=x, width=width, gap=1.6, keep=True), *head]
     for number, row in enumerate(all_rows):
         ink = STRONG_RULE if foot and number == len(rows) else RULE
-        for part, piece in enumerate(_row(row, heads, places, _DENSE if dense else 1.0)):
+        for part, piece in enumerate(_row(row, heads, places, airy)):
             ruled = over(piece, _rule(x, right, 0.0, ink, HAIR)) if number and not part else piece
             stays = bool(foot) and number == len(rows) - 1  # a total never stands alone
             pieces.append(replace(ruled, head=head[0] if len(head) == 1 else None, keep=stays))

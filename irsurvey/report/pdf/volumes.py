@@ -12,11 +12,12 @@ from irsurvey.report.pdf.blocks import H2, NOTE, SMALL, heading, paragraph, spac
 from irsurvey.report.pdf.document import About, drawn, places
 from irsurvey.report.pdf.front import Listed
 from irsurvey.report.pdf.layout import Entry, Layout, Page
-from irsurvey.report.pdf.parts import frame_place, short
+from irsurvey.report.pdf.parts import frame_place
 from irsurvey.report.pdf.runs import DEEP, Face, Run, Runs
 from irsurvey.report.pdf.sheet import sheet
 from irsurvey.report.pdf.story import Story, asked, made_on
 from irsurvey.report.pdf.tables import Head, table
+from irsurvey.report.style import short
 from irsurvey.texts import say
 
 _SECTION = Face(8.6, "B", DEEP)
