@@ -14,7 +14,7 @@ from irsurvey.model import FrameReport
 from irsurvey.numbers import SI, Style
 from irsurvey.report import outlines, picture, scale
 from irsurvey.report.inks import UNMEASURABLE, palette
-from irsurvey.report.labels import Label, change_mark, place
+from irsurvey.report.labels import Label, change_mark, put
 from irsurvey.texts import say
 
 if TYPE_CHECKING:
@@ -42,11 +42,10 @@ def changed(frame: FrameReport, change: NDArray[np.float32], *, style: Style = S
         cv2.fillPoly(busy, [corners], 1)
         outlines.along_polygon(canvas, corners)
     labels = [
-        Label(change_mark(number), picture.box(one.polygon, factor), True)
+        Label(change_mark(number), picture.box(one.polygon, factor), True, picture.outline(one.polygon, factor))
         for number, one in enumerate(changes[: picture.NUMBERED], 1)
     ]
-    for tag, (x, y) in place(labels, busy):
-        canvas[y : y + tag.shape[0], x : x + tag.shape[1]] = tag
+    put(canvas, labels, busy)
     beyond = bool((change < -end).any()), bool((change > end).any())
     strip = scale.strip(max(canvas.shape[0], scale.LEAST_HEIGHT), -end, end, beyond, unit="K", style=style)
     image = picture.side_by_side(canvas, strip)

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
+from math import hypot
 
+import cv2
 import numpy as np
 from numpy.typing import NDArray
 
+from irsurvey.report import outlines
 from irsurvey.report.inks import DARK, LIGHT, Pixels, lettering
 
 Point = tuple[int, int]
@@ -18,6 +21,7 @@ Box = tuple[int, int, int, int]
 _SIZE = 15  # of the lettering
 _PADDING = 4  # between the lettering and the edge of its tag
 _GAPS = (7, 18, 34)  # from what is labelled to its tag, the nearest that is free
+_NEAR = 12  # pixels up to which a tag needs no line to what it names
 _LATTICE = 24  # step of the places tried in a crowded picture
 _ROMAN = ((100, "c"), (90, "xc"), (50, "l"), (40, "xl"), (10, "x"), (9, "ix"), (5, "v"), (4, "iv"), (1, "i"))
 TAG_COST = 100
@@ -26,11 +30,14 @@ TAG_COST = 100
 
 @dataclass(frozen=True, slots=True)
 class Label:
-    """A tag with a few letters for what lies in `box`; light on dark or dark on light."""
+    """A tag with a few letters for what lies in `box`; light on dark or dark on light.
+
+    `outline`: its corners, closed, for the line that leads there from a tag which had to stand apart."""
 
     text: str
     box: Box
     dark_on_light: bool
+    outline: tuple[Point, ...] = ()
 
     def tag(self) -> Pixels:
         """The tag as a block of ink numbers: the letters, a margin and a border that sets it off any background."""
@@ -61,6 +68,34 @@ def place(labels: Iterable[Label], busy: NDArray[np.int32]) -> Iterator[tuple[Pi
         yield tag, best
 
 
+def put(canvas: Pixels, labels: Sequence[Label], busy: NDArray[np.int32]) -> None:
+    """Place the tags and draw them, under them a line from each that stands apart to what it names."""
+    placed = list(zip(_that_fit(labels, canvas.shape), place(labels, busy), strict=True))
+    for label, (tag, corner) in placed:
+        if ends := leader(label, tag, corner):
+            outlines.leader(canvas, *ends)
+    for _, (tag, (x, y)) in placed:
+        canvas[y : y + tag.shape[0], x : x + tag.shape[1]] = tag
+
+
+def leader(label: Label, tag: Pixels, corner: Point) -> tuple[Point, Point] | None:
+    """The line from a tag to the nearest place of the outline it names; None where it is near, or lies within."""
+    if len(label.outline) < 2:
+        return None
+    (x, y), (height, width) = corner, tag.shape
+    centre = np.array([x + width / 2, y + height / 2])
+    corners = np.array(label.outline, dtype=np.float64)
+    if cv2.pointPolygonTest(corners.astype(np.float32), centre.tolist(), False) >= 0:
+        return None
+    along = np.roll(corners, -1, axis=0) - corners
+    length = np.maximum((along**2).sum(axis=1), 1e-9)
+    share = np.clip(((centre - corners) * along).sum(axis=1) / length, 0, 1)
+    points = corners + share[:, None] * along
+    to_x, to_y = points[np.argmin(((points - centre) ** 2).sum(axis=1))].round().astype(int).tolist()
+    start = min(max(to_x, x), x + width - 1), min(max(to_y, y), y + height - 1)
+    return (start, (to_x, to_y)) if hypot(start[0] - to_x, start[1] - to_y) > _NEAR else None
+
+
 def component_mark(place: int) -> str:
     """A, B, … Z, AA, AB, … for the first, second, … component of a frame."""
     mark = ""
@@ -82,6 +117,11 @@ def strip_mark(place: int) -> str:
         count, place = divmod(place, value)
         mark += numeral * count
     return mark
+
+
+def _that_fit(labels: Iterable[Label], shape: tuple[int, ...]) -> list[Label]:
+    """Those whose tag is no larger than the picture."""
+    return [label for label in labels if all(a <= b for a, b in zip(label.tag().shape, shape, strict=True))]
 
 
 def _cost(busy: NDArray[np.int32], corner: Point, tag: Pixels) -> int:

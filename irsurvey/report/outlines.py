@@ -43,6 +43,14 @@ def along_line(canvas: Pixels, ends: NDArray[np.int32]) -> None:
     canvas[drawn > 0] = LIGHT
 
 
+def leader(canvas: Pixels, first: tuple[int, int], last: tuple[int, int]) -> None:
+    """Draw a thin straight line from one point to another."""
+    drawn = np.zeros_like(canvas)
+    cv2.line(drawn, first, last, color=1)
+    canvas[cv2.dilate(drawn, _NEIGHBOURS) > 0] = DARK
+    canvas[drawn > 0] = LIGHT
+
+
 def dashed(canvas: Pixels, area: NDArray[np.uint8]) -> None:
     """Draw a dashed line along the rim of an area (not 0 inside)."""
     dashes = np.zeros_like(area)

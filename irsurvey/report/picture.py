@@ -16,7 +16,7 @@ from irsurvey.model import FrameReport, Maps
 from irsurvey.numbers import SI, Style
 from irsurvey.report import outlines, scale
 from irsurvey.report.inks import COLORMAP, DARK, LEVELS, LIGHT, UNMEASURABLE, Pixels, palette
-from irsurvey.report.labels import Box, Label, Point, component_mark, place, strip_mark
+from irsurvey.report.labels import Box, Label, Point, component_mark, put, strip_mark
 from irsurvey.report.ranking import foremost
 from irsurvey.texts import say
 
@@ -128,8 +128,7 @@ def _draw(canvas: Pixels, frame: FrameReport, maps: Maps, *, factor: int, extrem
     for x, y in extremes:
         left, top = max(0, x * factor - _CLEARANCE), max(0, y * factor - _CLEARANCE)
         busy[top : (y + 1) * factor + _CLEARANCE, left : (x + 1) * factor + _CLEARANCE] = _EXTREME_COST
-    for tag, (x, y) in place(_labels(frame, factor), busy):
-        canvas[y : y + tag.shape[0], x : x + tag.shape[1]] = tag
+    put(canvas, _labels(frame, factor), busy)
 
 
 def side_by_side(canvas: Pixels, strip: Pixels) -> Image.Image:
@@ -155,13 +154,16 @@ def hatch(picture: Pixels) -> None:
 
 def _labels(frame: FrameReport, factor: int) -> list[Label]:
     """The foremost findings by number, dark on light; components by letter, strips by Roman number, light on dark."""
-    findings = [Label(str(finding.label), box(finding.polygon, factor), True) for finding in foremost(frame, NUMBERED)]
+    findings = [
+        Label(str(finding.label), box(finding.polygon, factor), True, outline(finding.polygon, factor))
+        for finding in foremost(frame, NUMBERED)
+    ]
     components = [
-        Label(component_mark(number), box(component.polygon, factor), False)
+        Label(component_mark(number), box(component.polygon, factor), False, outline(component.polygon, factor))
         for number, component in enumerate(frame.components, 1)
     ]
     strips = [
-        Label(strip_mark(number), box((strip.from_, strip.to), factor), False)
+        Label(strip_mark(number), box(ends := (strip.from_, strip.to), factor), False, outline(ends, factor))
         for number, strip in enumerate(frame.strips, 1)
     ]
     return components + strips + findings
@@ -207,6 +209,11 @@ def box(polygon: tuple[tuple[float, float], ...], factor: int) -> Box:
 def corners(polygon: tuple[tuple[float, float], ...], factor: int) -> NDArray[np.int32]:
     """Corner points in pixels of the enlarged picture; pixel centres are integers in both."""
     return np.rint((np.asarray(polygon) + 0.5) * factor - 0.5).astype(np.int32)
+
+
+def outline(polygon: tuple[tuple[float, float], ...], factor: int) -> tuple[Point, ...]:
+    """The same corners as plain numbers."""
+    return tuple((int(x), int(y)) for x, y in corners(polygon, factor))
 
 
 def _in_words(frame: FrameReport, low: float, high: float, colormap: str, style: Style) -> str:

@@ -14,8 +14,9 @@ import pytest
 from PIL import Image
 
 from irsurvey.model import FrameReport, Maps, Report
+from irsurvey.report import labels
 from irsurvey.report.inks import DARK, LEVELS, LIGHT, UNMEASURABLE, lettering, palette
-from irsurvey.report.labels import Label, component_mark, place, strip_mark
+from irsurvey.report.labels import Label, component_mark, leader, place, put, strip_mark
 from irsurvey.report.outlines import WIDTH
 from irsurvey.report.picture import (
     MINIMUM_SPAN_K,
@@ -353,3 +354,42 @@ def test_a_picture_against_the_floor_of_encoding_it_in_true_colour(wall: FrameRe
 
     indexed, floor = best(lambda: encoded(annotated(wall, maps))), best(lambda: encoded(true_colour))
     print(f"512 × 640, drawn and encoded: {indexed * 1e3:.1f} ms, {indexed / floor:.2f} × encoding it in true colour")
+
+
+def test_a_tag_that_stands_apart_has_a_line_to_what_it_names() -> None:
+    square = ((40, 40), (80, 40), (80, 80), (40, 80))
+    label = Label("7", (40, 40, 81, 81), True, square)
+    tag = label.tag()
+    height = tag.shape[0]
+    assert leader(label, tag, (80 + 12, 50)) is None
+    assert leader(label, tag, (50, 50)) is None  # it lies upon what it names
+    assert leader(label, tag, (80 + 13, 50)) == ((93, 50 + height // 2), (80, 50 + height // 2))
+    assert leader(replace(label, outline=()), tag, (180, 50)) is None
+    canvas = np.zeros((200, 300), np.uint8)
+    busy = np.zeros(canvas.shape, np.int32)
+    busy[:, :150] = 1  # no room near it
+    put(canvas, [label], busy)
+    ys, xs = np.nonzero(canvas == LIGHT)
+    inked = set(zip(xs.tolist(), ys.tolist(), strict=True))
+    row = next(y for x, y in inked if x == 81)
+    assert all(any((x, y) in inked for y in range(200)) for x in range(80, 150))
+    assert 40 <= row <= 80
+
+
+def test_no_line_to_a_tag_covers_the_hottest_pixel(
+    wall: FrameReport, wall_maps: Maps, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(labels, "_GAPS", (40,))  # far enough for lines
+    drawn = np.asarray(annotated(wall, wall_maps))
+    with monkeypatch.context() as patch:
+        patch.setattr(labels, "leader", lambda *_: None)
+        on_line = np.argwhere((drawn != np.asarray(annotated(wall, wall_maps))) & (drawn == LIGHT))
+    assert len(on_line) > 20
+    y, x = on_line[len(on_line) // 4] // 2  # of the frame, which is drawn twice as large
+    temperature = wall_maps.temperature_c.copy()
+    temperature[y, x] = 40.0
+    maps = replace(wall_maps, temperature_c=temperature)
+    again = np.asarray(annotated(wall, maps))
+    shade = shades(temperature, *display_range(temperature, maps.labels))
+    assert (again[2 * y : 2 * y + 2, 2 * x : 2 * x + 2] == shade[y, x]).all()
+    assert (again == LIGHT)[2 * y - 4 : 2 * y + 6, 2 * x - 4 : 2 * x + 6].any()  # the line is there all the same

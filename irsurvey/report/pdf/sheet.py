@@ -25,7 +25,7 @@ from irsurvey.report.pdf.blocks import (
     text,
 )
 from irsurvey.report.pdf.blocks import facts as in_columns
-from irsurvey.report.pdf.images import image
+from irsurvey.report.pdf.images import Image, image
 from irsurvey.report.pdf.layout import BREADTH, Entry, Layout, Piece
 from irsurvey.report.pdf.parts import (
     cell,
@@ -55,7 +55,7 @@ _OF_FINDINGS = (
     *("heat_flux_w_m2", "reference_heat_flux_w_m2", "excess_heat_w"),
 )
 _PICTURE = 108.0  # mm, width of the thermal picture
-_SMALLER_PICTURE = 84.0  # mm, of one that saves a page
+_SMALLER_PICTURE = 78.0  # mm, of one that saves a page
 _TAIL = 40.0  # mm, of a last page that a smaller picture may save
 _EVIDENCE = 2  # place of the picture among the parts of a sheet
 _HIGHEST = 118.0  # mm, of a picture
@@ -79,23 +79,24 @@ def sheet(frame: FrameReport, story: Story, layout: Layout, above: Sequence[Piec
     entry = Entry(f"{frame.id}{GAP}{short(frame.label)}".rstrip(), 1)
     layout.add(heading(title, H2, gap=8, place=frame_place(frame.id), entry=entry))
     layout.add(paragraph(text(_where(frame, task, story.style), NOTE), gap=0.6, keep=True))
+    notes = [*heading(say("notes")), *paragraph(text(frame.notes))] if frame.notes else []
     if is_failed:
         layout.add(paragraph((chip(say("not_readable"), "weak"), Run(f" {frame.reason}"))))
-        layout.add(paragraph(text(say("not_analysed_clears_nothing"))))
+        layout.add([*paragraph(text(say("not_analysed_clears_nothing"))), *notes])
     else:
-        parts = _analysed(frame, task, story)
+        thermal = image(pictures.stored(frame, story.out, "annotated.png"))
+        photo = image(pictures.photograph(task, pictures.PHOTOGRAPH_SIDE)) if task else None
+        parts = [*_analysed(frame, task, story, _evidence(frame, thermal, photo, story.style)), notes]
         begun, reached = layout.reach(chain.from_iterable(parts))
         if begun and reached < _TAIL:  # a little more than its pages hold: perhaps not with a smaller picture
             smaller = [*parts]
-            smaller[_EVIDENCE] = _evidence(frame, task, story, _SMALLER_PICTURE)
+            smaller[_EVIDENCE] = _evidence(frame, thermal, photo, story.style, _SMALLER_PICTURE)
             parts = smaller if layout.reach(chain.from_iterable(smaller))[0] < begun else parts
         for pieces in parts:
             layout.add(pieces)
-    if frame.notes:
-        layout.add([*heading(say("notes")), *paragraph(text(frame.notes))])
 
 
-def _analysed(frame: FrameReport, task: FrameTask | None, story: Story) -> list[list[Piece]]:
+def _analysed(frame: FrameReport, task: FrameTask | None, story: Story, evidence: list[Piece]) -> list[list[Piece]]:
     why = f" {say('why_claimed', reason=in_style(frame.claim_reason, story.style))}" if frame.claim_reason else ""
     shown = foremost(frame, NUMBERED)
     entries = [Ranked(frame, finding, finding.label) for finding in shown]
@@ -103,7 +104,7 @@ def _analysed(frame: FrameReport, task: FrameTask | None, story: Story) -> list[
     return [
         paragraph((claim(frame.claim), Run(f" {texts.claim(frame.claim)}{why}"))),
         paragraph(text(bound(frame, story.style))),
-        _evidence(frame, task, story),
+        evidence,
         _findings(frame, shown, story.style),
         _components(frame, story.style),
         heading(say("assessment")) if entries else [],
@@ -151,24 +152,22 @@ def _where(frame: FrameReport, task: FrameTask | None, style: Style) -> str:
 
 
 def _evidence(
-    frame: FrameReport, task: FrameTask | None, story: Story, picture_width: float = _PICTURE
+    frame: FrameReport, thermal: Image | None, photo: Image | None, style: Style, picture_width: float = _PICTURE
 ) -> list[Piece]:
     """The picture with its caption; beside it what it shows, and the photograph or what its reference tells."""
     shown = len(foremost(frame, NUMBERED))
-    thermal = image(pictures.stored(frame, story.out, "annotated.png"))
-    photo = image(pictures.photograph(task, pictures.PHOTOGRAPH_SIDE)) if task else None
     if thermal:
         size = thermal.size(picture_width, _HIGHEST)
         left = [picture(thermal.data, size)]
     else:
         left = paragraph(text(say("picture_missing")), width=picture_width)
-    left += paragraph(text(_caption(frame, shown, story.style), NOTE), width=picture_width, gap=0)
+    left += paragraph(text(_caption(frame, shown, style), NOTE), width=picture_width, gap=0)
     x, width = picture_width + _GUTTER, BREADTH - picture_width - _GUTTER
     right = [
         *paragraph(text(say("what_it_shows"), Face(9.4, "B", DEEP)), x=x, width=width, gap=0),
-        *labelled(_shown(frame, story.style), x=x, width=width),
+        *labelled(_shown(frame, style), x=x, width=width),
     ]
-    told = facts.of_reference(frame.reference, style=story.style) if frame.reference else ()
+    told = facts.of_reference(frame.reference, style=style) if frame.reference else ()
     below: list[Piece] = []
     if photo:
         right += [picture(photo.data, photo.size(width, 60), x=x, gap=3)]
