@@ -159,7 +159,7 @@ def test_an_indication_gives_its_cues_and_how_to_verify_it(report: Report, show:
     assert text.count("borescope") == 1  # its statement says so already
     assert (
         "What it was read from how steep its edge is, in its contrast 0.31 1/px "
-        "its length in widths 2.4 changed with the pressure no "
+        "how many times its width it is long 2.4 changed with the pressure no "
         "share of it with nearly its full contrast 0.83" in text
     )
     assert "distance to the nearest opening" not in text  # none was drawn
