@@ -86,6 +86,12 @@ def meaning(item: Finding, frame: FrameReport, cost: str, *, style: Style = SI) 
     return line[:1].upper() + line[1:]
 
 
+def why(report: Report) -> str:
+    """The key of `say` for the reason of what a survey may claim: numbers save in some frames, or the reason itself."""
+    excepted = any(frame.claim != report.claim for frame in report.frames if frame.status != "failed")
+    return "exceptions" if report.claim == "quantitative" and excepted else "why_claimed"
+
+
 def mouldy(report: Report) -> tuple[FrameReport, ...]:
     """Frames in which the coldest spot of a finding, or of all that was inspected, likely has mould conditions."""
     return tuple(

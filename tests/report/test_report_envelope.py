@@ -36,7 +36,7 @@ def with_wall(report: Report, **changes: object) -> Report:
 def test_the_summary_begins_with_the_claim_of_the_whole_survey_and_its_reason(report: Report, show: Shown) -> None:
     summary = section(show(report), "summary").text
     assert summary.index("the frame F03 could not be read") < summary.index("What was found")
-    assert "From most of this survey nothing may be concluded. Exceptions: the frame F03" in summary
+    assert "From most of this survey nothing may be concluded. Why: the frame F03" in summary
 
 
 def test_the_summary_tells_what_a_finding_is_consistent_with_and_what_it_takes(report: Report, show: Shown) -> None:

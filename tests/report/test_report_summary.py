@@ -98,3 +98,11 @@ def test_the_map_of_frames_follows_what_was_found(sample_runs: Runs) -> None:
     html = page(report, kept(out), out)
     places = [html.index(f'<section id="{name}"') for name in ("summary", "frames", "season", "conditions")]
     assert places == sorted(places)
+
+
+def test_a_reason_is_called_an_exception_only_where_some_frames_may_claim_less(sample_runs: Runs) -> None:
+    report, _ = sample_runs["house"]
+    sure = replace(report, frames=tuple(frame for frame in report.frames if frame.claim == "quantitative"))
+    doubtful = replace(report, claim="qualitative", claim_reason="wind not recorded")
+    assert [facts.why(one) for one in (report, sure, doubtful)] == ["exceptions", "why_claimed", "why_claimed"]
+    assert "Exceptions: east-wall-sun not valid" in text_of(sample_runs, "house")

@@ -91,7 +91,7 @@ def _opening(story: Story) -> list[Piece]:
     report = story.report
     told: Runs = (claim(report.claim), Run(" "), emphasis(texts.overall(report.claim)))
     if report.claim_reason:
-        told = (*told, Run(f" {say('why', reason=short(in_style(report.claim_reason, story.style), 400))}"))
+        told = (*told, Run(f" {say(facts.why(report), reason=short(in_style(report.claim_reason, story.style), 400))}"))
     return [
         *heading(say("summary"), H2, entry=Entry(say("summary"), 0), place="summary"),
         *paragraph(told),
